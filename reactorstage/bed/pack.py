@@ -1,0 +1,87 @@
+"""From species and rate laws to the arrays that the kernel reads."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from reactorstage.bed.data import Array, Beds, Chemistry, Index
+from reactorstage.chemistry.rate_law import RateLaws, basis_factors
+from reactorstage.chemistry.species import SpeciesTable
+
+
+def pack_chemistry(table: SpeciesTable, laws: RateLaws) -> Chemistry:
+    """Arrays of the chemistry; the temperature range is the one that all species' data share."""
+    members = [_members(laws, r) for r in range(laws.nu.shape[0])]
+    longest = max(1, max(len(used) for used in members))
+    return Chemistry(
+        coefficients=np.ascontiguousarray(table.coefficients),
+        edges=np.ascontiguousarray(table.edges),
+        molar_mass=np.ascontiguousarray(table.molar_mass),
+        nu=np.ascontiguousarray(laws.nu),
+        change=laws.nu.sum(axis=1),
+        law=np.column_stack([laws.lnk_ref, laws.T_ref, laws.E_over_R, laws.c, laws.d, laws.m]),
+        kind=np.column_stack([laws.driver, laws.reversible, [len(used) for used in members]]),
+        member=np.array([_padded(used, longest, -1) for used in members], dtype=np.int64),
+        order=np.array([[_padded(orders[r][used], longest, 0.0) for orders in (laws.alpha, laws.beta)]
+                        for r, used in enumerate(members)]),
+        den_start=laws.den_start,
+        den_power=laws.den_power,
+        term_start=laws.term_start,
+        term=np.column_stack([laws.term_lnK_ref, laws.term_T_ref, laws.term_H_over_R]),
+        term_order=_term_orders(laws, members, longest),
+        T_low=float(table.edges[:, 0].max()),
+        T_high=float(table.edges[:, -1].min()),
+    )
+
+
+def ergun_terms(
+    diameter: float, bulk_density: float, void_fraction: float, equivalent_size: float, viscosity: float
+) -> tuple[float, float]:
+    """Viscous and inertial terms of `Beds` (Ergun, Chem. Eng. Prog. 48 (1952) 89, equation from memory).
+
+    dp/dz = -150 mu (1-eps)^2 u / (eps^3 d^2) - 1.75 rho (1-eps) u^2 / (eps^3 d), superficial u = G/rho,
+    with dw = rho_b A dz. Lengths in m, bulk density kg/m3, viscosity Pa s. Fitted to random packings with
+    void fractions of about 0.35 to 0.55.
+    """
+    area = np.pi * diameter**2 / 4.0
+    solid, eps3 = 1.0 - void_fraction, void_fraction**3
+    viscous = 150.0 * viscosity * solid**2 / (eps3 * equivalent_size**2) / area
+    inertial = 1.75 * solid / (eps3 * equivalent_size) / area**2
+    return viscous / (bulk_density * area), inertial / (bulk_density * area)
+
+
+def pack_beds(
+    laws: RateLaws,
+    bulk_density: Sequence[float],
+    void_fraction: Sequence[float],
+    ergun: Sequence[tuple[float, float]],
+) -> Beds:
+    """Arrays of the beds; densities and void fractions that no rate needs may be not a number."""
+    factors = np.array([basis_factors(laws, *bed) for bed in zip(bulk_density, void_fraction, strict=True)])
+    terms = np.array(ergun, dtype=np.float64).reshape(-1, 2)
+    return Beds(np.ascontiguousarray(factors), terms[:, 0].copy(), terms[:, 1].copy())
+
+
+def _terms_of(laws: RateLaws, r: int) -> slice:
+    return slice(laws.term_start[laws.den_start[r]], laws.term_start[laws.den_start[r + 1]])
+
+
+def _members(laws: RateLaws, r: int) -> Index:
+    """Species that the law of reaction r names: in its products or in its denominator."""
+    named = (laws.alpha[r] != 0.0) | ((laws.beta[r] != 0.0) & (laws.reversible[r] == 1))
+    return np.flatnonzero(named | (laws.gamma[_terms_of(laws, r)] != 0.0).any(axis=0))
+
+
+def _padded(values: Array | Index, length: int, filler: float) -> list[float]:
+    return [*values.tolist(), *[filler] * (length - len(values))]
+
+
+def _term_orders(laws: RateLaws, members: Sequence[Index], longest: int) -> Array:
+    rows = [
+        _padded(line[used], longest, 0.0)
+        for r, used in enumerate(members)
+        for line in laws.gamma[_terms_of(laws, r)]
+    ]
+    return np.array(rows, dtype=np.float64).reshape(-1, longest)

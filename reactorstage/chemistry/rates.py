@@ -1,0 +1,87 @@
+"""Reaction rates in plain NumPy, the readable twin of the compiled kernel.
+
+Everything takes complex flows, temperature and pressure, so that derivatives can be checked by
+complex step. The formulas stand at the top of `rate_law`.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+
+from reactorstage.chemistry.constants import P_STANDARD, R_GAS
+from reactorstage.chemistry.forms import Floats
+from reactorstage.chemistry.rate_law import RateLaws
+from reactorstage.chemistry.reaction import ln_K
+from reactorstage.chemistry.species import SpeciesTable
+from reactorstage.chemistry.thermo import Array, Scalar
+
+DELTA = 1e-12
+"""Width of the smooth extension of powers around zero, as a fraction of the total of the driver."""
+
+
+def rates(laws: RateLaws, table: SpeciesTable, F: Array, T: Scalar, p: Scalar, factor: Floats) -> Array:
+    """Rates of the reactions of an ideal gas (R,), mol/(kg s) with factors that make them so.
+
+    F (S,) molar flows, mol/s, only their ratios matter; T K; p Pa; factor (R,) catalyst activity
+    times `basis_factors`.
+    """
+    y = F / np.sum(F)
+    k = np.exp(ln_k(laws, T))
+    ln_Ka = ln_K_of_driver(laws, table, T, p)
+    found = []
+    for r in range(len(laws.m)):
+        total = driver_total(laws.driver[r], T, p)
+        a = y * total
+        drive = product(a, laws.alpha[r], total)
+        if laws.reversible[r]:
+            drive = drive - product(a, laws.beta[r], total) * np.exp(-laws.m[r] * ln_Ka[r])
+        found.append(factor[r] * k[r] * drive / _denominator(laws, r, a, T, total))
+    return np.array(found)
+
+
+def ln_k(laws: RateLaws, T: Scalar) -> Array:
+    """ln of the rate constants at T in K, (R,)."""
+    away = laws.E_over_R * (1.0 / laws.T_ref - 1.0 / T)
+    ln_k_T = laws.lnk_ref + away + laws.c * np.log(T / laws.T_ref) + laws.d * (T - laws.T_ref)
+    return np.asarray(ln_k_T)
+
+
+def ln_K_of_driver(laws: RateLaws, table: SpeciesTable, T: Scalar, p: Scalar) -> Array:
+    """ln of the equilibrium constants in the unit of each driver, (R,): Ka = K (p0 a/p)^(sum nu)."""
+    ln_p0_a_p = np.log(np.array([P_STANDARD / (R_GAS * T), P_STANDARD, P_STANDARD / p]))[laws.driver]
+    return np.asarray(ln_K(table, laws.nu, T) + laws.nu.sum(axis=1) * ln_p0_a_p)
+
+
+def driver_total(driver: int, T: Scalar, p: Scalar) -> Scalar:
+    """Sum of the driver over all species: p/(R T) in mol/m3, p in Pa, or 1."""
+    return (p / (R_GAS * T), p, 1.0)[driver]
+
+
+def product(a: Array, orders: Floats, total: Scalar) -> Scalar:
+    """prod a_i^n_i with the smooth extension of broken and negative orders."""
+    value: Scalar = 1.0
+    for a_i, n in zip(a, orders, strict=True):
+        value = value * power(a_i, n, DELTA * total)
+    return value
+
+
+def power(a: Scalar, n: float, delta: Scalar) -> Scalar:
+    """a^n, extended smoothly through zero with the width delta."""
+    if n >= 0.0 and n == round(n):
+        return a ** int(n)
+    square = a * a + delta * delta
+    return a * square ** ((n - 1.0) / 2.0) if n > 0.0 else square ** (n / 2.0)
+
+
+def _denominator(laws: RateLaws, r: int, a: Array, T: Scalar, total: Scalar) -> Scalar:
+    value: Scalar = 1.0
+    for n in range(laws.den_start[r], laws.den_start[r + 1]):
+        terms = range(laws.term_start[n], laws.term_start[n + 1])
+        value = value * sum(_term(laws, j, a, T, total) for j in terms) ** laws.den_power[n]
+    return value
+
+
+def _term(laws: RateLaws, j: int, a: Array, T: Scalar, total: Scalar) -> Scalar:
+    ln_K_j = laws.term_lnK_ref[j] + laws.term_H_over_R[j] * (1.0 / laws.term_T_ref[j] - 1.0 / T)
+    K_j: Scalar = np.exp(ln_K_j)
+    return K_j * product(a, laws.gamma[j], total)

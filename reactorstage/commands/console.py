@@ -1,0 +1,72 @@
+"""Standard output for results, standard error for talk; colour and progress on a terminal only."""
+
+from __future__ import annotations
+
+import os
+import re
+import sys
+import time
+
+import click
+
+BOLD_HEADS = re.compile(r"^([A-Z][A-Z ]{3,}[A-Z])(?= |$)")
+GOOD = re.compile(r"\bINSIDE ALL LIMITS\b")
+BAD = re.compile(r"\b(\d+ LIMITS? BROKEN|BROKEN !|CANNOT MEET ALL LIMITS|NO ANSWER|unpriced \(!\))")
+REDRAW_SECONDS = 0.1
+
+
+def say(text: str) -> None:
+    """Result text; a reader that goes away early (as `head` does) is no error."""
+    try:
+        click.echo(_painted(text) if coloured(sys.stdout) else text)
+        sys.stdout.flush()
+    except BrokenPipeError:
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+
+
+def tell(text: str) -> None:
+    """A message to the person who called."""
+    click.echo(text, err=True)
+
+
+def coloured(stream: object) -> bool:
+    """Colour only on a terminal and only when NO_COLOR is not set."""
+    return not os.environ.get("NO_COLOR") and bool(getattr(stream, "isatty", lambda: False)())
+
+
+def _painted(text: str) -> str:
+    return "\n".join(_painted_line(line) for line in text.split("\n"))
+
+
+def _painted_line(line: str) -> str:
+    line = GOOD.sub(lambda found: click.style(found[0], fg="green", bold=True), line)
+    line = BAD.sub(lambda found: click.style(found[0], fg="red", bold=True), line)
+    return BOLD_HEADS.sub(lambda found: click.style(found[0], bold=True), line)
+
+
+class ProgressLine:
+    """One line on standard error that says how far the work is; nothing where it would be in the way."""
+
+    def __init__(self, quiet: bool, currency: str = ""):
+        self.active = not quiet and sys.stderr.isatty()
+        self.unit = f" {currency}/h" if currency else ""
+        self.drawn = -1.0
+        self.started = time.monotonic()
+
+    def __call__(self, done: int, total: int, best: float | None, text: str) -> None:
+        """done of total parts, best cost so far in money per second, what has just ended."""
+        now = time.monotonic()
+        if not self.active or (now - self.drawn < REDRAW_SECONDS and done < total):
+            return
+        self.drawn = now
+        found = "" if best is None else f", best {3600.0 * best:.1f}{self.unit}"
+        self._write(f"{text}{found}, {now - self.started:.1f} s")
+
+    def end(self) -> None:
+        """Take the line away."""
+        if self.active and self.drawn >= 0.0:
+            self._write("")
+
+    def _write(self, text: str) -> None:
+        sys.stderr.write(f"\r\x1b[K{text[:100]}")
+        sys.stderr.flush()

@@ -1,0 +1,192 @@
+"""What `rate` and `optimise` say on the terminal: one screen of plain lines."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import TYPE_CHECKING
+
+from reactorstage.commands.layout import INDENT, items, paragraph, spread, table_lines
+from reactorstage.optimise import result as words
+from reactorstage.report import bounds, sentences
+from reactorstage.report.accounts import accounts, heat_words
+from reactorstage.report.beds import bed_table
+from reactorstage.report.display import counted, fixed, money, unit
+from reactorstage.report.gaps import gap_table
+from reactorstage.train.result import Rating
+
+if TYPE_CHECKING:
+    from reactorstage.face import Optimisation
+
+
+def rating_lines(rating: Rating, seconds: float, width: int) -> list[str]:
+    """The screen of `rate`."""
+    steps = f"{rating.integration_steps} integration steps"
+    return [
+        *spread([rating.case.name, f"rating, {_status(rating)}", heat_words(rating)], width),
+        " | ".join([_closure(rating), steps, f"{seconds:.2f} s"]),
+        *_failure(rating, width),
+        *_block(table_lines(bed_table(rating), width), paragraph(sentences.out_line(rating), width, 5)),
+        *_block(table_lines(gap_table(rating), width)),
+        *_block(table_lines(bounds.rating_table(rating), width), _more_limits(rating)),
+        *_block(_money(rating, None, width)),
+        *_numbered(sentences.warnings(rating), width),
+        *paragraph(sentences.caution(), width),
+    ]
+
+
+def optimum_lines(outcome: Optimisation, width: int) -> list[str]:
+    """The screen of `optimise`: the best answer with today's setting beside it."""
+    best, today, optimum = outcome.best, outcome.today, outcome.optimum
+    if best is None:
+        return _no_answer(outcome, width)
+    return [
+        *spread([best.case.name, optimum_status(optimum, best), heat_words(best)], width),
+        *paragraph(" | ".join([_closure(best), *_search(outcome)]), width),
+        *_block(
+            table_lines(bed_table(best, today), width), paragraph(sentences.out_line(best, today), width, 5)
+        ),
+        *_block(table_lines(gap_table(best, today), width)),
+        *_block(_held(outcome, best, width)),
+        *_money(best, today, width),
+        *_after_money(outcome, best, width),
+        *_numbered(_three(outcome, best), width),
+    ]
+
+
+def optimum_status(optimum: words.Optimum, best: Rating) -> str:
+    """The status word in capitals with what it is about."""
+    count = len(bounds.broken(best))
+    return {
+        words.INSIDE: "best found, INSIDE ALL LIMITS",
+        words.BROKEN: f"best found, {_limits(count)} BROKEN",
+        words.CANNOT: f"CANNOT MEET ALL LIMITS, least violation: {_limits(count)} broken",
+        words.STOPPED: "STOPPED BY YOU, best so far",
+    }.get(optimum.status, optimum.status.upper())
+
+
+def _status(rating: Rating) -> str:
+    count = len(bounds.broken(rating))
+    return f"{_limits(count)} BROKEN" if count and not rating.failure else rating.status.upper()
+
+
+def _limits(count: int) -> str:
+    return f"{count} LIMIT{'' if count == 1 else 'S'}"
+
+
+def _closure(rating: Rating) -> str:
+    return f"atoms {rating.atoms:.0e}, energy {rating.energy:.0e}"
+
+
+def _search(outcome: Optimisation) -> list[str]:
+    optimum = outcome.optimum
+    ended = sum(start.answer >= 0 for start in optimum.starts)
+    free = sum(not number.internal for number in outcome.programme.numbers)
+    tried = len(optimum.starts)
+    starts = f"{ended if ended == tried else f'{ended} of {tried}'} starts ended"
+    return [
+        f"{starts}, {counted(len(optimum.answers), 'distinct answer')}",
+        counted(free, "free number"),
+        f"{outcome.seconds:.1f} s",
+        f"seed {outcome.seed}",
+    ]
+
+
+def _failure(rating: Rating, width: int) -> list[str]:
+    return paragraph(f"NO ANSWER: {rating.failure}", width) if rating.failure else []
+
+
+def _block(*parts: Sequence[str]) -> list[str]:
+    lines = [line for part in parts for line in part]
+    return ["", *lines] if lines else []
+
+
+def _more_limits(rating: Rating) -> list[str]:
+    total = sum(not state.implied for state in rating.limits)
+    count = len(bounds.broken(rating))
+    return (
+        [f"{total} limits in all, {count} broken; of the others the nearest one per label is shown."]
+        if total
+        else []
+    )
+
+
+def _money(now: Rating, was: Rating | None, width: int) -> list[str]:
+    rows = accounts(now, was)
+    if len(rows) < 2 and not any(row.now for row in rows):
+        return []
+    compared = "" if was is None else " (against today)"
+    title = f"MONEY {unit('money rate', now.case.currency)}{compared}"
+    return items(title, [row.text for row in rows], width)
+
+
+def _held(outcome: Optimisation, best: Rating, width: int) -> list[str]:
+    optimum = outcome.optimum
+    if optimum.conflict is not None:
+        return _conflict(outcome, best, width)
+    held = bounds.at_work(best)
+    free = sum(not number.internal for number in outcome.programme.numbers)
+    lines = table_lines(bounds.worth_table(optimum, best), width)
+    if not lines and held:
+        lines = items("LIMITS AT WORK (*)", [bounds.name(state) for state in held], width)
+    tail = f"{bounds.count_text(held, free)} {bounds.next_text(best)}" if held else bounds.next_text(best)
+    return [*lines, *paragraph(tail.strip(), width)]
+
+
+def _conflict(outcome: Optimisation, best: Rating, width: int) -> list[str]:
+    conflict = outcome.optimum.conflict
+    assert conflict is not None
+    lines = [f"  {bounds.sentence(best.limits[index], best.case.currency)}" for index, _ in conflict.broken]
+    against = [bounds.name(best.limits[index]) for index in conflict.against]
+    text = f"held by: {', '.join(against)}" if against else ""
+    return ["LIMITS THAT CANNOT ALL BE MET", *lines, *([*paragraph(f"  {text}", width, 4)] if text else [])]
+
+
+def _after_money(outcome: Optimisation, best: Rating, width: int) -> list[str]:
+    texts = [sentences.equal_split_text(split, best) for split in outcome.optimum.equal_splits]
+    texts += [sentences.margin_text(outcome.optimum, best), _range_ends(outcome)]
+    return [line for text in texts if text for line in paragraph(text, width, INDENT)]
+
+
+def _range_ends(outcome: Optimisation) -> str:
+    names = outcome.optimum.best.at_range
+    return (
+        f"RANGE ENDS   {', '.join(names)}: the search range holds these, no limit does; widen it."
+        if names
+        else ""
+    )
+
+
+def _three(outcome: Optimisation, best: Rating) -> list[str]:
+    today, optimum = outcome.today, outcome.optimum
+    return [
+        sentences.first_change(outcome.programme, best, today),
+        sentences.second_answer(outcome.programme, optimum, best, outcome.others),
+        *optimum.notes,
+        *sentences.warnings(best),
+        f"{sentences.today_text(today)} {sentences.caution()}",
+    ]
+
+
+def _numbered(texts: Sequence[str], width: int) -> list[str]:
+    present = [text for text in texts if text]
+    return [line for number, text in enumerate(present, 1) for line in paragraph(f"{number} {text}", width)]
+
+
+def _no_answer(outcome: Optimisation, width: int) -> list[str]:
+    """Nothing was found: why, and how each start ended."""
+    optimum, today = outcome.optimum, outcome.today
+    rows = [f"  {start.name}: {start.ended}" for start in optimum.starts]
+    return [
+        *spread([today.case.name, optimum.status.upper()], width),
+        *_failure(today, width),
+        *[line for note in optimum.notes for line in paragraph(note, width)],
+        *_block(
+            [f"HOW {len(rows)} STARTS ENDED", *[line for row in rows for line in paragraph(row, width, 4)]]
+        ),
+    ]
+
+
+def done_text(rating: Rating) -> str:
+    """The total in one line, for progress."""
+    total = rating.money.get("total")
+    return "" if total is None else f"{fixed(money(total), 1)} {unit('money rate', rating.case.currency)}"

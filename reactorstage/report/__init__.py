@@ -1,0 +1,1 @@
+"""Tables as data, sentences, figures, JSON and CSV of what a train does."""

@@ -1,0 +1,176 @@
+"""Limits in words and tables: which are broken, which are at work, which come next."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+
+from reactorstage.optimise.result import Optimum, Worth
+from reactorstage.report.display import (
+    allowed,
+    brief,
+    counted,
+    difference,
+    difference_kind,
+    fixed,
+    money,
+    owners_text,
+    shown,
+    told,
+    unit,
+    with_unit,
+)
+from reactorstage.report.table import AT_WORK, BROKEN, Column, Table, table
+from reactorstage.train.result import LimitState, Rating
+
+ROWS_SHOWN = 9
+
+
+def broken(rating: Rating) -> list[LimitState]:
+    """Limits that this setting breaks, in the order of the case."""
+    return [state for state in rating.limits if not state.met]
+
+
+def at_work(rating: Rating) -> list[LimitState]:
+    """Limits with zero margin, in the order of the case."""
+    return [state for state in rating.limits if state.at_work and state.met]
+
+
+def name(state: LimitState) -> str:
+    """`hot exit, bed 4`."""
+    return f"{state.label}, {state.owner}"
+
+
+def nearness(state: LimitState) -> float:
+    """Margin as a part of the bound, so that unlike limits can be put in order; inf when there is none.
+
+    Temperatures are compared on a span of 100 K, since their zero means nothing.
+    """
+    if state.margin is None:
+        return float("inf")
+    span = 100.0 if state.kind == "temperature" else abs(state.bound) or abs(state.value or 0.0) or 1.0
+    return state.margin / span
+
+
+def sentence(state: LimitState, currency: str = "") -> str:
+    """`hot exit, bed 1: 424.3 degC, at most 424 degC`."""
+    bound = allowed(state.bound, state.kind, currency)
+    return f"{name(state)}: {told(state.value, state.kind, currency)}, {state.direction} {bound}"
+
+
+def next_ones(rating: Rating, count: int = 2) -> list[LimitState]:
+    """The nearest of the labels and directions of which no limit is at work or broken."""
+    held = {(state.label, state.direction) for state in rating.limits if state.at_work or not state.met}
+    free = [
+        s
+        for s in rating.limits
+        if not s.implied and s.margin is not None and (s.label, s.direction) not in held
+    ]
+    return nearest_per_label(free)[:count]
+
+
+def nearest_per_label(states: Iterable[LimitState]) -> list[LimitState]:
+    """Of each label and direction the state with the smallest margin; nearest first."""
+    found: dict[tuple[str, str], LimitState] = {}
+    for state in states:
+        key = (state.label, state.direction)
+        if key not in found or nearness(state) < nearness(found[key]):
+            found[key] = state
+    return sorted(found.values(), key=nearness)
+
+
+def rating_table(rating: Rating, rows: int = ROWS_SHOWN) -> Table:
+    """Every broken limit, then of the others the nearest owner of each label."""
+    first = broken(rating)
+    labels = {(state.label, state.direction) for state in first}
+    others = nearest_per_label(
+        state
+        for state in rating.limits
+        if state.met
+        and not (state.implied and not state.at_work)
+        and (state.label, state.direction) not in labels
+    )
+    states = first + others[: max(rows - len(first), 2)]
+    currency = rating.case.currency
+    return table(
+        "LIMITS",
+        [
+            Column(("",), tuple(name(state) for state in states), left=True),
+            Column(("value",), tuple(told(state.value, state.kind, currency) for state in states)),
+            Column(
+                ("allowed",),
+                tuple(f"{state.direction} {allowed(state.bound, state.kind, currency)}" for state in states),
+                left=True,
+            ),
+            Column(("margin",), tuple(_margin_text(state, currency) for state in states), rank=1),
+            Column(("",), tuple(state_word(state) for state in states), left=True),
+            Column(("why",), tuple(state.why for state in states), rank=2, left=True),
+        ],
+    )
+
+
+def state_word(state: LimitState) -> str:
+    """In words, so that colour need not say it."""
+    if not state.met:
+        return f"BROKEN {BROKEN}"
+    if state.value is None:
+        return state.reason or "not there"
+    return f"at work {AT_WORK}" if state.at_work else "inside"
+
+
+def _margin_text(state: LimitState, currency: str) -> str:
+    margin = difference(state.margin, state.kind)
+    if margin is None:
+        return "-"
+    return with_unit(fixed(margin, 2), unit(difference_kind(state.kind), currency))
+
+
+def worth_table(optimum: Optimum, rating: Rating) -> Table:
+    """Limits at work with what relaxing saves and tightening costs, per hour and step, re-solved."""
+    currency = rating.case.currency
+    per_hour = unit("money rate", currency)
+    rows = optimum.worths
+    return table(
+        "LIMITS AT WORK (*)",
+        [
+            Column(("",), tuple(f"{row.label}, {owners_text(row.owners)}" for row in rows), left=True),
+            Column(("allowed",), tuple(_allowed_text(row, rating) for row in rows), left=True),
+            Column(("by",), tuple(step_text(row) for row in rows), left=True),
+            Column(("relax saves", per_hour), tuple(fixed(money(row.saves), 1) for row in rows)),
+            Column(("tighten costs", per_hour), tuple(fixed(money(row.costs), 1) for row in rows)),
+            Column(("re-solved",), tuple(row.note for row in rows), rank=2, left=True),
+        ],
+    )
+
+
+def step_text(worth: Worth) -> str:
+    """`1 K`, `0.1 mol/mol`, `0.1 MW`."""
+    return with_unit(brief(difference(worth.step, worth.kind)), unit(difference_kind(worth.kind)))
+
+
+def _allowed_text(worth: Worth, rating: Rating) -> str:
+    states = [rating.limits[index] for index in worth.limits if index < len(rating.limits)]
+    if not states:
+        return "-"
+    bounds = {allowed(state.bound, state.kind, rating.case.currency): state.direction for state in states}
+    return " / ".join(f"{direction} {bound}" for bound, direction in bounds.items())
+
+
+def next_text(rating: Rating) -> str:
+    """`Next: slip, effluent: 1.10 of 1.35 kmol/h; ...` or nothing."""
+    states = next_ones(rating)
+    if not states:
+        return ""
+    return "Next: " + "; ".join(_of_text(state, rating.case.currency) for state in states) + "."
+
+
+def _of_text(state: LimitState, currency: str) -> str:
+    value = shown(state.value, state.kind)
+    assert value is not None
+    return f"{name(state)}: {brief(value, 3)} of {allowed(state.bound, state.kind, currency)}"
+
+
+def count_text(states: Sequence[LimitState], numbers: int) -> str:
+    """How many limits hold how many free numbers, and what follows when they hold all."""
+    held = "limit holds" if len(states) == 1 else "limits hold"
+    text = f"{len(states)} {held} {counted(numbers, 'free number')}"
+    return f"{text}: up and down differ." if len(states) >= numbers else f"{text}."

@@ -1,0 +1,75 @@
+"""What differs between two settings of the free numbers, in words, the biggest change first."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from reactorstage.optimise.programme import Array, FreeNumber
+from reactorstage.report.display import and_list, owners_text, told
+
+WORTH_SAYING = 0.01
+
+
+@dataclass(frozen=True)
+class Change:
+    """Numbers of like name that go from the same value to the same value; size in parts of their range."""
+
+    word: str
+    owners: tuple[str, ...]
+    old: str
+    new: str
+    size: float
+
+    @property
+    def what(self) -> str:
+        """`inlet temperature of beds 1-3`, `ethylene to bed 4`."""
+        feed = self.word.removeprefix("injected ")
+        owners = owners_text(self.owners)
+        return f"{feed} to {owners}" if feed != self.word else f"{self.word} of {owners}"
+
+
+def changes(numbers: Sequence[FreeNumber], old: Array, new: Array) -> list[Change]:
+    """User numbers that move by more than 1 % of their range, alike ones together, biggest first."""
+    found: dict[tuple[str, str, str], Change] = {}
+    for number, before, after in zip(numbers, old, new, strict=False):
+        span = number.high - number.low
+        size = abs(after - before) / span if span > 0.0 else 0.0
+        if number.internal or size <= WORTH_SAYING:
+            continue
+        owner, _, word = number.name.rpartition(".")
+        key = (word, _short(before, number.kind), _short(after, number.kind))
+        others = found[key].owners if key in found else ()
+        largest = max(size, found[key].size) if key in found else size
+        found[key] = Change(*_named(key, (*others, owner)), largest)
+    return sorted(found.values(), key=lambda change: -change.size)
+
+
+def _short(value: float, kind: str) -> str:
+    """`364 degC`: with one decimal at most where that is enough."""
+    number, _, unit = told(float(value), kind).partition(" ")
+    return f"{number.removesuffix('.0')} {unit}".rstrip()
+
+
+def _named(key: tuple[str, str, str], owners: tuple[str, ...]) -> tuple[str, tuple[str, ...], str, str]:
+    word, old, new = key
+    return word, owners, old, new
+
+
+def moves_text(found: Sequence[Change], count: int = 3) -> str:
+    """`inlet temperature of beds 1-3 from 384.0 degC to 364.0 degC, ...`."""
+    texts = [
+        f"{change.what} from {_bare(change.old, change.new)} to {change.new}" for change in found[:count]
+    ]
+    return and_list(texts)
+
+
+def stands_text(found: Sequence[Change], count: int = 3) -> str:
+    """`inlet temperature of bed 4 at 364.0 degC, ...`: only the second of the two settings."""
+    return and_list([f"{change.what} at {change.new}" for change in found[:count]])
+
+
+def _bare(old: str, new: str) -> str:
+    """The old value without its unit when the new one repeats it."""
+    number, _, unit = old.partition(" ")
+    return number if unit == new.partition(" ")[2] else old

@@ -1,0 +1,28 @@
+"""All pictures of one result as files in memory."""
+
+from __future__ import annotations
+
+from reactorstage.report import look
+from reactorstage.report.composition import composition_figure
+from reactorstage.report.selectivity import says_something, selectivity_figure
+from reactorstage.report.temperature import temperature_figure
+from reactorstage.train.result import Rating
+
+
+def figure_files(rating: Rating, today: Rating | None, status: str) -> dict[str, bytes]:
+    """PNG and SVG of temperature, composition and, where there are by-products, selectivity.
+
+    today is drawn thin behind the rating; status stands under the title. Nothing is drawn of a train of
+    which no bed was rated.
+    """
+    drawable = [profile for profile in rating.profiles if profile.w[-1] > 0.0]
+    if not drawable:
+        return {}
+    behind = today if today is not None and today.profiles and not today.failure else None
+    title = rating.case.name
+    with look.drawing():
+        files = look.as_files(temperature_figure(rating, behind, title, status), "temperature")
+        files |= look.as_files(composition_figure(rating, behind, title, status), "composition")
+        if says_something(rating):
+            files |= look.as_files(selectivity_figure(rating, behind, title, status), "selectivity")
+    return files

@@ -1,0 +1,64 @@
+"""profiles.csv: one row per point along the beds."""
+
+from __future__ import annotations
+
+import csv
+import io
+from collections.abc import Sequence
+
+import numpy as np
+
+from reactorstage.report.display import unit
+from reactorstage.report.profiles import BedProfile, train_profiles
+from reactorstage.train.result import Rating
+
+SIGNIFICANT = 10
+
+
+def profiles_csv(rating: Rating) -> bytes:
+    """The profiles with a heading line; numbers with 10 figures, an empty field where there is no value."""
+    stream = io.StringIO(newline="")
+    writer = csv.writer(stream, lineterminator="\n")
+    writer.writerow(headings(rating))
+    for bed in train_profiles(rating):
+        writer.writerows(_rows(rating, bed))
+    return stream.getvalue().encode()
+
+
+def headings(rating: Rating) -> list[str]:
+    """Names of the columns, each with its unit."""
+    flow, mass = unit("molar flow"), unit("mass")
+    selectivity = [
+        f"{kind} selectivity to {rating.product} from {rating.main_reactant}, mol %"
+        for kind in ("point", "cumulative")
+        if has_selectivity(rating)
+    ]
+    return [
+        "bed",
+        "depth, %",
+        "catalyst in bed, kg",
+        f"catalyst from train inlet, {mass}",
+        f"temperature, {unit('temperature')}",
+        f"pressure, {unit('pressure')}",
+        *(f"flow of {species}, {flow}" for species in rating.species),
+        *(f"rate of {reaction}, kmol/(kg h)" for reaction in rating.reactions),
+        *selectivity,
+    ]
+
+
+def has_selectivity(rating: Rating) -> bool:
+    """Whether the case has a product and a reactant that selectivity can be counted on."""
+    return rating.product in rating.species and rating.main_reactant in rating.species
+
+
+def _rows(rating: Rating, bed: BedProfile) -> list[list[str]]:
+    columns = [bed.depth, bed.bed_catalyst, bed.catalyst, bed.T, bed.p, *bed.F.T, *bed.r.T]
+    if has_selectivity(rating):
+        product = rating.species.index(rating.product)
+        columns += [bed.point[:, product], bed.cumulative[:, product]]
+    name = bed.owner.removeprefix("bed ")
+    return [[name, *_cells(row)] for row in np.column_stack(columns)]
+
+
+def _cells(row: Sequence[float]) -> list[str]:
+    return [f"{value + 0.0:.{SIGNIFICANT}g}" if np.isfinite(value) else "" for value in row]

@@ -1,0 +1,277 @@
+"""result.json: everything a run found, in display units, never NaN, byte-equal for equal input.
+
+What depends on the clock stands apart under `times`. Numbers carry 12 significant digits.
+"""
+
+from __future__ import annotations
+
+import json
+import math
+import platform
+from collections.abc import Mapping, Sequence
+from importlib import metadata
+from typing import Any
+
+from reactorstage.optimise.programme import FreeNumber, Programme
+from reactorstage.optimise.result import Answer, EqualSplit, Optimum, StartRecord, Worth
+from reactorstage.report.cautions import FULL
+from reactorstage.report.display import difference, difference_kind, money, shown, unit
+from reactorstage.train.result import HeatSale, LimitState, Rating, Value
+
+SCHEMA_VERSION = 1
+LIBRARIES = ("reactorstage", "numpy", "scipy", "numba", "cantera")
+SIGNIFICANT = 12
+LINE = 120
+
+Json = dict[str, Any]
+
+
+def rating_json(rating: Rating, overrides: Sequence[str] = ()) -> Json:
+    """The content of result.json for `rate`."""
+    return {
+        **_head("rating", rating, overrides),
+        "status": rating.status,
+        "failure": rating.failure or None,
+        **_setting(rating),
+        "solver": _rating_work(rating),
+        "notes": list(rating.notes),
+        "cautions": list(FULL),
+    }
+
+
+def optimum_json(
+    programme: Programme,
+    optimum: Optimum,
+    today: Rating,
+    best: Rating | None,
+    others: Sequence[Rating],
+    seed: int,
+    overrides: Sequence[str] = (),
+) -> Json:
+    """The content of result.json for `optimise`: the best answer first, today's setting beside it."""
+    main = best if best is not None else today
+    return {
+        **_head("optimum", main, overrides),
+        "seed": seed,
+        "status": optimum.status,
+        "failure": main.failure or None,
+        "decisions": _decisions(programme.numbers, today, best),
+        **(_setting(best) if best is not None else {}),
+        "worths": [_worth(programme, worth, main.case.currency) for worth in optimum.worths],
+        "equal splits": [
+            _equal_split(programme, split, main.case.currency) for split in optimum.equal_splits
+        ],
+        "keep away costs": money(optimum.keep_away_cost),
+        "conflict": _conflict(programme, optimum),
+        "answers": [_answer(programme, answer) for answer in optimum.answers],
+        "other answers": [_setting(rating) for rating in others],
+        "today": {"status": today.status, "failure": today.failure or None, **_setting(today)},
+        "starts": [_start(start) for start in optimum.starts],
+        "solver": {
+            "evaluations": optimum.evaluations,
+            "discretisation error": money(optimum.discretisation_error),
+            **_rating_work(main),
+        },
+        "notes": [*optimum.notes, *main.notes],
+        "cautions": list(FULL),
+    }
+
+
+def as_text(content: Mapping[str, Any], seconds: float | None = None) -> str:
+    """JSON text with rounded numbers; `times` comes last and alone depends on the clock."""
+    times = {} if seconds is None else {"times": {"calculation": {"value": round(seconds, 4), "unit": "s"}}}
+    return _text(_clean({**content, **times})) + "\n"
+
+
+def _text(item: Any, indent: str = "") -> str:
+    """JSON with small groups on one line, so that people can read and compare it."""
+    flat = json.dumps(item, ensure_ascii=False, allow_nan=False)
+    if not isinstance(item, (dict, list)) or not item or (len(indent) + len(flat) <= LINE and _small(item)):
+        return flat
+    inner = indent + "  "
+    if isinstance(item, dict):
+        rows = [
+            f"{inner}{json.dumps(key, ensure_ascii=False)}: {_text(value, inner)}"
+            for key, value in item.items()
+        ]
+        return "{\n" + ",\n".join(rows) + f"\n{indent}}}"
+    return "[\n" + ",\n".join(inner + _text(value, inner) for value in item) + f"\n{indent}]"
+
+
+def _small(item: dict[str, Any] | list[Any]) -> bool:
+    values = item.values() if isinstance(item, dict) else item
+    return not any(isinstance(value, (dict, list)) and value for value in values)
+
+
+def _clean(item: Any) -> Any:
+    if isinstance(item, Mapping):
+        return {str(key): _clean(value) for key, value in item.items()}
+    if isinstance(item, (list, tuple)):
+        return [_clean(value) for value in item]
+    if isinstance(item, float):
+        return rounded(item)
+    return item
+
+
+def rounded(value: float) -> float | None:
+    """12 significant digits; None for what is not finite."""
+    return float(f"{value:.{SIGNIFICANT}g}") + 0.0 if math.isfinite(value) else None
+
+
+def _head(what: str, rating: Rating, overrides: Sequence[str]) -> Json:
+    case = rating.case
+    return {
+        "schema version": SCHEMA_VERSION,
+        "result": what,
+        "case": {"name": case.name, "hash": case.hash, "set": list(overrides)},
+        "versions": versions(),
+    }
+
+
+def versions() -> dict[str, str]:
+    """Versions of this package, Python and the libraries that numbers come from."""
+    return {"python": platform.python_version()} | {name: _version(name) for name in LIBRARIES}
+
+
+def _version(name: str) -> str:
+    try:
+        return metadata.version(name)
+    except metadata.PackageNotFoundError:
+        return "not installed"
+
+
+def _setting(rating: Rating) -> Json:
+    currency = rating.case.currency
+    return {
+        "quantities": {name: _value(value, currency) for name, value in rating.quantities.items()},
+        "limits": [_limit(state, currency) for state in rating.limits],
+        "money": {
+            "unit": unit("money rate", currency),
+            "per label": {label: money(value) for label, value in rating.money.items()},
+        },
+        "heat": [_sale(sale, currency) for sale in rating.heat],
+        "unpriced heat": list(rating.unpriced),
+        "closure": {"atoms": rating.atoms, "energy": rating.energy},
+    }
+
+
+def _value(value: Value, currency: str) -> Json:
+    number = shown(value.value, value.kind)
+    finite = number is not None and math.isfinite(number)
+    reason = {} if finite else {"reason": value.reason or "not a finite number"}
+    return {"value": number if finite else None, "unit": unit(value.kind, currency), **reason}
+
+
+def _limit(state: LimitState, currency: str) -> Json:
+    return {
+        "limit": state.label,
+        "of": state.quantity,
+        "direction": state.direction,
+        "allowed": shown(state.bound, state.kind),
+        "value": shown(state.value, state.kind),
+        "unit": unit(state.kind, currency),
+        "margin": difference(state.margin, state.kind),
+        "keep away": difference(state.keep_away, state.kind),
+        "margin unit": unit(difference_kind(state.kind), currency),
+        "state": "broken" if not state.met else "at work" if state.at_work else "inside",
+        "soft": state.soft,
+        "implied": state.implied,
+        "why": state.why,
+        **({"reason": state.reason} if state.reason else {}),
+    }
+
+
+def _sale(sale: HeatSale, currency: str) -> Json:
+    return {
+        "place": sale.owner,
+        "level": sale.level,
+        "direction": "from level" if sale.heating else "to level",
+        "heat": shown(sale.heat, "power"),
+        "unit": unit("power"),
+        "money": money(sale.money),
+        "money unit": unit("money rate", currency),
+    }
+
+
+def _rating_work(rating: Rating) -> Json:
+    return {"integration steps": rating.integration_steps, "right-hand sides": rating.right_hand_sides}
+
+
+def _decisions(numbers: Sequence[FreeNumber], today: Rating, best: Rating | None) -> Json:
+    return {
+        number.name: {
+            "now": None if best is None else shown(float(best.x[index]), number.kind),
+            "was": shown(float(today.x[index]), number.kind),
+            "unit": unit(number.kind),
+            "from": shown(number.low, number.kind),
+            "to": shown(number.high, number.kind),
+        }
+        for index, number in enumerate(numbers)
+        if not number.internal
+    }
+
+
+def _worth(programme: Programme, worth: Worth, currency: str) -> Json:
+    return {
+        "limit": worth.label,
+        "owners": list(worth.owners),
+        "step": difference(worth.step, worth.kind),
+        "unit": unit(difference_kind(worth.kind), currency),
+        "relaxing saves": money(worth.saves),
+        "tightening costs": money(worth.costs),
+        "money unit": unit("money rate", currency),
+        "moves": [programme.limits[index].name for index in worth.limits],
+        **({"note": worth.note} if worth.note else {}),
+    }
+
+
+def _equal_split(programme: Programme, split: EqualSplit, currency: str) -> Json:
+    return {
+        "feed": split.feed,
+        "costs more": money(split.penalty),
+        "unit": unit("money rate", currency),
+        "relaxed": [_moved(programme, index, amount) for index, amount in split.relaxed],
+        **({"note": split.note} if split.note else {}),
+    }
+
+
+def _moved(programme: Programme, index: int, amount: float) -> Json:
+    row = programme.limits[index]
+    kind = difference_kind(row.kind)
+    return {"limit": row.name, "by": shown(amount, kind), "unit": unit(kind)}
+
+
+def _conflict(programme: Programme, optimum: Optimum) -> Json | None:
+    if optimum.conflict is None:
+        return None
+    return {
+        "broken": [_moved(programme, index, amount) for index, amount in optimum.conflict.broken],
+        "held by": [programme.limits[index].name for index in optimum.conflict.against],
+    }
+
+
+def _answer(programme: Programme, answer: Answer) -> Json:
+    return {
+        "cost": money(answer.cost),
+        "violation": answer.violation,
+        "optimality residual": answer.residual,
+        "starts": answer.starts,
+        "numbers": {
+            number.name: {"value": shown(float(answer.x[index]), number.kind), "unit": unit(number.kind)}
+            for index, number in enumerate(programme.numbers)
+            if not number.internal
+        },
+        "limits at work": [programme.limits[index].name for index in answer.at_work],
+        "at an end of its range": list(answer.at_range),
+    }
+
+
+def _start(start: StartRecord) -> Json:
+    return {
+        "start": start.name,
+        "ended": start.ended,
+        "cost": money(start.cost),
+        "answer": start.answer if start.answer >= 0 else None,
+        "iterations": start.iterations,
+        "evaluations": start.evaluations,
+    }

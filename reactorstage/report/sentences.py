@@ -1,0 +1,191 @@
+"""The plain sentences under the tables: what a plant engineer would say first."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from reactorstage.optimise.programme import Programme
+from reactorstage.optimise.result import EqualSplit, Optimum
+from reactorstage.report import bounds
+from reactorstage.report.accounts import total_difference
+from reactorstage.report.cautions import SHORT
+from reactorstage.report.changes import changes, moves_text, stands_text
+from reactorstage.report.display import (
+    and_list,
+    brief,
+    difference,
+    difference_kind,
+    fixed,
+    money,
+    shown,
+    told,
+    unit,
+    with_unit,
+)
+from reactorstage.train.result import LimitState, Rating
+
+SAME_MONEY = 0.05
+UNLIT_RISE_K = 3.0
+UNLIT_APPROACH_K = 30.0
+OUTSIDE_SAID = 0.001
+
+
+def out_line(now: Rating, was: Rating | None = None) -> str:
+    """What leaves the train: slip, by-products, selectivity with its basis."""
+    parts = [_leaving(now, was, species) for species in dict.fromkeys((now.main_reactant, *now.by_products))]
+    kept = [part for part in (*parts, _selectivity(now)) if part]
+    return f"out: {', '.join(kept)}" if kept else ""
+
+
+def _leaving(now: Rating, was: Rating | None, species: str) -> str:
+    flow = now.quantities.get(f"effluent.flow of {species}")
+    if not species or flow is None or flow.value is None:
+        return ""
+    text = f"{species} {fixed(shown(flow.value, flow.kind), 2)} {unit(flow.kind)}"
+    if was is None or was.quantities[f"effluent.flow of {species}"].value is None:
+        return text
+    return f"{text} (was {fixed(shown(was.number(f'effluent.flow of {species}'), flow.kind), 2)})"
+
+
+def _selectivity(rating: Rating) -> str:
+    name = f"train.selectivity to {rating.product} from {rating.main_reactant}"
+    value = rating.quantities.get(name)
+    if value is None or value.value is None:
+        return ""
+    return f"{100 * value.value:.1f} mol {rating.product} per 100 mol {rating.main_reactant} converted"
+
+
+def first_change(programme: Programme, now: Rating, was: Rating) -> str:
+    """The biggest moves of free numbers and what all moves together do for money."""
+    found = changes(programme.numbers, was.x, now.x)
+    if not found:
+        return "Today's setting is already the best one found."
+    return f"Change first: {moves_text(found, 2)}; {_effect(now, was, len(found))}."
+
+
+def _effect(now: Rating, was: Rating, count: int) -> str:
+    """`all 7 changes together: 89.6 EUR/h less than today`."""
+    more = total_difference(now, was)
+    rate = unit("money rate", now.case.currency)
+    size = (
+        "nothing"
+        if abs(more) < SAME_MONEY
+        else f"{fixed(abs(more), 1)} {rate} {'less' if more < 0 else 'more'}"
+    )
+    who = "all changes together" if count > 1 else "this"
+    return f"{who}: {size} than today" if size != "nothing" else f"{who}: the same money as today"
+
+
+def second_answer(programme: Programme, optimum: Optimum, best: Rating, others: Sequence[Rating]) -> str:
+    """How the next distinct answer differs and what it costs, or that there is only one."""
+    ended = sum(start.answer >= 0 for start in optimum.starts)
+    if not others:
+        return f"All {ended} starts that ended agree on this answer." if ended > 1 else ""
+    other = others[0]
+    found = changes(programme.numbers, best.x, other.x)
+    more = total_difference(other, best)
+    rate = unit("money rate", best.case.currency)
+    where = f" ({stands_text(found)})" if found else ""
+    cost = f"costs {fixed(more, 1)} {rate} more" if more >= SAME_MONEY else "costs the same"
+    rest = f"; {len(others) - 1} more in result.json" if len(others) > 1 else ""
+    return f"A second answer{where} {cost}{rest}."
+
+
+def today_text(was: Rating) -> str:
+    """Which limits today's setting breaks."""
+    states = bounds.broken(was)
+    if was.failure:
+        return f"Today's setting has no answer: {was.failure}"
+    if not states:
+        return "Today's setting keeps all limits."
+    return f"Today breaks {and_list([bounds.name(state) for state in states])}."
+
+
+def margin_text(optimum: Optimum, best: Rating) -> str:
+    """What the margins of the case cost, or that limits at work carry none."""
+    carried = [state for state in best.limits if state.keep_away > 0.0]
+    if carried and optimum.keep_away_cost is not None:
+        labels = and_list(list(dict.fromkeys(f"{_keep_away(state)} on {state.label}" for state in carried)))
+        rate = unit("money rate", best.case.currency)
+        return f"KEEP AWAY    {labels}: this costs {fixed(money(optimum.keep_away_cost), 1)} {rate}."
+    bare = list(dict.fromkeys(s.label for s in bounds.at_work(best) if not s.implied and s.keep_away == 0.0))
+    if not bare:
+        return ""
+    return f"KEEP AWAY    none on {and_list(bare)}: instrument error can cross {_it(bare)}."
+
+
+def _it(words: Sequence[str]) -> str:
+    return "it" if len(words) == 1 else "them"
+
+
+def _keep_away(state: LimitState) -> str:
+    return with_unit(brief(difference(state.keep_away, state.kind)), unit(difference_kind(state.kind)))
+
+
+def equal_split_text(split: EqualSplit, best: Rating) -> str:
+    """What equal shares would cost with everything else re-optimised."""
+    head = f"EQUAL SPLIT  of {split.feed}, all else re-optimised,"
+    if split.penalty is None:
+        return f"{head}: {split.note or 'none was found'}."
+    extra = money(split.penalty) or 0.0
+    rate = unit("money rate", best.case.currency)
+    part = (
+        abs(split.penalty / (split.cost - split.penalty))
+        if split.cost and split.cost != split.penalty
+        else None
+    )
+    percent = "" if part is None else f" ({100 * part:.1f} %)"
+    gives = [_relaxed(best, index, amount) for index, amount in split.relaxed]
+    condition = f" even with {and_list(gives)}" if gives else ""
+    note = f"; {split.note}" if split.note else ""
+    return f"{head} costs {fixed(extra, 1)} {rate} more{percent}{condition}{note}."
+
+
+def _relaxed(best: Rating, index: int, amount: float) -> str:
+    state = best.limits[index]
+    size = with_unit(brief(difference(amount, state.kind), 3), unit(difference_kind(state.kind)))
+    return f"{bounds.name(state)} relaxed by {size}"
+
+
+def warnings(rating: Rating) -> list[str]:
+    """Unlit beds, kinetics outside their range, notes of the rating."""
+    return [*_unlit(rating), *_outside(rating), *rating.notes]
+
+
+def _unlit(rating: Rating) -> list[str]:
+    found = []
+    for profile in rating.profiles:
+        rise, approach = (_number(rating, f"{profile.owner}.{word}") for word in _lit_words(rating))
+        if rise is not None and approach is not None and rise < UNLIT_RISE_K and approach > UNLIT_APPROACH_K:
+            where = f"stands {approach:.0f} K from equilibrium"
+            found.append(
+                f"{bed} is unlit: it rises {rise:.1f} K and stands {approach:.0f} K from equilibrium."
+            )
+    return found
+
+
+def _lit_words(rating: Rating) -> tuple[str, str]:
+    main = rating.reactions[0] if rating.reactions else ""
+    return "rise", f"approach to equilibrium of {main}"
+
+
+def _number(rating: Rating, name: str) -> float | None:
+    value = rating.quantities.get(name)
+    return None if value is None else value.value
+
+
+def _outside(rating: Rating) -> list[str]:
+    word = ".outside validity of "
+    found = []
+    for name, value in rating.quantities.items():
+        if word in name and value.value is not None and value.value > OUTSIDE_SAID:
+            bed, _, reaction = name.partition(word)
+            found.append(
+                f"{told(value.value, value.kind)} of {bed} lies outside the stated range of {reaction}."
+            )
+    return found
+
+
+def caution() -> str:
+    """The caution of every output that carries temperatures."""
+    return SHORT

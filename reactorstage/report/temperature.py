@@ -1,0 +1,206 @@
+"""Temperature along the train: beds as bands, gaps as upright steps with their heat."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+from matplotlib.axes import Axes
+from matplotlib.figure import Figure
+
+from reactorstage.report import look
+from reactorstage.report.cautions import SHORT
+from reactorstage.report.display import allowed, fixed, owners_text, shown, unit
+from reactorstage.report.profiles import BedProfile, displayed, train_profiles
+from reactorstage.train.result import LimitState, Rating, StepState
+
+HEIGHT = 4.5
+WORDS = ("inlet temperature", "exit temperature", "peak temperature")
+REACH = 0.5
+PEAK_SHOWN_K = 0.5
+
+
+def temperature_figure(rating: Rating, today: Rating | None, title: str, status: str) -> Figure:
+    """Temperature over cumulative catalyst, today's thin behind it, limits dashed."""
+    beds = train_profiles(rating)
+    figure = look.new_figure(HEIGHT, title, status)
+    axes = look.panel(figure, 0.82, HEIGHT - 0.95)
+    look.bed_bands(axes, beds, names=True)
+    if today is not None:
+        _curve(axes, today, train_profiles(today), look.TODAY_WEIGHT)
+    _curve(axes, rating, beds, look.THIS_WEIGHT)
+    _set_range(axes, rating, beds, today)
+    _values(axes, beds)
+    _limits(axes, rating, beds)
+    _heats(axes, rating, beds)
+    look.catalyst_axis(axes, shown=True)
+    look.value_axis(axes, f"temperature, {unit('temperature')}")
+    _key(figure, rating, today is not None)
+    figure.text(look.LEFT, 0.1 / HEIGHT, SHORT, ha="left", va="bottom", fontsize=look.SMALL - 0.4)
+    return figure
+
+
+def _curve(axes: Axes, rating: Rating, beds: Sequence[BedProfile], weight: float) -> None:
+    for bed in beds:
+        axes.plot(bed.catalyst, bed.T, color=look.TEMPERATURE, linewidth=weight, zorder=3 + weight)
+    for place, x in _places(beds):
+        for step in rating.steps:
+            if step.owner == place and place.startswith("gap"):
+                _upright(axes, step, x, weight)
+
+
+def _upright(axes: Axes, step: StepState, x: float, weight: float) -> None:
+    """A step of a gap: injections dotted, exchangers solid."""
+    if step.T_before is None:
+        return
+    ends = displayed(np.array([step.T_before, step.T_after]), "temperature")
+    style = look.SOLID if step.kind in ("heat", "cool") else look.DOTTED
+    axes.plot(
+        [x, x], ends, color=look.TEMPERATURE, linewidth=weight * 0.7, linestyle=style, zorder=3 + weight
+    )
+
+
+def _places(beds: Sequence[BedProfile]) -> list[tuple[str, float]]:
+    """Entry, gaps and effluent with the catalyst that lies before them."""
+    gaps = [(f"gap {bed.owner.removeprefix('bed ')}", float(bed.catalyst[-1])) for bed in beds[:-1]]
+    return [("entry", 0.0), *gaps, ("effluent", float(beds[-1].catalyst[-1]))]
+
+
+def _set_range(axes: Axes, rating: Rating, beds: Sequence[BedProfile], today: Rating | None) -> None:
+    shown_beds = [*beds, *(train_profiles(today) if today is not None else [])]
+    low = min(float(bed.T.min()) for bed in shown_beds)
+    high = max(float(bed.T.max()) for bed in shown_beds)
+    span = max(high - low, 2.0)
+    bounds = [_bound(state) for state in _temperature_limits(rating)]
+    near = [bound for bound in bounds if low - REACH * span < bound < high + REACH * span]
+    low, high = min([low, *near]), max([high, *near])
+    axes.set_ylim(low - 0.2 * (high - low), high + 0.07 * (high - low))
+
+
+def _temperature_limits(rating: Rating) -> list[LimitState]:
+    return [
+        state
+        for state in rating.limits
+        if state.kind == "temperature"
+        and state.owner.startswith("bed ")
+        and not state.implied
+        and state.quantity.partition(".")[2] in WORDS
+    ]
+
+
+def _bound(state: LimitState) -> float:
+    return shown(state.bound, state.kind) or 0.0
+
+
+def _limits(axes: Axes, rating: Rating, beds: Sequence[BedProfile]) -> None:
+    """Dashed grey over the beds that a limit speaks of; one label per limit and bound at the right."""
+    spans = {bed.owner: (float(bed.catalyst[0]), float(bed.catalyst[-1])) for bed in beds}
+    groups: dict[tuple[str, str], list[LimitState]] = {}
+    for state in _temperature_limits(rating):
+        if state.owner in spans:
+            groups.setdefault((state.label, allowed(state.bound, state.kind)), []).append(state)
+    low, high = axes.get_ylim()
+    labels = []
+    for (label, bound), states in groups.items():
+        y = _bound(states[0])
+        for state in states if low < y < high else []:
+            axes.plot(
+                spans[state.owner],
+                (y, y),
+                color=look.LIMIT,
+                linewidth=look.LIMIT_WEIGHT,
+                linestyle=look.DASHED,
+                zorder=2,
+            )
+        labels.append(
+            (min(max(y, low), high), _limit_label(label, bound, states, len(beds), y, low, high), look.LIMIT)
+        )
+    look.end_labels(axes, labels, apart=19.0)
+
+
+def _limit_label(
+    label: str, bound: str, states: Sequence[LimitState], beds: int, y: float, low: float, high: float
+) -> str:
+    where = "" if len(states) == beds else f"\n{owners_text([state.owner for state in states])}"
+    off = " (above)" if y > high else " (below)" if y < low else ""
+    return f"{label}{where}\n{bound}{off}"
+
+
+def _values(axes: Axes, beds: Sequence[BedProfile]) -> None:
+    """Inlet, exit and, where it is hotter than the exit, peak in numbers."""
+    total = float(beds[-1].catalyst[-1])
+    for bed in beds:
+        if (bed.catalyst[-1] - bed.catalyst[0]) / total < 0.07:
+            continue
+        _value(axes, bed.catalyst[0], bed.T[0], (4, -9), "left")
+        rising = bed.T[-1] >= bed.T[0]
+        _value(axes, bed.catalyst[-1], bed.T[-1], (-4, 5 if rising else -9), "right")
+        if bed.T_peak > max(bed.T[-1], bed.T[0]) + PEAK_SHOWN_K:
+            axes.plot(
+                [bed.peak_catalyst], [bed.T_peak], marker="^", markersize=5, color=look.TEMPERATURE, zorder=6
+            )
+            _value(axes, bed.peak_catalyst, bed.T_peak, (0, 6), "center")
+
+
+def _value(axes: Axes, x: float, y: float, offset: tuple[float, float], side: str) -> None:
+    axes.annotate(
+        fixed(float(y), 0 if abs(y) >= 1000 else 1),
+        (float(x), float(y)),
+        offset,
+        textcoords="offset points",
+        ha=side,
+        va="baseline",
+        fontsize=look.SMALL,
+        zorder=7,
+        bbox=look.CLEARED,
+    )
+
+
+def _heats(axes: Axes, rating: Rating, beds: Sequence[BedProfile]) -> None:
+    """Heat of entry, gaps and effluent in a row under the curves, sign in words."""
+    total = float(beds[-1].catalyst[-1])
+    row, last_end = 0, -1.0
+    for place, x in _places(beds):
+        heat = rating.quantities.get(f"{place}.heat removed")
+        if heat is None or heat.value is None:
+            continue
+        value = shown(heat.value, heat.kind) or 0.0
+        side = "left" if place == "entry" else "right" if place == "effluent" else "center"
+        start = x / total - {"left": 0.0, "center": 0.055, "right": 0.11}[side]
+        row = 1 - row if start < last_end else 0
+        last_end = start + 0.12
+        axes.annotate(
+            _heat_text(value),
+            (x, 0.0),
+            (3 if side == "left" else -3 if side == "right" else 0, 4 + 10 * row),
+            xycoords=("data", "axes fraction"),
+            textcoords="offset points",
+            ha=side,
+            va="bottom",
+            fontsize=look.SMALL,
+        )
+
+
+def _heat_text(megawatt: float) -> str:
+    size = f"{abs(megawatt):.3g} MW"
+    if abs(megawatt) < 0.0005:
+        return "0 MW"
+    return f"{size} out" if megawatt > 0 else f"{size} in"
+
+
+def _key(figure: Figure, rating: Rating, with_today: bool) -> None:
+    """What the line kinds mean, as far as they are there."""
+    weight = look.THIS_WEIGHT
+    rows = [
+        look.KeyRow("this setting", weight),
+        look.KeyRow("today", look.TODAY_WEIGHT) if with_today else None,
+        look.KeyRow("injection", weight * 0.7, look.DOTTED) if _injects(rating) else None,
+        look.KeyRow("limit", look.LIMIT_WEIGHT, look.DASHED, look.LIMIT)
+        if _temperature_limits(rating)
+        else None,
+    ]
+    look.key(figure, [row for row in rows if row is not None], look.TEMPERATURE)
+
+
+def _injects(rating: Rating) -> bool:
+    return any(step.kind == "inject" and step.owner.startswith("gap ") for step in rating.steps)

@@ -1,0 +1,1 @@
+"""A case compiled into one train: operations, quantities, money and limits, evaluated with derivatives."""

@@ -1,0 +1,119 @@
+"""Runs the compiled pass for one train: work space, tolerances, sentences for what went wrong."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from reactorstage.bed import integrate as status
+from reactorstage.bed.balance import work_space
+from reactorstage.bed.data import Beds, Chemistry
+from reactorstage.bed.integrate import Tolerance
+from reactorstage.bed.sample import sample_bed
+from reactorstage.bed.train_pass import Stages, train_pass
+from reactorstage.train.layout import BedPlace, Layout
+
+Array = NDArray[np.float64]
+
+SEARCH, FINAL = 1e-5, 1e-7
+"""Error per step relative to the feed of a bed while searching and for what is reported."""
+
+MOST_STEPS = {SEARCH: 600, FINAL: 3000}
+
+SENTENCES = {
+    status.TOO_MANY_STEPS: "more integration steps would be needed than allowed",
+    status.STEP_TOO_SMALL: "the integration cannot go on (steps become too small)",
+    status.NO_PRESSURE: "the pressure is exhausted; less flow, a wider bed or larger particles would pass",
+    status.TOO_HOT: "the temperature rises above the range of the species data",
+    status.TOO_COLD: "the temperature falls below the range of the species data",
+    status.FROZEN_FAILED: "the step sequence of another setting does not fit here",
+}
+
+
+@dataclass(frozen=True)
+class Outcome:
+    """One pass: records and derivatives `out`, the step sequences, and how it ended.
+
+    failure is empty, or a sentence with the place; code is the kernel's status.
+    """
+
+    out: Array
+    stages: Stages
+    code: int
+    failure: str
+    reached: int
+    evaluations: int
+    steps: int
+
+
+@dataclass(frozen=True)
+class Pass:
+    """The compiled train of one case."""
+
+    chemistry: Chemistry
+    beds: Beds
+    layout: Layout
+    named: Array
+
+    def stages(self, most: int) -> Stages:
+        """Empty step sequences of up to `most` steps."""
+        B, n = len(self.layout.beds), self.chemistry.nu.shape[0] + 1
+        return Stages(
+            np.zeros(B, np.int64),
+            np.zeros((B, most + 1)),
+            np.zeros((B, most, n)),
+            np.zeros((B, most, 3, n)),
+            np.zeros((B, most, 3)),
+        )
+
+    def tolerance(self, flow: float) -> Tolerance:
+        return Tolerance(flow, 100.0 * flow, min(1e-12, 1e-5 * flow), self.named)
+
+    def adaptive(self, u: Array, du: Array, flow: float = SEARCH, most: int | None = None) -> Outcome:
+        """Integrate with steps chosen by error control at tolerance `flow`."""
+        return self._run(u, du, self.tolerance(flow), False, self.stages(most or MOST_STEPS.get(flow, 3000)))
+
+    def frozen(self, u: Array, du: Array, mesh: Stages) -> Outcome:
+        """Integrate on the step sequences of an earlier pass."""
+        stages = self.stages(max(1, int(mesh.counts.max())))
+        stages.counts[:] = mesh.counts
+        stages.edges[:] = mesh.edges[:, : stages.edges.shape[1]]
+        return self._run(u, du, self.tolerance(SEARCH), True, stages)
+
+    def _run(self, u: Array, du: Array, tolerance: Tolerance, frozen: bool, stages: Stages) -> Outcome:
+        layout = self.layout
+        out = np.empty((layout.rows, 1 + du.shape[1]))
+        code, reached, depth, evaluations, steps = train_pass(
+            self.chemistry, self.beds, layout.operations, layout.compositions, u, du, tolerance, frozen, stages, out
+        )
+        failure = "" if code == status.DONE else f"{self._place(reached, depth)}: {SENTENCES[code]}"
+        return Outcome(out, stages, code, failure, reached, evaluations, steps)
+
+    def _place(self, operation: int, depth: float) -> str:
+        bed = next((bed for bed in self.layout.beds if bed.exit == operation), None)
+        if bed is not None:
+            return f"{bed.owner} at {100.0 * depth:.0f} % of its depth"
+        place = next((p for p in self.layout.places if p.first <= operation <= p.last), None)
+        return place.owner if place is not None else "the train"
+
+    def sample(self, outcome: Outcome, bed: BedPlace, u: Array, points: int) -> tuple[Array, Array, Array, Array, Array]:
+        """w, T, p (N,), F (N, S), r (N, R) along a bed, N about `points`."""
+        b = bed.number - 1
+        count = int(outcome.stages.counts[b])
+        R, S = self.chemistry.nu.shape
+        per_step = max(1, -(-points // max(count, 1)))
+        N = count * per_step + 1
+        w, T, p, F, r = np.zeros(N), np.zeros(N), np.zeros(N), np.zeros((N, S)), np.zeros((N, R))
+        row = bed.inlet * self.layout.width
+        if count == 0:
+            record = outcome.out[row : row + self.layout.width, 0]
+            F[0], p[0], T[0] = record[:S], record[S + 1], record[S + 2]
+            return w, T, p, F, r
+        work = work_space(R, S, self.chemistry.member.shape[1])
+        first = u[bed.inputs : bed.inputs + 3]
+        sample_bed(
+            self.chemistry, self.beds, b, row, outcome.out, *first, outcome.stages, per_step, work, w, T, p, F, r
+        )
+        return w, T, p, F, r

@@ -1,0 +1,334 @@
+"""A case compiled into one function of its numbers: quantities with exact derivatives.
+
+`TrainProgramme` is what the optimiser sees (`reactorstage.optimise.programme.Programme`) and what rates.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from functools import cached_property
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from reactorstage.bed.data import Beds
+from reactorstage.bed.pack import ergun_terms, pack_beds, pack_chemistry
+from reactorstage.errors import CaseProblems, ComputationError
+from reactorstage.train.evaluation import Evaluation, FreeNumber, LimitRow, SplitGroup
+from reactorstage.train.chemistry import CaseChemistry, read_chemistry
+from reactorstage.train.forms import Form, Linear, Rows, at, total
+from reactorstage.train.heat import Ladder, build_ladder
+from reactorstage.train.inputs import InputBuilder, InputMap
+from reactorstage.train.layout import Layout, lay_out
+from reactorstage.train.limits import Bound, expand_limits
+from reactorstage.train.money import money_forms
+from reactorstage.train.passing import FINAL, Outcome, Pass
+from reactorstage.train.quantities import Catalogue
+
+if TYPE_CHECKING:
+    from reactorstage.bed.train_pass import Stages
+    from reactorstage.case.model import Case
+    from reactorstage.train.result import Rating
+    from reactorstage.train.understanding import Understanding
+
+Array = NDArray[np.float64]
+
+
+@dataclass(frozen=True)
+class Model:
+    """Everything compiled from a case; the base vector is records, inputs, x, hinges."""
+
+    case: Case
+    chemistry: CaseChemistry
+    layout: Layout
+    inputs: InputMap
+    ladder: Ladder
+    catalogue: Catalogue
+    bounds: tuple[Bound, ...]
+    aim: Form
+    passing: Pass
+    numbers: tuple[FreeNumber, ...]
+
+    @property
+    def x_start(self) -> int:
+        return self.layout.rows + len(self.inputs.names)
+
+    @property
+    def size(self) -> int:
+        return self.x_start + len(self.numbers) + len(self.ladder.hinges)
+
+    @cached_property
+    def hinge_rows(self) -> tuple[Rows, Rows]:
+        n = self.x_start + len(self.numbers)
+        hinges = self.ladder.hinges
+        return Rows.of([one.form for one in hinges], n), Rows.of([one.width for one in hinges], n)
+
+    def base(self, out: Array, u: Array, du: Array, x: Array) -> Array:
+        """The base vector and its derivatives (size, 1 + D); D = 0 when out has values only."""
+        D = out.shape[1] - 1
+        base = np.zeros((self.size, 1 + D))
+        rows, end = self.layout.rows, self.x_start + len(x)
+        base[:rows] = out
+        base[rows : self.x_start, 0] = u
+        base[self.x_start : end, 0] = x
+        if D:
+            base[rows : self.x_start, 1:] = du
+            base[self.x_start : end, 1:] = np.eye(len(x))
+        if self.ladder.hinges:
+            forms, widths = self.hinge_rows
+            base[end:] = _hinged(forms.of_base(base[:end]), widths.of_base(base[:end]))
+        return base
+
+
+def _hinged(y: Array, width: Array) -> Array:
+    """max(0, y) with derivatives, rounded by a parabola within +- width of zero."""
+    w = np.maximum(np.abs(width[:, :1]), 1e-300)
+    inside = np.abs(y[:, :1]) < w
+    slope = np.where(inside, (y[:, :1] + w) / (2.0 * w), y[:, :1] > 0.0)
+    out = slope * y
+    out[:, :1] = np.where(inside, (y[:, :1] + w) ** 2 / (4.0 * w), out[:, :1])
+    by_width = np.where(inside, (1.0 - (y[:, :1] / w) ** 2) / 4.0, 0.0)
+    out[:, 1:] += by_width * width[:, 1:]
+    return out
+
+
+class TrainProgramme:
+    """A compiled train. Safe to call from several threads at once; raises CaseProblems when made of a wrong case."""
+
+    def __init__(self, case: Case):
+        self.model = compile_model(case)
+        self.numbers: tuple[FreeNumber, ...] = self.model.numbers
+        self.limits: tuple[LimitRow, ...] = tuple(bound.row for bound in self.model.bounds)
+        self.splits: tuple[SplitGroup, ...] = self.model.layout.splits
+        size = self.model.size
+        self._top = Rows.of([bound.margin() for bound in self.model.bounds], size)
+        self._weight = Rows.of([bound.weight() for bound in self.model.bounds], size)
+        self._aim = Rows.of([self.model.aim.top, self.model.aim.bottom or Linear(const=1.0)], size)
+        self._sign = 1.0 if case.aim.direction == "least" else -1.0
+
+    @property
+    def case(self) -> Case:
+        return self.model.case
+
+    @property
+    def now(self) -> Array:
+        """x at today's setting, internal numbers at their best."""
+        return self.complete(np.array([number.now for number in self.numbers]))
+
+    def start_mesh(self, x: Array) -> tuple[Evaluation, Any]:
+        """Adaptive steps at search tolerance; see `Programme`."""
+        u, du = self.model.inputs.values(x)
+        outcome = self.model.passing.adaptive(u, du)
+        evaluation = self._evaluation(outcome, u, du, x)
+        return evaluation, (outcome.stages if evaluation.ok else None)
+
+    def evaluate(self, x: Array, mesh: Stages) -> Evaluation:
+        """Values and derivatives on a frozen step sequence; see `Programme`."""
+        u, du = self.model.inputs.values(x)
+        return self._evaluation(self.model.passing.frozen(u, du, mesh), u, du, x)
+
+    def final(self, x: Array) -> Evaluation:
+        """As start_mesh, at the tight final tolerance."""
+        u, du = self.model.inputs.values(x)
+        return self._evaluation(self.model.passing.adaptive(u, du, FINAL), u, du, x)
+
+    def complete(self, x: Array) -> Array:
+        """x with its internal numbers (heat above levels, slacks of soft limits) at their best values."""
+        internal = [i for i, number in enumerate(self.numbers) if number.internal]
+        if not internal:
+            return x
+        from reactorstage.train.complete import complete
+
+        return complete(self, x, internal)
+
+    def rate(self, x: Array | None = None, dense: bool = True, tolerance: float = FINAL) -> Rating:
+        """Rate the train at x (today's setting without it), at the final tolerance."""
+        from reactorstage.train.rating import rate
+
+        return rate(self, self.now if x is None else x, dense, tolerance)
+
+    def understanding(self) -> Understanding:
+        """What was understood of the case, and what arithmetic can see to be in conflict."""
+        from reactorstage.train.understanding import understand
+
+        return understand(self)
+
+    def _evaluation(self, outcome: Outcome, u: Array, du: Array, x: Array) -> Evaluation:
+        if outcome.failure:
+            return Evaluation(outcome.failure, work=outcome.evaluations)
+        base = self.model.base(outcome.out, u, du, x)
+        margin, weight = self._top.of_base(base), self._weight.of_base(base)
+        aim = self._aim.of_base(base)
+        if not (np.isfinite(margin).all() and np.isfinite(aim).all() and aim[1, 0] != 0.0):
+            return Evaluation("a limit or the aim has no value here", work=outcome.evaluations)
+        cost = aim[0, 0] / aim[1, 0]
+        cost_dx = (aim[0, 1:] - cost * aim[1, 1:]) / aim[1, 0]
+        return Evaluation(
+            "",
+            self._sign * float(cost),
+            self._sign * cost_dx,
+            margin[:, 0].copy(),
+            margin[:, 1:],
+            weight[:, 0].copy(),
+            weight[:, 1:],
+            np.zeros(0),
+            np.zeros((0, len(x))),
+            outcome.evaluations,
+        )
+
+
+def compile_model(case: Case) -> Model:
+    """Chemistry, layout, heat, limits and money of a checked case; raises CaseProblems."""
+    chemistry = read_chemistry(case)
+    inputs = InputBuilder()
+    layout = lay_out(case, chemistry, inputs)
+    soft = _soft_limits(case, layout, chemistry)
+    draft = _Draft(case, chemistry, inputs, layout)
+    return draft.finish(soft)
+
+
+def _soft_limits(case: Case, layout: Layout, chemistry: CaseChemistry) -> list[str]:
+    """Labels of the limits that may be broken at a price."""
+    return [label for label, limit in case.limits.items() if limit.soft is not None]
+
+
+@dataclass
+class _Draft:
+    """Positions are known only when the internal numbers are: built twice, the first time to count them."""
+
+    case: Case
+    chemistry: CaseChemistry
+    inputs: InputBuilder
+    layout: Layout
+
+    def finish(self, soft: list[str]) -> Model:
+        users = len(self.inputs.numbers)
+        x_start = self.layout.rows + len(self.inputs.build().names)
+        counted = self._ladder(x_start, users, 0)
+        slacks = self._slack_count(soft, counted)
+        ladder = self._ladder(x_start, users, len(counted.internal) + slacks)
+        internal = [
+            FreeNumber(name, 0.0, 0.0, self._most_heat(), "power", role="internal") for name in ladder.internal
+        ]
+        catalogue = Catalogue(self.layout, self.chemistry, {}, self._levels(ladder))
+        bounds = expand_limits(self.case, catalogue, ladder)
+        softened, slack_numbers, price = _soften(bounds, x_start + users + len(internal))
+        numbers = (*self.inputs.numbers, *internal, *slack_numbers)
+        money = money_forms(self.case, catalogue, ladder, price)
+        catalogue = replace(catalogue, money=money)
+        return Model(
+            case=self.case,
+            chemistry=self.chemistry,
+            layout=self.layout,
+            inputs=self.inputs.build((*internal, *slack_numbers)),
+            ladder=ladder,
+            catalogue=catalogue,
+            bounds=tuple(softened),
+            aim=self._aim(catalogue),
+            passing=Pass(
+                pack_chemistry(self.chemistry.table, self.chemistry.laws),
+                _beds(self.case, self.chemistry, self.layout),
+                self.layout,
+                self._named(bounds),
+            ),
+            numbers=numbers,
+        )
+
+    def _ladder(self, x_start: int, users: int, internal: int) -> Ladder:
+        spans = self._outlet_spans()
+        return build_ladder(
+            self.case, self.chemistry, self.layout, spans, x_start + users + internal, x_start + users
+        )
+
+    def _slack_count(self, soft: list[str], ladder: Ladder) -> int:
+        if not soft:
+            return 0
+        catalogue = Catalogue(self.layout, self.chemistry, {}, self._levels(ladder))
+        return sum(bound.row.soft_price is not None for bound in expand_limits(self.case, catalogue, ladder))
+
+    def _outlet_spans(self) -> dict[int, tuple[float, float]]:
+        spans: dict[int, tuple[float, float]] = {}
+        for place in self.layout.places:
+            for device in place.devices:
+                if device.outlet >= 0:
+                    form = self.inputs.form(device.outlet)
+                    ends = [
+                        form.const + sum(c * (n.low, n.high)[k] for i, c in form.terms.items() for n in [self.inputs.numbers[i]])
+                        for k in (0, 1)
+                    ]
+                    spans[device.outlet] = (min(ends), max(ends))
+        return spans
+
+    def _levels(self, ladder: Ladder) -> dict[str, Form]:
+        names = self.case.heat_levels.levels if self.case.heat_levels else {}
+        return {
+            name: Form("power", total([form for (_, level), form in ladder.given.items() if level == name]))
+            for name in names
+        }
+
+    def _most_heat(self) -> float:
+        """A generous end of range for heat numbers: all feeds through 300 K at 300 J/(mol K)."""
+        return 300.0 * 300.0 * sum(feed.flow.now for feed in self.case.feeds.values())
+
+    def _aim(self, catalogue: Catalogue) -> Form:
+        try:
+            form = catalogue.find(self.case.aim.quantity)
+        except LookupError as error:
+            raise CaseProblems([self.case.problem(("aim",), str(error.args[0]))]) from error
+        if form.absent:
+            raise CaseProblems([self.case.problem(("aim",), f"{self.case.aim.quantity} does not exist: {form.reason}")])
+        return form
+
+    def _named(self, bounds: list[Bound]) -> Array:
+        """1 for species whose flow a limit names: those must be right relative to themselves."""
+        named = np.zeros(len(self.chemistry.species))
+        for bound in bounds:
+            words = bound.row.quantity.partition(".")[2]
+            for s, name in enumerate(self.chemistry.species):
+                if words.endswith((f" of {name}", f"/{name}", f"from {name}")):
+                    named[s] = 1.0
+        return named
+
+
+def _soften(bounds: list[Bound], first: int) -> tuple[list[Bound], list[FreeNumber], Linear]:
+    """Soft limits get a slack number each, priced: margin + slack >= 0."""
+    numbers: list[FreeNumber] = []
+    price = Linear()
+    softened: list[Bound] = []
+    for bound in bounds:
+        if bound.row.soft_price is None:
+            softened.append(bound)
+            continue
+        slack = at(first + len(numbers))
+        price = price + slack * bound.row.soft_price
+        name = f"{bound.row.name}, beyond the limit"
+        numbers.append(FreeNumber(name, 0.0, 0.0, 100.0 * bound.row.scale, bound.row.kind, role="internal"))
+        sign = 1.0 if bound.row.direction == "at most" else -1.0
+        top = bound.form.top - slack * sign
+        softened.append(Bound(bound.row, replace(bound.form, top=top)))
+    return softened, numbers, price
+
+
+def _beds(case: Case, chemistry: CaseChemistry, layout: Layout) -> Beds:
+    given = [section.bed for section in case.train if section.bed is not None]
+    sizes = [
+        ergun_terms(bed.diameter, bed.bulk_density, bed.void_fraction, bed.equivalent_size, case.fluid.viscosity)
+        if bed.diameter and bed.bulk_density and bed.void_fraction and bed.equivalent_size
+        else (0.0, 0.0)
+        for bed in given
+    ]
+    return pack_beds(
+        chemistry.laws,
+        [bed.bulk_density or np.nan for bed in given],
+        [bed.void_fraction or np.nan for bed in given],
+        sizes,
+    )
+
+
+def compile_case(case: Case) -> TrainProgramme:
+    """Compile a case; raises CaseProblems for what the chemistry or the names of quantities find wrong."""
+    return TrainProgramme(case)
+
+
+__all__ = ["ComputationError", "Model", "TrainProgramme", "compile_case"]

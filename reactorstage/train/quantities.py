@@ -1,0 +1,309 @@
+"""Every result with a name and a unit: the one namespace of limits, prices, tables and files.
+
+A quantity's name, unit and meaning stand in the table of patterns at the end of this module, and nowhere else.
+"""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
+from difflib import get_close_matches
+from functools import lru_cache
+
+import numpy as np
+from numpy.typing import NDArray
+
+from reactorstage.chemistry.reaction import data_range, equilibrium_temperature, heat_of_reaction, ln_K, ln_Q
+from reactorstage.train.chemistry import CaseChemistry
+from reactorstage.train.forms import Form, Linear, at, total
+from reactorstage.train.layout import BedPlace, Layout, Place
+
+Array = NDArray[np.float64]
+
+
+@dataclass(frozen=True)
+class Catalogue:
+    """Finds the form of a quantity by its name `owner.quantity`."""
+
+    layout: Layout
+    chemistry: CaseChemistry
+    money: dict[str, Form]
+    levels: dict[str, Form]
+
+    def find(self, name: str) -> Form:
+        """The form; LookupError says what is unknown and what is near."""
+        owner, quantity = self.parts(name.strip())
+        if not quantity:
+            raise LookupError(f"{name!r} is not a quantity; write owner.quantity, as in 'bed 1.exit temperature'")
+        for pattern in PATTERNS:
+            if pattern.owner == owner.split(" ", 1)[0]:
+                words = pattern.matches(quantity, self)
+                if words is not None:
+                    return pattern.make(self, self.subject(owner), *words)
+        raise LookupError(self._unknown(owner, quantity))
+
+    def parts(self, name: str) -> tuple[str, str]:
+        """Owner and quantity of a name; owners themselves may hold a point, as in `level steam 3.5 bar`."""
+        known = [owner for owner in self.owners() if name.startswith(f"{owner}.")]
+        owner = max(known, key=len) if known else name.partition(".")[0]
+        return owner, name[len(owner) + 1 :]
+
+    def subject(self, owner: str) -> Place | BedPlace | str:
+        """The place, bed or name that an owner stands for; LookupError when there is none."""
+        for place in self.layout.places:
+            if place.owner == owner:
+                return place
+        for bed in self.layout.beds:
+            if bed.owner == owner:
+                return bed
+        kind, _, rest = owner.partition(" ")
+        known = {"feed": self.layout.feeds, "level": tuple(self.levels), "train": ("",), "money": ("",)}
+        if kind in known and rest in known[kind]:
+            return rest
+        raise LookupError(f"there is no {owner!r} in this train; owners are {', '.join(self.owners())}")
+
+    def owners(self) -> list[str]:
+        feeds = [f"feed {name}" for name in self.layout.feeds]
+        levels = [f"level {name}" for name in self.levels]
+        places = sorted([*self.layout.places, *self.layout.beds], key=_position)
+        return [*[place.owner for place in places], *feeds, *levels, "train", "money"]
+
+    def names(self) -> Iterator[str]:
+        """Names of all quantities of this train that a result lists."""
+        for owner in self.owners():
+            for pattern in PATTERNS:
+                if pattern.owner == owner.split(" ", 1)[0]:
+                    for quantity in pattern.listed(self):
+                        yield f"{owner}.{quantity}"
+
+    def species(self, name: str) -> int:
+        return self.chemistry.species.index(name)
+
+    def _unknown(self, owner: str, quantity: str) -> str:
+        self.subject(owner)
+        known = [name[len(owner) + 1 :] for name in self.names() if name.startswith(f"{owner}.")]
+        near = get_close_matches(quantity, known, n=3, cutoff=0.5)
+        return f"{owner} has no quantity {quantity!r}" + (f"; did you mean {' or '.join(map(repr, near))}?" if near else "")
+
+
+def _position(item: Place | BedPlace) -> int:
+    return item.exit if isinstance(item, BedPlace) else item.last
+
+
+def _place_before(c: Catalogue, place: Place) -> int:
+    """Operation whose record is the stream that arrives at a place (the entry: its first feed)."""
+    return place.first - 1 if place.first > 0 else 0
+
+
+def _after_injection(c: Catalogue, place: Place) -> Form:
+    if not place.injections:
+        return Form("temperature", Linear(), reason="no injection", absent=True)
+    return Form("temperature", c.layout.temperature(place.injections[-1][0]))
+
+
+def _after_exchanger(c: Catalogue, place: Place) -> Form:
+    if not place.devices:
+        return Form("temperature", Linear(), reason="no exchanger", absent=True)
+    return Form("temperature", c.layout.temperature(place.devices[-1].operation))
+
+
+def heat_of_place(layout: Layout, place: Place) -> Linear:
+    """Heat removed in a place, W: positive when removed."""
+    return total([layout.heat_removed(device) for device in place.devices])
+
+
+def _exit_of(place: Place) -> int:
+    return max(place.last, place.first - 1)
+
+
+def _made(c: Catalogue, bed: BedPlace, name: str) -> Linear:
+    s = c.species(name)
+    return c.layout.flow(bed.exit, s) - c.layout.flow(bed.inlet, s)
+
+
+def _injected(c: Catalogue, bed: BedPlace, feed: str) -> Form:
+    inputs = [c.layout.amounts[operation] for operation, name in bed.injections if name == feed]
+    return Form("molar flow", total([c.layout.input(index) for index in inputs]))
+
+
+def fed(c: Catalogue, name: str) -> Linear:
+    """Flow of a species in all feeds that enter the train."""
+    s = c.species(name)
+    parts = [
+        c.layout.input(amount) * float(c.layout.compositions[c.layout.operations[operation][1], s])
+        for operation, amount in c.layout.amounts.items()
+    ]
+    return total(parts)
+
+
+def _end(c: Catalogue) -> int:
+    return len(c.layout.operations) - 1
+
+
+def _train_made(c: Catalogue, name: str) -> Linear:
+    return c.layout.flow(_end(c), c.species(name)) - fed(c, name)
+
+
+def _ratio(kind: str, top: Linear, bottom: Linear, name: str) -> Form:
+    return Form(kind, top, bottom, f"no {name}")
+
+
+def _catalyst(c: Catalogue) -> Linear:
+    return total([c.layout.input(bed.inputs) for bed in c.layout.beds])
+
+
+def _train_drop(c: Catalogue) -> Linear:
+    return c.layout.pressure(c.layout.beds[0].inlet) - c.layout.pressure(c.layout.beds[-1].exit)
+
+
+def _coolers(c: Catalogue) -> float:
+    return float(sum(not device.heating for place in c.layout.places for device in place.devices))
+
+
+def _cold_shots(c: Catalogue) -> float:
+    """Gaps into which a feed is injected without any exchanger there."""
+    return float(sum(bool(p.injections) and not p.devices for p in c.layout.places if p.kind == "gap"))
+
+
+@dataclass(frozen=True)
+class Pattern:
+    """Quantities of one kind of owner: words with <species>, <reaction>, <feed> slots, and their form."""
+
+    owner: str
+    words: str
+    make: Callable[..., Form]
+    list_them: bool = True
+
+    def matches(self, quantity: str, catalogue: Catalogue) -> tuple[str, ...] | None:
+        found = _expression(self.words).fullmatch(quantity)
+        if found is None:
+            return None
+        slots = re.findall("<(.*?)>", self.words)
+        ok = all(value in self._known(slot, catalogue) for slot, value in zip(slots, found.groups(), strict=True))
+        return found.groups() if ok else None
+
+    def listed(self, catalogue: Catalogue) -> Iterator[str]:
+        slots = re.findall("<(.*?)>", self.words)
+        if not slots:
+            yield self.words
+        elif self.list_them and len(slots) == 1:
+            for value in self._known(slots[0], catalogue):
+                yield self.words.replace(f"<{slots[0]}>", value)
+
+    def _known(self, slot: str, catalogue: Catalogue) -> tuple[str, ...]:
+        if slot == "reaction":
+            return catalogue.chemistry.reactions
+        if slot == "feed":
+            return catalogue.layout.feeds
+        return tuple(catalogue.money) if slot == "term" else catalogue.chemistry.species
+
+
+@lru_cache(maxsize=256)
+def _expression(words: str) -> re.Pattern[str]:
+    return re.compile("(.+?)".join(re.escape(part) for part in re.split("<.*?>", words)))
+
+
+def _places(words: str, make: Callable[..., Form]) -> list[Pattern]:
+    return [Pattern(owner, words, make) for owner in ("entry", "gap", "effluent")]
+
+
+PATTERNS: tuple[Pattern, ...] = (
+    *_places("inlet temperature", lambda c, p: Form("temperature", c.layout.temperature(_place_before(c, p)))),
+    *_places("temperature after injection", _after_injection),
+    *_places("temperature after exchanger", _after_exchanger),
+    *_places("exit temperature", lambda c, p: Form("temperature", c.layout.temperature(_exit_of(p)))),
+    *_places("heat removed", lambda c, p: Form("power", heat_of_place(c.layout, p))),
+    *_places("flow", lambda c, p: Form("molar flow", c.layout.total_flow(_exit_of(p)))),
+    *_places("flow of <species>", lambda c, p, s: Form("molar flow", c.layout.flow(_exit_of(p), c.species(s)))),
+    *_places(
+        "mole fraction of <species>",
+        lambda c, p, s: _ratio("fraction", c.layout.flow(_exit_of(p), c.species(s)), c.layout.total_flow(_exit_of(p)), "flow"),
+    ),
+    *_places(
+        "pressure",
+        lambda c, p: Form("pressure", c.layout.pressure(max(_exit_of(p), c.layout.beds[0].inlet))),
+    ),
+    Pattern("bed", "catalyst", lambda c, b: Form("mass", c.layout.input(b.inputs))),
+    Pattern("bed", "catalyst activity", lambda c, b: Form("number", c.layout.input(b.inputs + 1))),
+    Pattern("bed", "pressure drop factor", lambda c, b: Form("number", c.layout.input(b.inputs + 2))),
+    Pattern("bed", "inlet temperature", lambda c, b: Form("temperature", c.layout.temperature(b.inlet))),
+    Pattern("bed", "exit temperature", lambda c, b: Form("temperature", c.layout.temperature(b.exit))),
+    Pattern("bed", "peak temperature", lambda c, b: Form("temperature", c.layout.extra(b.number - 1, 0))),
+    Pattern("bed", "depth of the peak", lambda c, b: Form("fraction", c.layout.extra(b.number - 1, 1))),
+    Pattern(
+        "bed",
+        "rise",
+        lambda c, b: Form("temperature difference", c.layout.temperature(b.exit) - c.layout.temperature(b.inlet)),
+    ),
+    Pattern("bed", "inlet pressure", lambda c, b: Form("pressure", c.layout.pressure(b.inlet))),
+    Pattern("bed", "exit pressure", lambda c, b: Form("pressure", c.layout.pressure(b.exit))),
+    Pattern(
+        "bed",
+        "pressure drop",
+        lambda c, b: Form("pressure difference", c.layout.pressure(b.inlet) - c.layout.pressure(b.exit)),
+    ),
+    Pattern("bed", "injected <feed>", _injected),
+    Pattern("bed", "inlet flow", lambda c, b: Form("molar flow", c.layout.total_flow(b.inlet))),
+    Pattern("bed", "inlet flow of <species>", lambda c, b, s: Form("molar flow", c.layout.flow(b.inlet, c.species(s)))),
+    Pattern("bed", "exit flow of <species>", lambda c, b, s: Form("molar flow", c.layout.flow(b.exit, c.species(s)))),
+    Pattern("bed", "made <species>", lambda c, b, s: Form("molar flow", _made(c, b, s))),
+    Pattern(
+        "bed",
+        "inlet ratio <species>/<species>",
+        lambda c, b, x, y: _ratio("ratio", c.layout.flow(b.inlet, c.species(x)), c.layout.flow(b.inlet, c.species(y)), y),
+    ),
+    Pattern(
+        "bed",
+        "conversion of <species>",
+        lambda c, b, s: _ratio("fraction", _made(c, b, s) * -1.0, c.layout.flow(b.inlet, c.species(s)), s),
+    ),
+    Pattern(
+        "bed",
+        "selectivity to <species> from <species>",
+        lambda c, b, p, s: _ratio("fraction", _made(c, b, p), _made(c, b, s) * -1.0, f"{s} converted"),
+    ),
+    Pattern("bed", "depth at 10 % of rise", lambda c, b: _depth(c, b, 2)),
+    Pattern("bed", "depth at 50 % of rise", lambda c, b: _depth(c, b, 3)),
+    Pattern("bed", "depth at 90 % of rise", lambda c, b: _depth(c, b, 4)),
+    Pattern("train", "conversion of <species>", lambda c, _, s: _ratio("fraction", _train_made(c, s) * -1.0, fed(c, s), s)),
+    Pattern(
+        "train",
+        "selectivity to <species> from <species>",
+        lambda c, _, p, s: _ratio("fraction", _train_made(c, p), _train_made(c, s) * -1.0, f"{s} converted"),
+    ),
+    Pattern("train", "overall ratio <species>/<species>", lambda c, _, x, y: _ratio("ratio", fed(c, x), fed(c, y), y)),
+    Pattern("train", "made <species>", lambda c, _, s: Form("molar flow", _train_made(c, s))),
+    Pattern("train", "catalyst", lambda c, _: Form("mass", _catalyst(c))),
+    Pattern("train", "pressure drop", lambda c, _: Form("pressure difference", _train_drop(c))),
+    Pattern("train", "number of beds", lambda c, _: Form("count", Linear(const=float(len(c.layout.beds))))),
+    Pattern("train", "number of coolers", lambda c, _: Form("count", Linear(const=_coolers(c)))),
+    Pattern("train", "number of cold shots", lambda c, _: Form("count", Linear(const=_cold_shots(c)))),
+    Pattern("feed", "flow", lambda c, f: Form("molar flow", c.layout.input(c.layout.feed_flow[f]))),
+    Pattern("feed", "temperature", lambda c, f: Form("temperature", c.layout.input(c.layout.feed_temperature[f]))),
+    Pattern("level", "heat", lambda c, level: c.levels[level]),
+    Pattern("money", "<term>", lambda c, _, term: c.money[term]),
+)
+
+
+def _depth(c: Catalogue, bed: BedPlace, which: int) -> Form:
+    return Form("fraction", c.layout.extra(bed.number - 1, which), reason="no rise")
+
+
+def approach(chemistry: CaseChemistry, reaction: int, F: Array, p: float, T: float) -> float | None:
+    """Equilibrium temperature at this composition minus T [K]; None where the quotient does not exist.
+
+    Positive while the forward reaction remains, whatever the sign of its heat.
+    """
+    row = chemistry.laws.nu[reaction]
+    if (F[row != 0.0] <= 0.0).any():
+        return None
+    quotient = float(ln_Q(row[None, :], F, p)[0])
+    found = equilibrium_temperature(chemistry.table, row, quotient, T)
+    if found is None:
+        return None
+    exothermic = float(heat_of_reaction(chemistry.table, row[None, :], T)[0]) <= 0.0
+    return found - T if exothermic else T - found
+
+
+__all__ = ["Catalogue", "approach", "at", "data_range", "fed", "heat_of_place", "ln_K"]

@@ -1,0 +1,253 @@
+"""Rating: one pass at the final tolerance turned into named values, profiles, limits, money and closure."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import numpy as np
+from numpy.typing import NDArray
+
+from reactorstage.chemistry.thermo import h
+from reactorstage.train.passing import Outcome
+from reactorstage.train.quantities import approach
+from reactorstage.train.result import HeatSale, LimitState, Profile, Rating, StepState, Value
+
+if TYPE_CHECKING:
+    from reactorstage.train.limits import Bound
+    from reactorstage.train.programme import Model, TrainProgramme
+
+Array = NDArray[np.float64]
+
+AT_WORK = 1e-6
+"""A limit is at work when its margin is below this share of its scale."""
+
+POINTS = 120
+"""About how many points a profile has per bed."""
+
+
+def rate(programme: TrainProgramme, x: Array, dense: bool, tolerance: float) -> Rating:
+    """The train at x; a failure inside it gives a Rating with the sentence and what was reached."""
+    model = programme.model
+    u, du = model.inputs.values(x)
+    outcome = model.passing.adaptive(u, du[:, :0], tolerance)
+    base = model.base(outcome.out, u, du, x)[:, 0]
+    profiles = _profiles(model, outcome, u, dense)
+    quantities = _quantities(model, outcome, base)
+    limits = () if outcome.failure else tuple(_limit(bound, base) for bound in model.bounds)
+    if outcome.failure:
+        status, atoms, energy = "no answer", float("nan"), float("nan")
+    else:
+        status = "inside all limits" if all(one.met or one.soft for one in limits) else "limits broken"
+        atoms, energy = closure(model, base)
+        quantities |= _closures(atoms, energy)
+        quantities |= _approaches(model, base)
+    quantities |= _outside(model, profiles)
+    roles = _roles(model, base) if not outcome.failure else ("", "", "", ())
+    return Rating(
+        case=model.case,
+        status=status,
+        failure=outcome.failure,
+        x=x,
+        quantities=quantities,
+        profiles=profiles,
+        steps=_steps(model, base, outcome),
+        limits=limits,
+        money={} if outcome.failure else {k: float(f.top.value(base)) for k, f in model.catalogue.money.items()},
+        heat=() if outcome.failure else _heat(model, base),
+        species=model.chemistry.species,
+        reactions=model.chemistry.reactions,
+        nu=model.chemistry.laws.nu,
+        main_reactant=roles[0],
+        excess_reactant=roles[1],
+        product=roles[2],
+        by_products=roles[3],
+        unpriced=tuple(dict.fromkeys(model.ladder.unpriced)),
+        atoms=atoms,
+        energy=energy,
+        notes=_notes(model, quantities),
+        integration_steps=outcome.steps,
+        right_hand_sides=outcome.evaluations,
+    )
+
+
+def _profiles(model: Model, outcome: Outcome, u: Array, dense: bool) -> tuple[Profile, ...]:
+    done = [bed for bed in model.layout.beds if bed.exit < outcome.reached]
+    profiles = []
+    for bed in done:
+        w, T, p, F, r = model.passing.sample(outcome, bed, u, POINTS if dense else 1)
+        start = len(model.layout.operations) * model.layout.width + (bed.number - 1) * 5
+        peak, depth = outcome.out[start, 0], outcome.out[start + 1, 0]
+        profiles.append(Profile(bed.owner, w, T, p, F, r, float(peak), float(depth * u[bed.inputs])))
+    return tuple(profiles)
+
+
+def _quantities(model: Model, outcome: Outcome, base: Array) -> dict[str, Value]:
+    values: dict[str, Value] = {}
+    listed = [*model.catalogue.names(), *(b.row.quantity for b in model.bounds if b.row.label != "heat ladder")]
+    for name in dict.fromkeys(listed):
+        form = model.catalogue.find(name)
+        used = [i // model.layout.width for i in form.top.terms if i < len(model.layout.operations) * model.layout.width]
+        if outcome.failure and (max(used, default=outcome.reached) >= outcome.reached):
+            values[name] = Value(None, form.kind, "not reached")
+            continue
+        value = form.value(base)
+        values[name] = Value(value, form.kind, "" if value is not None else form.reason)
+    return values
+
+
+def _closures(atoms: float, energy: float) -> dict[str, Value]:
+    return {"train.atom closure": Value(atoms, "number"), "train.energy closure": Value(energy, "number")}
+
+
+def _approaches(model: Model, base: Array) -> dict[str, Value]:
+    """Approach to equilibrium of every reversible reaction at every bed exit."""
+    values: dict[str, Value] = {}
+    S, width = model.layout.species, model.layout.width
+    for bed in model.layout.beds:
+        record = base[bed.exit * width : (bed.exit + 1) * width]
+        for r, name in enumerate(model.chemistry.reactions):
+            if not model.chemistry.equations[r].reversible:
+                continue
+            found = approach(model.chemistry, r, record[:S], record[S + 1], record[S + 2])
+            reason = "" if found is not None else "a species of the reaction is absent"
+            values[f"{bed.owner}.approach to equilibrium of {name}"] = Value(found, "temperature difference", reason)
+    return values
+
+
+def _outside(model: Model, profiles: tuple[Profile, ...]) -> dict[str, Value]:
+    """Share of each bed's catalyst outside the validity window of each rate law that states one."""
+    values: dict[str, Value] = {}
+    for profile in profiles:
+        for name, reaction in model.case.reactions.items():
+            if reaction.valid is None:
+                continue
+            out = np.zeros(len(profile.w), dtype=bool)
+            for window, along in ((reaction.valid.temperature, profile.T), (reaction.valid.pressure, profile.p)):
+                if window is not None:
+                    out |= (along < window[0] - 1e-9) | (along > window[1] + 1e-9)
+            share = _share_of_catalyst(profile.w, out)
+            values[f"{profile.owner}.outside validity of {name}"] = Value(share, "fraction")
+    return values
+
+
+def _share_of_catalyst(w: Array, out: NDArray[np.bool_]) -> float:
+    if len(w) < 2 or w[-1] <= 0.0:
+        return 0.0
+    widths = np.diff(w)
+    return float((widths * 0.5 * (out[1:].astype(float) + out[:-1])).sum() / w[-1])
+
+
+def _limit(bound: Bound, base: Array) -> LimitState:
+    row = bound.row
+    value = bound.form.value(base)
+    sign = 1.0 if row.direction == "at most" else -1.0
+    margin = None if value is None else sign * (row.bound - value)
+    met = margin is None or margin >= -AT_WORK * row.scale
+    at_work = margin is not None and abs(margin) <= AT_WORK * row.scale
+    return LimitState(
+        row.label, row.owner, row.quantity, row.direction, row.kind, row.bound, row.keep_away, value, margin,
+        met, at_work, row.soft_price is not None, row.implied, row.why, "" if value is not None else bound.form.reason,
+    )  # fmt: skip
+
+
+def closure(model: Model, base: Array) -> tuple[float, float]:
+    """Relative closure of atoms and of energy over the whole train.
+
+    Atoms: largest difference between feeds and effluent of an element, by its flow. Energy: feeds less heat
+    removed less the effluent's enthalpy found anew from its flows and temperature, by the enthalpy that the
+    train turns over (sum of absolute changes along beds and heat removed).
+    """
+    layout, table = model.layout, model.chemistry.table
+    S, width, end = layout.species, layout.width, len(layout.operations) - 1
+    fed, enthalpy, turned = np.zeros(S), 0.0, 0.0
+    for operation, amount in layout.amounts.items():
+        feed = int(layout.operations[operation][1])
+        flow = base[layout.rows + amount] * layout.compositions[feed]
+        T = base[layout.rows + layout.feed_temperature[layout.feeds[feed]]]
+        fed += flow
+        enthalpy += float(flow @ h(table, float(T)))
+    record = base[end * width : (end + 1) * width]
+    elements = np.abs(fed @ table.atoms)
+    atoms = float((np.abs((fed - record[:S]) @ table.atoms) / np.where(elements > 0.0, elements, 1.0)).max())
+    for place in layout.places:
+        for device in place.devices:
+            Q = layout.heat_removed(device).value(base)
+            enthalpy -= Q
+            turned += abs(Q)
+    for bed in layout.beds:
+        inlet, out = base[bed.inlet * width :][:width], base[bed.exit * width :][:width]
+        turned += abs(float(out[:S] @ (h(table, float(out[S + 2])) - h(table, float(inlet[S + 2])))))
+    left = float(record[:S] @ h(table, float(record[S + 2])))
+    return atoms, abs(enthalpy - left) / max(turned, 1e-300)
+
+
+def _steps(model: Model, base: Array, outcome: Outcome) -> tuple[StepState, ...]:
+    layout, steps = model.layout, []
+    for place in layout.places:
+        injections, devices = dict(place.injections), {d.operation: d for d in place.devices}
+        for k in range(place.first, place.last + 1):
+            if k >= outcome.reached or (k not in injections and k not in devices):
+                continue
+            before = layout.temperature(k - 1).value(base) if k > 0 else None
+            after = layout.temperature(k).value(base)
+            if k in injections:
+                kind = "take" if k == 0 else "inject"
+                flow = float(base[layout.rows + layout.amounts[k]])
+                steps.append(StepState(place.owner, kind, injections[k], flow, 0.0, before, after))
+            else:
+                device = devices[k]
+                what = device.levels if isinstance(device.levels, str) else ", ".join(device.levels)
+                Q = layout.heat_removed(device).value(base)
+                kind = "heat" if device.heating else "cool"
+                steps.append(StepState(place.owner, kind, what, 0.0, Q, before, after))
+    return tuple(steps)
+
+
+def _heat(model: Model, base: Array) -> tuple[HeatSale, ...]:
+    prices = _level_prices(model)
+    return tuple(
+        HeatSale(owner, level, form.value(base), form.value(base) * prices[level], model.ladder.heating[level])
+        for (owner, level), form in model.ladder.given.items()
+    )
+
+
+def _level_prices(model: Model) -> dict[str, float]:
+    from reactorstage.train.heat import read_rungs
+
+    return {name: rung.price for name, rung in read_rungs(model.case, []).items()}
+
+
+def _roles(model: Model, base: Array) -> tuple[str, str, str, tuple[str, ...]]:
+    """Main (split) reactant, excess reactant, product and by-products, read from feeds and results."""
+    from reactorstage.train.quantities import fed
+
+    catalogue, names, nu = model.catalogue, model.chemistry.species, model.chemistry.laws.nu
+    end = (len(model.layout.operations) - 1) * model.layout.width
+    given = {name: fed(catalogue, name).value(base) for name in names}
+    made = {name: float(base[end + s]) - given[name] for s, name in enumerate(names)}
+    consumed = [n for s, n in enumerate(names) if (nu[:, s] < 0).any() and given[n] > 0.0 and made[n] < 0.0]
+    split = [feed for feed in model.layout.feeds if model.case.feeds[feed].split is not None]
+    main = ""
+    for feed in split:
+        row = model.layout.compositions[model.layout.feeds.index(feed)]
+        reacting = [name for name in consumed if row[names.index(name)] > 0.0]
+        main = max(reacting, key=lambda name: row[names.index(name)], default="")
+        if main:
+            break
+    if not main:
+        main = max(consumed, key=lambda name: -made[name] / given[name], default="")
+    partners = {n for r in range(len(nu)) if main and nu[r, names.index(main)] < 0 for s, n in enumerate(names) if nu[r, s] < 0}
+    excess = max((n for n in consumed if n != main and n in partners), key=lambda n: given[n], default="")
+    produced = sorted((n for n in names if made[n] > 1e-9 * sum(given.values())), key=lambda n: -made[n])
+    return main, excess, produced[0] if produced else "", tuple(produced[1:])
+
+
+def _notes(model: Model, quantities: dict[str, Value]) -> tuple[str, ...]:
+    notes = [f"Heat of {owner} carries no price." for owner in dict.fromkeys(model.ladder.unpriced)]
+    outside = [
+        (name, value.value) for name, value in quantities.items() if ".outside validity of " in name and value.value
+    ]
+    for name, share in outside:
+        owner, _, rest = name.partition(".outside validity of ")
+        notes.append(f"{100.0 * float(share or 0.0):.0f} % of {owner} lies outside the stated validity of {rest}.")
+    return tuple(notes)
