@@ -114,7 +114,7 @@ def passing(chem, inlet, steps, count, target, rising, y, share, work):
                 for _ in range(50):
                     theta = 0.5 * (low + high)
                     T = temperature_within(chem, inlet, steps, k, theta, T, y, share, work)
-                    if (T >= target) == rising:
+                    if (target <= T) == rising:
                         high = theta
                     else:
                         low = theta

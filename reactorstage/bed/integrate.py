@@ -71,7 +71,9 @@ def newton(chem, inlet, h, y0, Z, T, J, real, complex_, pivot_r, pivot_c, tol, w
                 return False, np.inf, 3 * iteration + i
             T[i] = T_new
             for k in range(n):
-                G[i, k] = f[k] - (INVERSE[i, 0] * Z[0, k] + INVERSE[i, 1] * Z[1, k] + INVERSE[i, 2] * Z[2, k]) / h
+                G[i, k] = (
+                    f[k] - (INVERSE[i, 0] * Z[0, k] + INVERSE[i, 1] * Z[1, k] + INVERSE[i, 2] * Z[2, k]) / h
+                )
         for k in range(n):
             W[0, k] = 0.0
             low, high = 0.0, 0.0
@@ -157,7 +159,11 @@ def extrapolate(ratio, y_shift, Z_old, Z):
         for k in range(Z.shape[1]):
             total = 0.0
             for j in range(3):
-                total += Z_old[j, k] * theta * (POLYNOMIAL[j, 0] + theta * (POLYNOMIAL[j, 1] + theta * POLYNOMIAL[j, 2]))
+                total += (
+                    Z_old[j, k]
+                    * theta
+                    * (POLYNOMIAL[j, 0] + theta * (POLYNOMIAL[j, 1] + theta * POLYNOMIAL[j, 2]))
+                )
             Z[i, k] = total - y_shift[k]
 
 
@@ -167,9 +173,9 @@ def reason_of(chem, inlet, y, T, f):
     R = chem.nu.shape[0]
     if y[R] < 0.05 or -f[R] * 1e-6 > y[R]:
         return NO_PRESSURE
-    if T > chem.T_high - 50.0:
+    if chem.T_high - 50.0 < T:
         return TOO_HOT
-    if T < chem.T_low + 5.0:
+    if chem.T_low + 5.0 > T:
         return TOO_COLD
     return STEP_TOO_SMALL
 
@@ -212,7 +218,23 @@ def integrate(chem, inlet, tolerance, frozen, count, steps, work):
         rate = np.inf
         if ok:
             ok, rate, used = newton(
-                chem, inlet, h, y, Z, T, J, real, complex_, pivot_r, pivot_c, tolerance.newton, work, f, point, G, W
+                chem,
+                inlet,
+                h,
+                y,
+                Z,
+                T,
+                J,
+                real,
+                complex_,
+                pivot_r,
+                pivot_c,
+                tolerance.newton,
+                work,
+                f,
+                point,
+                G,
+                W,
             )
             calls += used
         if frozen and not ok:

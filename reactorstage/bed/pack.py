@@ -24,8 +24,12 @@ def pack_chemistry(table: SpeciesTable, laws: RateLaws) -> Chemistry:
         law=np.column_stack([laws.lnk_ref, laws.T_ref, laws.E_over_R, laws.c, laws.d, laws.m]),
         kind=np.column_stack([laws.driver, laws.reversible, [len(used) for used in members]]),
         member=np.array([_padded(used, longest, -1) for used in members], dtype=np.int64),
-        order=np.array([[_padded(orders[r][used], longest, 0.0) for orders in (laws.alpha, laws.beta)]
-                        for r, used in enumerate(members)]),
+        order=np.array(
+            [
+                [_padded(orders[r][used], longest, 0.0) for orders in (laws.alpha, laws.beta)]
+                for r, used in enumerate(members)
+            ]
+        ),
         den_start=laws.den_start,
         den_power=laws.den_power,
         term_start=laws.term_start,

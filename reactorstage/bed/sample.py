@@ -12,7 +12,9 @@ from reactorstage.bed.train_pass import bed_inlet
 
 
 @compiled
-def sample_bed(chem, beds, b, row, out, catalyst, activity, friction_factor, stages, per_step, work, w, T, p, F, r):
+def sample_bed(
+    chem, beds, b, row, out, catalyst, activity, friction_factor, stages, per_step, work, w, T, p, F, r
+):
     """Fill w, T, p (N,), F (N, S), r (N, R) at `per_step` points of each step and the inlet.
 
     N = count * per_step + 1; out and stages are those of a finished pass, row the record of the inlet.

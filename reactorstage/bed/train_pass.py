@@ -14,7 +14,14 @@ from numpy.typing import NDArray
 from reactorstage.bed.balance import Inlet, flows, temperature_of, work_space
 from reactorstage.bed.compiled import compiled
 from reactorstage.bed.data import GAS_CONSTANT
-from reactorstage.bed.events import SHARES, hottest, passing, slope_within, temperature_tangent, temperature_within
+from reactorstage.bed.events import (
+    SHARES,
+    hottest,
+    passing,
+    slope_within,
+    temperature_tangent,
+    temperature_within,
+)
 from reactorstage.bed.integrate import DONE, TOO_COLD, TOO_HOT, Steps, integrate
 from reactorstage.bed.properties import heat_and_enthalpy
 from reactorstage.bed.tangents import Directions, Tangents, differentiate
@@ -167,7 +174,8 @@ def bed_directions(chem, beds, b, row, out, u, du, first, picked):
         for q in range(R):
             ln_factor[q, i] = du[first + 1, d] / u[first + 1]
         friction[i] = GAS_CONSTANT * (
-            du[first + 2, d] * (beds.viscous[b] + beds.inertial[b] * mass_flow) + u[first + 2] * beds.inertial[b] * mass_d
+            du[first + 2, d] * (beds.viscous[b] + beds.inertial[b] * mass_flow)
+            + u[first + 2] * beds.inertial[b] * mass_d
         )
     return Directions(F, H, p, W, ln_factor, friction)
 
@@ -232,7 +240,9 @@ def write_places(chem, inlet, steps, count, directions, tangents, picked, row, e
 
 
 @compiled
-def run_bed(chem, beds, b, row, exit_row, extra, u, du, first, tolerance, frozen, stages, tangents, out, work):
+def run_bed(
+    chem, beds, b, row, exit_row, extra, u, du, first, tolerance, frozen, stages, tangents, out, work
+):
     """Integrate bed b between two records; (status, depth reached, evaluations)."""
     S = chem.nu.shape[1]
     rows = S + 3
@@ -243,9 +253,7 @@ def run_bed(chem, beds, b, row, exit_row, extra, u, du, first, tolerance, frozen
         return DONE, 1.0, 0
     inlet = bed_inlet(chem, beds, b, row, out, u[first], u[first + 1], u[first + 2])
     steps = Steps(stages.edges[b], stages.y0[b], stages.Z[b], stages.T[b])
-    status, depth, count, calls = integrate(
-        chem, inlet, tolerance, frozen, stages.counts[b], steps, work
-    )
+    status, depth, count, calls = integrate(chem, inlet, tolerance, frozen, stages.counts[b], steps, work)
     if status != DONE:
         return status, depth, calls
     stages.counts[b] = count

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from copy import deepcopy
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 from reactorstage.case.build import build
@@ -28,6 +28,7 @@ class Opened:
     marked: Marked
     folder: Path
     problems: tuple[Problem, ...]
+    variant: str = ""
 
 
 def load_file(path: Path, overrides: Sequence[str] = ()) -> Case:
@@ -58,7 +59,15 @@ def read(marked: Marked, opened: Opened) -> tuple[CaseWritten | None, list[Probl
     written = validate(marked.tree, CaseWritten, findings)
     if written is not None:
         check(written, opened.folder, findings)
-    return written, in_order([*opened.problems, *placed(findings, marked)])
+    problems = [*opened.problems, *(blame_variant(p, opened.variant) for p in placed(findings, marked))]
+    return written, in_order(problems)
+
+
+def blame_variant(problem: Problem, variant: str) -> Problem:
+    """A problem outside the variant says that it stands there with the variant's changes made."""
+    if not variant or problem.file == variant or problem.file.startswith(OPTION):
+        return problem
+    return replace(problem, message=f"{problem.message} (with the changes of {variant})")
 
 
 def placed(findings: Findings, marked: Marked) -> list[Problem]:
@@ -102,7 +111,7 @@ def open_variant(variant: Marked, path: Path) -> Opened:
     opened = open_case(marked, base)
     findings.items += change(marked, variant)
     problems = (*variant.problems, *placed(findings, variant), *opened.problems)
-    return Opened(marked, base.parent, problems)
+    return Opened(marked, base.parent, problems, str(path))
 
 
 def _blame(problems: Sequence[Problem], overrides: Sequence[str]) -> str:

@@ -118,7 +118,7 @@ def split_number(text: str) -> tuple[float, str]:
 
 
 def _refuse_odd_separators(text: str, number: str, rest: str) -> None:
-    if re.match(r"[,_' ]+[0-9]", rest):
+    if re.match(r"[,_' ]+(?!1\s*/)[0-9]", rest):
         advice = "write the decimals after a point" if rest.startswith(",") else "write the digits together"
         raise UnitProblem(
             f"{shown(text)} has something between the digits of a number", f"{advice}, as in 1234.5"

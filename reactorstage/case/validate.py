@@ -60,7 +60,7 @@ def report(item: Any, tree: Tree, model: type[Words], findings: Findings) -> Non
         if not is_misspelt(path, tree, model):
             findings.add(path[:-1], f"{path[-1]} is missing{_where(path[:-1])}", meaning(path, model))
     elif kind == "extra_forbidden":
-        keys = keys_at(path[:-1], model)
+        keys = keys_at(path[:-1], model) + (["variant of"] if len(path) == 1 else [])
         findings.add(path, f"{shown(str(path[-1]))} is not a key here", one_of(str(path[-1]), keys), True)
     elif kind in ("too_short", "too_long"):
         findings.add(path, f"nothing stands in {path[-1]}", meaning(path, model))

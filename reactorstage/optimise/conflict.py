@@ -19,7 +19,7 @@ from reactorstage.optimise.wrappers import Shifted
 
 GIVES_WAY = 1e-5
 TIGHT = 1e-7
-HOLDS = 1e-2
+HOLDS = 1e-5
 WORTH_IT = 1e-5
 
 
@@ -69,8 +69,8 @@ def cheapest(
 def conflict(programme: Programme, x: Array, evaluation: Evaluation) -> tuple[Conflict, float]:
     """The limits broken at a least-violating x (own unit), those that keep them so, and the residual.
 
-    A limit that holds has zero margin and, in the elastic programme, a multiplier of more than a
-    hundredth of a unit of scaled violation.
+    A limit that holds has zero margin and a multiplier in the elastic programme: relaxing it would lower
+    the sum of violations.
     """
     elastic, start = elastic_at(programme, evaluation, x)
     stretched = elastic.stretched(evaluation, start)

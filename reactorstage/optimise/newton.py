@@ -45,7 +45,7 @@ def curvature(oracle: Oracle, state: State) -> Curvature | None:
     columns = [probe(oracle, state, z) for z in tangent.T]
     if any(column is None for column in columns):
         return None
-    product = tangent.T @ np.array(columns).reshape(-1, state.x.size).T
+    product = tangent.T @ np.array(columns).T if columns else np.zeros((0, 0))
     return Curvature(tangent, 0.5 * (product + product.T))
 
 

@@ -123,14 +123,15 @@ def settled(
 
     Each step aims a little further inside than the last one missed by.
     """
-    best, least, target = (x, evaluation), float("inf"), 0.0
+    best, least, target = (x, evaluation), (True, float("inf")), 0.0
     for _ in range(CORRECTIONS):
         scale = scale_at(programme, evaluation, size)
         point = scaled(evaluation, x, scale)
         held = found or multipliers(point, scale.upper, NEAR)
         slack = float(np.max(np.abs(point.margin[held.limit > 0.0]), initial=0.0))
-        if max(point.violation, slack) < least:
-            best, least = (x, evaluation), max(point.violation, slack)
+        rank = (point.violation > SETTLED, max(point.violation, slack))
+        if rank < least:
+            best, least = (x, evaluation), rank
         if point.violation <= SETTLED and slack <= max(SETTLED, 2.0 * target):
             break
         target = SETTLED / 2 if target == 0.0 else min(target + 2.0 * point.violation, 0.3 * AT_WORK)

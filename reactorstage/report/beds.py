@@ -113,7 +113,7 @@ def injected_feeds(rating: Rating) -> list[str]:
     word = ".injected "
     takers: dict[str, int] = {}
     for name, value in rating.quantities.items():
-        if word in name and value.value is not None:
+        if word in name and value.value:
             feed = name.partition(word)[2]
             takers[feed] = takers.get(feed, 0) + 1
     return [feed for feed, count in takers.items() if count > 1]
@@ -134,8 +134,15 @@ def _injections(now: Rating, before: Before, beds: Sequence[str]) -> list[Column
 def _ratio(now: Rating, beds: Sequence[str]) -> Column | None:
     if not (now.excess_reactant and now.main_reactant):
         return None
-    word = f"inlet ratio {now.excess_reactant}/{now.main_reactant}"
-    return _quantity(now, beds, word, (f"{now.excess_reactant}/", now.main_reactant, "at inlet"), 2, rank=5)
+    signs = signs_of(now, beds, f"inlet ratio {now.excess_reactant}/{now.main_reactant}")
+    above, below = (values_of(now, beds, f"inlet flow of {s}") for s in (now.excess_reactant, now.main_reactant))
+    ratios = [_over(a, b) for a, b in zip(above, below, strict=True)]
+    heading = (f"{now.excess_reactant}/", now.main_reactant, "at inlet")
+    return Column(heading, marked(ratios, 2, signs), rank=5)
+
+
+def _over(above: float | None, below: float | None) -> float | None:
+    return above / below if above is not None and below else None
 
 
 def _peak(now: Rating, beds: Sequence[str]) -> Column | None:
@@ -182,5 +189,11 @@ def _conversion(now: Rating, beds: Sequence[str]) -> Column | None:
 def _selectivity(now: Rating, beds: Sequence[str]) -> Column | None:
     if not (now.main_reactant and now.product and now.by_products):
         return None
-    word = f"selectivity to {now.product} from {now.main_reactant}"
-    return _quantity(now, beds, word, ("selec-", "tivity", "mol %"), 1, rank=13)
+    cells = [selectivity(now, bed) for bed in beds]
+    return Column(("selec-", "tivity", "mol %"), plain(cells, 1), rank=13)
+
+
+def selectivity(rating: Rating, owner: str) -> float | None:
+    """Mol of product made in a bed or the train per 100 mol of the main reactant converted there."""
+    made, gone = (values_of(rating, [owner], f"made {s}")[0] for s in (rating.product, rating.main_reactant))
+    return 100.0 * made / -gone if made is not None and gone else None

@@ -64,11 +64,6 @@ def moves_text(found: Sequence[Change], count: int = 3) -> str:
     return and_list(texts)
 
 
-def stands_text(found: Sequence[Change], count: int = 3) -> str:
-    """`inlet temperature of bed 4 at 364.0 degC, ...`: only the second of the two settings."""
-    return and_list([f"{change.what} at {change.new}" for change in found[:count]])
-
-
 def _bare(old: str, new: str) -> str:
     """The old value without its unit when the new one repeats it."""
     number, _, unit = old.partition(" ")

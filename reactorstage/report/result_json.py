@@ -10,13 +10,16 @@ import math
 import platform
 from collections.abc import Mapping, Sequence
 from importlib import metadata
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from reactorstage.optimise.programme import FreeNumber, Programme
 from reactorstage.optimise.result import Answer, EqualSplit, Optimum, StartRecord, Worth
 from reactorstage.report.cautions import FULL
 from reactorstage.report.display import difference, difference_kind, money, shown, unit
 from reactorstage.train.result import HeatSale, LimitState, Rating, Value
+
+if TYPE_CHECKING:
+    from reactorstage.case.model import Case
 
 SCHEMA_VERSION = 1
 LIBRARIES = ("reactorstage", "numpy", "scipy", "numba", "cantera")
@@ -119,13 +122,17 @@ def rounded(value: float) -> float | None:
 
 
 def _head(what: str, rating: Rating, overrides: Sequence[str]) -> Json:
-    case = rating.case
     return {
         "schema version": SCHEMA_VERSION,
         "result": what,
-        "case": {"name": case.name, "hash": case.hash, "set": list(overrides)},
+        "case": case_json(rating.case, overrides),
         "versions": versions(),
     }
+
+
+def case_json(case: Case, overrides: Sequence[str]) -> Json:
+    """Which case, as resolved, with what was set on the command line."""
+    return {"name": case.name, "hash": case.hash, "set": list(overrides)}
 
 
 def versions() -> dict[str, str]:
@@ -261,6 +268,7 @@ def _answer(programme: Programme, answer: Answer) -> Json:
             for index, number in enumerate(programme.numbers)
             if not number.internal
         },
+        "smallest curvature": money(answer.curvature),
         "limits at work": [programme.limits[index].name for index in answer.at_work],
         "at an end of its range": list(answer.at_range),
     }

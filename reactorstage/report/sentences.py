@@ -6,10 +6,12 @@ from collections.abc import Sequence
 
 from reactorstage.optimise.programme import Programme
 from reactorstage.optimise.result import EqualSplit, Optimum
+from reactorstage.optimise.words import told_apart
 from reactorstage.report import bounds
 from reactorstage.report.accounts import total_difference
+from reactorstage.report.beds import selectivity
 from reactorstage.report.cautions import SHORT
-from reactorstage.report.changes import changes, moves_text, stands_text
+from reactorstage.report.changes import changes, moves_text
 from reactorstage.report.display import (
     and_list,
     brief,
@@ -18,16 +20,15 @@ from reactorstage.report.display import (
     fixed,
     money,
     shown,
-    told,
     unit,
     with_unit,
 )
 from reactorstage.train.result import LimitState, Rating
 
 SAME_MONEY = 0.05
+PHRASES = 2
 UNLIT_RISE_K = 3.0
 UNLIT_APPROACH_K = 30.0
-OUTSIDE_SAID = 0.001
 
 
 def out_line(now: Rating, was: Rating | None = None) -> str:
@@ -48,11 +49,10 @@ def _leaving(now: Rating, was: Rating | None, species: str) -> str:
 
 
 def _selectivity(rating: Rating) -> str:
-    name = f"train.selectivity to {rating.product} from {rating.main_reactant}"
-    value = rating.quantities.get(name)
-    if value is None or value.value is None:
+    value = selectivity(rating, "train")
+    if value is None:
         return ""
-    return f"{100 * value.value:.1f} mol {rating.product} per 100 mol {rating.main_reactant} converted"
+    return f"{fixed(value, 1)} mol {rating.product} per 100 mol {rating.main_reactant} converted"
 
 
 def first_change(programme: Programme, now: Rating, was: Rating) -> str:
@@ -82,10 +82,10 @@ def second_answer(programme: Programme, optimum: Optimum, best: Rating, others: 
     if not others:
         return f"All {ended} starts that ended agree on this answer." if ended > 1 else ""
     other = others[0]
-    found = changes(programme.numbers, best.x, other.x)
+    apart = told_apart(programme, best.x, other.x)[:PHRASES]
     more = total_difference(other, best)
     rate = unit("money rate", best.case.currency)
-    where = f" ({stands_text(found)})" if found else ""
+    where = f" ({'; '.join(apart)})" if apart else ""
     cost = f"costs {fixed(more, 1)} {rate} more" if more >= SAME_MONEY else "costs the same"
     rest = f"; {len(others) - 1} more in result.json" if len(others) > 1 else ""
     return f"A second answer{where} {cost}{rest}."
@@ -148,8 +148,8 @@ def _relaxed(best: Rating, index: int, amount: float) -> str:
 
 
 def warnings(rating: Rating) -> list[str]:
-    """Unlit beds, kinetics outside their range, notes of the rating."""
-    return [*_unlit(rating), *_outside(rating), *rating.notes]
+    """Unlit beds and the notes of the rating."""
+    return [*_unlit(rating), *rating.notes]
 
 
 def _unlit(rating: Rating) -> list[str]:
@@ -158,9 +158,7 @@ def _unlit(rating: Rating) -> list[str]:
         rise, approach = (_number(rating, f"{profile.owner}.{word}") for word in _lit_words(rating))
         if rise is not None and approach is not None and rise < UNLIT_RISE_K and approach > UNLIT_APPROACH_K:
             where = f"stands {approach:.0f} K from equilibrium"
-            found.append(
-                f"{bed} is unlit: it rises {rise:.1f} K and stands {approach:.0f} K from equilibrium."
-            )
+            found.append(f"{profile.owner.capitalize()} is unlit: it rises {rise:.1f} K and {where}.")
     return found
 
 
@@ -172,18 +170,6 @@ def _lit_words(rating: Rating) -> tuple[str, str]:
 def _number(rating: Rating, name: str) -> float | None:
     value = rating.quantities.get(name)
     return None if value is None else value.value
-
-
-def _outside(rating: Rating) -> list[str]:
-    word = ".outside validity of "
-    found = []
-    for name, value in rating.quantities.items():
-        if word in name and value.value is not None and value.value > OUTSIDE_SAID:
-            bed, _, reaction = name.partition(word)
-            found.append(
-                f"{told(value.value, value.kind)} of {bed} lies outside the stated range of {reaction}."
-            )
-    return found
 
 
 def caution() -> str:

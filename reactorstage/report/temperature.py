@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import Literal
 
 import numpy as np
 from matplotlib.axes import Axes
@@ -18,6 +20,9 @@ HEIGHT = 4.5
 WORDS = ("inlet temperature", "exit temperature", "peak temperature")
 REACH = 0.5
 PEAK_SHOWN_K = 0.5
+LABEL_PART = 0.13
+Side = Literal["left", "center", "right"]
+HEAT_SIDES: dict[str, tuple[Side, float]] = {"entry": ("left", 0.0), "effluent": ("right", LABEL_PART)}
 
 
 def temperature_figure(rating: Rating, today: Rating | None, title: str, status: str) -> Figure:
@@ -29,10 +34,11 @@ def temperature_figure(rating: Rating, today: Rating | None, title: str, status:
     if today is not None:
         _curve(axes, today, train_profiles(today), look.TODAY_WEIGHT)
     _curve(axes, rating, beds, look.THIS_WEIGHT)
-    _set_range(axes, rating, beds, today)
+    heats = heat_labels(rating, beds)
+    _set_range(axes, rating, beds, today, 1 + max((heat.row for heat in heats), default=-1))
     _values(axes, beds)
     _limits(axes, rating, beds)
-    _heats(axes, rating, beds)
+    _heats(axes, heats)
     look.catalyst_axis(axes, shown=True)
     look.value_axis(axes, f"temperature, {unit('temperature')}")
     _key(figure, rating, today is not None)
@@ -66,15 +72,17 @@ def _places(beds: Sequence[BedProfile]) -> list[tuple[str, float]]:
     return [("entry", 0.0), *gaps, ("effluent", float(beds[-1].catalyst[-1]))]
 
 
-def _set_range(axes: Axes, rating: Rating, beds: Sequence[BedProfile], today: Rating | None) -> None:
+def _set_range(
+    axes: Axes, rating: Rating, beds: Sequence[BedProfile], today: Rating | None, rows: int
+) -> None:
     shown_beds = [*beds, *(train_profiles(today) if today is not None else [])]
     low = min(float(bed.T.min()) for bed in shown_beds)
-    high = max(float(bed.T.max()) for bed in shown_beds)
+    high = max(max(float(bed.T.max()), bed.T_peak) for bed in shown_beds)
     span = max(high - low, 2.0)
     bounds = [_bound(state) for state in _temperature_limits(rating)]
     near = [bound for bound in bounds if low - REACH * span < bound < high + REACH * span]
     low, high = min([low, *near]), max([high, *near])
-    axes.set_ylim(low - 0.2 * (high - low), high + 0.07 * (high - low))
+    axes.set_ylim(low - (0.11 + 0.08 * rows) * (high - low), high + 0.07 * (high - low))
 
 
 def _temperature_limits(rating: Rating) -> list[LimitState]:
@@ -156,33 +164,50 @@ def _value(axes: Axes, x: float, y: float, offset: tuple[float, float], side: st
     )
 
 
-def _heats(axes: Axes, rating: Rating, beds: Sequence[BedProfile]) -> None:
-    """Heat of entry, gaps and effluent in a row under the curves, sign in words."""
+@dataclass(frozen=True)
+class HeatLabel:
+    """Heat of one place: its catalyst coordinate, text, alignment and row counted from below."""
+
+    x: float
+    text: str
+    side: Side
+    row: int
+
+
+def heat_labels(rating: Rating, beds: Sequence[BedProfile]) -> list[HeatLabel]:
+    """Heat of entry, gaps and effluent, sign in words; labels that would touch go into rows above."""
     total = float(beds[-1].catalyst[-1])
-    row, last_end = 0, -1.0
+    ends: list[float] = []
+    found = []
     for place, x in _places(beds):
         heat = rating.quantities.get(f"{place}.heat removed")
         if heat is None or heat.value is None:
             continue
-        value = shown(heat.value, heat.kind) or 0.0
-        side = "left" if place == "entry" else "right" if place == "effluent" else "center"
-        start = x / total - {"left": 0.0, "center": 0.055, "right": 0.11}[side]
-        row = 1 - row if start < last_end else 0
-        last_end = start + 0.12
+        side, before = HEAT_SIDES.get(place, ("center", LABEL_PART / 2))
+        start = x / total - before
+        row = next((i for i, end in enumerate(ends) if start > end), len(ends))
+        ends[row : row + 1] = [start + LABEL_PART]
+        found.append(HeatLabel(x, _heat_text(shown(heat.value, heat.kind) or 0.0), side, row))
+    return found
+
+
+def _heats(axes: Axes, labels: Sequence[HeatLabel]) -> None:
+    for label in labels:
+        aside = {"left": 3, "center": 0, "right": -3}[label.side]
         axes.annotate(
-            _heat_text(value),
-            (x, 0.0),
-            (3 if side == "left" else -3 if side == "right" else 0, 4 + 10 * row),
+            label.text,
+            (label.x, 0.0),
+            (aside, 4 + 10 * label.row),
             xycoords=("data", "axes fraction"),
             textcoords="offset points",
-            ha=side,
+            ha=label.side,
             va="bottom",
             fontsize=look.SMALL,
         )
 
 
 def _heat_text(megawatt: float) -> str:
-    size = f"{abs(megawatt):.3g} MW"
+    size = f"{abs(megawatt):.{2 if abs(megawatt) < 10 else 1}f} MW"
     if abs(megawatt) < 0.0005:
         return "0 MW"
     return f"{size} out" if megawatt > 0 else f"{size} in"

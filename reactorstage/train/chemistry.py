@@ -11,7 +11,13 @@ from reactorstage.case import units
 from reactorstage.chemistry.constants import R_GAS
 from reactorstage.chemistry.rate_law import Constant, RateLaw, RateLaws, rate_laws
 from reactorstage.chemistry.reaction import Equation, balance_message, parse_equation
-from reactorstage.chemistry.species import Species, SpeciesTable, inline_species, species_from_cantera, table_of
+from reactorstage.chemistry.species import (
+    Species,
+    SpeciesTable,
+    inline_species,
+    species_from_cantera,
+    table_of,
+)
 from reactorstage.errors import CaseProblems, Problem
 
 if TYPE_CHECKING:
@@ -41,7 +47,9 @@ def read_chemistry(case: Case) -> CaseChemistry:
     table = table_of([one for one in found.values() if one is not None])
     equations = {name: _equation(case, name, table, problems) for name in case.reactions}
     laws = [_law(case, name, equation, problems) for name, equation in equations.items() if equation]
-    checked = _attempt(case, problems, ("reactions",), lambda: rate_laws([law for law in laws if law], table.names))
+    checked = _attempt(
+        case, problems, ("reactions",), lambda: rate_laws([law for law in laws if law], table.names)
+    )
     if problems or checked is None:
         raise CaseProblems(problems)
     return CaseChemistry(
@@ -71,7 +79,9 @@ def _species(case: Case, name: str, problems: list[Problem]) -> Species | None:
     given = case.species[name]
     if given.gas_data is not None:
         spec = given.gas_data
-        return _attempt(case, problems, ("species", name, "gas data"), lambda: species_from_cantera(spec, name))
+        return _attempt(
+            case, problems, ("species", name, "gas data"), lambda: species_from_cantera(spec, name)
+        )
     capacity = given.heat_capacity
     assert given.formula is not None and capacity is not None and given.standard_pressure is not None
     assert given.enthalpy_of_formation is not None and given.entropy is not None
@@ -82,18 +92,24 @@ def _species(case: Case, name: str, problems: list[Problem]) -> Species | None:
         case,
         problems,
         ("species", name),
-        lambda: inline_species(name, formula, enthalpy, entropy, pressure, powers, window, source or "given in the case"),
+        lambda: inline_species(
+            name, formula, enthalpy, entropy, pressure, powers, window, source or "given in the case"
+        ),
     )
 
 
 def _equation(case: Case, name: str, table: SpeciesTable, problems: list[Problem]) -> Equation | None:
     path = ("reactions", name, "equation")
-    equation = _attempt(case, problems, path, lambda: parse_equation(case.reactions[name].equation, table.names))
+    equation = _attempt(
+        case, problems, path, lambda: parse_equation(case.reactions[name].equation, table.names)
+    )
     if equation is None:
         return None
     message = balance_message(equation, table)
     if message:
-        problems.append(case.problem(path, message, "correct the coefficients or the formulas of the species"))
+        problems.append(
+            case.problem(path, message, "correct the coefficients or the formulas of the species")
+        )
         return None
     return equation
 

@@ -26,7 +26,9 @@ def complete(programme: TrainProgramme, x: Array, internal: list[int]) -> Array:
     evaluation, _ = programme.start_mesh(start)
     if not evaluation.ok:
         return x
-    assert evaluation.cost_dx is not None and evaluation.margin is not None and evaluation.margin_dx is not None
+    assert (
+        evaluation.cost_dx is not None and evaluation.margin is not None and evaluation.margin_dx is not None
+    )
     slopes = evaluation.margin_dx[:, internal]
     held = np.flatnonzero(np.abs(slopes).max(axis=1) > 0.0)
     scale = np.abs(slopes[held]).max(axis=1, keepdims=True)

@@ -87,18 +87,24 @@ class Form:
 
 @dataclass(frozen=True)
 class Rows:
-    """Several linear forms at once: values = matrix @ base + const."""
+    """Several linear forms at once: values = matrix @ base[used] + const."""
 
+    used: NDArray[np.intp]
     matrix: Array
     const: Array
 
     @classmethod
-    def of(cls, forms: Sequence[Linear], size: int) -> Rows:
-        matrix = np.array([form.row(size) for form in forms]).reshape(len(forms), size)
-        return cls(matrix, np.array([form.const for form in forms]))
+    def of(cls, forms: Sequence[Linear]) -> Rows:
+        used = np.array(sorted({index for form in forms for index in form.terms}), dtype=np.intp)
+        place = {int(index): k for k, index in enumerate(used)}
+        matrix = np.zeros((len(forms), len(used)))
+        for row, form in enumerate(forms):
+            for index, coefficient in form.terms.items():
+                matrix[row, place[index]] = coefficient
+        return cls(used, matrix, np.array([form.const for form in forms]))
 
     def of_base(self, base: Array) -> Array:
         """Values and derivatives (M, 1 + D) from base (size, 1 + D)."""
-        out = self.matrix @ base
+        out = self.matrix @ base[self.used]
         out[:, 0] += self.const
         return out

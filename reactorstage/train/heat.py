@@ -118,7 +118,11 @@ def build_ladder(
     if problems:
         raise CaseProblems(problems)
     ladder = Ladder(hinge_start, internal_start)
-    cools = {name for name, level in (case.heat_levels.levels if case.heat_levels else {}).items() if level.cools_down_to is not None}
+    cools = {
+        name
+        for name, level in (case.heat_levels.levels if case.heat_levels else {}).items()
+        if level.cools_down_to is not None
+    }
     for place in layout.places:
         for device in place.devices:
             if device.levels == "unpriced":

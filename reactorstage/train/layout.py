@@ -10,8 +10,8 @@ from numpy.typing import NDArray
 
 from reactorstage.bed import train_pass as kernel
 from reactorstage.case.model import Number
-from reactorstage.train.evaluation import SplitGroup
 from reactorstage.train.chemistry import CaseChemistry
+from reactorstage.train.evaluation import SplitGroup
 from reactorstage.train.forms import Linear, at
 from reactorstage.train.inputs import InputBuilder
 
@@ -127,7 +127,8 @@ class _Writer:
             for name, row in zip(self.feeds, self.compositions, strict=True)
         }
         self.feed_temperature = {
-            name: inputs.number(f"feed {name}.temperature", feed.temperature) for name, feed in case.feeds.items()
+            name: inputs.number(f"feed {name}.temperature", feed.temperature)
+            for name, feed in case.feeds.items()
         }
         self.feed_flow = {
             name: inputs.number(f"feed {name}.flow", feed.flow, self._factor(name, feed.flow.kind))
@@ -214,7 +215,9 @@ class _Writer:
                 self._inject(step.feed, following)
                 injections.append((len(self.operations) - 1, step.feed))
             else:
-                devices.append(self._device(section, step, ("train", position, section.owner, number, step.kind)))
+                devices.append(
+                    self._device(section, step, ("train", position, section.owner, number, step.kind))
+                )
         if following.startswith("bed"):
             self._arrive(following, devices)
         last = len(self.operations) - 1
@@ -234,7 +237,9 @@ class _Writer:
             self.operations.append((kernel.SET_TEMPERATURE, outlet, -1, -1))
         elif step.heat is not None:
             sign, given = (-1.0 if step.kind == "heat" else 1.0), "heat"
-            heat = self.inputs.number(f"{section.owner}.heat {'added' if sign < 0 else 'removed'}", step.heat, sign)
+            heat = self.inputs.number(
+                f"{section.owner}.heat {'added' if sign < 0 else 'removed'}", step.heat, sign
+            )
             self.operations.append((kernel.REMOVE_HEAT, heat, -1, -1))
         else:
             self.operations.append((kernel.HOLD, -1, -1, -1))

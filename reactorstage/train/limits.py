@@ -69,7 +69,9 @@ def names_of(owner_and_quantity: str, layout: Layout) -> list[tuple[str, str]]:
     return [(one, f"{one}{dot}{quantity}") for one in owners]
 
 
-def _expand(case: Case, catalogue: Catalogue, label: str, limit: Limit, problems: list[Problem]) -> list[Bound]:
+def _expand(
+    case: Case, catalogue: Catalogue, label: str, limit: Limit, problems: list[Problem]
+) -> list[Bound]:
     bounds: list[Bound] = []
     path = ("limits", label, "of")
     everywhere = limit.of.startswith("every ")
@@ -182,7 +184,12 @@ def _implied(catalogue: Catalogue, ladder: Ladder, given: Sequence[Bound]) -> li
     for group in layout.splits:
         name = f"bed {group.rest_bed}.injected {group.feed}"
         if group.rest_bed and not _has(given, name):
-            bounds.append(Bound(_rule("no negative injection", f"bed {group.rest_bed}", name, "molar flow"), catalogue.find(name)))
+            bounds.append(
+                Bound(
+                    _rule("no negative injection", f"bed {group.rest_bed}", name, "molar flow"),
+                    catalogue.find(name),
+                )
+            )
     for name, form_ in ladder.rows:
         owner = name.partition(",")[0]
         bounds.append(Bound(_rule("heat ladder", owner, name, "power"), Form("power", form_)))
@@ -191,12 +198,23 @@ def _implied(catalogue: Catalogue, ladder: Ladder, given: Sequence[Bound]) -> li
 
 def _has(given: Sequence[Bound], quantity: str) -> bool:
     """Whether a limit of the case keeps a quantity at or above zero already."""
-    return any(b.row.quantity == quantity and b.row.direction == "at least" and b.row.bound >= 0.0 for b in given)
+    return any(
+        b.row.quantity == quantity and b.row.direction == "at least" and b.row.bound >= 0.0 for b in given
+    )
 
 
 def _rule(label: str, owner: str, quantity: str, kind: str) -> LimitRow:
     return LimitRow(
-        label, owner, quantity, "at least", 0.0, 0.0, kind, scale_of(kind, 0.0), step_of(kind, 0.0), implied=True
+        label,
+        owner,
+        quantity,
+        "at least",
+        0.0,
+        0.0,
+        kind,
+        scale_of(kind, 0.0),
+        step_of(kind, 0.0),
+        implied=True,
     )
 
 

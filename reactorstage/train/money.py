@@ -37,7 +37,9 @@ def _price(case: Case, catalogue: Catalogue, label: str, problems: list[Problem]
     price = case.prices[label]
     if label in RESERVED or label.startswith("heat of "):
         problems.append(
-            case.problem(("prices", label), f"{label!r} is a name that money uses itself", "choose another label", True)
+            case.problem(
+                ("prices", label), f"{label!r} is a name that money uses itself", "choose another label", True
+            )
         )
         return Linear()
     sign, raw, key = (1.0, price.costs, "costs") if price.costs is not None else (-1.0, price.earns, "earns")

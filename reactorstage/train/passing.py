@@ -86,7 +86,16 @@ class Pass:
         layout = self.layout
         out = np.empty((layout.rows, 1 + du.shape[1]))
         code, reached, depth, evaluations, steps = train_pass(
-            self.chemistry, self.beds, layout.operations, layout.compositions, u, du, tolerance, frozen, stages, out
+            self.chemistry,
+            self.beds,
+            layout.operations,
+            layout.compositions,
+            u,
+            du,
+            tolerance,
+            frozen,
+            stages,
+            out,
         )
         failure = "" if code == status.DONE else f"{self._place(reached, depth)}: {SENTENCES[code]}"
         return Outcome(out, stages, code, failure, reached, evaluations, steps)
@@ -98,7 +107,9 @@ class Pass:
         place = next((p for p in self.layout.places if p.first <= operation <= p.last), None)
         return place.owner if place is not None else "the train"
 
-    def sample(self, outcome: Outcome, bed: BedPlace, u: Array, points: int) -> tuple[Array, Array, Array, Array, Array]:
+    def sample(
+        self, outcome: Outcome, bed: BedPlace, u: Array, points: int
+    ) -> tuple[Array, Array, Array, Array, Array]:
         """w, T, p (N,), F (N, S), r (N, R) along a bed, N about `points`."""
         b = bed.number - 1
         count = int(outcome.stages.counts[b])
@@ -114,6 +125,19 @@ class Pass:
         work = work_space(R, S, self.chemistry.member.shape[1])
         first = u[bed.inputs : bed.inputs + 3]
         sample_bed(
-            self.chemistry, self.beds, b, row, outcome.out, *first, outcome.stages, per_step, work, w, T, p, F, r
+            self.chemistry,
+            self.beds,
+            b,
+            row,
+            outcome.out,
+            *first,
+            outcome.stages,
+            per_step,
+            work,
+            w,
+            T,
+            p,
+            F,
+            r,
         )
         return w, T, p, F, r

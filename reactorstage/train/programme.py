@@ -5,6 +5,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from functools import cached_property
 from typing import TYPE_CHECKING, Any
@@ -15,8 +16,9 @@ from numpy.typing import NDArray
 from reactorstage.bed.data import Beds
 from reactorstage.bed.pack import ergun_terms, pack_beds, pack_chemistry
 from reactorstage.errors import CaseProblems, ComputationError
-from reactorstage.train.evaluation import Evaluation, FreeNumber, LimitRow, SplitGroup
 from reactorstage.train.chemistry import CaseChemistry, read_chemistry
+from reactorstage.train.equilibria import Equilibrium, equilibria_of
+from reactorstage.train.evaluation import Evaluation, FreeNumber, LimitRow, SplitGroup
 from reactorstage.train.forms import Form, Linear, Rows, at, total
 from reactorstage.train.heat import Ladder, build_ladder
 from reactorstage.train.inputs import InputBuilder, InputMap
@@ -56,16 +58,25 @@ class Model:
 
     @property
     def size(self) -> int:
-        return self.x_start + len(self.numbers) + len(self.ladder.hinges)
+        return self.x_start + len(self.numbers) + len(self.ladder.hinges) + len(self.catalogue.equilibria)
 
     @cached_property
     def hinge_rows(self) -> tuple[Rows, Rows]:
-        n = self.x_start + len(self.numbers)
         hinges = self.ladder.hinges
-        return Rows.of([one.form for one in hinges], n), Rows.of([one.width for one in hinges], n)
+        return Rows.of([one.form for one in hinges]), Rows.of([one.width for one in hinges])
 
-    def base(self, out: Array, u: Array, du: Array, x: Array) -> Array:
-        """The base vector and its derivatives (size, 1 + D); D = 0 when out has values only."""
+    @cached_property
+    def wanted_equilibria(self) -> tuple[Equilibrium, ...]:
+        """Equilibrium temperatures that a limit or the aim needs; a rating finds all of them."""
+        forms = [self.aim.top, *(bound.form.top for bound in self.bounds)]
+        named = {index for form in forms for index in form.terms}
+        return tuple(one for one in self.catalogue.equilibria if one.index in named)
+
+    def base(self, out: Array, u: Array, du: Array, x: Array, equilibria: Sequence[Equilibrium]) -> Array:
+        """The base vector and its derivatives (size, 1 + D); D = 0 when out has values only.
+
+        Only the given equilibrium temperatures are found; the others are left at zero.
+        """
         D = out.shape[1] - 1
         base = np.zeros((self.size, 1 + D))
         rows, end = self.layout.rows, self.x_start + len(x)
@@ -77,7 +88,9 @@ class Model:
             base[self.x_start : end, 1:] = np.eye(len(x))
         if self.ladder.hinges:
             forms, widths = self.hinge_rows
-            base[end:] = _hinged(forms.of_base(base[:end]), widths.of_base(base[:end]))
+            base[end : end + len(self.ladder.hinges)] = _hinged(forms.of_base(base), widths.of_base(base))
+        for one in equilibria:
+            base[one.index] = one.temperature(self.chemistry, self.layout, base)
         return base
 
 
@@ -101,10 +114,9 @@ class TrainProgramme:
         self.numbers: tuple[FreeNumber, ...] = self.model.numbers
         self.limits: tuple[LimitRow, ...] = tuple(bound.row for bound in self.model.bounds)
         self.splits: tuple[SplitGroup, ...] = self.model.layout.splits
-        size = self.model.size
-        self._top = Rows.of([bound.margin() for bound in self.model.bounds], size)
-        self._weight = Rows.of([bound.weight() for bound in self.model.bounds], size)
-        self._aim = Rows.of([self.model.aim.top, self.model.aim.bottom or Linear(const=1.0)], size)
+        self._top = Rows.of([bound.margin() for bound in self.model.bounds])
+        self._weight = Rows.of([bound.weight() for bound in self.model.bounds])
+        self._aim = Rows.of([self.model.aim.top, self.model.aim.bottom or Linear(const=1.0)])
         self._sign = 1.0 if case.aim.direction == "least" else -1.0
 
     @property
@@ -157,7 +169,7 @@ class TrainProgramme:
     def _evaluation(self, outcome: Outcome, u: Array, du: Array, x: Array) -> Evaluation:
         if outcome.failure:
             return Evaluation(outcome.failure, work=outcome.evaluations)
-        base = self.model.base(outcome.out, u, du, x)
+        base = self.model.base(outcome.out, u, du, x, self.model.wanted_equilibria)
         margin, weight = self._top.of_base(base), self._weight.of_base(base)
         aim = self._aim.of_base(base)
         if not (np.isfinite(margin).all() and np.isfinite(aim).all() and aim[1, 0] != 0.0):
@@ -209,9 +221,15 @@ class _Draft:
         slacks = self._slack_count(soft, counted)
         ladder = self._ladder(x_start, users, len(counted.internal) + slacks)
         internal = [
-            FreeNumber(name, 0.0, 0.0, self._most_heat(), "power", role="internal") for name in ladder.internal
+            FreeNumber(name, 0.0, 0.0, self._most_heat(), "power", role="internal")
+            for name in ladder.internal
         ]
         catalogue = Catalogue(self.layout, self.chemistry, {}, self._levels(ladder))
+        slack_count = sum(
+            bound.row.soft_price is not None for bound in expand_limits(self.case, catalogue, ladder)
+        )
+        first = x_start + users + len(internal) + slack_count + len(ladder.hinges)
+        catalogue = replace(catalogue, equilibria=equilibria_of(self.layout, self.chemistry, first))
         bounds = expand_limits(self.case, catalogue, ladder)
         softened, slack_numbers, price = _soften(bounds, x_start + users + len(internal))
         numbers = (*self.inputs.numbers, *internal, *slack_numbers)
@@ -254,7 +272,12 @@ class _Draft:
                 if device.outlet >= 0:
                     form = self.inputs.form(device.outlet)
                     ends = [
-                        form.const + sum(c * (n.low, n.high)[k] for i, c in form.terms.items() for n in [self.inputs.numbers[i]])
+                        form.const
+                        + sum(
+                            c * (n.low, n.high)[k]
+                            for i, c in form.terms.items()
+                            for n in [self.inputs.numbers[i]]
+                        )
                         for k in (0, 1)
                     ]
                     spans[device.outlet] = (min(ends), max(ends))
@@ -277,7 +300,9 @@ class _Draft:
         except LookupError as error:
             raise CaseProblems([self.case.problem(("aim",), str(error.args[0]))]) from error
         if form.absent:
-            raise CaseProblems([self.case.problem(("aim",), f"{self.case.aim.quantity} does not exist: {form.reason}")])
+            raise CaseProblems(
+                [self.case.problem(("aim",), f"{self.case.aim.quantity} does not exist: {form.reason}")]
+            )
         return form
 
     def _named(self, bounds: list[Bound]) -> Array:
@@ -313,7 +338,9 @@ def _soften(bounds: list[Bound], first: int) -> tuple[list[Bound], list[FreeNumb
 def _beds(case: Case, chemistry: CaseChemistry, layout: Layout) -> Beds:
     given = [section.bed for section in case.train if section.bed is not None]
     sizes = [
-        ergun_terms(bed.diameter, bed.bulk_density, bed.void_fraction, bed.equivalent_size, case.fluid.viscosity)
+        ergun_terms(
+            bed.diameter, bed.bulk_density, bed.void_fraction, bed.equivalent_size, case.fluid.viscosity
+        )
         if bed.diameter and bed.bulk_density and bed.void_fraction and bed.equivalent_size
         else (0.0, 0.0)
         for bed in given

@@ -11,15 +11,10 @@ from dataclasses import dataclass
 from difflib import get_close_matches
 from functools import lru_cache
 
-import numpy as np
-from numpy.typing import NDArray
-
-from reactorstage.chemistry.reaction import data_range, equilibrium_temperature, heat_of_reaction, ln_K, ln_Q
 from reactorstage.train.chemistry import CaseChemistry
+from reactorstage.train.equilibria import Equilibrium
 from reactorstage.train.forms import Form, Linear, at, total
 from reactorstage.train.layout import BedPlace, Layout, Place
-
-Array = NDArray[np.float64]
 
 
 @dataclass(frozen=True)
@@ -30,12 +25,15 @@ class Catalogue:
     chemistry: CaseChemistry
     money: dict[str, Form]
     levels: dict[str, Form]
+    equilibria: tuple[Equilibrium, ...] = ()
 
     def find(self, name: str) -> Form:
         """The form; LookupError says what is unknown and what is near."""
         owner, quantity = self.parts(name.strip())
         if not quantity:
-            raise LookupError(f"{name!r} is not a quantity; write owner.quantity, as in 'bed 1.exit temperature'")
+            raise LookupError(
+                f"{name!r} is not a quantity; write owner.quantity, as in 'bed 1.exit temperature'"
+            )
         for pattern in PATTERNS:
             if pattern.owner == owner.split(" ", 1)[0]:
                 words = pattern.matches(quantity, self)
@@ -84,7 +82,9 @@ class Catalogue:
         self.subject(owner)
         known = [name[len(owner) + 1 :] for name in self.names() if name.startswith(f"{owner}.")]
         near = get_close_matches(quantity, known, n=3, cutoff=0.5)
-        return f"{owner} has no quantity {quantity!r}" + (f"; did you mean {' or '.join(map(repr, near))}?" if near else "")
+        return f"{owner} has no quantity {quantity!r}" + (
+            f"; did you mean {' or '.join(map(repr, near))}?" if near else ""
+        )
 
 
 def _position(item: Place | BedPlace) -> int:
@@ -180,7 +180,9 @@ class Pattern:
         if found is None:
             return None
         slots = re.findall("<(.*?)>", self.words)
-        ok = all(value in self._known(slot, catalogue) for slot, value in zip(slots, found.groups(), strict=True))
+        ok = all(
+            value in self._known(slot, catalogue) for slot, value in zip(slots, found.groups(), strict=True)
+        )
         return found.groups() if ok else None
 
     def listed(self, catalogue: Catalogue) -> Iterator[str]:
@@ -209,16 +211,22 @@ def _places(words: str, make: Callable[..., Form]) -> list[Pattern]:
 
 
 PATTERNS: tuple[Pattern, ...] = (
-    *_places("inlet temperature", lambda c, p: Form("temperature", c.layout.temperature(_place_before(c, p)))),
+    *_places(
+        "inlet temperature", lambda c, p: Form("temperature", c.layout.temperature(_place_before(c, p)))
+    ),
     *_places("temperature after injection", _after_injection),
     *_places("temperature after exchanger", _after_exchanger),
     *_places("exit temperature", lambda c, p: Form("temperature", c.layout.temperature(_exit_of(p)))),
     *_places("heat removed", lambda c, p: Form("power", heat_of_place(c.layout, p))),
     *_places("flow", lambda c, p: Form("molar flow", c.layout.total_flow(_exit_of(p)))),
-    *_places("flow of <species>", lambda c, p, s: Form("molar flow", c.layout.flow(_exit_of(p), c.species(s)))),
+    *_places(
+        "flow of <species>", lambda c, p, s: Form("molar flow", c.layout.flow(_exit_of(p), c.species(s)))
+    ),
     *_places(
         "mole fraction of <species>",
-        lambda c, p, s: _ratio("fraction", c.layout.flow(_exit_of(p), c.species(s)), c.layout.total_flow(_exit_of(p)), "flow"),
+        lambda c, p, s: _ratio(
+            "fraction", c.layout.flow(_exit_of(p), c.species(s)), c.layout.total_flow(_exit_of(p)), "flow"
+        ),
     ),
     *_places(
         "pressure",
@@ -234,7 +242,9 @@ PATTERNS: tuple[Pattern, ...] = (
     Pattern(
         "bed",
         "rise",
-        lambda c, b: Form("temperature difference", c.layout.temperature(b.exit) - c.layout.temperature(b.inlet)),
+        lambda c, b: Form(
+            "temperature difference", c.layout.temperature(b.exit) - c.layout.temperature(b.inlet)
+        ),
     ),
     Pattern("bed", "inlet pressure", lambda c, b: Form("pressure", c.layout.pressure(b.inlet))),
     Pattern("bed", "exit pressure", lambda c, b: Form("pressure", c.layout.pressure(b.exit))),
@@ -245,13 +255,23 @@ PATTERNS: tuple[Pattern, ...] = (
     ),
     Pattern("bed", "injected <feed>", _injected),
     Pattern("bed", "inlet flow", lambda c, b: Form("molar flow", c.layout.total_flow(b.inlet))),
-    Pattern("bed", "inlet flow of <species>", lambda c, b, s: Form("molar flow", c.layout.flow(b.inlet, c.species(s)))),
-    Pattern("bed", "exit flow of <species>", lambda c, b, s: Form("molar flow", c.layout.flow(b.exit, c.species(s)))),
+    Pattern(
+        "bed",
+        "inlet flow of <species>",
+        lambda c, b, s: Form("molar flow", c.layout.flow(b.inlet, c.species(s))),
+    ),
+    Pattern(
+        "bed",
+        "exit flow of <species>",
+        lambda c, b, s: Form("molar flow", c.layout.flow(b.exit, c.species(s))),
+    ),
     Pattern("bed", "made <species>", lambda c, b, s: Form("molar flow", _made(c, b, s))),
     Pattern(
         "bed",
         "inlet ratio <species>/<species>",
-        lambda c, b, x, y: _ratio("ratio", c.layout.flow(b.inlet, c.species(x)), c.layout.flow(b.inlet, c.species(y)), y),
+        lambda c, b, x, y: _ratio(
+            "ratio", c.layout.flow(b.inlet, c.species(x)), c.layout.flow(b.inlet, c.species(y)), y
+        ),
     ),
     Pattern(
         "bed",
@@ -266,13 +286,22 @@ PATTERNS: tuple[Pattern, ...] = (
     Pattern("bed", "depth at 10 % of rise", lambda c, b: _depth(c, b, 2)),
     Pattern("bed", "depth at 50 % of rise", lambda c, b: _depth(c, b, 3)),
     Pattern("bed", "depth at 90 % of rise", lambda c, b: _depth(c, b, 4)),
-    Pattern("train", "conversion of <species>", lambda c, _, s: _ratio("fraction", _train_made(c, s) * -1.0, fed(c, s), s)),
+    Pattern("bed", "approach to equilibrium of <reaction>", lambda c, b, r: _approach(c, b, r)),
+    Pattern(
+        "train",
+        "conversion of <species>",
+        lambda c, _, s: _ratio("fraction", _train_made(c, s) * -1.0, fed(c, s), s),
+    ),
     Pattern(
         "train",
         "selectivity to <species> from <species>",
         lambda c, _, p, s: _ratio("fraction", _train_made(c, p), _train_made(c, s) * -1.0, f"{s} converted"),
     ),
-    Pattern("train", "overall ratio <species>/<species>", lambda c, _, x, y: _ratio("ratio", fed(c, x), fed(c, y), y)),
+    Pattern(
+        "train",
+        "overall ratio <species>/<species>",
+        lambda c, _, x, y: _ratio("ratio", fed(c, x), fed(c, y), y),
+    ),
     Pattern("train", "made <species>", lambda c, _, s: Form("molar flow", _train_made(c, s))),
     Pattern("train", "catalyst", lambda c, _: Form("mass", _catalyst(c))),
     Pattern("train", "pressure drop", lambda c, _: Form("pressure difference", _train_drop(c))),
@@ -280,7 +309,9 @@ PATTERNS: tuple[Pattern, ...] = (
     Pattern("train", "number of coolers", lambda c, _: Form("count", Linear(const=_coolers(c)))),
     Pattern("train", "number of cold shots", lambda c, _: Form("count", Linear(const=_cold_shots(c)))),
     Pattern("feed", "flow", lambda c, f: Form("molar flow", c.layout.input(c.layout.feed_flow[f]))),
-    Pattern("feed", "temperature", lambda c, f: Form("temperature", c.layout.input(c.layout.feed_temperature[f]))),
+    Pattern(
+        "feed", "temperature", lambda c, f: Form("temperature", c.layout.input(c.layout.feed_temperature[f]))
+    ),
     Pattern("level", "heat", lambda c, level: c.levels[level]),
     Pattern("money", "<term>", lambda c, _, term: c.money[term]),
 )
@@ -290,20 +321,12 @@ def _depth(c: Catalogue, bed: BedPlace, which: int) -> Form:
     return Form("fraction", c.layout.extra(bed.number - 1, which), reason="no rise")
 
 
-def approach(chemistry: CaseChemistry, reaction: int, F: Array, p: float, T: float) -> float | None:
-    """Equilibrium temperature at this composition minus T [K]; None where the quotient does not exist.
-
-    Positive while the forward reaction remains, whatever the sign of its heat.
-    """
-    row = chemistry.laws.nu[reaction]
-    if (F[row != 0.0] <= 0.0).any():
-        return None
-    quotient = float(ln_Q(row[None, :], F, p)[0])
-    found = equilibrium_temperature(chemistry.table, row, quotient, T)
-    if found is None:
-        return None
-    exothermic = float(heat_of_reaction(chemistry.table, row[None, :], T)[0]) <= 0.0
-    return found - T if exothermic else T - found
-
-
-__all__ = ["Catalogue", "approach", "at", "data_range", "fed", "heat_of_place", "ln_K"]
+def _approach(c: Catalogue, bed: BedPlace, reaction: str) -> Form:
+    """Equilibrium temperature at the exit composition less the exit temperature; positive while forward remains."""
+    number = c.chemistry.reactions.index(reaction)
+    kind, why = "temperature difference", "a species of the reaction is absent"
+    for one in c.equilibria:
+        if one.bed == bed.owner and one.reaction == number:
+            form = at(one.index) - c.layout.temperature(bed.exit)
+            return Form(kind, form if one.exothermic else form * -1.0, reason=why)
+    return Form(kind, Linear(), reason="the reaction is not reversible", absent=True)

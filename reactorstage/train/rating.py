@@ -9,10 +9,10 @@ from numpy.typing import NDArray
 
 from reactorstage.chemistry.thermo import h
 from reactorstage.train.passing import Outcome
-from reactorstage.train.quantities import approach
 from reactorstage.train.result import HeatSale, LimitState, Profile, Rating, StepState, Value
 
 if TYPE_CHECKING:
+    from reactorstage.train.forms import Form
     from reactorstage.train.limits import Bound
     from reactorstage.train.programme import Model, TrainProgramme
 
@@ -30,7 +30,8 @@ def rate(programme: TrainProgramme, x: Array, dense: bool, tolerance: float) -> 
     model = programme.model
     u, du = model.inputs.values(x)
     outcome = model.passing.adaptive(u, du[:, :0], tolerance)
-    base = model.base(outcome.out, u, du, x)[:, 0]
+    wanted = () if outcome.failure else model.catalogue.equilibria
+    base = model.base(outcome.out, u, du, x, wanted)[:, 0]
     profiles = _profiles(model, outcome, u, dense)
     quantities = _quantities(model, outcome, base)
     limits = () if outcome.failure else tuple(_limit(bound, base) for bound in model.bounds)
@@ -40,7 +41,6 @@ def rate(programme: TrainProgramme, x: Array, dense: bool, tolerance: float) -> 
         status = "inside all limits" if all(one.met or one.soft for one in limits) else "limits broken"
         atoms, energy = closure(model, base)
         quantities |= _closures(atoms, energy)
-        quantities |= _approaches(model, base)
     quantities |= _outside(model, profiles)
     roles = _roles(model, base) if not outcome.failure else ("", "", "", ())
     return Rating(
@@ -52,7 +52,9 @@ def rate(programme: TrainProgramme, x: Array, dense: bool, tolerance: float) -> 
         profiles=profiles,
         steps=_steps(model, base, outcome),
         limits=limits,
-        money={} if outcome.failure else {k: float(f.top.value(base)) for k, f in model.catalogue.money.items()},
+        money={}
+        if outcome.failure
+        else {k: float(f.top.value(base)) for k, f in model.catalogue.money.items()},
         heat=() if outcome.failure else _heat(model, base),
         species=model.chemistry.species,
         reactions=model.chemistry.reactions,
@@ -83,11 +85,13 @@ def _profiles(model: Model, outcome: Outcome, u: Array, dense: bool) -> tuple[Pr
 
 def _quantities(model: Model, outcome: Outcome, base: Array) -> dict[str, Value]:
     values: dict[str, Value] = {}
-    listed = [*model.catalogue.names(), *(b.row.quantity for b in model.bounds if b.row.label != "heat ladder")]
+    listed = [
+        *model.catalogue.names(),
+        *(b.row.quantity for b in model.bounds if b.row.label != "heat ladder"),
+    ]
     for name in dict.fromkeys(listed):
         form = model.catalogue.find(name)
-        used = [i // model.layout.width for i in form.top.terms if i < len(model.layout.operations) * model.layout.width]
-        if outcome.failure and (max(used, default=outcome.reached) >= outcome.reached):
+        if outcome.failure and not _reached(model, form, outcome.reached):
             values[name] = Value(None, form.kind, "not reached")
             continue
         value = form.value(base)
@@ -95,23 +99,20 @@ def _quantities(model: Model, outcome: Outcome, base: Array) -> dict[str, Value]
     return values
 
 
+def _reached(model: Model, form: Form, reached: int) -> bool:
+    """Whether a form reads only records of operations that were finished, or inputs."""
+    records, rows, inputs = (
+        len(model.layout.operations) * model.layout.width,
+        model.layout.rows,
+        model.x_start,
+    )
+    last = reached * model.layout.width
+    ok = [i < last if i < records else rows <= i < inputs for i in form.top.terms]
+    return bool(ok) and all(ok)
+
+
 def _closures(atoms: float, energy: float) -> dict[str, Value]:
     return {"train.atom closure": Value(atoms, "number"), "train.energy closure": Value(energy, "number")}
-
-
-def _approaches(model: Model, base: Array) -> dict[str, Value]:
-    """Approach to equilibrium of every reversible reaction at every bed exit."""
-    values: dict[str, Value] = {}
-    S, width = model.layout.species, model.layout.width
-    for bed in model.layout.beds:
-        record = base[bed.exit * width : (bed.exit + 1) * width]
-        for r, name in enumerate(model.chemistry.reactions):
-            if not model.chemistry.equations[r].reversible:
-                continue
-            found = approach(model.chemistry, r, record[:S], record[S + 1], record[S + 2])
-            reason = "" if found is not None else "a species of the reaction is absent"
-            values[f"{bed.owner}.approach to equilibrium of {name}"] = Value(found, "temperature difference", reason)
-    return values
 
 
 def _outside(model: Model, profiles: tuple[Profile, ...]) -> dict[str, Value]:
@@ -122,7 +123,10 @@ def _outside(model: Model, profiles: tuple[Profile, ...]) -> dict[str, Value]:
             if reaction.valid is None:
                 continue
             out = np.zeros(len(profile.w), dtype=bool)
-            for window, along in ((reaction.valid.temperature, profile.T), (reaction.valid.pressure, profile.p)):
+            for window, along in (
+                (reaction.valid.temperature, profile.T),
+                (reaction.valid.pressure, profile.p),
+            ):
                 if window is not None:
                     out |= (along < window[0] - 1e-9) | (along > window[1] + 1e-9)
             share = _share_of_catalyst(profile.w, out)
@@ -206,7 +210,9 @@ def _steps(model: Model, base: Array, outcome: Outcome) -> tuple[StepState, ...]
 def _heat(model: Model, base: Array) -> tuple[HeatSale, ...]:
     prices = _level_prices(model)
     return tuple(
-        HeatSale(owner, level, form.value(base), form.value(base) * prices[level], model.ladder.heating[level])
+        HeatSale(
+            owner, level, form.value(base), form.value(base) * prices[level], model.ladder.heating[level]
+        )
         for (owner, level), form in model.ladder.given.items()
     )
 
@@ -236,7 +242,13 @@ def _roles(model: Model, base: Array) -> tuple[str, str, str, tuple[str, ...]]:
             break
     if not main:
         main = max(consumed, key=lambda name: -made[name] / given[name], default="")
-    partners = {n for r in range(len(nu)) if main and nu[r, names.index(main)] < 0 for s, n in enumerate(names) if nu[r, s] < 0}
+    partners = {
+        n
+        for r in range(len(nu))
+        if main and nu[r, names.index(main)] < 0
+        for s, n in enumerate(names)
+        if nu[r, s] < 0
+    }
     excess = max((n for n in consumed if n != main and n in partners), key=lambda n: given[n], default="")
     produced = sorted((n for n in names if made[n] > 1e-9 * sum(given.values())), key=lambda n: -made[n])
     return main, excess, produced[0] if produced else "", tuple(produced[1:])
@@ -245,9 +257,13 @@ def _roles(model: Model, base: Array) -> tuple[str, str, str, tuple[str, ...]]:
 def _notes(model: Model, quantities: dict[str, Value]) -> tuple[str, ...]:
     notes = [f"Heat of {owner} carries no price." for owner in dict.fromkeys(model.ladder.unpriced)]
     outside = [
-        (name, value.value) for name, value in quantities.items() if ".outside validity of " in name and value.value
+        (name, value.value)
+        for name, value in quantities.items()
+        if ".outside validity of " in name and value.value
     ]
     for name, share in outside:
         owner, _, rest = name.partition(".outside validity of ")
-        notes.append(f"{100.0 * float(share or 0.0):.0f} % of {owner} lies outside the stated validity of {rest}.")
+        notes.append(
+            f"{100.0 * float(share or 0.0):.0f} % of {owner} lies outside the stated validity of {rest}."
+        )
     return tuple(notes)

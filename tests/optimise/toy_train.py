@@ -1,4 +1,4 @@
-"""A four-bed train small enough for closed formulas, with splits, inlets, two ratios of everything.
+"""A four-bed train of closed formulas: a split feed, inlet temperatures, ratio limits, coolers, money.
 
 Invented numbers, of the size of a vapour-phase alkylation. Derivatives by complex step, so exact.
 """
@@ -53,9 +53,20 @@ def temperature(label: str, bed: int, what: str, direction: str, bound: float, k
     return LimitRow(label, owner, f"{owner}.{what}", direction, bound, keep_away, "temperature", 10.0, 1.0)
 
 
+def share(bed: int) -> FreeNumber:
+    name = f"bed {bed}.injected ethylene"
+    kind = "molar flow"
+    return FreeNumber(name, ETHYLENE / 4, 0.0, ETHYLENE, kind, "split", "ethylene", bed, ETHYLENE)
+
+
+def inlet_temperature(bed: int) -> FreeNumber:
+    name = f"bed {bed}.inlet temperature"
+    return FreeNumber(name, 657.0, 623.0, 693.0, "temperature", "inlet temperature", bed=bed)
+
+
 @dataclass(frozen=True)
-class Toys:
-    """Prices per MWh and kmol of the toy train, and what its mesh does wrong (relative)."""
+class Prices:
+    """Per MWh and kmol; mesh_error is what a mesh made elsewhere does to exit temperatures."""
 
     heat: float = 21.0
     furnace: float = 34.0
@@ -68,42 +79,15 @@ class ToyTrain:
 
     def __init__(
         self,
-        prices: Toys | None = None,
+        prices: Prices | None = None,
         *,
         ratio: float = 11.6,
         slip: float = 0.35,
         exit_limit: float = 697.0,
         delay: Callable[[], None] = lambda: None,
     ):
-        self.prices = prices or Toys()
-        self.numbers = tuple(
-            [
-                FreeNumber(
-                    f"bed {k}.injected ethylene",
-                    ETHYLENE / 4,
-                    0.0,
-                    ETHYLENE,
-                    "molar flow",
-                    "split",
-                    "ethylene",
-                    k,
-                    ETHYLENE,
-                )
-                for k in (1, 2, 3)
-            ]
-            + [
-                FreeNumber(
-                    f"bed {k}.inlet temperature",
-                    657.0,
-                    623.0,
-                    693.0,
-                    "temperature",
-                    "inlet temperature",
-                    bed=k,
-                )
-                for k in (1, 2, 3, 4)
-            ]
-        )
+        self.prices = prices or Prices()
+        self.numbers = (*(share(k) for k in (1, 2, 3)), *(inlet_temperature(k) for k in (1, 2, 3, 4)))
         self.limits = tuple(limit_rows(ratio, slip, exit_limit))
         self.splits = (SplitGroup("ethylene", (0, 1, 2), ETHYLENE, 0.0, 4),)
         self._delay = delay
@@ -152,14 +136,14 @@ class ToyTrain:
         split = np.append(x[:3], ETHYLENE - x[:3].sum())
         inlet = x[3:]
         slip, benzene, ethylbenzene, deb = 0.0, BENZENE, 0.0, 0.0
-        exits, at_inlet, ratios = [], [], []
+        exits, at_inlet, excess = [], [], []
         for k in range(BEDS):
             ethylene = split[k] + slip
-            ratios.append(benzene)
+            excess.append(benzene)
             at_inlet.append(ethylene)
             rate = 1.1e-3 * np.exp(-7900.0 * (1 / (inlet[k] + 14.0) - 1 / 673.0))
             converted = ethylene * (1 - np.exp(-rate * CATALYST[k]))
-            T = inlet[k] + 2.15 * converted * (1 + 0.001 * ratios[k] / BENZENE)
+            T = inlet[k] + 2.15 * converted * (1 + 0.001 * excess[k] / BENZENE)
             error = self.prices.mesh_error * (1 + np.sin(0.2 * (T - 1.01 * mesh[3 + k])))
             T = T + error * converted
             made = 1.15e-3 * np.exp(-10500.0 * (1 / (T - 10) - 1 / 673.0)) * (ethylbenzene + 0.5 * converted)
@@ -173,10 +157,10 @@ class ToyTrain:
         furnace = HEAT_FLOW * (inlet[0] - 523.0)
         money = self.prices.heat * sum(gaps) + self.prices.furnace * furnace
         cost = (money / 1e6 + self.prices.deb * 3.6 * deb) / 3600.0
-        return np.array([cost, *self._margins(split, inlet, exits, at_inlet, ratios, gaps, slip)])
+        return np.array([cost, *self._margins(split, inlet, exits, at_inlet, excess, gaps, slip)])
 
     def _margins(
-        self, split: Any, inlet: Any, exits: Any, at_inlet: Any, ratios: Any, gaps: Any, slip: Any
+        self, split: Any, inlet: Any, exits: Any, at_inlet: Any, excess: Any, gaps: Any, slip: Any
     ) -> list[Any]:
         values: dict[str, tuple[Any, Any]] = {"effluent.flow of C2H4": (slip, 1.0)}
         for k in range(BEDS):
@@ -184,7 +168,7 @@ class ToyTrain:
             values[f"bed {k + 1}.inlet temperature"] = (inlet[k], 1.0)
             values[f"bed {k + 1}.rise"] = (exits[k] - inlet[k], 1.0)
             values[f"bed {k + 1}.injected ethylene"] = (split[k], 1.0)
-            values[f"bed {k + 1}.inlet ratio"] = (ratios[k], at_inlet[k])
+            values[f"bed {k + 1}.inlet ratio"] = (excess[k], at_inlet[k])
         for k in range(BEDS - 1):
             values[f"gap {k + 1}.heat removed"] = (gaps[k], 1.0)
         margins, weights = [], []

@@ -34,8 +34,9 @@ def row(
 class Toy:
     """A programme from plain functions: each gives a value and its gradient as lists.
 
-    fails(x) gives the sentence of a failure or an empty text; frozen_fails the same on a mesh made
-    elsewhere; mesh_error(x, mesh) is added to the cost, so that a new mesh has something to mend.
+    fails(x) gives the sentence of a failure or an empty text; frozen_fails(x, mesh) the same on a mesh
+    (which is the x where it was made); mesh_error(x, mesh) is added to the cost, so that a new mesh has
+    something to mend. delay is called before each evaluation.
     """
 
     def __init__(
@@ -244,3 +245,32 @@ def hs100() -> Toy:
     scales = [100.0, 100.0, 100.0, 10.0]
     limits = [(row(f"g{k + 1}", scale=scales[k]), g) for k, g in enumerate((one, two, three, four))]
     return Toy(box([1.0, 2.0, 0.0, 4.0, 0.0, 1.0, 1.0], -10.0, 10.0), cost, limits)
+
+
+def corner() -> Toy:
+    """Least -x1 - x2 under x1 <= 1, x2 <= 1, x1 + x2 <= 2: three limits meet in (1, 1)."""
+    limits = [
+        (row("first"), linear(1.0, -1.0, 0.0)),
+        (row("second"), linear(1.0, 0.0, -1.0)),
+        (row("sum"), linear(2.0, -1.0, -1.0)),
+    ]
+    return Toy(box([0.2, 0.5], 0.0, 3.0), linear(0.0, -1.0, -1.0), limits)
+
+
+def hump(x: Array) -> Values:
+    """Two basins: near 0.195 (lower) and near 0.895 in x1."""
+    a, b = x
+    value = 1 + 10 * (a - 0.2) ** 2 * (a - 0.9) ** 2 + 0.05 * a + (b - 0.5) ** 2
+    slope = 20 * ((a - 0.2) * (a - 0.9) ** 2 + (a - 0.2) ** 2 * (a - 0.9)) + 0.05
+    return value, [slope, 2 * (b - 0.5)]
+
+
+def contradiction() -> Toy:
+    """x1 + x2 >= 1.5 against x2 <= 0.5 and x1 <= 0.6, whose scales are small: short by 0.4 at (0.6, 0.5)."""
+    limits = [
+        (row("enough"), linear(-1.5, 1.0, 1.0)),
+        (row("top", scale=0.01), linear(0.5, 0.0, -1.0)),
+        (row("side", scale=0.01), linear(0.6, -1.0, 0.0)),
+        (row("idle"), linear(5.0, -1.0, 0.0)),
+    ]
+    return Toy(box([0.2, 0.2], 0.0, 1.0), linear(0.0, 1.0, 1.0), limits)

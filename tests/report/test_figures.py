@@ -35,11 +35,22 @@ def our_settings() -> Iterator[None]:
 
 
 def texts(figure: Figure) -> list[Text]:
-    return [text for text in figure.findobj(Text) if text.get_text().strip() and text.get_visible()]
+    """The texts that are drawn (not those of ticks outside the axes)."""
+    drawn: list[Text] = []
+    original = Text.draw
+
+    def recorded(self: Text, renderer: object) -> None:
+        if self.get_visible() and self.get_text().strip():
+            drawn.append(self)
+        original(self, renderer)  # type: ignore[arg-type]
+
+    with pytest.MonkeyPatch.context() as patch:
+        patch.setattr(Text, "draw", recorded)
+        figure.canvas.draw()
+    return drawn
 
 
 def boxes(figure: Figure) -> list[tuple[str, Bbox]]:
-    figure.canvas.draw()
     return [(text.get_text(), text.get_window_extent()) for text in texts(figure)]
 
 

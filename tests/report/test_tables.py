@@ -103,8 +103,11 @@ def test_limits_table_names_every_broken_one_in_words() -> None:
 
 def test_many_broken_limits_are_all_listed() -> None:
     beds = [replace(synthetic.LEAD[3], exit=430.0)] * 12
-    table = bounds.rating_table(synthetic.rating(beds))
-    assert sum("BROKEN" in cell for cell in table.columns[4].cells) == 12
+    rating = synthetic.rating(beds)
+    table = bounds.rating_table(rating)
+    names = [cell for cell in table.columns[0].cells if cell.startswith("hot exit")]
+    assert len(names) == 12
+    assert sum("BROKEN" in cell for cell in table.columns[4].cells) == len(bounds.broken(rating))
 
 
 def test_worths_are_per_hour_and_step() -> None:
@@ -180,13 +183,8 @@ def test_limits_without_a_margin_are_pointed_out_and_margins_have_a_price() -> N
     assert text == "KEEP AWAY    2 K on hot exit: this costs 17.9 EUR/h."
 
 
-def test_an_unlit_bed_and_kinetics_outside_their_range_are_said() -> None:
+def test_an_unlit_bed_is_said_before_the_notes_of_the_rating() -> None:
     beds = (synthetic.LEAD[0], replace(synthetic.LEAD[1], exit=365.0, approach=80.0))
-    rating = synthetic.rating(beds)
-    outside = replace(rating.quantities["bed 1.outside validity of ethylation"], value=0.25)
-    rating = replace(
-        rating, quantities={**rating.quantities, "bed 1.outside validity of ethylation": outside}
-    )
-    text = " ".join(sentences.warnings(rating))
-    assert "Bed 2 is unlit: it rises 1.0 K and stands 80 K from equilibrium." in text
-    assert "25 % of bed 1 lies outside the stated range of ethylation." in text
+    rating = replace(synthetic.rating(beds), notes=("Heat of effluent carries no price.",))
+    unlit = "Bed 2 is unlit: it rises 1.0 K and stands 80 K from equilibrium."
+    assert sentences.warnings(rating) == [unlit, "Heat of effluent carries no price."]

@@ -1,0 +1,93 @@
+"""The Python face: load a case, rate it, optimise it. Everything the command line does, it does through here."""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from threading import Event
+
+    from reactorstage.case.model import Case
+    from reactorstage.optimise.result import Optimum
+    from reactorstage.train.programme import TrainProgramme
+    from reactorstage.train.result import Rating
+
+Progress = Callable[[int, int, "float | None", str], None]
+
+
+@dataclass(frozen=True)
+class Optimisation:
+    """What `optimise` gives: the search, today's rating, the best answer rated, other distinct answers rated.
+
+    best is None when nothing could be evaluated; with status "cannot meet all limits" it is the
+    least-violating answer. seconds is wall time.
+    """
+
+    case: Case
+    programme: TrainProgramme
+    optimum: Optimum
+    today: Rating
+    best: Rating | None
+    others: tuple[Rating, ...]
+    seconds: float
+    seed: int
+
+    @property
+    def status(self) -> str:
+        return self.optimum.status
+
+
+def compile(case: Case) -> TrainProgramme:
+    """Compile a case into one function of its numbers; raises CaseProblems."""
+    from reactorstage.train.programme import compile_case
+
+    return compile_case(case)
+
+
+def rate(case: Case) -> Rating:
+    """Rate the train as the case states it.
+
+    A train without an answer gives a Rating whose `failure` says where and why; raises CaseProblems.
+    """
+    return compile(case).rate()
+
+
+def optimise(
+    case: Case,
+    *,
+    starts: int = 20,
+    seed: int = 1,
+    jobs: int | None = None,
+    progress: Progress | None = None,
+    stop: Event | None = None,
+    explain: bool = True,
+) -> Optimisation:
+    """Find the cheapest setting inside every limit and explain it.
+
+    starts local searches (today's setting, designed ones, then random ones from seed) in jobs threads (all
+    processors when None); the digits do not depend on jobs. progress(done, total, best cost or None,
+    text) is called as work goes on; setting stop, or Ctrl-C, keeps the best answer so far.
+    Raises CaseProblems for a case that chemistry or quantities find wrong.
+    """
+    from reactorstage.optimise import optimise as search
+
+    begun = time.perf_counter()
+    programme = compile(case)
+    today = programme.rate()
+    optimum = search(
+        programme, starts=starts, seed=seed, jobs=jobs, progress=progress, stop=stop, explain=explain
+    )
+    rated = [programme.rate(answer.x) for answer in optimum.answers]
+    return Optimisation(
+        case=case,
+        programme=programme,
+        optimum=optimum,
+        today=today,
+        best=rated[0] if rated else None,
+        others=tuple(rated[1:]),
+        seconds=time.perf_counter() - begun,
+        seed=seed,
+    )

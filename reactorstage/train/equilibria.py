@@ -1,0 +1,67 @@
+"""Equilibrium temperatures at bed exits, with exact derivatives: what approaches to equilibrium are made of."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from reactorstage.chemistry.constants import R_GAS
+from reactorstage.chemistry.reaction import equilibrium_temperature, heat_of_reaction, ln_Q
+from reactorstage.train.chemistry import CaseChemistry
+from reactorstage.train.layout import Layout
+
+Array = NDArray[np.float64]
+
+
+@dataclass(frozen=True)
+class Equilibrium:
+    """The temperature at which one reaction would stand still with what leaves one bed.
+
+    index is its place in the base vector, operation that of the bed's exit; exothermic fixes the sign of the
+    approach, so that it is positive while the forward reaction remains.
+    """
+
+    index: int
+    operation: int
+    bed: str
+    reaction: int
+    exothermic: bool
+
+    def temperature(self, chemistry: CaseChemistry, layout: Layout, base: Array) -> Array:
+        """T_eq with its derivatives (1 + D,), from ln K(T_eq) = ln Q; not a number where Q does not exist."""
+        record = base[self.operation * layout.width : (self.operation + 1) * layout.width]
+        F, p = record[: layout.species, 0], record[layout.species + 1, 0]
+        row = chemistry.laws.nu[self.reaction]
+        found = np.full(base.shape[1], np.nan)
+        if (F[row != 0.0] <= 0.0).any():
+            return found
+        T = equilibrium_temperature(
+            chemistry.table, row, float(ln_Q(row[None, :], F, p)[0]), float(record[layout.species + 2, 0])
+        )
+        if T is None:
+            return found
+        slope = float(heat_of_reaction(chemistry.table, row[None, :], T)[0]) / (R_GAS * T * T)
+        used = row != 0.0
+        change = row.sum()
+        ln_Q_d = (row[used] / F[used]) @ record[: layout.species][used, 1:]
+        ln_Q_d = ln_Q_d - change * record[: layout.species, 1:].sum(axis=0) / F.sum()
+        ln_Q_d = ln_Q_d + change * record[layout.species + 1, 1:] / p
+        found[0], found[1:] = T, ln_Q_d / slope
+        return found
+
+
+def equilibria_of(layout: Layout, chemistry: CaseChemistry, first: int) -> tuple[Equilibrium, ...]:
+    """One for every bed and reversible reaction, from position `first` of the base vector on."""
+    pairs = [
+        (bed, r)
+        for bed in layout.beds
+        for r, equation in enumerate(chemistry.equations)
+        if equation.reversible
+    ]
+    heats = heat_of_reaction(chemistry.table, chemistry.laws.nu, 500.0)
+    return tuple(
+        Equilibrium(first + k, bed.exit, bed.owner, r, bool(heats[r] <= 0.0))
+        for k, (bed, r) in enumerate(pairs)
+    )
