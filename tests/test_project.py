@@ -29,6 +29,7 @@ MADE_BY_TOOLS = ("build", "dist", "reactorstage.egg-info")
 FLOORS = ("errors", "case", "chemistry", "bed", "train", "optimise", "face", "report", "commands")
 PHYSICS = ("chemistry", "bed")
 HEAVY = ("cantera", "matplotlib", "numba", "pint", "pydantic", "scipy", "yaml")
+DISTRIBUTIONS = {"yaml": "pyyaml", "pydantic_core": "pydantic"}
 UNWANTED = {
     "a path of one machine": r"/(?:home|root|work|Users)/\w|/tmp/\w|[A-Z]:\\Users",
     "the host of a package registry": r"https?://[\w.-]*(?:pypi|pythonhosted|npmjs|conda|debian)",
@@ -109,38 +110,16 @@ def test_importing_the_package_loads_no_heavy_library(start: str) -> None:
     assert run.stdout.strip() == ""
 
 
-def readme_commands(root: Path) -> list[str]:
-    """The lines of README.md that set up an environment of their own."""
-    return [
-        line
-        for line in (root / "README.md").read_text(encoding="utf-8").splitlines()
-        if line.startswith("python3 -m venv")
-    ]
+def test_dependencies_are_what_the_package_imports(root: Path) -> None:
+    imported = {name.split(".")[0] for path in modules(root) for name in imported_modules(path, root)}
+    foreign = imported - set(sys.stdlib_module_names) - {"reactorstage"}
+    assert {DISTRIBUTIONS.get(name, name) for name in foreign} == declared(root)
 
 
-def test_readme_has_two_commands_and_the_second_is_what_ci_runs(root: Path) -> None:
-    commands = readme_commands(root)
-    assert len(commands) == 2
-    assert "reactorstage optimise cases/selkemouth-ethylation.yaml" in commands[0]
-    assert all(word in commands[1] for word in ("[test]", "ruff check", "mypy", "pytest"))
-    ci_lines = (root / ".ci" / "run").read_text(encoding="utf-8").splitlines()
-    assert ci_lines[-1] == commands[1]
-
-
-def test_documents_point_at_files_that_exist(root: Path) -> None:
-    missing = [
-        f"{document.name}: {target}"
-        for document in root.glob("*.md")
-        for target in named_files(document.read_text(encoding="utf-8"))
-        if not (root / target).exists()
-    ]
-    assert missing == []
-
-
-def named_files(markdown: str) -> set[str]:
-    """Targets of links within the project, and paths in code marks."""
-    links = re.findall(r"\]\(([^)#:]+)\)", markdown)
-    return {*links, *re.findall(r"`((?:cases|figures|reactorstage|tests|\.ci)/[\w./-]+)`", markdown)}
+def declared(root: Path) -> set[str]:
+    """Names of the packages that are installed with this one."""
+    project = tomllib.loads((root / "pyproject.toml").read_text(encoding="utf-8"))["project"]
+    return {re.split(r"[<>=!~\[]", text)[0] for text in project["dependencies"]}
 
 
 @pytest.mark.parametrize("what", UNWANTED)
@@ -160,20 +139,3 @@ def test_version_is_the_same_everywhere(root: Path) -> None:
     assert project["version"] == reactorstage.__version__
     changelog = (root / "CHANGELOG.md").read_text(encoding="utf-8")
     assert re.search(rf"^## {re.escape(reactorstage.__version__)}\b", changelog, re.MULTILINE)
-
-
-def shipped_cases() -> list[Path]:
-    return sorted((Path(__file__).resolve().parent.parent / "cases").glob("*.yaml"))
-
-
-@pytest.mark.parametrize("path", shipped_cases(), ids=lambda path: path.stem)
-def test_shipped_case_loads_and_says_what_it_shows(path: Path) -> None:
-    opening = path.read_text(encoding="utf-8").split("\n\n")[0]
-    assert all(line.startswith("#") for line in opening.splitlines())
-    assert "What it shows" in opening and "What to try" in opening and "never use" in opening
-    assert reactorstage.load(path).name
-
-
-def test_readme_names_every_shipped_case(root: Path) -> None:
-    readme = (root / "README.md").read_text(encoding="utf-8")
-    assert [path.name for path in shipped_cases() if path.name not in readme] == []

@@ -1,6 +1,6 @@
-"""The arrays that the kernel reads. Named tuples of arrays, so that compiled code takes them as they are.
+"""The flat arrays that the kernel reads and writes, and where everything stands in them.
 
-S species, R reactions, B beds, L most species that one rate law names, NT terms of denominators.
+S species, R reactions, L most species that one rate law names, n = R + 1 length of the state.
 """
 
 from __future__ import annotations
@@ -18,33 +18,38 @@ STANDARD_PRESSURE = 1e5
 
 CONCENTRATION, PARTIAL_PRESSURE, MOLE_FRACTION = 0, 1, 2
 
+LAW = 7
+"""Numbers of one law: ln k at T_ref, T_ref, E/R, c, d, m, sum of nu."""
+
+KIND = 5
+"""Whole numbers of one law before its members: driver, 1 if reversible, members, first and last factor."""
+
+BED = 6
+"""Numbers of one bed before its flows: H [W], inlet T [K], F_unit [mol/s], p_unit [Pa], W [kg], friction."""
+
+H_IN, T_IN, F_UNIT, P_UNIT, W_BED, FRICTION = 0, 1, 2, 3, 4, 5
+
+PARAMETERS = ("ln k", "E/R", "ln K of term", "H/R of term", "enthalpy", "entropy", "composition")
+"""Kinds of parameters that a direction can move, by number; -1 for none."""
+
+LN_K, E_OVER_R, LN_K_TERM, H_TERM, ENTHALPY, ENTROPY, COMPOSITION = 0, 1, 2, 3, 4, 5, 6
+
 
 class Chemistry(NamedTuple):
     """Species and rate laws of one case, see `reactorstage.chemistry.rate_law` for the law.
 
-    coefficients (S, 3, 9) and edges (S, 4): nine-coefficient heat capacity in up to three ranges.
-    nu (R, S) with its row sums change (R,). law (R, 6): ln k at T_ref, T_ref, E/R, c, d, m.
-    kind (R, 3): driver, 1 if reversible, number of members. member (R, L): the species that the law of a
-    reaction names anywhere, padded with -1; order (R, 2, L): their forward and backward orders.
-    Denominators: factors den_start[r]..den_start[r + 1] of reaction r, each the power den_power of a sum
-    of the terms term_start[f]..term_start[f + 1]; term (NT, 3): ln K at T_ref, T_ref, H/R; term_order
-    (NT, L) of the members.
+    real holds, one after another: coefficients (S, 3, 9), inner edges of their ranges (S, 2), molar masses
+    (S,), nu (R, S), law (R, LAW), orders (R, 2, L) forward and backward; then for each denominator factor
+    its power, then for each term ln K at T_ref, T_ref, H/R and its orders (L,).
+    whole holds kind and members (R, KIND + L), then first and last term of each factor.
     """
 
-    coefficients: Array
-    edges: Array
-    molar_mass: Array
-    nu: Array
-    change: Array
-    law: Array
-    kind: Index
-    member: Index
-    order: Array
-    den_start: Index
-    den_power: Array
-    term_start: Index
-    term: Array
-    term_order: Array
+    real: Array
+    whole: Index
+    S: int
+    R: int
+    L: int
+    factors: int
     T_low: float
     T_high: float
 
@@ -60,3 +65,25 @@ class Beds(NamedTuple):
     rate_factor: Array
     viscous: Array
     inertial: Array
+
+
+class Stages(NamedTuple):
+    """Step sequences of all beds: counts (B,) and steps (B, N, 2 + 4 n + 3).
+
+    One step: depth of its start, its length, y0 (n,), Z (3, n), temperatures of the stages (3,).
+    """
+
+    counts: Index
+    steps: Array
+
+
+class Tolerance(NamedTuple):
+    """Error per step: flow relative to the bed's feed, temperature in K, Newton (share of the feed).
+
+    named (S,) is 1 for species whose own flow must be right relative to itself.
+    """
+
+    flow: float
+    temperature: float
+    newton: float
+    named: Array

@@ -4,129 +4,135 @@ from __future__ import annotations
 
 import numpy as np
 
-from reactorstage.bed.balance import flows, temperature_of
-from reactorstage.bed.compiled import compiled
-from reactorstage.bed.data import GAS_CONSTANT
+from reactorstage.bed.balance import flows
+from reactorstage.bed.compiled import compiled, inlined
+from reactorstage.bed.data import F_UNIT, GAS_CONSTANT, H_IN, T_IN
+from reactorstage.bed.layout import at_nu
+from reactorstage.bed.properties import heat_capacity_flow, temperature_of
 from reactorstage.bed.radau import NODES, POLYNOMIAL
+from reactorstage.bed.tangents import temperature_forcing
 
 SHARES = np.array([0.1, 0.5, 0.9])
 
 
 @compiled
-def weights(theta, out):
-    """Weights (3,) of the stages in the collocation polynomial at theta in [0, 1] of a step."""
-    for i in range(3):
-        out[i] = theta * (POLYNOMIAL[i, 0] + theta * (POLYNOMIAL[i, 1] + theta * POLYNOMIAL[i, 2]))
+def weight(i, theta):
+    """Weight of stage i in the collocation polynomial at theta in [0, 1] of a step."""
+    return theta * (POLYNOMIAL[i, 0] + theta * (POLYNOMIAL[i, 1] + theta * POLYNOMIAL[i, 2]))
 
 
 @compiled
-def temperature_within(chem, inlet, steps, k, theta, T_guess, y, share, work):
-    """Temperature at theta of step k; leaves the state in y and the flows and properties in work."""
-    weights(theta, share)
-    for m in range(y.shape[0]):
-        y[m] = steps.y0[k, m]
+def state_within(step, n, theta, y):
+    """State at theta of a step into y (n,)."""
+    for m in range(n):
+        y[m] = step[2 + m]
         for i in range(3):
-            y[m] += share[i] * steps.Z[k, i, m]
-    flows(chem, inlet, y, work.F)
-    return temperature_of(chem, work.F, inlet.H, T_guess, work.cp_R, work.h_RT)
+            y[m] += weight(i, theta) * step[2 + n + i * n + m]
 
 
 @compiled
-def slope_within(chem, inlet, steps, k, theta, T, work):
-    """dT/d(theta) of step k there, after `temperature_within`."""
-    R, S = chem.nu.shape
-    capacity = 0.0
-    for s in range(S):
-        capacity += work.F[s] * work.cp_R[s]
+def temperature_within(chem, bed, step, theta, T_guess, y, work):
+    """Temperature at theta of a step; leaves the state in y and the flows and properties in work."""
+    state_within(step, chem.R + 1, theta, y)
+    flows(chem, bed, y, work)
+    return temperature_of(chem, bed[H_IN] / GAS_CONSTANT, T_guess, work)
+
+
+@compiled
+def slope_within(chem, bed, step, theta, T, work):
+    """dT/d(theta) of a step there, after `temperature_within`."""
+    S, n, nu = chem.S, chem.R + 1, at_nu(chem)
     total = 0.0
-    for q in range(R):
+    for q in range(chem.R):
         speed = 0.0
         for i in range(3):
-            speed += steps.Z[k, i, q] * (
+            speed += step[2 + n + i * n + q] * (
                 POLYNOMIAL[i, 0] + theta * (2.0 * POLYNOMIAL[i, 1] + theta * 3.0 * POLYNOMIAL[i, 2])
             )
         heat = 0.0
         for s in range(S):
-            heat += chem.nu[q, s] * work.h_RT[s]
-        total -= inlet.F_unit * heat * T / capacity * speed
-    return total
+            heat += chem.real[nu + q * S + s] * work[2 * S + s]
+        total -= heat * speed
+    return bed[F_UNIT] * total * T / heat_capacity_flow(chem, work)
 
 
 @compiled
-def temperature_tangent(chem, inlet, directions, tangents, k, theta, T, share, work, out):
-    """dT at fixed depth along all directions into out (D,), after `temperature_within`."""
-    R, S = chem.nu.shape
-    capacity = 0.0
-    for s in range(S):
-        capacity += work.F[s] * work.cp_R[s]
-    weights(theta, share)
-    for d in range(out.shape[0]):
-        heat = directions.H[d] / GAS_CONSTANT
-        for s in range(S):
-            heat -= work.h_RT[s] * T * directions.F[s, d]
-        for q in range(R):
-            dxi = tangents.y0[k, q, d]
+def temperature_tangent(chem, bed, ways, moved, D, y0_d, Z_d, theta, T, work, out):
+    """dT at fixed depth along all directions into out (D,), after `temperature_within` of that step."""
+    S, n, nu = chem.S, chem.R + 1, at_nu(chem)
+    capacity = heat_capacity_flow(chem, work)
+    for d in range(D):
+        out[d] = temperature_forcing(chem, ways, D, d, moved[d, 0], moved[d, 1], T, capacity, work)
+        for q in range(chem.R):
+            dxi = y0_d[q * D + d]
             for i in range(3):
-                dxi += share[i] * tangents.Z[k, i, q, d]
+                dxi += weight(i, theta) * Z_d[(i * n + q) * D + d]
+            heat = 0.0
             for s in range(S):
-                heat -= work.h_RT[s] * T * chem.nu[q, s] * inlet.F_unit * dxi
-        out[d] = heat / capacity
+                heat += chem.real[nu + q * S + s] * work[2 * S + s]
+            out[d] -= heat * T * bed[F_UNIT] * dxi / capacity
 
 
 @compiled
-def hottest(chem, inlet, steps, count, y, share, work):
+def hottest(chem, bed, steps, count, y, work):
     """(step, theta, T) of the hottest place: the best stage or edge, refined inside its neighbourhood."""
-    best_k, best_i, T_best = -1, 0, inlet.T
-    for k in range(count):
+    at_T = 2 + 4 * (chem.R + 1)
+    k, which, T_best = -1, 0, bed[T_IN]
+    for j in range(count):
         for i in range(3):
-            if steps.T[k, i] > T_best:
-                best_k, best_i, T_best = k, i, steps.T[k, i]
-    if best_k < 0:
-        return 0, 0.0, inlet.T
-    k, low, high = best_k, 0.0, 1.0
-    if best_i == 2:
-        temperature_within(chem, inlet, steps, k, 1.0, T_best, y, share, work)
-        if slope_within(chem, inlet, steps, k, 1.0, T_best, work) >= 0.0:
+            if steps[j, at_T + i] > T_best:
+                k, which, T_best = j, i, steps[j, at_T + i]
+    if k < 0:
+        return 0, 0.0, bed[T_IN]
+    if which == 2:
+        T = temperature_within(chem, bed, steps[k], 1.0, T_best, y, work)
+        if slope_within(chem, bed, steps[k], 1.0, T, work) >= 0.0:
             if k + 1 >= count:
-                return k, 1.0, T_best
+                return k, 1.0, T
             k += 1
+    low, high = 0.0, 1.0
     for _ in range(60):
         theta = 0.5 * (low + high)
-        T = temperature_within(chem, inlet, steps, k, theta, T_best, y, share, work)
-        if slope_within(chem, inlet, steps, k, theta, T, work) > 0.0:
+        T = temperature_within(chem, bed, steps[k], theta, T_best, y, work)
+        if slope_within(chem, bed, steps[k], theta, T, work) > 0.0:
             low = theta
         else:
             high = theta
-    T = temperature_within(chem, inlet, steps, k, low, T_best, y, share, work)
-    return k, low, T
+    return k, low, temperature_within(chem, bed, steps[k], low, T_best, y, work)
+
+
+@inlined
+def first_interval(chem, steps, count, target, rising):
+    """(step, stage) whose end is the first at or beyond target; step -1 when there is none."""
+    at_T = 2 + 4 * (chem.R + 1)
+    for k in range(count):
+        for i in range(3):
+            T_end = steps[k, at_T + i]
+            if (rising and T_end >= target) or (not rising and T_end <= target):
+                return k, i
+    return -1, 0
 
 
 @compiled
-def passing(chem, inlet, steps, count, target, rising, y, share, work):
+def passing(chem, bed, steps, count, target, rising, y, work):
     """(step, theta, T) of the first depth where T passes target; step -1 when it never does."""
-    for k in range(count):
-        for i in range(3):
-            T_end = steps.T[k, i]
-            if (rising and T_end >= target) or (not rising and T_end <= target):
-                low = NODES[i - 1] if i > 0 else 0.0
-                high = NODES[i]
-                T = T_end
-                for _ in range(50):
-                    theta = 0.5 * (low + high)
-                    T = temperature_within(chem, inlet, steps, k, theta, T, y, share, work)
-                    if (target <= T) == rising:
-                        high = theta
-                    else:
-                        low = theta
-                    if high - low < 1e-4:
-                        break
-                theta = 0.5 * (low + high)
-                for _ in range(8):
-                    T = temperature_within(chem, inlet, steps, k, theta, T, y, share, work)
-                    slope = slope_within(chem, inlet, steps, k, theta, T, work)
-                    if slope == 0.0:
-                        break
-                    theta -= (T - target) / slope
-                T = temperature_within(chem, inlet, steps, k, theta, T, y, share, work)
-                return k, theta, T
-    return -1, 0.0, inlet.T
+    k, i = first_interval(chem, steps, count, target, rising)
+    if k < 0:
+        return -1, 0.0, bed[T_IN]
+    step = steps[k]
+    low, high, T = (NODES[i - 1] if i > 0 else 0.0), NODES[i], target
+    theta = 0.5 * (low + high)
+    for _ in range(60):
+        T = temperature_within(chem, bed, step, theta, T, y, work)
+        if (T >= target) == rising:
+            high = theta
+        else:
+            low = theta
+        slope = slope_within(chem, bed, step, theta, T, work)
+        new = theta - (T - target) / slope if slope != 0.0 else np.nan
+        if not low <= new <= high:
+            new = 0.5 * (low + high)
+        if abs(new - theta) <= 1e-15:
+            break
+        theta = new
+    return k, theta, temperature_within(chem, bed, step, theta, T, y, work)

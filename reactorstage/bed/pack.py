@@ -14,27 +14,28 @@ from reactorstage.chemistry.species import SpeciesTable
 def pack_chemistry(table: SpeciesTable, laws: RateLaws) -> Chemistry:
     """Arrays of the chemistry; the temperature range is the one that all species' data share."""
     members = [_members(laws, r) for r in range(laws.nu.shape[0])]
-    longest = max(1, max(len(used) for used in members))
+    R, S, L = *laws.nu.shape, max(1, max(len(used) for used in members))
+    law = np.column_stack(
+        [laws.lnk_ref, laws.T_ref, laws.E_over_R, laws.c, laws.d, laws.m, laws.nu.sum(axis=1)]
+    )
+    order = [
+        _padded(orders[r][used], L, 0.0) for r, used in enumerate(members) for orders in (laws.alpha, laws.beta)
+    ]
+    term = np.column_stack([laws.term_lnK_ref, laws.term_T_ref, laws.term_H_over_R])
+    parts = [table.coefficients, table.edges[:, 1:3], table.molar_mass, laws.nu, law, np.array(order)]
+    parts += [laws.den_power, np.column_stack([term, _term_orders(laws, members, L)])]
+    kind = np.column_stack(
+        [laws.driver, laws.reversible, [len(used) for used in members], laws.den_start[:-1], laws.den_start[1:]]
+    )
+    named = np.array([_padded(used, L, -1) for used in members], dtype=np.int64)
+    factors = np.column_stack([laws.term_start[:-1], laws.term_start[1:]])
     return Chemistry(
-        coefficients=np.ascontiguousarray(table.coefficients),
-        edges=np.ascontiguousarray(table.edges),
-        molar_mass=np.ascontiguousarray(table.molar_mass),
-        nu=np.ascontiguousarray(laws.nu),
-        change=laws.nu.sum(axis=1),
-        law=np.column_stack([laws.lnk_ref, laws.T_ref, laws.E_over_R, laws.c, laws.d, laws.m]),
-        kind=np.column_stack([laws.driver, laws.reversible, [len(used) for used in members]]),
-        member=np.array([_padded(used, longest, -1) for used in members], dtype=np.int64),
-        order=np.array(
-            [
-                [_padded(orders[r][used], longest, 0.0) for orders in (laws.alpha, laws.beta)]
-                for r, used in enumerate(members)
-            ]
-        ),
-        den_start=laws.den_start,
-        den_power=laws.den_power,
-        term_start=laws.term_start,
-        term=np.column_stack([laws.term_lnK_ref, laws.term_T_ref, laws.term_H_over_R]),
-        term_order=_term_orders(laws, members, longest),
+        real=np.concatenate([np.asarray(part, dtype=np.float64).ravel() for part in parts]),
+        whole=np.concatenate([np.column_stack([kind, named]).ravel(), factors.ravel()]).astype(np.int64),
+        S=S,
+        R=R,
+        L=L,
+        factors=len(laws.den_power),
         T_low=float(table.edges[:, 0].max()),
         T_high=float(table.edges[:, -1].min()),
     )

@@ -1,4 +1,4 @@
-"""Reaction rates and their hand-written derivatives by flows, temperature and pressure.
+"""Reaction rates and their hand-written derivatives by flows, temperature, pressure and ln K.
 
 The law is that of `reactorstage.chemistry.rate_law`, whose NumPy evaluation is the reference in the tests.
 """
@@ -7,10 +7,27 @@ from __future__ import annotations
 
 import numpy as np
 
-from reactorstage.bed.compiled import compiled
-from reactorstage.bed.data import CONCENTRATION, GAS_CONSTANT, MOLE_FRACTION, STANDARD_PRESSURE
-
-EXTENSION = 1e-12
+from reactorstage.bed.compiled import compiled, inlined
+from reactorstage.bed.data import (
+    CONCENTRATION,
+    GAS_CONSTANT,
+    KIND,
+    LAW,
+    MOLE_FRACTION,
+    STANDARD_PRESSURE,
+)
+from reactorstage.bed.layout import (
+    at_factor,
+    at_law,
+    at_local,
+    at_member,
+    at_nu,
+    at_order,
+    at_power,
+    at_rate,
+    at_terms,
+)
+from reactorstage.chemistry.rates import DELTA
 
 
 @compiled
@@ -21,9 +38,11 @@ def power(a, n, delta):
     """
     if n == 1.0:
         return a, 1.0
+    if n == 0.0:
+        return 1.0, 0.0
     if n == 2.0:
         return a * a, 2.0 * a
-    if n >= 0.0 and n == np.floor(n):
+    if n > 0.0 and n == np.floor(n):
         value, slope = 1.0, 0.0
         for _ in range(int(n)):
             slope = slope * a + value
@@ -38,40 +57,48 @@ def power(a, n, delta):
 
 
 @compiled
-def products(orders, count, a, delta, value, slope):
-    """Product of a_k^n_k over the first `count` members; its derivative by each a_k into slope (L,)."""
+def products(real, orders, count, delta, work, local, L, slopes):
+    """Product of a_k^n_k over the members of a law; its slope by each a_k into the row `slopes` of work.
+
+    orders is the position of n_k in real; local that of the rows a, values, ... (each L) in work.
+    """
     total = 1.0
     for k in range(count):
-        value[k], slope[k] = power(a[k], orders[k], delta)
-        total *= value[k]
+        value, slope = power(work[local + k], real[orders + k], delta)
+        work[local + L + k] = value
+        work[slopes + k] = slope
+        total *= value
     for k in range(count):
         for j in range(count):
             if j != k:
-                slope[k] *= value[j]
+                work[slopes + k] *= work[local + L + j]
     return total
 
 
-@compiled
-def rate_constant(law, T):
-    """k(T) and d ln k / dT of a row of Chemistry.law."""
-    lnk = law[0] + law[2] * (1.0 / law[1] - 1.0 / T)
-    slope = law[2] / (T * T)
-    if law[3] != 0.0:
-        lnk += law[3] * np.log(T / law[1])
-        slope += law[3] / T
-    if law[4] != 0.0:
-        lnk += law[4] * (T - law[1])
-        slope += law[4]
+@inlined
+def rate_constant(real, law, T):
+    """k(T) and d ln k / dT of the law at position `law`."""
+    lnk = real[law] + real[law + 2] * (1.0 / real[law + 1] - 1.0 / T)
+    slope = real[law + 2] / (T * T)
+    if real[law + 3] != 0.0:
+        lnk += real[law + 3] * np.log(T / real[law + 1])
+        slope += real[law + 3] / T
+    if real[law + 4] != 0.0:
+        lnk += real[law + 4] * (T - real[law + 1])
+        slope += real[law + 4]
     return np.exp(lnk), slope
 
 
-@compiled
-def equilibrium(nu, change, driver, T, p, h_RT, s_R):
-    """ln Ka of one reaction in the units of its driver, with its derivatives by T and p."""
+@inlined
+def equilibrium(chem, q, driver, T, p, work):
+    """ln Ka of reaction q in the units of its driver, with its derivatives by T and p."""
+    S, nu = chem.S, at_nu(chem) + q * chem.S
+    change = chem.real[at_law(chem) + q * LAW + 6]
     lnK, slope_T, slope_p = 0.0, 0.0, 0.0
-    for s in range(h_RT.shape[0]):
-        lnK -= nu[s] * (h_RT[s] - s_R[s])
-        slope_T += nu[s] * h_RT[s]
+    for s in range(S):
+        n = chem.real[nu + s]
+        lnK -= n * (work[2 * S + s] - work[3 * S + s])
+        slope_T += n * work[2 * S + s]
     slope_T /= T
     if change != 0.0:
         if driver == CONCENTRATION:
@@ -96,74 +123,91 @@ def driver_scale(driver, F_total, T, p):
 
 
 @compiled
-def denominator(chem, r, count, a, delta, T, value, slope, total_a):
-    """Product of the factors under reaction r with d/dT; its derivative by each member into total_a (L,)."""
+def term_constant(real, term, T):
+    """K_j(T) of a denominator's term and d ln K_j / dT."""
+    K = np.exp(real[term] + real[term + 2] * (1.0 / real[term + 1] - 1.0 / T))
+    return K, real[term + 2] / (T * T)
+
+
+@compiled
+def denominator(chem, q, count, delta, T, work):
+    """Product of the factors under reaction q with d/dT; its slopes by the members into the fifth local row."""
+    L, local, real, whole = chem.L, at_local(chem), chem.real, chem.whole
+    kind, powers = q * (KIND + L), at_power(chem)
+    out, slopes = local + 4 * L, local + 3 * L
     total, total_T = 1.0, 0.0
-    total_a[:count] = 0.0
-    for f in range(chem.den_start[r], chem.den_start[r + 1]):
-        under, under_T = 0.0, 0.0
-        for t in range(chem.term_start[f], chem.term_start[f + 1]):
-            term = chem.term[t]
-            K = np.exp(term[0] + term[2] * (1.0 / term[1] - 1.0 / T))
-            size = K * products(chem.term_order[t], count, a, delta, value, slope)
-            under += size
-            under_T += size * term[2] / (T * T)
-        for t in range(chem.term_start[f], chem.term_start[f + 1]):
-            term = chem.term[t]
-            K = np.exp(term[0] + term[2] * (1.0 / term[1] - 1.0 / T))
-            products(chem.term_order[t], count, a, delta, value, slope)
-            for k in range(count):
-                total_a[k] += chem.den_power[f] * K * slope[k] / under
-        total *= under ** chem.den_power[f]
-        total_T += chem.den_power[f] * under_T / under
     for k in range(count):
-        total_a[k] *= total
+        work[out + k] = 0.0
+    for f in range(whole[kind + 3], whole[kind + 4]):
+        under, under_T, q_f = 0.0, 0.0, real[powers + f]
+        first, last = whole[at_terms(chem) + 2 * f], whole[at_terms(chem) + 2 * f + 1]
+        for t in range(first, last):
+            term = powers + chem.factors + t * (3 + L)
+            K, K_T = term_constant(real, term, T)
+            size = K * products(real, term + 3, count, delta, work, local, L, slopes)
+            under += size
+            under_T += size * K_T
+        for t in range(first, last):
+            term = powers + chem.factors + t * (3 + L)
+            K, _ = term_constant(real, term, T)
+            products(real, term + 3, count, delta, work, local, L, slopes)
+            for k in range(count):
+                work[out + k] += q_f * K * work[slopes + k] / under
+        total *= under**q_f
+        total_T += q_f * under_T / under
+    for k in range(count):
+        work[out + k] *= total
     return total, total * total_T
 
 
 @compiled
-def rates(chem, factor, F, T, p, h_RT, s_R, local, r, r_member, r_common, r_T, r_p):
-    """Rates r (R,) in mol/(kg s) with their derivatives by flows, T and p.
+def rates(chem, bed, T, p, work, with_slopes):
+    """Rates (R,) in mol/(kg s) and, when asked, their derivatives, all in the work array.
 
-    dr/dF_s = r_common (R,) for every species, plus r_member (R, L) for the members of the law.
-    factor (R,) is catalyst activity times the basis factor; h_RT and s_R (S,) are taken at T; local
-    (5, L) is work space.
+    dr/dF_s = common (R,) for every species, plus the slopes by the members (R, L) of the law. bed holds the
+    factors (catalyst activity times the basis factor); the work array the flows and the properties at T.
     """
-    a, value, slope, back_slope, under_a = local[0], local[1], local[2], local[3], local[4]
+    S, R, L, real, whole = chem.S, chem.R, chem.L, chem.real, chem.whole
+    local, rate, member, factor = at_local(chem), at_rate(chem), at_member(chem), at_factor(chem)
+    slope, back_slope = local + 2 * L, local + 3 * L
     F_total = 0.0
-    for s in range(F.shape[0]):
-        F_total += F[s]
-    for q in range(r.shape[0]):
-        driver, count = chem.kind[q, 0], chem.kind[q, 2]
+    for s in range(S):
+        F_total += work[s]
+    for q in range(R):
+        kind, law, orders = q * (KIND + L), at_law(chem) + q * LAW, at_order(chem) + q * 2 * L
+        driver, count = whole[kind], whole[kind + 2]
         scale, scale_T, scale_p = driver_scale(driver, F_total, T, p)
-        delta = EXTENSION * scale * F_total
+        delta = DELTA * scale * F_total
         for k in range(count):
-            a[k] = scale * F[chem.member[q, k]]
-        constant, lnk_T = rate_constant(chem.law[q], T)
-        constant *= factor[q]
-        force = products(chem.order[q, 0], count, a, delta, value, slope)
-        force_T, force_p = 0.0, 0.0
-        if chem.kind[q, 1] == 1:
-            lnK, lnK_T, lnK_p = equilibrium(chem.nu[q], chem.change[q], driver, T, p, h_RT, s_R)
-            share = np.exp(-chem.law[q, 5] * lnK)
-            back = share * products(chem.order[q, 1], count, a, delta, value, back_slope)
+            work[local + k] = scale * work[whole[kind + KIND + k]]
+        constant, lnk_T = rate_constant(real, law, T)
+        constant *= bed[factor + q]
+        force = products(real, orders, count, delta, work, local, L, slope)
+        force_T, force_p, back = 0.0, 0.0, 0.0
+        if whole[kind + 1] == 1:
+            lnK, lnK_T, lnK_p = equilibrium(chem, q, driver, T, p, work)
+            share = np.exp(-real[law + 5] * lnK)
+            back = share * products(real, orders + L, count, delta, work, local, L, back_slope)
             force -= back
-            force_T = chem.law[q, 5] * back * lnK_T
-            force_p = chem.law[q, 5] * back * lnK_p
+            back *= real[law + 5]
+            force_T, force_p = back * lnK_T, back * lnK_p
             for k in range(count):
-                slope[k] -= share * back_slope[k]
-        if chem.den_start[q + 1] > chem.den_start[q]:
-            under, under_T = denominator(chem, q, count, a, delta, T, value, back_slope, under_a)
+                work[slope + k] -= share * work[back_slope + k]
+        if whole[kind + 4] > whole[kind + 3]:
+            under, under_T = denominator(chem, q, count, delta, T, work)
             force /= under
+            back /= under
             force_T = (force_T - force * under_T) / under
             force_p /= under
             for k in range(count):
-                slope[k] = (slope[k] - force * under_a[k]) / under
-        drive = 0.0
-        for k in range(count):
-            drive += slope[k] * a[k]
-            r_member[q, k] = constant * scale * slope[k]
-        r[q] = constant * force
-        r_common[q] = -constant * drive / F_total
-        r_T[q] = constant * (lnk_T * force + force_T + drive * scale_T)
-        r_p[q] = constant * (force_p + drive * scale_p)
+                work[slope + k] = (work[slope + k] - force * work[local + 4 * L + k]) / under
+        work[rate + q] = constant * force
+        if with_slopes:
+            drive = 0.0
+            for k in range(count):
+                drive += work[slope + k] * work[local + k]
+                work[member + q * L + k] = constant * scale * work[slope + k]
+            work[rate + R + q] = -constant * drive / F_total
+            work[rate + 2 * R + q] = constant * (lnk_T * force + force_T + drive * scale_T)
+            work[rate + 3 * R + q] = constant * (force_p + drive * scale_p)
+            work[rate + 4 * R + q] = constant * back

@@ -1,42 +1,39 @@
-"""A bed at many depths: the collocation polynomial of each step, with temperatures from the energy balance."""
+"""A bed at many depths: the collocation polynomial of each step, temperatures from the energy balance."""
 
 from __future__ import annotations
 
 import numpy as np
 
 from reactorstage.bed.balance import evaluate
-from reactorstage.bed.compiled import compiled
-from reactorstage.bed.events import weights
-from reactorstage.bed.integrate import Steps
-from reactorstage.bed.train_pass import bed_inlet
+from reactorstage.bed.compiled import entry
+from reactorstage.bed.data import BED, P_UNIT, T_IN, W_BED
+from reactorstage.bed.events import state_within
+from reactorstage.bed.layout import at_rate, work_length
+from reactorstage.bed.train_pass import fill_bed
 
 
-@compiled
-def sample_bed(
-    chem, beds, b, row, out, catalyst, activity, friction_factor, stages, per_step, work, w, T, p, F, r
-):
+@entry
+def sample_bed(chem, beds, b, row, out, u, first, stages, per_step, w, T, p, F, r):
     """Fill w, T, p (N,), F (N, S), r (N, R) at `per_step` points of each step and the inlet.
 
-    N = count * per_step + 1; out and stages are those of a finished pass, row the record of the inlet.
+    N = count * per_step + 1; out and stages are those of a finished pass, row the record of the inlet,
+    first the position of the bed's numbers in u.
     """
-    inlet = bed_inlet(chem, beds, b, row, out, catalyst, activity, friction_factor)
-    steps = Steps(stages.edges[b], stages.y0[b], stages.Z[b], stages.T[b])
-    R = chem.nu.shape[0]
-    y, f, J, share = np.zeros(R + 1), np.empty(R + 1), np.empty((R + 1, R + 1)), np.empty(3)
-    T_now, position = inlet.T, 0
+    S, R, rate = chem.S, chem.R, at_rate(chem)
+    bed, work = np.empty(BED + S + R), np.zeros(work_length(chem))
+    fill_bed(chem, beds, b, row, out, u, first, bed)
+    y, f, J = np.zeros(R + 1), np.empty(R + 1), np.empty((R + 1) * (R + 1))
+    T_now, position = bed[T_IN], 0
     for k in range(stages.counts[b]):
+        step = stages.steps[b, k]
         for i in range(0 if k == 0 else 1, per_step + 1):
-            theta = i / per_step
-            weights(theta, share)
-            for m in range(R + 1):
-                y[m] = steps.y0[k, m]
-                for j in range(3):
-                    y[m] += share[j] * steps.Z[k, j, m]
+            state_within(step, R + 1, i / per_step, y)
             for _ in range(4):
-                found = evaluate(chem, inlet, y, T_now, work, f, J, False)
+                found = evaluate(chem, bed, y, T_now, work, f, J, False)
                 if np.isfinite(found):
                     T_now = found
-            w[position] = catalyst * (steps.edges[k] + theta * (steps.edges[k + 1] - steps.edges[k]))
-            T[position], p[position] = T_now, inlet.p_unit * y[R]
-            F[position], r[position] = work.F, work.r
+            w[position] = bed[W_BED] * (step[0] + i / per_step * step[1])
+            T[position], p[position] = T_now, bed[P_UNIT] * y[R]
+            F[position] = work[:S]
+            r[position] = work[rate : rate + R]
             position += 1

@@ -2,112 +2,164 @@
 
 A step solves (A^-1 Z)_i / h = f(y0 + Z_i; q). Its derivative along D directions of (y0, q) is one linear
 system of size 3 n with the Jacobians of the three stages, so it is exact to rounding for that step.
+
+Directions of one bed are rows of a flat array (S + 4 + R, D): flows (S), enthalpy flow, pressure,
+catalyst, friction, logarithm of the rate factors (R). A direction may instead move one parameter of the
+chemistry: moved (D, 2) holds its kind (see `data.PARAMETERS`) and index, -1 for none.
 """
 
 from __future__ import annotations
 
-from typing import NamedTuple
-
 import numpy as np
-from numpy.typing import NDArray
 
 from reactorstage.bed.balance import evaluate
-from reactorstage.bed.compiled import compiled
-from reactorstage.bed.data import GAS_CONSTANT
+from reactorstage.bed.compiled import compiled, inlined
+from reactorstage.bed.data import (
+    E_OVER_R,
+    ENTHALPY,
+    ENTROPY,
+    F_UNIT,
+    FRICTION,
+    GAS_CONSTANT,
+    H_TERM,
+    KIND,
+    LAW,
+    LN_K,
+    LN_K_TERM,
+    P_UNIT,
+    W_BED,
+)
+from reactorstage.bed.layout import at_law, at_local, at_member, at_nu, at_power, at_rate, at_terms
 from reactorstage.bed.linear import factorise, substitute_many
+from reactorstage.bed.properties import heat_capacity_flow
 from reactorstage.bed.radau import INVERSE
-
-Array = NDArray[np.float64]
-
-
-class Directions(NamedTuple):
-    """Derivatives of one bed's inlet along D directions; ln_factor (R, D) of the rate factors."""
-
-    F: Array
-    H: Array
-    p: Array
-    W: Array
-    ln_factor: Array
-    friction: Array
-
-
-class Tangents(NamedTuple):
-    """Along D directions: dy0 (N + 1, n, D) at the edges of the steps, dZ (N, 3, n, D) of the stages."""
-
-    y0: Array
-    Z: Array
+from reactorstage.bed.rates import driver_scale, products, term_constant
+from reactorstage.chemistry.rates import DELTA
 
 
 @compiled
-def forcing(chem, inlet, directions, y, T, f, work, out):
-    """df/dq at one stage for all directions, into out (n, D); work holds the stage's properties and rates."""
-    R, S = chem.nu.shape
-    D = directions.H.shape[0]
-    per_unit = inlet.W / inlet.F_unit
-    p = inlet.p_unit * y[R]
-    F_total, capacity = 0.0, 0.0
+def temperature_forcing(chem, ways, D, d, kind, index, T, capacity, work):
+    """dT at fixed extents along direction d, from the energy balance of the flows in the work array."""
+    S = chem.S
+    heat = ways[S * D + d] / GAS_CONSTANT
     for s in range(S):
-        F_total += work.F[s]
-        capacity += work.F[s] * work.cp_R[s]
+        heat -= work[2 * S + s] * T * ways[s * D + d]
+    if kind == ENTHALPY:
+        heat -= work[index] / GAS_CONSTANT
+    return heat / capacity
+
+
+@compiled
+def term_share(chem, q, wanted, T, p, F_total, work):
+    """- d ln r_q / d ln K_t of term `wanted`: power times the term's share of its factor; 0 elsewhere."""
+    L, local, real, whole = chem.L, at_local(chem), chem.real, chem.whole
+    kind, powers = q * (KIND + L), at_power(chem)
+    count = whole[kind + 2]
+    scale, _, _ = driver_scale(whole[kind], F_total, T, p)
+    for k in range(count):
+        work[local + k] = scale * work[whole[kind + KIND + k]]
+    for f in range(whole[kind + 3], whole[kind + 4]):
+        first, last = whole[at_terms(chem) + 2 * f], whole[at_terms(chem) + 2 * f + 1]
+        if first <= wanted < last:
+            under, size = 0.0, 0.0
+            for t in range(first, last):
+                term = powers + chem.factors + t * (3 + L)
+                K, _ = term_constant(real, term, T)
+                part = K * products(
+                    real, term + 3, count, DELTA * scale * F_total, work, local, L, local + 3 * L
+                )
+                under += part
+                if t == wanted:
+                    size = part
+            return real[powers + f] * size / under
+    return 0.0
+
+
+@compiled
+def parameter_slope(chem, q, kind, index, T, p, F_total, work):
+    """Explicit derivative of rate q by a parameter of the chemistry."""
+    R, real, rate = chem.R, chem.real, at_rate(chem)
+    r = work[rate + q]
+    if kind == LN_K:
+        return r if index == q else 0.0
+    if kind == E_OVER_R:
+        return r * (1.0 / real[at_law(chem) + q * LAW + 1] - 1.0 / T) if index == q else 0.0
+    if kind == LN_K_TERM or kind == H_TERM:
+        slope = -r * term_share(chem, q, index, T, p, F_total, work)
+        if kind == H_TERM:
+            term = at_power(chem) + chem.factors + index * (3 + chem.L)
+            slope *= 1.0 / real[term + 1] - 1.0 / T
+        return slope
+    if kind == ENTHALPY or kind == ENTROPY:
+        lnK = real[at_nu(chem) + q * chem.S + index] / GAS_CONSTANT
+        return work[rate + 4 * R + q] * (-lnK / T if kind == ENTHALPY else lnK)
+    return 0.0
+
+
+@inlined
+def forcing(chem, bed, ways, moved, D, y, T, f, work, out, first):
+    """df/dq at one stage for all directions, added up into out from row `first` on; work holds that stage."""
+    S, R, L = chem.S, chem.R, chem.L
+    rate, member = at_rate(chem), at_member(chem)
+    per_unit, p = bed[W_BED] / bed[F_UNIT], bed[P_UNIT] * y[R]
+    capacity, F_total = heat_capacity_flow(chem, work), 0.0
+    for s in range(S):
+        F_total += work[s]
     for d in range(D):
-        T_q = directions.H[d] / GAS_CONSTANT
+        kind, index = moved[d, 0], moved[d, 1]
+        T_q = temperature_forcing(chem, ways, D, d, kind, index, T, capacity, work)
         F_q = 0.0
         for s in range(S):
-            T_q -= work.h_RT[s] * T * directions.F[s, d]
-            F_q += directions.F[s, d]
-        T_q /= capacity
+            F_q += ways[s * D + d]
+        W_q = ways[(S + 2) * D + d]
         for q in range(R):
-            slope = work.r_T[q] * T_q + work.r[q] * directions.ln_factor[q, d]
-            slope += work.r_common[q] * F_q
-            for k in range(chem.kind[q, 2]):
-                slope += work.r_member[q, k] * directions.F[chem.member[q, k], d]
-            out[q, d] = per_unit * slope + work.r[q] * directions.W[d] / inlet.F_unit
-        drag = inlet.W / (inlet.p_unit * p)
-        out[R, d] = -drag * (
-            inlet.friction * (F_q * T + F_total * T_q)
-            + F_total * T * (directions.friction[d] + inlet.friction * directions.W[d] / inlet.W)
+            whole = q * (KIND + L)
+            slope = work[rate + 2 * R + q] * T_q + work[rate + q] * ways[(S + 4 + q) * D + d]
+            slope += work[rate + R + q] * F_q
+            for k in range(chem.whole[whole + 2]):
+                slope += work[member + q * L + k] * ways[chem.whole[whole + KIND + k] * D + d]
+            if kind >= 0:
+                slope += parameter_slope(chem, q, kind, index, T, p, F_total, work)
+            out[first + q * D + d] = per_unit * slope + work[rate + q] * W_q / bed[F_UNIT]
+        drag = bed[W_BED] / (bed[P_UNIT] * p)
+        out[first + R * D + d] = -drag * (
+            bed[FRICTION] * (F_q * T + F_total * T_q)
+            + F_total * T * (ways[(S + 3) * D + d] + bed[FRICTION] * W_q / bed[W_BED])
         )
 
 
 @compiled
-def differentiate(chem, inlet, directions, steps, count, work, tangents):
-    """Fill tangents along all directions for `count` steps; False when a linear system is singular."""
-    R = chem.nu.shape[0]
-    n = R + 1
-    D = directions.H.shape[0]
-    J, f, point = np.empty((n, n)), np.empty(n), np.empty(n)
-    M, pivot, b = np.empty((3 * n, 3 * n)), np.empty(3 * n, np.int64), np.empty((3 * n, D))
-    for i in range(n):
-        for d in range(D):
-            tangents.y0[0, i, d] = 0.0
-    for d in range(D):
-        tangents.y0[0, R, d] = directions.p[d] / inlet.p_unit
+def differentiate(chem, bed, ways, moved, D, steps, count, work, y0_d, Z_d):
+    """Derivatives of every step along D directions: y0_d (count + 1, n * D), Z_d (count, 3 * n * D).
+
+    y0_d[0] holds the derivative of the inlet state on entry. False when a linear system is singular.
+    """
+    n = chem.R + 1
+    J, f, point = np.empty(n * n), np.empty(n), np.empty(n)
+    size = 3 * n
+    M, pivot = np.empty(size * size), np.empty(size, np.int64)
     for k in range(count):
-        h = steps.edges[k + 1] - steps.edges[k]
-        dy0 = tangents.y0[k]
+        step, b = steps[k], Z_d[k]
         for i in range(3):
             for m in range(n):
-                point[m] = steps.y0[k, m] + steps.Z[k, i, m]
-            T = evaluate(chem, inlet, point, steps.T[k, i], work, f, J, True)
-            rows = b[i * n : (i + 1) * n]
-            forcing(chem, inlet, directions, point, T, f, work, rows)
+                point[m] = step[2 + m] + step[2 + n + i * n + m]
+            T = evaluate(chem, bed, point, step[2 + 4 * n + i], work, f, J, True)
+            forcing(chem, bed, ways, moved, D, point, T, f, work, b, i * n * D)
             for m in range(n):
+                row = (i * n + m) * size
                 for j in range(n):
-                    slope = J[m, j]
+                    slope = J[m * n + j]
                     for d in range(D):
-                        rows[m, d] += slope * dy0[j, d]
+                        b[(i * n + m) * D + d] += slope * y0_d[k, j * D + d]
+                for j in range(size):
+                    M[row + j] = 0.0
                 for j in range(3):
-                    for q in range(n):
-                        M[i * n + m, j * n + q] = 0.0
-                    M[i * n + m, j * n + m] = INVERSE[i, j] / h
-                for q in range(n):
-                    M[i * n + m, i * n + q] -= J[m, q]
-        if not factorise(M, pivot):
+                    M[row + j * n + m] = INVERSE[i, j] / step[1]
+                for j in range(n):
+                    M[row + i * n + j] -= J[m * n + j]
+        if not factorise(M, size, pivot):
             return False
-        substitute_many(M, pivot, b)
-        for m in range(n):
-            for d in range(D):
-                for i in range(3):
-                    tangents.Z[k, i, m, d] = b[i * n + m, d]
-                tangents.y0[k + 1, m, d] = dy0[m, d] + b[2 * n + m, d]
+        substitute_many(M, size, pivot, b, D)
+        for m in range(n * D):
+            y0_d[k + 1, m] = y0_d[k, m] + b[2 * n * D + m]
     return True

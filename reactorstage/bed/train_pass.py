@@ -6,14 +6,12 @@ pressure p, temperature T) with its derivatives; beds add places and temperature
 
 from __future__ import annotations
 
-from typing import NamedTuple
-
 import numpy as np
-from numpy.typing import NDArray
 
-from reactorstage.bed.balance import Inlet, flows, temperature_of, work_space
-from reactorstage.bed.compiled import compiled
-from reactorstage.bed.data import GAS_CONSTANT
+from reactorstage.bed import data as d_
+from reactorstage.bed.compiled import compiled, entry, inlined
+from reactorstage.bed.data import BED as BED_ROWS
+from reactorstage.bed.data import COMPOSITION, ENTHALPY, F_UNIT, GAS_CONSTANT, P_UNIT
 from reactorstage.bed.events import (
     SHARES,
     hottest,
@@ -22,12 +20,10 @@ from reactorstage.bed.events import (
     temperature_tangent,
     temperature_within,
 )
-from reactorstage.bed.integrate import DONE, TOO_COLD, TOO_HOT, Steps, integrate
-from reactorstage.bed.properties import heat_and_enthalpy
-from reactorstage.bed.tangents import Directions, Tangents, differentiate
-
-Array = NDArray[np.float64]
-Index = NDArray[np.int64]
+from reactorstage.bed.integrate import DONE, TOO_COLD, TOO_HOT, integrate
+from reactorstage.bed.layout import at_factor, at_mass, at_nu, work_length
+from reactorstage.bed.properties import heat_and_enthalpy, heat_capacity_flow, temperature_of
+from reactorstage.bed.tangents import differentiate
 
 ADD, HOLD, SET_TEMPERATURE, REMOVE_HEAT, ARRIVE, BED = 0, 1, 2, 3, 4, 5
 """Operations (code, a, b, c); numbers are positions in the input vector u, -1 for none:
@@ -39,69 +35,77 @@ EXTRAS = 5
 """Rows that a bed adds: peak temperature, its depth, depths at 10, 50 and 90 % of the rise."""
 
 
-class Stages(NamedTuple):
-    """Step sequences of all beds: counts (B,), edges (B, N+1), y0 (B, N, n), Z (B, N, 3, n), T (B, N, 3)."""
-
-    counts: Index
-    edges: Array
-    y0: Array
-    Z: Array
-    T: Array
+@compiled
+def copy_record(out, source, target, rows):
+    """Copy rows of out from one position to another."""
+    for i in range(rows):
+        for d in range(out.shape[1]):
+            out[target + i, d] = out[source + i, d]
 
 
 @compiled
-def record_temperature(chem, row, out, T_guess, work):
+def set_row(out, row, value, slopes):
+    """Write a value with its derivatives (D,)."""
+    out[row, 0] = value
+    for d in range(slopes.shape[0]):
+        out[row, d + 1] = slopes[d]
+
+
+@compiled
+def record_temperature(chem, row, out, T_guess, moved, work):
     """Temperature of a record from its flows and enthalpy, with derivatives; False when there is none."""
-    S = chem.nu.shape[1]
-    D = out.shape[1] - 1
+    S, D = chem.S, out.shape[1] - 1
     total = 0.0
     for s in range(S):
-        work.F[s] = out[row + s, 0]
-        total += work.F[s]
+        work[s] = out[row + s, 0]
+        total += work[s]
     if not total > 0.0:
         out[row + S + 2, 0] = T_guess
         return False
-    T = temperature_of(chem, work.F, out[row + S, 0], T_guess, work.cp_R, work.h_RT)
+    T = temperature_of(chem, out[row + S, 0] / GAS_CONSTANT, T_guess, work)
     out[row + S + 2, 0] = T
     if not (chem.T_low < T < chem.T_high):
         return False
-    heat_and_enthalpy(chem.coefficients, chem.edges, T, work.cp_R, work.h_RT)
-    capacity = 0.0
-    for s in range(S):
-        capacity += work.F[s] * work.cp_R[s]
-    for d in range(1, D + 1):
-        heat = out[row + S, d] / GAS_CONSTANT
+    heat_and_enthalpy(chem, T, work)
+    capacity = heat_capacity_flow(chem, work)
+    for d in range(D):
+        heat = out[row + S, d + 1] / GAS_CONSTANT
         for s in range(S):
-            heat -= work.h_RT[s] * T * out[row + s, d]
-        out[row + S + 2, d] = heat / capacity
+            heat -= work[2 * S + s] * T * out[row + s, d + 1]
+        if moved[d, 0] == ENTHALPY:
+            heat -= work[moved[d, 1]] / GAS_CONSTANT
+        out[row + S + 2, d + 1] = heat / capacity
     return True
 
 
 @compiled
-def enthalpy_at(chem, row, out, T, T_d, work, H_d):
+def enthalpy_at(chem, row, out, T, T_d, moved, work, H_d):
     """Enthalpy flow of a record's flows at T with derivatives T_d (D,); derivatives into H_d (D,)."""
-    S = chem.nu.shape[1]
-    heat_and_enthalpy(chem.coefficients, chem.edges, T, work.cp_R, work.h_RT)
-    H, capacity = 0.0, 0.0
+    S = chem.S
     for s in range(S):
-        H += out[row + s, 0] * work.h_RT[s]
-        capacity += out[row + s, 0] * work.cp_R[s]
+        work[s] = out[row + s, 0]
+    heat_and_enthalpy(chem, T, work)
+    H, capacity = 0.0, heat_capacity_flow(chem, work)
+    for s in range(S):
+        H += work[s] * work[2 * S + s]
     for d in range(H_d.shape[0]):
         H_d[d] = capacity * GAS_CONSTANT * T_d[d]
         for s in range(S):
-            H_d[d] += work.h_RT[s] * GAS_CONSTANT * T * out[row + s, d + 1]
+            H_d[d] += work[2 * S + s] * GAS_CONSTANT * T * out[row + s, d + 1]
+        if moved[d, 0] == ENTHALPY:
+            H_d[d] += work[moved[d, 1]]
     return H * GAS_CONSTANT * T
 
 
 @compiled
-def add_feed(chem, row, out, composition, flow, T, flow_d, T_d, work):
+def add_feed(chem, row, out, feed, composition, flow, T, flow_d, T_d, moved, work):
     """Add a feed of `flow` mol/s at T to a record: flows and enthalpies add."""
-    S = chem.nu.shape[1]
-    heat_and_enthalpy(chem.coefficients, chem.edges, T, work.cp_R, work.h_RT)
+    S = chem.S
+    heat_and_enthalpy(chem, T, work)
     h, cp = 0.0, 0.0
     for s in range(S):
-        h += composition[s] * work.h_RT[s] * GAS_CONSTANT * T
-        cp += composition[s] * work.cp_R[s] * GAS_CONSTANT
+        h += composition[s] * work[2 * S + s] * GAS_CONSTANT * T
+        cp += composition[s] * work[S + s] * GAS_CONSTANT
     out[row + S, 0] += flow * h
     for s in range(S):
         out[row + s, 0] += flow * composition[s]
@@ -109,226 +113,235 @@ def add_feed(chem, row, out, composition, flow, T, flow_d, T_d, work):
         out[row + S, d + 1] += flow_d[d] * h + flow * cp * T_d[d]
         for s in range(S):
             out[row + s, d + 1] += flow_d[d] * composition[s]
+        kind, index = moved[d, 0], moved[d, 1]
+        if kind == ENTHALPY:
+            out[row + S, d + 1] += flow * composition[index]
+        elif kind == COMPOSITION and index // S == feed:
+            out[row + index % S, d + 1] += flow
+            out[row + S, d + 1] += flow * work[2 * S + index % S] * GAS_CONSTANT * T
 
 
 @compiled
-def take_heat(chem, row, out, Q, Q_d, work):
+def take_heat(chem, row, out, Q, Q_d, moved, work):
     """Take Q (W) out of a record and find its temperature again."""
-    S = chem.nu.shape[1]
+    S = chem.S
     out[row + S, 0] -= Q
     for d in range(Q_d.shape[0]):
         out[row + S, d + 1] -= Q_d[d]
-    return record_temperature(chem, row, out, out[row + S + 2, 0], work)
+    return record_temperature(chem, row, out, out[row + S + 2, 0], moved, work)
 
 
 @compiled
-def bed_inlet(chem, beds, b, row, out, catalyst, activity, friction_factor):
-    """The integrator's view of bed b fed by the record at row."""
-    R, S = chem.nu.shape
-    F, factor = np.empty(S), np.empty(R)
-    F_unit, mass_flow = 0.0, 0.0
+def fill_bed(chem, beds, b, row, out, u, first, bed):
+    """The integrator's view of bed b fed by the record at row, its numbers in u from `first` on."""
+    S, mass = chem.S, at_mass(chem)
+    F_total, mass_flow = 0.0, 0.0
     for s in range(S):
-        F[s] = out[row + s, 0]
-        F_unit += F[s]
-        mass_flow += F[s] * chem.molar_mass[s]
-    for q in range(R):
-        factor[q] = activity * beds.rate_factor[b, q]
-    friction = friction_factor * GAS_CONSTANT * (beds.viscous[b] + beds.inertial[b] * mass_flow)
-    return Inlet(
-        F, out[row + S, 0], out[row + S + 2, 0], F_unit, out[row + S + 1, 0], catalyst, factor, friction
-    )
+        bed[BED_ROWS + s] = out[row + s, 0]
+        F_total += out[row + s, 0]
+        mass_flow += out[row + s, 0] * chem.real[mass + s]
+    for q in range(chem.R):
+        bed[at_factor(chem) + q] = u[first + 1] * beds.rate_factor[b, q]
+    bed[d_.H_IN], bed[d_.T_IN] = out[row + S, 0], out[row + S + 2, 0]
+    bed[F_UNIT], bed[P_UNIT], bed[d_.W_BED] = F_total, out[row + S + 1, 0], u[first]
+    bed[d_.FRICTION] = u[first + 2] * GAS_CONSTANT * (beds.viscous[b] + beds.inertial[b] * mass_flow)
 
 
-@compiled
-def active_directions(row, rows, out, du, first):
-    """Positions of the directions that reach a bed: through its inlet or through its own numbers."""
+@inlined
+def active_directions(row, rows, out, du, first, moved):
+    """Directions that reach a bed through its inlet, its numbers or the chemistry: positions and how many."""
     D = du.shape[1]
     picked, count = np.empty(D, np.int64), 0
     for d in range(D):
-        moved = du[first, d] != 0.0 or du[first + 1, d] != 0.0 or du[first + 2, d] != 0.0
+        reaches = moved[d, 0] >= 0 and moved[d, 0] != COMPOSITION
+        for i in range(3):
+            reaches = reaches or du[first + i, d] != 0.0
         for s in range(rows):
-            moved = moved or out[row + s, d + 1] != 0.0
-        if moved:
+            reaches = reaches or out[row + s, d + 1] != 0.0
+        if reaches:
             picked[count] = d
             count += 1
-    return picked[:count]
+    return picked, count
 
 
-@compiled
-def bed_directions(chem, beds, b, row, out, u, du, first, picked):
-    """Derivatives of the bed's inlet along the picked directions."""
-    R, S = chem.nu.shape
-    D = picked.shape[0]
-    F, H, p, W = np.empty((S, D)), np.empty(D), np.empty(D), np.empty(D)
-    ln_factor, friction = np.empty((R, D)), np.empty(D)
+@inlined
+def bed_directions(chem, beds, b, row, out, u, du, first, picked, D):
+    """Derivatives of the bed's inlet along the D picked directions, rows as in `tangents`, flat."""
+    S, mass = chem.S, at_mass(chem)
+    ways = np.empty((S + 4 + chem.R) * D)
     mass_flow = 0.0
     for s in range(S):
-        mass_flow += out[row + s, 0] * chem.molar_mass[s]
+        mass_flow += out[row + s, 0] * chem.real[mass + s]
     for i in range(D):
-        d = picked[i]
-        mass_d = 0.0
+        d, mass_d = picked[i], 0.0
         for s in range(S):
-            F[s, i] = out[row + s, d + 1]
-            mass_d += F[s, i] * chem.molar_mass[s]
-        H[i], p[i], W[i] = out[row + S, d + 1], out[row + S + 1, d + 1], du[first, d]
-        for q in range(R):
-            ln_factor[q, i] = du[first + 1, d] / u[first + 1]
-        friction[i] = GAS_CONSTANT * (
+            ways[s * D + i] = out[row + s, d + 1]
+            mass_d += out[row + s, d + 1] * chem.real[mass + s]
+        ways[S * D + i], ways[(S + 1) * D + i] = out[row + S, d + 1], out[row + S + 1, d + 1]
+        ways[(S + 2) * D + i] = du[first, d]
+        ways[(S + 3) * D + i] = GAS_CONSTANT * (
             du[first + 2, d] * (beds.viscous[b] + beds.inertial[b] * mass_flow)
             + u[first + 2] * beds.inertial[b] * mass_d
         )
-    return Directions(F, H, p, W, ln_factor, friction)
+        for q in range(chem.R):
+            ways[(S + 4 + q) * D + i] = du[first + 1, d] / u[first + 1]
+    return ways
 
 
-@compiled
-def write_exit(chem, inlet, row, out, y, T, work):
+@inlined
+def write_exit(chem, bed, row, out, step, work):
     """Record of the stream leaving a bed (values)."""
-    R, S = chem.nu.shape
-    flows(chem, inlet, y, work.F)
+    S, n, nu = chem.S, chem.R + 1, at_nu(chem)
+    end = 2 + n + 2 * n
     for s in range(S):
-        out[row + s, 0] = work.F[s]
-    out[row + S, 0] = inlet.H
-    out[row + S + 1, 0] = inlet.p_unit * y[R]
-    out[row + S + 2, 0] = temperature_of(chem, work.F, inlet.H, T, work.cp_R, work.h_RT)
+        total = bed[BED_ROWS + s]
+        for q in range(chem.R):
+            total += chem.real[nu + q * S + s] * bed[F_UNIT] * (step[2 + q] + step[end + q])
+        out[row + s, 0] = total
+    out[row + S, 0] = bed[d_.H_IN]
+    out[row + S + 1, 0] = bed[P_UNIT] * (step[2 + n - 1] + step[end + n - 1])
+    out[row + S + 2, 0] = step[2 + 4 * n + 2]
 
 
-@compiled
-def write_exit_tangents(chem, inlet, directions, picked, dy, row, out):
+@inlined
+def write_exit_tangents(chem, bed, ways, picked, D, y_d, row, out):
     """Derivatives of the record of the stream leaving a bed, but temperature."""
-    R, S = chem.nu.shape
-    for i in range(picked.shape[0]):
+    S, R, nu = chem.S, chem.R, at_nu(chem)
+    for i in range(D):
         d = picked[i] + 1
         for s in range(S):
-            total = directions.F[s, i]
+            total = ways[s * D + i]
             for q in range(R):
-                total += inlet.F_unit * chem.nu[q, s] * dy[q, i]
+                total += bed[F_UNIT] * chem.real[nu + q * S + s] * y_d[q * D + i]
             out[row + s, d] = total
-        out[row + S, d] = directions.H[i]
-        out[row + S + 1, d] = inlet.p_unit * dy[R, i]
+        out[row + S, d] = ways[S * D + i]
+        out[row + S + 1, d] = bed[P_UNIT] * y_d[R * D + i]
 
 
-@compiled
-def write_places(chem, inlet, steps, count, directions, tangents, picked, row, exit_row, extra, out, work):
+@inlined
+def write_places(chem, bed, steps, count, ways, moved, y0_d, Z_d, picked, D, row, exit_row, extra, out, work):
     """Peak temperature and the depths at 10, 50 and 90 % of the rise, with derivatives."""
-    R, S = chem.nu.shape
-    y, share, T_d = np.empty(R + 1), np.empty(3), np.empty(picked.shape[0])
-    k, theta, T = hottest(chem, inlet, steps, count, y, share, work)
+    S = chem.S
+    y, T_d = np.empty(chem.R + 1), np.empty(D)
+    k, theta, T = hottest(chem, bed, steps, count, y, work)
     out[extra, 0] = T
-    out[extra + 1, 0] = steps.edges[k] + theta * (steps.edges[k + 1] - steps.edges[k])
-    T = temperature_within(chem, inlet, steps, k, theta, T, y, share, work)
-    temperature_tangent(chem, inlet, directions, tangents, k, theta, T, share, work, T_d)
-    for i in range(picked.shape[0]):
+    out[extra + 1, 0] = steps[k, 0] + theta * steps[k, 1]
+    temperature_tangent(chem, bed, ways, moved, D, y0_d[k], Z_d[k], theta, T, work, T_d)
+    for i in range(D):
         out[extra, picked[i] + 1] = T_d[i]
-    T_out = out[exit_row + S + 2, 0]
-    rise = T_out - inlet.T
+    rise = out[exit_row + S + 2, 0] - bed[d_.T_IN]
     for j in range(SHARES.shape[0]):
         out[extra + 2 + j, 0] = np.nan
-        if abs(rise) < 1e-6:
-            continue
-        target = inlet.T + SHARES[j] * rise
-        k, theta, T = passing(chem, inlet, steps, count, target, rise > 0.0, y, share, work)
+        target = bed[d_.T_IN] + SHARES[j] * rise
+        k = -1
+        if abs(rise) >= 1e-6:
+            k, theta, T = passing(chem, bed, steps, count, target, rise > 0.0, y, work)
         if k < 0:
             continue
-        h = steps.edges[k + 1] - steps.edges[k]
-        out[extra + 2 + j, 0] = steps.edges[k] + theta * h
-        slope = slope_within(chem, inlet, steps, k, theta, T, work) / h
-        temperature_tangent(chem, inlet, directions, tangents, k, theta, T, share, work, T_d)
-        for i in range(picked.shape[0]):
+        out[extra + 2 + j, 0] = steps[k, 0] + theta * steps[k, 1]
+        slope = slope_within(chem, bed, steps[k], theta, T, work) / steps[k, 1]
+        temperature_tangent(chem, bed, ways, moved, D, y0_d[k], Z_d[k], theta, T, work, T_d)
+        for i in range(D):
             d = picked[i] + 1
             wanted = (1.0 - SHARES[j]) * out[row + S + 2, d] + SHARES[j] * out[exit_row + S + 2, d]
             out[extra + 2 + j, d] = (wanted - T_d[i]) / slope
 
 
-@compiled
+@inlined
 def run_bed(
-    chem, beds, b, row, exit_row, extra, u, du, first, tolerance, frozen, stages, tangents, out, work
-):
+    chem, beds, b, row, exit_row, extra, u, du, first, moved, tolerance, frozen, places, stages, reference,
+    out, work,
+):  # fmt: skip
     """Integrate bed b between two records; (status, depth reached, evaluations)."""
-    S = chem.nu.shape[1]
-    rows = S + 3
+    S, n = chem.S, chem.R + 1
     if u[first] <= 0.0:
-        out[exit_row : exit_row + rows] = out[row : row + rows]
-        out[extra] = out[row + S + 2]
+        copy_record(out, row, exit_row, S + 3)
+        copy_record(out, row + S + 2, extra, 1)
+        for i in range(2, EXTRAS):
+            out[extra + i, 0] = np.nan
         stages.counts[b] = 0
         return DONE, 1.0, 0
-    inlet = bed_inlet(chem, beds, b, row, out, u[first], u[first + 1], u[first + 2])
-    steps = Steps(stages.edges[b], stages.y0[b], stages.Z[b], stages.T[b])
-    status, depth, count, calls = integrate(chem, inlet, tolerance, frozen, stages.counts[b], steps, work)
+    bed = np.empty(BED_ROWS + S + chem.R)
+    fill_bed(chem, beds, b, row, out, u, first, bed)
+    steps = stages.steps[b]
+    status, depth, count, calls = integrate(
+        chem, bed, tolerance, frozen, reference.counts[b], steps, reference.steps[b], work
+    )
     if status != DONE:
         return status, depth, calls
     stages.counts[b] = count
-    y = steps.y0[count - 1] + steps.Z[count - 1, 2]
-    write_exit(chem, inlet, exit_row, out, y, steps.T[count - 1, 2], work)
-    picked = active_directions(row, rows, out, du, first)
-    directions = bed_directions(chem, beds, b, row, out, u, du, first, picked)
-    n = y.shape[0]
-    sized = Tangents(
-        tangents[: (count + 1) * n * picked.shape[0]].reshape((count + 1, n, picked.shape[0])),
-        tangents[(count + 1) * n * picked.shape[0] : (4 * count + 1) * n * picked.shape[0]].reshape(
-            (count, 3, n, picked.shape[0])
-        ),
-    )
-    if picked.shape[0] > 0:
-        differentiate(chem, inlet, directions, steps, count, work, sized)
-        write_exit_tangents(chem, inlet, directions, picked, sized.y0[count], exit_row, out)
-    record_temperature(chem, exit_row, out, out[exit_row + S + 2, 0], work)
-    write_places(chem, inlet, steps, count, directions, sized, picked, row, exit_row, extra, out, work)
+    write_exit(chem, bed, exit_row, out, steps[count - 1], work)
+    picked, D = active_directions(row, S + 3, out, du, first, moved)
+    ways = bed_directions(chem, beds, b, row, out, u, du, first, picked, D)
+    y0_d, Z_d, mine = np.empty((count + 1, n * D)), np.empty((count, 3 * n * D)), np.empty((D, 2), np.int64)
+    for i in range(D):
+        mine[i, 0], mine[i, 1] = moved[picked[i], 0], moved[picked[i], 1]
+        for m in range(n):
+            y0_d[0, m * D + i] = 0.0
+        y0_d[0, (n - 1) * D + i] = ways[(S + 1) * D + i] / bed[P_UNIT]
+    if D > 0:
+        differentiate(chem, bed, ways, mine, D, steps, count, work, y0_d, Z_d)
+        write_exit_tangents(chem, bed, ways, picked, D, y0_d[count], exit_row, out)
+    record_temperature(chem, exit_row, out, out[exit_row + S + 2, 0], moved, work)
+    if places:
+        write_places(
+            chem, bed, steps, count, ways, mine, y0_d, Z_d, picked, D, row, exit_row, extra, out, work
+        )
     return DONE, 1.0, calls
 
 
-@compiled
-def train_pass(chem, beds, operations, feeds, u, du, tolerance, frozen, stages, out):
+@entry
+def train_pass(
+    chem, beds, operations, feeds, u, du, moved, tolerance, frozen, places, stages, reference, out
+):  # fmt: skip
     """Run the operations; out (K (S + 3) + B EXTRAS, 1 + D) holds values and derivatives by records.
 
-    feeds (NF, S) are molar compositions, u (U,) the inputs, du (U, D) their directions. Returns (status,
-    operation where it stopped, depth reached there, evaluations, steps).
+    feeds (NF, S) are molar compositions, u (U,) the inputs, du (U, D) their directions, moved (D, 2) the
+    parameter that a direction moves (kind, index; -1 for none). With frozen true the steps of `reference`
+    are taken. The rows of the beds are filled when `places` is true. Returns (status, operation where it
+    stopped, depth reached there, evaluations, steps).
     """
-    S = chem.nu.shape[1]
-    D = du.shape[1]
+    S, D, K = chem.S, du.shape[1], operations.shape[0]
     rows = S + 3
-    K = operations.shape[0]
-    n = chem.nu.shape[0] + 1
-    work = work_space(chem.nu.shape[0], S, chem.member.shape[1])
-    tangents = np.empty((4 * stages.y0.shape[1] + 1) * n * max(D, 1))
+    work = np.zeros(work_length(chem))
     Q_d, H_d = np.empty(D), np.empty(D)
-    out[:] = 0.0
+    for i in range(out.shape[0]):
+        for d in range(D + 1):
+            out[i, d] = 0.0
     calls, taken = 0, 0
     for k in range(K):
         code, a, b, c = operations[k]
         row = k * rows
         if k > 0:
-            out[row : row + rows] = out[row - rows : row]
+            copy_record(out, row - rows, row, rows)
         if code == ADD:
-            first = out[row + S + 2, 0] == 0.0
-            add_feed(chem, row, out, feeds[a], u[b], u[c], du[b], du[c], work)
-            record_temperature(chem, row, out, u[c] if first else out[row + S + 2, 0], work)
+            T_before = out[row + S + 2, 0]
+            add_feed(chem, row, out, a, feeds[a], u[b], u[c], du[b], du[c], moved, work)
+            record_temperature(chem, row, out, u[c] if T_before == 0.0 else T_before, moved, work)
         elif code == SET_TEMPERATURE:
-            out[row + S, 0] = enthalpy_at(chem, row, out, u[a], du[a], work, H_d)
-            out[row + S, 1:] = H_d
-            out[row + S + 2, 0] = u[a]
-            out[row + S + 2, 1:] = du[a]
+            H = enthalpy_at(chem, row, out, u[a], du[a], moved, work, H_d)
+            set_row(out, row + S, H, H_d)
+            set_row(out, row + S + 2, u[a], du[a])
         elif code == REMOVE_HEAT:
-            if not take_heat(chem, row, out, u[a], du[a], work):
+            if not take_heat(chem, row, out, u[a], du[a], moved, work):
                 return (TOO_HOT if u[a] < 0.0 else TOO_COLD), k, 0.0, calls, taken
         elif code == ARRIVE:
             if b >= 0:
-                out[row + S + 1, 0] = u[b]
-                out[row + S + 1, 1:] = du[b]
+                set_row(out, row + S + 1, u[b], du[b])
             if c >= 0:
-                H = enthalpy_at(chem, row, out, u[a], du[a], work, H_d)
+                H = enthalpy_at(chem, row, out, u[a], du[a], moved, work, H_d)
                 Q = out[row + S, 0] - H
-                Q_d[:] = out[row + S, 1:] - H_d
+                for d in range(D):
+                    Q_d[d] = out[row + S, d + 1] - H_d[d]
                 for j in range(c, k):
-                    if not take_heat(chem, j * rows, out, Q, Q_d, work):
+                    if not take_heat(chem, j * rows, out, Q, Q_d, moved, work):
                         return (TOO_HOT if Q < 0.0 else TOO_COLD), j, 0.0, calls, taken
-                out[row + S, 0] = H
-                out[row + S, 1:] = H_d
-                out[row + S + 2, 0] = u[a]
-                out[row + S + 2, 1:] = du[a]
+                set_row(out, row + S, H, H_d)
+                set_row(out, row + S + 2, u[a], du[a])
         elif code == BED:
             status, depth, used = run_bed(
-                chem, beds, a, row - rows, row, K * rows + a * EXTRAS, u, du, b, tolerance, frozen, stages,
-                tangents, out, work,
+                chem, beds, a, row - rows, row, K * rows + a * EXTRAS, u, du, b, moved, tolerance, frozen,
+                places, stages, reference, out, work,
             )  # fmt: skip
             calls += used
             taken += stages.counts[a]

@@ -14,7 +14,7 @@ from reactorstage.case.build import data_file, extras
 from reactorstage.case.checks_feeds import check_feeds
 from reactorstage.case.checks_train import check_train
 from reactorstage.case.fields import Raw
-from reactorstage.case.marks import Path_
+from reactorstage.case.marks import TreePath
 from reactorstage.case.units import (
     UnitProblem,
     check_unit,
@@ -80,7 +80,7 @@ def owners_of(case: CaseWritten, reactions: Mapping[str, Reaction]) -> list[str]
     ]
 
 
-def check_quantity(name: str, path: Path_, owners: Sequence[str], findings: Findings) -> None:
+def check_quantity(name: str, path: TreePath, owners: Sequence[str], findings: Findings) -> None:
     """The owner of a quantity must be there; whether it has such a quantity is known higher up."""
     if not name or any(name.startswith(f"{owner}.") and name[len(owner) + 1 :].strip() for owner in owners):
         return
@@ -136,7 +136,7 @@ def plain_name(name: str) -> str:
 
 
 def check_species(name: str, species: Species, folder: Path, findings: Findings) -> None:
-    path: Path_ = ("species", name)
+    path: TreePath = ("species", name)
     given = [key for key in INLINE if getattr(species, key) is not None]
     missing = [key.replace("_", " ") for key in INLINE if key not in given]
     if species.gas_data is not None and given:
@@ -153,7 +153,7 @@ def check_species(name: str, species: Species, folder: Path, findings: Findings)
 
 
 def check_reaction(name: str, reaction: Reaction, case: CaseWritten, findings: Findings) -> None:
-    path: Path_ = ("reactions", name)
+    path: TreePath = ("reactions", name)
     for species in reaction.orders or {}:
         if case.species and species not in case.species:
             hint = one_of(species, list(case.species))
@@ -169,7 +169,7 @@ def check_reaction(name: str, reaction: Reaction, case: CaseWritten, findings: F
     check_constant(path, reaction, case, findings)
 
 
-def check_constant(path: Path_, reaction: Reaction, case: CaseWritten, findings: Findings) -> None:
+def check_constant(path: TreePath, reaction: Reaction, case: CaseWritten, findings: Findings) -> None:
     """The unit of the rate constant against basis, driver and orders."""
     orders = order_sum(reaction, case.species)
     text = reaction.constant.is_.text
@@ -198,7 +198,7 @@ def order_sum(reaction: Reaction, species: Iterable[str]) -> float | None:
 def check_levels(case: CaseWritten, findings: Findings) -> None:
     levels: dict[str, Level] = extras(case.heat_levels) if case.heat_levels else {}
     for name, level in levels.items():
-        path: Path_ = ("heat levels", name)
+        path: TreePath = ("heat levels", name)
         one_of_two(level, ("heats up to", "cools down to"), path, name, findings)
         one_of_two(level, ("costs", "earns"), path, name, findings)
         for key in ("costs", "earns"):
@@ -210,7 +210,7 @@ def check_levels(case: CaseWritten, findings: Findings) -> None:
                     findings.add((*path, key), found.message, found.hint)
 
 
-def one_of_two(model: object, keys: tuple[str, str], path: Path_, name: str, findings: Findings) -> None:
+def one_of_two(model: object, keys: tuple[str, str], path: TreePath, name: str, findings: Findings) -> None:
     given = [key for key in keys if getattr(model, key.replace(" ", "_")) is not None]
     if len(given) == 2:
         findings.add(
@@ -223,7 +223,7 @@ def one_of_two(model: object, keys: tuple[str, str], path: Path_, name: str, fin
 def check_price(
     label: str, price: Price, case: CaseWritten, owners: Sequence[str], findings: Findings
 ) -> None:
-    path: Path_ = ("prices", label)
+    path: TreePath = ("prices", label)
     one_of_two(price, ("costs", "earns"), path, label, findings)
     check_quantity(price.of, (*path, "of"), owners, findings)
     if label in OWN_MONEY or label.startswith("heat of "):
@@ -234,7 +234,7 @@ def check_price(
         check_money(getattr(price, key), (*path, key), case, findings)
 
 
-def check_money(raw: Raw | None, path: Path_, case: CaseWritten, findings: Findings) -> None:
+def check_money(raw: Raw | None, path: TreePath, case: CaseWritten, findings: Findings) -> None:
     """A price whose quantity is known only later must at least be money of this case."""
     if raw is None or not raw.text or not case.currency:
         return
@@ -252,7 +252,7 @@ def check_money(raw: Raw | None, path: Path_, case: CaseWritten, findings: Findi
 def check_limit(
     label: str, limit: LimitWritten, case: CaseWritten, owners: Sequence[str], findings: Findings
 ) -> None:
-    path: Path_ = ("limits", label)
+    path: TreePath = ("limits", label)
     check_quantity(limit.of, (*path, "of"), owners, findings)
     if limit.at_most is None and limit.at_least is None and limit.between is None and not limit.exceptions:
         findings.add(path, f"{label} has no bound", "give `at most`, `at least`, or `between: A and B`", True)
@@ -262,7 +262,7 @@ def check_limit(
         check_exception(limit, owner, exception, (*path, "except", owner), owners, findings)
 
 
-def check_bounds(limit: LimitException, path: Path_, findings: Findings) -> None:
+def check_bounds(limit: LimitException, path: TreePath, findings: Findings) -> None:
     """Units that can be read, and a lower bound not above the upper one."""
     for key in ("at most", "at least", "keep away"):
         raw: Raw | None = getattr(limit, key.replace(" ", "_"))
@@ -284,7 +284,7 @@ def check_exception(
     limit: LimitWritten,
     owner: str,
     exception: LimitException,
-    path: Path_,
+    path: TreePath,
     owners: Sequence[str],
     findings: Findings,
 ) -> None:

@@ -6,7 +6,7 @@ from collections.abc import Mapping
 
 from reactorstage.case.build import free_beds, rest_of
 from reactorstage.case.fields import Number
-from reactorstage.case.marks import Path_
+from reactorstage.case.marks import TreePath
 from reactorstage.case.units import display_unit, shown, to_display
 from reactorstage.case.validate import Findings
 from reactorstage.case.word_fields import one_of
@@ -24,7 +24,7 @@ def check_feeds(case: CaseWritten, findings: Findings) -> None:
 
 
 def check_composition(name: str, feed: FeedWritten, case: CaseWritten, findings: Findings) -> None:
-    path: Path_ = ("feeds", name, "composition")
+    path: TreePath = ("feeds", name, "composition")
     for species in feed.composition:
         if case.species and species not in case.species:
             hint = one_of(species, list(case.species))
@@ -35,7 +35,7 @@ def check_composition(name: str, feed: FeedWritten, case: CaseWritten, findings:
     check_sum(f"the composition of {name}", feed.composition, known, 1.0, "fraction", path, findings)
 
 
-def one_rest(entries: Mapping[str, object | None], path: Path_, findings: Findings) -> bool:
+def one_rest(entries: Mapping[str, object | None], path: TreePath, findings: Findings) -> bool:
     """False, and reported, when `rest` is written more than once."""
     rests = [name for name, entry in entries.items() if entry is None]
     for name in rests[1:]:
@@ -49,7 +49,7 @@ def check_sum(
     known: float,
     whole: float,
     kind: str,
-    path: Path_,
+    path: TreePath,
     findings: Findings,
 ) -> None:
     """The entries must make the whole, or leave room for the rest."""
@@ -65,7 +65,7 @@ def check_sum(
 
 
 def check_split(name: str, split: SplitWritten, flow: Number, findings: Findings) -> None:
-    path: Path_ = ("feeds", name, "split", "now")
+    path: TreePath = ("feeds", name, "split", "now")
     entries = {bed: entry for bed, entry in split.now.items() if entry is not None}
     check_free(name, split, findings)
     if not one_rest(split.now, path, findings):
@@ -89,7 +89,7 @@ def check_split(name: str, split: SplitWritten, flow: Number, findings: Findings
 
 def check_free(name: str, split: SplitWritten, findings: Findings) -> None:
     """What `free` names must be there, and something must take what is left."""
-    path: Path_ = ("feeds", name, "split")
+    path: TreePath = ("feeds", name, "split")
     named, rest = free_beds(split), rest_of(split)
     for bed in named:
         if bed not in split.now:

@@ -10,7 +10,7 @@ from itertools import pairwise
 
 from reactorstage.case.build import extras
 from reactorstage.case.fields import Number
-from reactorstage.case.marks import Path_
+from reactorstage.case.marks import TreePath
 from reactorstage.case.units import shown
 from reactorstage.case.validate import Findings
 from reactorstage.case.word_fields import one_of
@@ -33,7 +33,7 @@ class Part:
     """A section with its path; `next_bed` is the bed that the stream meets after it (empty: none)."""
 
     owner: str
-    path: Path_
+    path: TreePath
     body: Bed | tuple[StepWritten, ...]
 
     @property
@@ -42,7 +42,7 @@ class Part:
         return f"bed {number}" if number else ""
 
     @property
-    def steps(self) -> Iterator[tuple[Path_, StepWritten]]:
+    def steps(self) -> Iterator[tuple[TreePath, StepWritten]]:
         body = () if isinstance(self.body, Bed) else self.body
         return (((*self.path, i), step) for i, step in enumerate(body))
 
@@ -124,7 +124,7 @@ def check_takes(parts: list[Part], findings: Findings) -> None:
 
 def check_uses(parts: list[Part], case: CaseWritten, findings: Findings) -> None:
     """Feeds named by steps, and steps demanded by feeds."""
-    uses: dict[str, list[tuple[Path_, str]]] = {name: [] for name in case.feeds}
+    uses: dict[str, list[tuple[TreePath, str]]] = {name: [] for name in case.feeds}
     for part in parts:
         for path, step in part.steps:
             key, name = ("take", step.take) if step.take is not None else ("inject", step.inject)
@@ -148,12 +148,12 @@ def check_uses(parts: list[Part], case: CaseWritten, findings: Findings) -> None
 
 
 def check_split_uses(
-    name: str, split: list[str], uses: list[tuple[Path_, str]], beds: list[str], findings: Findings
+    name: str, split: list[str], uses: list[tuple[TreePath, str]], beds: list[str], findings: Findings
 ) -> None:
     """Every share has its step and every step its share."""
     served = [bed for _, bed in uses]
     for bed in split:
-        path: Path_ = ("feeds", name, "split", "now", bed)
+        path: TreePath = ("feeds", name, "split", "now", bed)
         if bed not in beds:
             findings.add(path, f"there is no {shown(bed)} in the train", one_of(bed, beds), True)
         elif bed not in served:
@@ -170,7 +170,7 @@ def check_split_uses(
 
 def check_device(
     part: Part,
-    path: Path_,
+    path: TreePath,
     step: StepWritten,
     case: CaseWritten,
     beds: Mapping[str, Part],
@@ -192,7 +192,7 @@ def check_device(
     check_levels_of(path, device, case, findings)
 
 
-def check_holds(part: Part, path: Path_, holds: str, beds: Mapping[str, Part], findings: Findings) -> None:
+def check_holds(part: Part, path: TreePath, holds: str, beds: Mapping[str, Part], findings: Findings) -> None:
     match = re.fullmatch(r"(bed \d+)\.inlet temperature", holds)
     if not part.next_bed:
         findings.add(
@@ -210,7 +210,9 @@ def check_holds(part: Part, path: Path_, holds: str, beds: Mapping[str, Part], f
         findings.add(path, message, f"add `inlet temperature: ...` to {part.next_bed}, or write `to:` here")
 
 
-def check_levels_of(path: Path_, device: HeatStep | CoolStep, case: CaseWritten, findings: Findings) -> None:
+def check_levels_of(
+    path: TreePath, device: HeatStep | CoolStep, case: CaseWritten, findings: Findings
+) -> None:
     """Levels must be there and work in the right direction."""
     key, heats = device.levels_key, isinstance(device, HeatStep)
     levels: dict[str, Level] = extras(case.heat_levels) if case.heat_levels else {}
@@ -259,15 +261,14 @@ def given(device: HeatStep | CoolStep) -> list[str]:
 
 def check_held(parts: list[Part], beds: Mapping[str, Part], findings: Findings) -> None:
     """Each inlet temperature that is given is made by exactly one device, in the section before the bed."""
+    holding: dict[str, list[TreePath]] = {}
+    for part in parts:
+        for path, step in part.steps:
+            if may_hold(step):
+                verb = "heat" if step.heat else "cool"
+                holding.setdefault(part.next_bed, []).append((*path, verb, "holds"))
     for owner, bed in beds.items():
-        wanted = f"{owner}.inlet temperature"
-        makers = [
-            (*path, "heat" if step.heat else "cool", "holds")
-            for part in parts
-            if part.next_bed == owner
-            for path, step in part.steps
-            if may_hold(step)
-        ]
+        wanted, makers = f"{owner}.inlet temperature", holding.get(owner, [])
         for path in makers[1:]:
             findings.add(path, f"{wanted} is already held by another device", "let one device hold it")
         if not makers and getattr(bed.body, "inlet_temperature", None) is not None:
@@ -321,7 +322,7 @@ def has_pressure_drop(factor: Number) -> bool:
     return factor.free or (factor.now != 0.0 and not math.isnan(factor.now))
 
 
-def check_pressure(owner: str, bed: Bed, path: Path_, findings: Findings) -> None:
+def check_pressure(owner: str, bed: Bed, path: TreePath, findings: Findings) -> None:
     if owner == "bed 1" and bed.inlet_pressure is None:
         findings.add(path, "bed 1 has no inlet pressure", "add `inlet pressure: ... bar(a)`", True)
     elif owner != "bed 1" and bed.inlet_pressure is not None:

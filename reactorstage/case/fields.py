@@ -48,11 +48,12 @@ class Finding:
     path: tuple[str | int, ...]
     message: str
     hint: str = ""
+    on_key: bool = False
 
 
-def problem(message: str, hint: str = "") -> PydanticCustomError:
+def problem(message: str, hint: str = "", on_key: bool = False) -> PydanticCustomError:
     """An error of ours in the form that pydantic carries to the top."""
-    return PydanticCustomError(OWN_ERROR, "{message}", {"message": message, "hint": hint})
+    return PydanticCustomError(OWN_ERROR, "{message}", {"message": message, "hint": hint, "on_key": on_key})
 
 
 def raise_all(findings: Sequence[Finding]) -> None:
@@ -60,7 +61,10 @@ def raise_all(findings: Sequence[Finding]) -> None:
     if findings:
         raise ValidationError.from_exception_data(
             "value",
-            [InitErrorDetails(type=problem(f.message, f.hint), loc=f.path, input=None) for f in findings],
+            [
+                InitErrorDetails(type=problem(f.message, f.hint, f.on_key), loc=f.path, input=None)
+                for f in findings
+            ],
         )
 
 
@@ -188,7 +192,7 @@ def range_keys(raw: Mapping[str, Any]) -> list[Finding]:
     """Missing and unknown keys of a {now, from, to}."""
     wanted, advice = ("now", "from", "to"), "a free number is written {now: ..., from: ..., to: ...}"
     unknown = [
-        Finding((key,), f"{shown(key)} is not a key of a free number", advice)
+        Finding((key,), f"{shown(key)} is not a key of a free number", advice, True)
         for key in raw
         if key not in wanted
     ]

@@ -30,7 +30,7 @@ class Unreadable:
 
 UNREADABLE = Unreadable()
 Tree: TypeAlias = "dict[str, Tree] | list[Tree] | str | Unreadable | None"
-Path_: TypeAlias = "tuple[str | int, ...]"
+TreePath: TypeAlias = "tuple[str | int, ...]"
 
 
 @dataclass(frozen=True)
@@ -73,10 +73,10 @@ class Marked:
     """A tree with its marks (by path) and the problems met while reading it."""
 
     tree: Tree
-    marks: dict[Path_, Mark]
+    marks: dict[TreePath, Mark]
     problems: list[Problem] = field(default_factory=list)
 
-    def mark(self, path: Path_) -> Mark:
+    def mark(self, path: TreePath) -> Mark:
         """The mark of a path or, when the path is not in the file, of the nearest one above it."""
         while path not in self.marks:
             path = path[:-1]
@@ -148,7 +148,7 @@ class _Reader:
     def __init__(self, text: Text, content: str):
         self.text, self.content = text, content
         self.problems: list[Problem] = []
-        self.marks: dict[Path_, Mark] = {}
+        self.marks: dict[TreePath, Mark] = {}
         self.events: Iterator[Any] = iter(())
 
     def whole(self) -> Marked:
@@ -172,7 +172,7 @@ class _Reader:
     def report(self, event: Any, message: str, hint: str) -> None:
         self.problems.append(self.place(event).problem(message, hint))
 
-    def node(self, event: Any, path: Path_, key: Place | None) -> Tree:
+    def node(self, event: Any, path: TreePath, key: Place | None) -> Tree:
         scalar = isinstance(event, yaml.ScalarEvent | yaml.AliasEvent)
         if path not in self.marks:
             self.marks[path] = Mark(self.place(event), key, scalar)
@@ -204,7 +204,7 @@ class _Reader:
         if getattr(event, "tag", None):
             self.report(event, "a tag (!) is not allowed", "write the plain value")
 
-    def mapping(self, path: Path_) -> dict[str, Tree]:
+    def mapping(self, path: TreePath) -> dict[str, Tree]:
         tree: dict[str, Tree] = {}
         for event in self.events:
             if isinstance(event, yaml.MappingEndEvent):
@@ -217,7 +217,7 @@ class _Reader:
                 tree[key] = self.node(value, (*path, key), place)
         return tree
 
-    def key(self, event: Any, tree: dict[str, Tree], path: Path_) -> str | None:
+    def key(self, event: Any, tree: dict[str, Tree], path: TreePath) -> str | None:
         """The text of a key; None (and a report) when the entry cannot be used."""
         if not isinstance(event, yaml.ScalarEvent):
             self.report(event, "a key must be plain words", "write `key: value`")
@@ -237,7 +237,7 @@ class _Reader:
             return key
         return None
 
-    def sequence(self, path: Path_) -> list[Tree]:
+    def sequence(self, path: TreePath) -> list[Tree]:
         tree: list[Tree] = []
         for event in self.events:
             if isinstance(event, yaml.SequenceEndEvent):

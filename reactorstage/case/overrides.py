@@ -10,7 +10,7 @@ from collections.abc import Mapping, Sequence
 from difflib import get_close_matches
 
 from reactorstage.case.checks import plain_name
-from reactorstage.case.marks import Mark, Marked, Path_, Place, Text, Tree
+from reactorstage.case.marks import Mark, Marked, Place, Text, Tree, TreePath
 from reactorstage.case.resolve import BED, branch, get, put, sections, transplant
 from reactorstage.case.units import shown
 from reactorstage.case.word_fields import REST
@@ -20,7 +20,7 @@ from reactorstage.errors import CallError
 OPTION = "--set"
 LIMIT_KEYS = ("at most", "at least", "keep away", "soft")
 OTHER_PRICE = {"costs": "earns", "earns": "costs"}
-Targets = dict[str, list[Path_]]
+Targets = dict[str, list[TreePath]]
 
 
 class CannotSet(ValueError):
@@ -55,7 +55,7 @@ def keys(tree: Tree, *path: str) -> list[str]:
     return list(found) if isinstance(found, dict) else []
 
 
-def device_names(tree: Tree, path: Path_) -> Targets:
+def device_names(tree: Tree, path: TreePath) -> Targets:
     """Heat and exit temperature of the heaters and coolers of one section, where the case gives them."""
     targets: Targets = {}
     steps = get(tree, path)
@@ -93,7 +93,7 @@ def level_names(tree: Tree) -> Targets:
     }
 
 
-def find(name: str, targets: Targets) -> list[Path_]:
+def find(name: str, targets: Targets) -> list[TreePath]:
     """The paths for a name. Raises CannotSet with the nearest names."""
     plain = {plain_name(known): known for known in targets}
     if plain_name(name) in plain:
@@ -104,7 +104,7 @@ def find(name: str, targets: Targets) -> list[Path_]:
     )
 
 
-def write(marked: Marked, path: Path_, value: Tree, marks: Sequence[tuple[Path_, Mark]]) -> None:
+def write(marked: Marked, path: TreePath, value: Tree, marks: Sequence[tuple[TreePath, Mark]]) -> None:
     """Put a value at a path, into `now` when a free number stands there. Raises CannotSet."""
     old = get(marked.tree, path)
     if old == REST:
@@ -140,13 +140,13 @@ def override(marked: Marked, overrides: Sequence[str]) -> None:
             raise CallError(f"{OPTION} {text}: {error.message}{hint}") from None
 
 
-def change(marked: Marked, variant: Marked) -> list[tuple[Path_, str, str, bool]]:
+def change(marked: Marked, variant: Marked) -> list[tuple[TreePath, str, str, bool]]:
     """Apply the `changes` of a variant; what cannot be applied comes back as findings in the variant."""
     targets = settable(marked.tree)
-    findings: list[tuple[Path_, str, str, bool]] = []
+    findings: list[tuple[TreePath, str, str, bool]] = []
     changes = get(variant.tree, ("changes",))
     for name, value in changes.items() if isinstance(changes, dict) else ():
-        path: Path_ = ("changes", name)
+        path: TreePath = ("changes", name)
         try:
             for target in find(name, targets):
                 write(marked, target, value, branch(variant, path))

@@ -10,12 +10,12 @@ import re
 from collections.abc import Iterable
 from copy import deepcopy
 
-from reactorstage.case.marks import Mark, Marked, Path_, Tree
+from reactorstage.case.marks import Mark, Marked, Tree, TreePath
 
 BED = re.compile(r"bed [1-9][0-9]*")
 
 
-def get(tree: Tree, path: Path_) -> Tree:
+def get(tree: Tree, path: TreePath) -> Tree:
     """The value at a path; None when there is none."""
     for key in path:
         if isinstance(tree, dict) and isinstance(key, str):
@@ -27,7 +27,7 @@ def get(tree: Tree, path: Path_) -> Tree:
     return tree
 
 
-def put(marked: Marked, path: Path_, value: Tree, mark: Mark) -> None:
+def put(marked: Marked, path: TreePath, value: Tree, mark: Mark) -> None:
     """Write a value at a path whose parent is there; marks below the path are forgotten."""
     parent = get(marked.tree, path[:-1])
     key = path[-1]
@@ -35,24 +35,24 @@ def put(marked: Marked, path: Path_, value: Tree, mark: Mark) -> None:
         isinstance(parent, list) and isinstance(key, int)
     ):
         parent[key] = value  # type: ignore[index]
-        for old in below(marked, path):
+        for old in below(marked, path) if path in marked.marks else ():
             del marked.marks[old]
         marked.marks[path] = mark
 
 
-def below(marked: Marked, path: Path_) -> list[Path_]:
+def below(marked: Marked, path: TreePath) -> list[TreePath]:
     """Every marked path at or under a path."""
     return [p for p in marked.marks if p[: len(path)] == path]
 
 
-def transplant(value: Tree, marks: Iterable[tuple[Path_, Mark]], marked: Marked, path: Path_) -> None:
+def transplant(value: Tree, marks: Iterable[tuple[TreePath, Mark]], marked: Marked, path: TreePath) -> None:
     """Put a copy of a value at a path, with marks given relative to it."""
     found = list(marks)
     put(marked, path, deepcopy(value), dict(found)[()])
     marked.marks.update({(*path, *relative): mark for relative, mark in found})
 
 
-def branch(marked: Marked, path: Path_) -> list[tuple[Path_, Mark]]:
+def branch(marked: Marked, path: TreePath) -> list[tuple[TreePath, Mark]]:
     """Marks at and under a path, relative to it."""
     return [(p[len(path) :], marked.marks[p]) for p in below(marked, path)]
 
@@ -72,14 +72,14 @@ def resolve(marked: Marked) -> None:
         take_apart(marked, path)
 
 
-def sections(tree: Tree) -> list[Path_]:
+def sections(tree: Tree) -> list[TreePath]:
     """Paths of the sections of the train."""
     train = get(tree, ("train",))
     items = enumerate(train) if isinstance(train, list) else []
     return [("train", i, next(iter(item))) for i, item in items if isinstance(item, dict) and len(item) == 1]
 
 
-def merge(marked: Marked, source: Path_, targets: list[Path_]) -> None:
+def merge(marked: Marked, source: TreePath, targets: list[TreePath]) -> None:
     """Copy each key of the mapping at `source` into the targets that do not have it."""
     block = get(marked.tree, source)
     for key, value in block.items() if isinstance(block, dict) else ():
@@ -102,7 +102,7 @@ def forget_backward(marked: Marked, names: list[str]) -> None:
                 del reaction["backward"], marked.marks[path]
 
 
-def take_apart(marked: Marked, path: Path_) -> None:
+def take_apart(marked: Marked, path: TreePath) -> None:
     """Write `between: A and B` as at least A, at most B; anything else is left for the reader to refuse."""
     limit, text = get(marked.tree, path[:-1]), get(marked.tree, path)
     parts = text.split(" and ") if isinstance(text, str) else []

@@ -9,7 +9,7 @@ from typing import Any, TypeVar, get_args, get_origin
 from pydantic import ValidationError
 
 from reactorstage.case.fields import OWN_ERROR
-from reactorstage.case.marks import UNREADABLE, Path_, Tree
+from reactorstage.case.marks import UNREADABLE, Tree, TreePath
 from reactorstage.case.resolve import get
 from reactorstage.case.units import shown
 from reactorstage.case.word_fields import one_of
@@ -22,9 +22,9 @@ Model = TypeVar("Model", bound=Words)
 class Findings:
     """Problems by path, collected; `add` is what the checks call."""
 
-    items: list[tuple[Path_, str, str, bool]] = field(default_factory=list)
+    items: list[tuple[TreePath, str, str, bool]] = field(default_factory=list)
 
-    def add(self, path: Path_, message: str, hint: str = "", on_key: bool = False) -> None:
+    def add(self, path: TreePath, message: str, hint: str = "", on_key: bool = False) -> None:
         self.items.append((path, message, hint, on_key))
 
 
@@ -55,7 +55,8 @@ def report(item: Any, tree: Tree, model: type[Words], findings: Findings) -> Non
     """Put one error of pydantic into our words."""
     path, kind = path_of(item["loc"]), item["type"]
     if kind == OWN_ERROR:
-        findings.add(path, item["ctx"]["message"], item["ctx"]["hint"])
+        said = item["ctx"]
+        findings.add(path, said["message"], said["hint"], said.get("on_key", False))
     elif kind == "missing":
         if not is_misspelt(path, tree, model):
             findings.add(path[:-1], f"{path[-1]} is missing{_where(path[:-1])}", meaning(path, model))
@@ -73,12 +74,12 @@ def report(item: Any, tree: Tree, model: type[Words], findings: Findings) -> Non
         findings.add(path, f"{wanted} is expected here, not {what}", meaning(path, model))
 
 
-def path_of(loc: tuple[str | int, ...]) -> Path_:
+def path_of(loc: tuple[str | int, ...]) -> TreePath:
     """The path in the file of pydantic's location: without the tags of alternatives."""
     return tuple(part for part in loc if not (isinstance(part, str) and part.startswith("#")))
 
 
-def _where(path: Path_) -> str:
+def _where(path: TreePath) -> str:
     names = [str(part) for part in path if isinstance(part, str)]
     return f" in {names[-1]}" if names else ""
 
@@ -107,27 +108,27 @@ def nearest(word: str, words: list[str]) -> str:
     return (get_close_matches(word, words, 1, 0.6) or [""])[0]
 
 
-def is_misspelt(path: Path_, tree: Tree, model: type[Words]) -> bool:
+def is_misspelt(path: TreePath, tree: Tree, model: type[Words]) -> bool:
     """True when the missing key stands there in a wrong spelling, which is reported by itself."""
     parent, keys = get(tree, path[:-1]), keys_at(path[:-1], model)
     wrong = [key for key in parent if key not in keys] if isinstance(parent, dict) else []
     return any(nearest(key, keys) == path[-1] for key in wrong)
 
 
-def keys_at(path: Path_, model: type[Words]) -> list[str]:
+def keys_at(path: TreePath, model: type[Words]) -> list[str]:
     """The keys that may stand in the mapping at a path."""
     found = type_at(path, model)
     return [str(f.alias) for f in found.model_fields.values()] if found else []
 
 
-def meaning(path: Path_, model: type[Words]) -> str:
+def meaning(path: TreePath, model: type[Words]) -> str:
     """The description of the field at a path; empty when there is none."""
     found = type_at(path[:-1], model)
     fields = found.model_fields.values() if found else ()
     return next((f"{f.alias}: {f.description}" for f in fields if f.alias == path[-1]), "")
 
 
-def type_at(path: Path_, model: type[Words]) -> type[Words] | None:
+def type_at(path: TreePath, model: type[Words]) -> type[Words] | None:
     """The model of the mapping at a path."""
     kinds: list[Any] = [model]
     for key in path:

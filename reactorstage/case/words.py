@@ -72,5 +72,5 @@ class Words(BaseModel):
 
 
 Name = Annotated[str, TextOf()]
-Price_ = Annotated[Raw, RawText(True, "34 EUR/MWh", "a price has no sign: say `costs` or `earns`")]
+PriceText = Annotated[Raw, RawText(True, "34 EUR/MWh", "a price has no sign: say `costs` or `earns`")]
 Bound = Annotated[Raw, RawText(example="424 degC")]

@@ -34,7 +34,7 @@ from reactorstage.case.word_fields import (
     TextOf,
     Version,
 )
-from reactorstage.case.words import Bound, Name, Price_, Words, mergeable
+from reactorstage.case.words import Bound, Name, PriceText, Words, mergeable
 from reactorstage.case.written_chemistry import Fluid, ReactionsWritten, Species
 
 FORMAT = 1
@@ -222,8 +222,8 @@ class Level(Words):
     cools_down_to: Annotated[float, In("temperature", above=0.0)] | None = Field(
         None, description="temperature of the cold side"
     )
-    costs: Price_ | None = Field(None, description="price of its heat, as in 34 EUR/MWh")
-    earns: Price_ | None = Field(None, description="worth of the heat given to it, as in 19 EUR/MWh")
+    costs: PriceText | None = Field(None, description="price of its heat, as in 34 EUR/MWh")
+    earns: PriceText | None = Field(None, description="worth of the heat given to it, as in 19 EUR/MWh")
     capacity: Annotated[float, In("power", least=0.0)] | None = Field(
         None, description="most heat it can take or give"
     )
@@ -244,8 +244,8 @@ class Price(Words):
     """Money on a quantity: a cost or an earning, never signed."""
 
     of: Name = Field(description="quantity, as in effluent.flow of diethylbenzene")
-    costs: Price_ | None = Field(None, description="as in 62 EUR/kmol; EUR/(t year) on what stands still")
-    earns: Price_ | None = Field(None, description="as in 62 EUR/kmol")
+    costs: PriceText | None = Field(None, description="as in 62 EUR/kmol; EUR/(t year) on what stands still")
+    earns: PriceText | None = Field(None, description="as in 62 EUR/kmol")
 
 
 class LimitException(Words):

@@ -45,7 +45,11 @@ def check_lines(case: Case, seen: Understanding, width: int) -> list[str]:
     from reactorstage.report.display import counted
     from reactorstage.report.understood import order_sentence, summary, understood_tables
 
-    status = f"understood, {counted(len(seen.warnings), 'warning')}" if seen.warnings else "understood, no warnings"
+    status = (
+        f"understood, {counted(len(seen.warnings), 'warning')}"
+        if seen.warnings
+        else "understood, no warnings"
+    )
     blocks = [line for table in understood_tables(seen) for line in ["", *table_lines(table, width)]]
     said = [line for text in [order_sentence(seen)] if text for line in ["", *paragraph(text, width)]]
     warned = [line for text in seen.warnings for line in paragraph(f"warning: {text}", width)]

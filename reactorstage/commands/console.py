@@ -18,7 +18,7 @@ REDRAW_SECONDS = 0.1
 def say(text: str) -> None:
     """Result text; a reader that goes away early (as `head` does) is no error."""
     try:
-        click.echo(_painted(text) if coloured(sys.stdout) else text)
+        click.echo(painted(text) if coloured(sys.stdout) else text)
         sys.stdout.flush()
     except BrokenPipeError:
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
@@ -34,7 +34,8 @@ def coloured(stream: object) -> bool:
     return not os.environ.get("NO_COLOR") and bool(getattr(stream, "isatty", lambda: False)())
 
 
-def _painted(text: str) -> str:
+def painted(text: str) -> str:
+    """The same words with the status words and table titles in colour."""
     return "\n".join(_painted_line(line) for line in text.split("\n"))
 
 

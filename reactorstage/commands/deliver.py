@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
+from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from reactorstage.commands.console import say, tell
@@ -37,25 +38,28 @@ def deliver(result: Result, output: Output) -> None:
 
 
 def _write(result: Result, text: str, output: Output) -> None:
+    """Numbers first, pictures after them: an interruption then leaves whole files."""
     from reactorstage.report.files import write_all
 
     assert output.folder is not None
-    paths = write_all(output.folder, {"result.json": text.encode(), **_drawn_files(result, output.figures)})
+    paths = write_all(output.folder, {"result.json": text.encode(), **_profiles(result.drawn)})
+    if output.figures and result.drawn is not None:
+        from reactorstage.report.figures import figure_files
+
+        paths += write_all(output.folder, figure_files(result.drawn, result.behind, result.status))
     if not output.quiet:
-        tell(
-            f"written to {output.folder}/: {', '.join(path.name for path in paths if path.suffix != '.svg')}"
-            f"{' (and .svg)' if any(path.suffix == '.svg' for path in paths) else ''}"
-        )
+        tell(_written_text(output.folder, paths))
 
 
-def _drawn_files(result: Result, figures: bool) -> dict[str, bytes]:
-    if result.drawn is None or not result.drawn.profiles:
+def _profiles(rating: Rating | None) -> dict[str, bytes]:
+    if rating is None or not rating.profiles:
         return {}
     from reactorstage.report.profiles_csv import profiles_csv
 
-    files = {"profiles.csv": profiles_csv(result.drawn)}
-    if figures:
-        from reactorstage.report.figures import figure_files
+    return {"profiles.csv": profiles_csv(rating)}
 
-        files |= figure_files(result.drawn, result.behind, result.status)
-    return files
+
+def _written_text(folder: Path, paths: Sequence[Path]) -> str:
+    names = [path.name for path in paths if path.suffix != ".svg"]
+    also = " (and .svg)" if len(names) < len(paths) else ""
+    return f"written to {folder}/: {', '.join(names)}{also}"

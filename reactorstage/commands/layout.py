@@ -14,6 +14,7 @@ from reactorstage.report.table import ALWAYS, Column, Table
 NARROWEST, WIDEST, USUAL = 80, 160, 100
 BETWEEN = 2
 INDENT = 13
+LEAST_WORDS = 12
 
 
 def screen_width() -> int:
@@ -28,10 +29,10 @@ def table_lines(table: Table, width: int) -> list[str]:
     if not table.rows:
         return []
     columns = fitting(table.columns, width)
-    widths = _widths(columns)
+    widths = _narrowed(columns, _widths(columns), width)
     head = _with_title(table.title, _heading_lines(columns, widths))
     rows = zip(*(column.cells for column in columns), strict=True)
-    return [*head, *(_join(cells, columns, widths) for cells in rows)]
+    return [*head, *(line for cells in rows for line in _row_lines(cells, columns, widths))]
 
 
 def fitting(columns: Sequence[Column], width: int) -> list[Column]:
@@ -44,6 +45,29 @@ def fitting(columns: Sequence[Column], width: int) -> list[Column]:
 
 def _total(columns: Sequence[Column]) -> int:
     return sum(_widths(columns)) + BETWEEN * (len(columns) - 1)
+
+
+def _narrowed(columns: Sequence[Column], widths: list[int], width: int) -> list[int]:
+    """Widths with the widest columns of words made narrower until the table fits; their cells then wrap."""
+    words = [i for i, column in enumerate(columns) if column.left]
+    excess = sum(widths) + BETWEEN * (len(widths) - 1) - width
+    while excess > 0 and words and widths[widest := max(words, key=lambda i: widths[i])] > LEAST_WORDS:
+        cut = min(excess, widths[widest] - LEAST_WORDS, 4)
+        widths[widest] -= cut
+        excess -= cut
+    return widths
+
+
+def _row_lines(cells: Sequence[str], columns: Sequence[Column], widths: Sequence[int]) -> list[str]:
+    """One row of the table; cells of words that are too long go on in further lines."""
+    parts = [
+        textwrap.wrap(cell, width) or [""] if column.left else [cell]
+        for cell, column, width in zip(cells, columns, widths, strict=True)
+    ]
+    height = max(map(len, parts))
+    return [
+        _join([part[k] if k < len(part) else "" for part in parts], columns, widths) for k in range(height)
+    ]
 
 
 def _widths(columns: Sequence[Column]) -> list[int]:

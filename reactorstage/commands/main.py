@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import click
 
+from reactorstage import __version__
 from reactorstage.commands import check, new, optimise, rate, schema
 from reactorstage.commands.verbs import Group
 
@@ -13,7 +14,7 @@ from reactorstage.commands.verbs import Group
     example="reactorstage optimise cases/selkemouth-ethylation.yaml",
     context_settings={"help_option_names": ["-h", "--help"]},
 )
-@click.version_option(package_name="reactorstage", message="%(prog)s %(version)s")
+@click.version_option(__version__, message="reactorstage %(version)s")
 def main() -> None:
     """Rates a train of adiabatic catalyst beds and finds its cheapest settings inside every limit.
 

@@ -59,7 +59,7 @@ def optimum_status(optimum: words.Optimum, best: Rating) -> str:
     return {
         words.INSIDE: "best found, INSIDE ALL LIMITS",
         words.BROKEN: f"best found, {_limits(count)} BROKEN",
-        words.CANNOT: f"CANNOT MEET ALL LIMITS, least violation: {_limits(count)} broken",
+        words.CANNOT: f"CANNOT MEET ALL LIMITS, least violation breaks {count}",
         words.STOPPED: "STOPPED BY YOU, best so far",
     }.get(optimum.status, optimum.status.upper())
 
@@ -74,7 +74,11 @@ def _limits(count: int) -> str:
 
 
 def _closure(rating: Rating) -> str:
-    return f"atoms {rating.atoms:.0e}, energy {rating.energy:.0e}"
+    return f"atoms {_small(rating.atoms)}, energy {_small(rating.energy)}"
+
+
+def _small(error: float) -> str:
+    return f"{error:.0e}" if error else "0"
 
 
 def _search(outcome: Optimisation) -> list[str]:
@@ -83,6 +87,8 @@ def _search(outcome: Optimisation) -> list[str]:
     free = sum(not number.internal for number in outcome.programme.numbers)
     tried = len(optimum.starts)
     starts = f"{ended if ended == tried else f'{ended} of {tried}'} starts ended"
+    if not ended:
+        starts = f"{counted(tried, 'start')}, none ended inside all limits"
     return [
         f"{starts}, {counted(len(optimum.answers), 'distinct answer')}",
         counted(free, "free number"),
@@ -122,28 +128,28 @@ def _money(now: Rating, was: Rating | None, width: int) -> list[str]:
 def _held(outcome: Optimisation, best: Rating, width: int) -> list[str]:
     optimum = outcome.optimum
     if optimum.conflict is not None:
-        return _conflict(outcome, best, width)
+        return _conflict(optimum.conflict, best, width)
     held = bounds.at_work(best)
     free = sum(not number.internal for number in outcome.programme.numbers)
     lines = table_lines(bounds.worth_table(optimum, best), width)
     if not lines and held:
-        lines = items("LIMITS AT WORK (*)", [bounds.name(state) for state in held], width)
+        lines = items("LIMITS AT WORK (*)", bounds.together(held), width)
     tail = f"{bounds.count_text(held, free)} {bounds.next_text(best)}" if held else bounds.next_text(best)
     return [*lines, *paragraph(tail.strip(), width)]
 
 
-def _conflict(outcome: Optimisation, best: Rating, width: int) -> list[str]:
-    conflict = outcome.optimum.conflict
-    assert conflict is not None
+def _conflict(conflict: words.Conflict, best: Rating, width: int) -> list[str]:
     lines = [f"  {bounds.sentence(best.limits[index], best.case.currency)}" for index, _ in conflict.broken]
-    against = [bounds.name(best.limits[index]) for index in conflict.against]
-    text = f"held by: {', '.join(against)}" if against else ""
-    return ["LIMITS THAT CANNOT ALL BE MET", *lines, *([*paragraph(f"  {text}", width, 4)] if text else [])]
+    against = bounds.together(best.limits[index] for index in conflict.against)
+    held = paragraph(f"  held by: {', '.join(against)}", width, 4) if against else []
+    return ["LIMITS THAT CANNOT ALL BE MET", *lines, *held]
 
 
 def _after_money(outcome: Optimisation, best: Rating, width: int) -> list[str]:
     texts = [sentences.equal_split_text(split, best) for split in outcome.optimum.equal_splits]
-    texts += [sentences.margin_text(outcome.optimum, best), _range_ends(outcome)]
+    if outcome.optimum.conflict is None:
+        texts.append(sentences.margin_text(outcome.optimum, best))
+    texts.append(_range_ends(outcome))
     return [line for text in texts if text for line in paragraph(text, width, INDENT)]
 
 
@@ -158,8 +164,13 @@ def _range_ends(outcome: Optimisation) -> str:
 
 def _three(outcome: Optimisation, best: Rating) -> list[str]:
     today, optimum = outcome.today, outcome.optimum
+    first = (
+        sentences.first_change(outcome.programme, best, today)
+        if optimum.conflict is None
+        else sentences.give_way(optimum.conflict, best)
+    )
     return [
-        sentences.first_change(outcome.programme, best, today),
+        first,
         sentences.second_answer(outcome.programme, optimum, best, outcome.others),
         *optimum.notes,
         *sentences.warnings(best),

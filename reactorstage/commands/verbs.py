@@ -49,13 +49,12 @@ class Group(Helping, click.Group):
             error.show()
             return WRONG_CALL
         except (click.Abort, KeyboardInterrupt):
-            tell("stopped by you; nothing was finished, nothing was written")
-            return INTERRUPTED
+            return _stopped()
         except (CallError, CaseProblems, ComputationError) as error:
             tell(_said(error))
             return error.exit_status
         except Exception as error:
-            return _defect(error)
+            return _stopped() if _interrupted(error) else _defect(error)
 
 
 def _said(error: ReactorstageError) -> str:
@@ -64,6 +63,20 @@ def _said(error: ReactorstageError) -> str:
         return f"error: {error}"
     count = len(error.problems)
     return f"{error}\n{count} error{'' if count == 1 else 's'} in the case; nothing was calculated"
+
+
+def _stopped() -> int:
+    tell("stopped by you; what was written before is kept")
+    return INTERRUPTED
+
+
+def _interrupted(error: BaseException | None) -> bool:
+    """Whether Ctrl-C stands behind an error: libraries wrap it when it comes while they load."""
+    while error is not None:
+        if isinstance(error, KeyboardInterrupt):
+            return True
+        error = error.__cause__ or error.__context__
+    return False
 
 
 def _defect(error: Exception) -> int:

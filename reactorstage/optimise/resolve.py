@@ -50,7 +50,8 @@ class Resolved:
 def resolve(programme: Programme, points: Iterable[Array], base: Base) -> Resolved:
     """Cheapest local optimum of a changed programme from the given points."""
     endings = [local_solve(programme, x, base.size, stop=base.stop) for x in points]
-    found = [finished(programme, ending, base) for ending in endings if ending.feasible]
+    ended = [ending for ending in endings if ending.feasible and not ending.stopped]
+    found = [finished(programme, ending, base) for ending in ended]
     inside = [result for result in found if result.x is not None]
     if inside:
         return min(inside, key=lambda result: result.cost)

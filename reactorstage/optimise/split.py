@@ -28,8 +28,7 @@ def equal_split(base: Base, group: SplitGroup, points: Iterable[Array]) -> Equal
     starts = [pinned.free(x) for x in points]
     held = resolve(pinned, starts, base)
     if held.x is not None:
-        penalty = held.cost - base.cost
-        return answered(group, held, pinned, penalty if penalty > base.noise else max(penalty, 0.0))
+        return answered(group, held, pinned, max(held.cost - base.cost, 0.0))
     if held.nearest is None:
         return EqualSplit(group.feed, None, None, None, note="the re-solve with equal shares did not end")
     return relaxed_split(base, group, pinned, held.nearest)

@@ -19,11 +19,11 @@ class Start:
 
 
 def starts(programme: Programme, count: int, seed: int) -> tuple[Start, ...]:
-    """`count` starts, the same for equal seed.
+    """`count` starts (one at least), the same for equal seed.
 
     First those of `engineering` that differ from each other, then "random 1", "random 2", ...
     """
-    named = without_repeats(engineering(programme), programme)[:count]
+    named = without_repeats(engineering(programme), programme)[: max(count, 1)]
     rng = np.random.default_rng(seed)
     randoms = random_points(programme, rng, count - len(named))
     return (*named, *(Start(f"random {k + 1}", x) for k, x in enumerate(randoms)))

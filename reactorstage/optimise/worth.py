@@ -7,9 +7,10 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from reactorstage.optimise.programme import Array, LimitRow
+from reactorstage.optimise.programme import Array, LimitRow, Programme
 from reactorstage.optimise.resolve import Base, Resolved, resolve
-from reactorstage.optimise.result import Worth
+from reactorstage.optimise.result import Answer, Worth
+from reactorstage.optimise.scaling import needed
 from reactorstage.optimise.wrappers import Shifted
 
 KNOWN_ANSWERS = 3
@@ -37,6 +38,19 @@ def moves(limits: Sequence[LimitRow], at_work: Sequence[int]) -> list[Move]:
         if len(rows) > 1:
             found.extend(move(limits, [row]) for row in rows)
     return found
+
+
+def asked_for(programme: Programme, answer: Answer) -> list[int]:
+    """Limits at work whose worth means something.
+
+    Left out are implied limits that move with internal numbers: they keep books, nobody can relax them.
+    """
+    evaluation = programme.final(answer.x)
+    if not evaluation.ok:
+        return []
+    internal = np.array([number.internal for number in programme.numbers], dtype=bool)
+    books = np.any(needed(evaluation.margin_dx)[:, internal] != 0.0, axis=1)
+    return [k for k in answer.at_work if not (programme.limits[k].implied and books[k])]
 
 
 def move(limits: Sequence[LimitRow], rows: Sequence[int]) -> Move:
@@ -78,7 +92,7 @@ def gain(difference: float, resolved: Resolved, base: Base, what: str) -> tuple[
         return None, f"the re-solve for {what} did not end"
     if difference < -base.noise:
         return None, f"the re-solve for {what} ended at a worse answer"
-    return max(difference, 0.0), ""
+    return (difference if difference > base.noise else 0.0), ""
 
 
 def keep_away_cost(base: Base) -> float | None:

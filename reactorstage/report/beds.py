@@ -132,13 +132,21 @@ def _injections(now: Rating, before: Before, beds: Sequence[str]) -> list[Column
 
 
 def _ratio(now: Rating, beds: Sequence[str]) -> Column | None:
-    if not (now.excess_reactant and now.main_reactant):
+    above, below = ratio_species(now)
+    if not (above and below):
         return None
-    signs = signs_of(now, beds, f"inlet ratio {now.excess_reactant}/{now.main_reactant}")
-    above, below = (values_of(now, beds, f"inlet flow of {s}") for s in (now.excess_reactant, now.main_reactant))
-    ratios = [_over(a, b) for a, b in zip(above, below, strict=True)]
-    heading = (f"{now.excess_reactant}/", now.main_reactant, "at inlet")
-    return Column(heading, marked(ratios, 2, signs), rank=5)
+    signs = signs_of(now, beds, f"inlet ratio {above}/{below}")
+    flows = (values_of(now, beds, f"inlet flow of {species}") for species in (above, below))
+    ratios = [_over(a, b) for a, b in zip(*flows, strict=True)]
+    return Column((f"{above}/", below, "at inlet"), marked(ratios, 2, signs), rank=5)
+
+
+def ratio_species(rating: Rating) -> tuple[str, str]:
+    """The two species of the bed-inlet ratio: those that a limit names, else excess and main reactant."""
+    word = ".inlet ratio "
+    named = next((name.partition(word)[2] for name in rating.quantities if word in name), "")
+    above, _, below = named.partition("/")
+    return (above, below) if named else (rating.excess_reactant, rating.main_reactant)
 
 
 def _over(above: float | None, below: float | None) -> float | None:
@@ -158,11 +166,18 @@ def _peak(now: Rating, beds: Sequence[str]) -> Column | None:
     return Column(("peak", unit("temperature")), marked(hotter, 1, signs), rank=2)
 
 
+def main_reaction(rating: Rating) -> str:
+    """The first reaction with an equilibrium; empty when there is none."""
+    word = ".approach to equilibrium of "
+    known = {name.partition(word)[2] for name in rating.quantities if word in name}
+    return next((reaction for reaction in rating.reactions if reaction in known), "")
+
+
 def _approach(now: Rating, beds: Sequence[str]) -> Column | None:
-    if not now.reactions:
+    if not (reaction := main_reaction(now)):
         return None
-    word = f"approach to equilibrium of {now.reactions[0]}"
     kind = difference_kind("temperature")
+    word = f"approach to equilibrium of {reaction}"
     return _quantity(now, beds, word, ("from equi-", "librium", unit(kind)), 0, rank=7)
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
+from dataclasses import dataclass, replace
 
 from reactorstage.optimise.result import Optimum, Worth
 from reactorstage.report.display import (
@@ -14,6 +15,7 @@ from reactorstage.report.display import (
     fixed,
     money,
     owners_text,
+    readable,
     shown,
     told,
     unit,
@@ -26,18 +28,31 @@ ROWS_SHOWN = 9
 
 
 def broken(rating: Rating) -> list[LimitState]:
-    """Limits that this setting breaks, in the order of the case."""
-    return [state for state in rating.limits if not state.met]
+    """Limits that this setting breaks, in the order of the case; soft ones have a price instead."""
+    return [state for state in rating.limits if not state.met and not state.soft]
 
 
 def at_work(rating: Rating) -> list[LimitState]:
     """Limits with zero margin, in the order of the case."""
-    return [state for state in rating.limits if state.at_work and state.met]
+    return [s for s in named(rating) if s.at_work and s.met]
+
+
+def named(rating: Rating) -> list[LimitState]:
+    """Limits on quantities with a name; rows that only share heat out among levels are not told."""
+    return [state for state in rating.limits if state.quantity in rating.quantities]
 
 
 def name(state: LimitState) -> str:
     """`hot exit, bed 4`."""
     return f"{state.label}, {state.owner}"
+
+
+def together(states: Iterable[LimitState]) -> list[str]:
+    """`coking (beds 3 and 4)`, one text per label, for sentences."""
+    owners: dict[str, list[str]] = {}
+    for state in states:
+        owners.setdefault(state.label, []).append(state.owner)
+    return [f"{label} ({owners_text(list(dict.fromkeys(found)))})" for label, found in owners.items()]
 
 
 def nearness(state: LimitState) -> float:
@@ -84,8 +99,8 @@ def rating_table(rating: Rating, rows: int = ROWS_SHOWN) -> Table:
     labels = {(state.label, state.direction) for state in first}
     others = nearest_per_label(
         state
-        for state in rating.limits
-        if state.met
+        for state in named(rating)
+        if (state.met or state.soft)
         and not (state.implied and not state.at_work)
         and (state.label, state.direction) not in labels
     )
@@ -111,7 +126,7 @@ def rating_table(rating: Rating, rows: int = ROWS_SHOWN) -> Table:
 def state_word(state: LimitState) -> str:
     """In words, so that colour need not say it."""
     if not state.met:
-        return f"BROKEN {BROKEN}"
+        return "beyond, at its price" if state.soft else f"BROKEN {BROKEN}"
     if state.value is None:
         return state.reason or "not there"
     return f"at work {AT_WORK}" if state.at_work else "inside"
@@ -121,25 +136,51 @@ def _margin_text(state: LimitState, currency: str) -> str:
     margin = difference(state.margin, state.kind)
     if margin is None:
         return "-"
-    return with_unit(fixed(margin, 2), unit(difference_kind(state.kind), currency))
+    return with_unit(readable(margin), unit(difference_kind(state.kind), currency))
+
+
+@dataclass(frozen=True)
+class WorthRow:
+    """A worth of all owners of a label together, and what each of several owners saves alone."""
+
+    together: Worth
+    alone: tuple[Worth, ...] = ()
+
+
+def worth_rows(worths: Sequence[Worth]) -> list[WorthRow]:
+    """Worths of single owners drawn to the row of their label, where there is one."""
+    rows: list[WorthRow] = []
+    for worth in worths:
+        last = rows[-1] if rows else None
+        if (
+            last
+            and len(worth.limits) == 1 < len(last.together.limits)
+            and worth.limits[0] in last.together.limits
+        ):
+            rows[-1] = replace(last, alone=(*last.alone, worth))
+        else:
+            rows.append(WorthRow(worth))
+    return rows
 
 
 def worth_table(optimum: Optimum, rating: Rating) -> Table:
     """Limits at work with what relaxing saves and tightening costs, per hour and step, re-solved."""
-    currency = rating.case.currency
-    per_hour = unit("money rate", currency)
-    rows = optimum.worths
-    return table(
-        "LIMITS AT WORK (*)",
-        [
-            Column(("",), tuple(f"{row.label}, {owners_text(row.owners)}" for row in rows), left=True),
-            Column(("allowed",), tuple(_allowed_text(row, rating) for row in rows), left=True),
-            Column(("by",), tuple(step_text(row) for row in rows), left=True),
-            Column(("relax saves", per_hour), tuple(fixed(money(row.saves), 1) for row in rows)),
-            Column(("tighten costs", per_hour), tuple(fixed(money(row.costs), 1) for row in rows)),
-            Column(("re-solved",), tuple(row.note for row in rows), rank=2, left=True),
-        ],
-    )
+    told = {index for index, state in enumerate(rating.limits) if state.quantity in rating.quantities}
+    rows = worth_rows([worth for worth in optimum.worths if told.intersection(worth.limits)])
+    all_together = [row.together for row in rows]
+    return table(f"LIMITS AT WORK (*), {unit('money rate', rating.case.currency)}", [
+        Column(("",), tuple(f"{row.label}, {owners_text(row.owners)}" for row in all_together), left=True),
+        Column(("allowed",), tuple(_allowed_text(row, rating) for row in all_together), left=True),
+        Column(("by",), tuple(step_text(row) for row in all_together), left=True),
+        Column(("relax", "saves"), tuple(fixed(money(row.saves), 1) for row in all_together)),
+        Column(("tighten", "costs"), tuple(fixed(money(row.costs), 1) for row in all_together)),
+        Column(("relaxed one", "by one save"), tuple(_alone_text(row) for row in rows), rank=1, left=True),
+        Column(("re-solved",), tuple(row.note for row in all_together), rank=2, left=True),
+    ])  # fmt: skip
+
+
+def _alone_text(row: WorthRow) -> str:
+    return ", ".join(fixed(money(worth.saves), 1) for worth in row.alone)
 
 
 def step_text(worth: Worth) -> str:

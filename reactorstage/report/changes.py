@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from reactorstage.optimise.programme import Array, FreeNumber
-from reactorstage.report.display import and_list, owners_text, told
+from reactorstage.report.display import and_list, brief, owners_text, shown, unit, with_unit
 
 WORTH_SAYING = 0.01
 
@@ -39,25 +39,20 @@ def changes(numbers: Sequence[FreeNumber], old: Array, new: Array) -> list[Chang
             continue
         owner, _, word = number.name.rpartition(".")
         key = (word, _short(before, number.kind), _short(after, number.kind))
-        others = found[key].owners if key in found else ()
-        largest = max(size, found[key].size) if key in found else size
-        found[key] = Change(*_named(key, (*others, owner)), largest)
+        like = found.get(key, Change(word, (), key[1], key[2], 0.0))
+        found[key] = replace(like, owners=(*like.owners, owner), size=max(size, like.size))
     return sorted(found.values(), key=lambda change: -change.size)
 
 
 def _short(value: float, kind: str) -> str:
-    """`364 degC`: with one decimal at most where that is enough."""
-    number, _, unit = told(float(value), kind).partition(" ")
-    return f"{number.removesuffix('.0')} {unit}".rstrip()
-
-
-def _named(key: tuple[str, str, str], owners: tuple[str, ...]) -> tuple[str, tuple[str, ...], str, str]:
-    word, old, new = key
-    return word, owners, old, new
+    """`364 degC`, `78.1 kmol/h`: as many digits as a setting is made with."""
+    number = shown(float(value), kind) or 0.0
+    text = brief(round(number, 1), 5) if abs(number) >= 10.0 else brief(number, 3)
+    return with_unit(text, unit(kind))
 
 
 def moves_text(found: Sequence[Change], count: int = 3) -> str:
-    """`inlet temperature of beds 1-3 from 384.0 degC to 364.0 degC, ...`."""
+    """`inlet temperature of beds 1-3 from 384 to 364 degC and ...`."""
     texts = [
         f"{change.what} from {_bare(change.old, change.new)} to {change.new}" for change in found[:count]
     ]

@@ -87,7 +87,6 @@ def _draw(
             (float(last[rating.species.index(c.species)]), look.two_lines(c.species), c.colour)
             for c in content.curves
         ],
-        apart=19.0,
     )
 
 

@@ -7,7 +7,7 @@ from collections.abc import Iterable, Sequence
 from reactorstage.case import units
 
 DIFFERENCE = {"temperature": "temperature difference", "pressure": "pressure difference"}
-DECIMALS = {"temperature": 1, "temperature difference": 1, "pressure": 2, "pressure difference": 2}
+DECIMALS = {"temperature": 1, "temperature difference": 1}
 ABSENT = "-"
 
 
@@ -52,6 +52,12 @@ def brief(value: float | None, figures: int = 4) -> str:
     if 1.0 <= abs(value) < 1e6:
         figures = max(figures, len(f"{abs(value):.0f}"))
     return f"{value:.{figures}g}"
+
+
+def readable(value: float | None) -> str:
+    """Two decimals, small numbers in two figures: 12.30, 0.27, 0.029."""
+    small = value is not None and 0.0 < abs(value) < 0.1
+    return brief(value, 2) if small else fixed(value, 2)
 
 
 def same_decimals(values: Iterable[float | None], decimals: int) -> list[str]:

@@ -46,6 +46,7 @@ DPI = 130
 LEFT, RIGHT = 0.11, 0.865
 LABEL_LEFT = -0.083
 TEXT, SMALL = 9.0, 7.6
+LINE_POINTS = 9.6
 
 CLEARED = {"facecolor": PAPER, "edgecolor": "none", "alpha": 0.65, "pad": 0.2}
 
@@ -108,11 +109,11 @@ def panel(figure: Figure, bottom: float, top: float) -> Axes:
 def bed_bands(axes: Axes, beds: Sequence[BedProfile], names: bool) -> None:
     """Every second bed shaded; names over the beds, with their catalyst, where wanted and wide enough."""
     end = beds[-1].catalyst[-1]
-    for number, bed in enumerate(beds):
+    for number, bed in enumerate(bed for bed in beds if bed.catalyst[-1] > bed.catalyst[0]):
         first, last = float(bed.catalyst[0]), float(bed.catalyst[-1])
         if number % 2 == 0:
             axes.axvspan(first, last, color=BAND, linewidth=0, zorder=0)
-        if names and last > first:
+        if names:
             wide = (last - first) / end > 0.07
             label = f"{bed.owner}\n{last - first:.3g} t" if wide else bed.owner.removeprefix("bed ")
             axes.annotate(
@@ -189,14 +190,15 @@ def value_axis(axes: Axes, label: str) -> None:
     axes.yaxis.set_major_formatter(FuncFormatter(lambda value, _: f"{value:g}"))
 
 
-def end_labels(axes: Axes, labels: Sequence[tuple[float, str, str]], apart: float = 10.5) -> None:
+def end_labels(axes: Axes, labels: Sequence[tuple[float, str, str]]) -> None:
     """Texts (y in data, text, colour) to the right of the panel, pushed apart so that none overlap."""
     if not labels:
         return
     box = axes.get_window_extent()
     point = axes.figure.dpi / 72.0
     rows = sorted((float(axes.transData.transform((0.0, y))[1]), text, colour) for y, text, colour in labels)
-    places = spaced([min(max(row[0], box.y0), box.y1) for row in rows], apart * point)
+    lines = max(text.count("\n") + 1 for _, text, _ in rows)
+    places = spaced([min(max(row[0], box.y0), box.y1) for row in rows], LINE_POINTS * lines * point)
     for (_, text, colour), place in zip(rows, places, strict=True):
         axes.annotate(
             text,

@@ -12,6 +12,7 @@ from collections.abc import Mapping, Sequence
 from importlib import metadata
 from typing import TYPE_CHECKING, Any
 
+from reactorstage import __version__
 from reactorstage.optimise.programme import FreeNumber, Programme
 from reactorstage.optimise.result import Answer, EqualSplit, Optimum, StartRecord, Worth
 from reactorstage.report.cautions import FULL
@@ -22,7 +23,7 @@ if TYPE_CHECKING:
     from reactorstage.case.model import Case
 
 SCHEMA_VERSION = 1
-LIBRARIES = ("reactorstage", "numpy", "scipy", "numba", "cantera")
+LIBRARIES = ("numpy", "scipy", "numba", "cantera")
 SIGNIFICANT = 12
 LINE = 120
 
@@ -137,7 +138,8 @@ def case_json(case: Case, overrides: Sequence[str]) -> Json:
 
 def versions() -> dict[str, str]:
     """Versions of this package, Python and the libraries that numbers come from."""
-    return {"python": platform.python_version()} | {name: _version(name) for name in LIBRARIES}
+    own = {"reactorstage": __version__, "python": platform.python_version()}
+    return own | {name: _version(name) for name in LIBRARIES}
 
 
 def _version(name: str) -> str:
@@ -180,12 +182,18 @@ def _limit(state: LimitState, currency: str) -> Json:
         "margin": difference(state.margin, state.kind),
         "keep away": difference(state.keep_away, state.kind),
         "margin unit": unit(difference_kind(state.kind), currency),
-        "state": "broken" if not state.met else "at work" if state.at_work else "inside",
+        "state": _state_word(state),
         "soft": state.soft,
         "implied": state.implied,
         "why": state.why,
         **({"reason": state.reason} if state.reason else {}),
     }
+
+
+def _state_word(state: LimitState) -> str:
+    if not state.met:
+        return "beyond at its price" if state.soft else "broken"
+    return "at work" if state.at_work else "inside"
 
 
 def _sale(sale: HeatSale, currency: str) -> Json:

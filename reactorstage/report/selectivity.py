@@ -14,7 +14,7 @@ from reactorstage.train.result import Array, Rating
 
 PANEL_HEIGHT, BETWEEN, BELOW, ABOVE = 1.9, 0.18, 0.55, 0.95
 STILL_REACTING = 0.02
-POINTS_REACH = 3.0
+POINTS_REACH = 1.5
 
 
 def selectivity_figure(rating: Rating, today: Rating | None, title: str, status: str) -> Figure:
@@ -70,7 +70,7 @@ def _draw(
         sums += [summed(bed) for bed in (*beds, *before)]
         labels.append((float(beds[-1].cumulative[-1, index]), look.two_lines(name), colour))
     _set_range(axes, np.concatenate(points), np.concatenate(sums))
-    look.end_labels(axes, [label for label in labels if np.isfinite(label[0])], apart=19.0)
+    look.end_labels(axes, [label for label in labels if np.isfinite(label[0])])
 
 
 def _least_loss(rating: Rating, beds: Sequence[BedProfile]) -> float:

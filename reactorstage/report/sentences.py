@@ -5,11 +5,11 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from reactorstage.optimise.programme import Programme
-from reactorstage.optimise.result import EqualSplit, Optimum
+from reactorstage.optimise.result import Conflict, EqualSplit, Optimum
 from reactorstage.optimise.words import told_apart
 from reactorstage.report import bounds
 from reactorstage.report.accounts import total_difference
-from reactorstage.report.beds import selectivity
+from reactorstage.report.beds import main_reaction, selectivity
 from reactorstage.report.cautions import SHORT
 from reactorstage.report.changes import changes, moves_text
 from reactorstage.report.display import (
@@ -19,6 +19,7 @@ from reactorstage.report.display import (
     difference_kind,
     fixed,
     money,
+    readable,
     shown,
     unit,
     with_unit,
@@ -39,13 +40,16 @@ def out_line(now: Rating, was: Rating | None = None) -> str:
 
 
 def _leaving(now: Rating, was: Rating | None, species: str) -> str:
-    flow = now.quantities.get(f"effluent.flow of {species}")
-    if not species or flow is None or flow.value is None:
+    name = f"effluent.flow of {species}"
+    flow, before = (_number(rating, name) if rating else None for rating in (now, was))
+    if flow is None:
         return ""
-    text = f"{species} {fixed(shown(flow.value, flow.kind), 2)} {unit(flow.kind)}"
-    if was is None or was.quantities[f"effluent.flow of {species}"].value is None:
-        return text
-    return f"{text} (was {fixed(shown(was.number(f'effluent.flow of {species}'), flow.kind), 2)})"
+    text = f"{species} {_flow_text(flow)} {unit('molar flow')}"
+    return text if before is None else f"{text} (was {_flow_text(before)})"
+
+
+def _flow_text(flow: float) -> str:
+    return readable(shown(flow, "molar flow"))
 
 
 def _selectivity(rating: Rating) -> str:
@@ -95,10 +99,16 @@ def today_text(was: Rating) -> str:
     """Which limits today's setting breaks."""
     states = bounds.broken(was)
     if was.failure:
-        return f"Today's setting has no answer: {was.failure}"
+        return f"Today's setting has no answer: {was.failure}."
     if not states:
         return "Today's setting keeps all limits."
-    return f"Today breaks {and_list([bounds.name(state) for state in states])}."
+    return f"Today breaks {and_list(bounds.together(states))}."
+
+
+def give_way(conflict: Conflict, best: Rating) -> str:
+    """By how much limits would have to give way for the least-violating answer to be allowed."""
+    texts = [_relaxed(best, index, amount).replace("relaxed by", "by") for index, amount in conflict.broken]
+    return f"Limits that would have to give way: {and_list(texts)}." if texts else ""
 
 
 def margin_text(optimum: Optimum, best: Rating) -> str:
@@ -128,6 +138,8 @@ def equal_split_text(split: EqualSplit, best: Rating) -> str:
     if split.penalty is None:
         return f"{head}: {split.note or 'none was found'}."
     extra = money(split.penalty) or 0.0
+    if extra < SAME_MONEY and not split.relaxed:
+        return f"{head} costs the same."
     rate = unit("money rate", best.case.currency)
     part = (
         abs(split.penalty / (split.cost - split.penalty))
@@ -144,7 +156,7 @@ def equal_split_text(split: EqualSplit, best: Rating) -> str:
 def _relaxed(best: Rating, index: int, amount: float) -> str:
     state = best.limits[index]
     size = with_unit(brief(difference(amount, state.kind), 3), unit(difference_kind(state.kind)))
-    return f"{bounds.name(state)} relaxed by {size}"
+    return f"{state.label} ({state.owner}) relaxed by {size}"
 
 
 def warnings(rating: Rating) -> list[str]:
@@ -155,6 +167,8 @@ def warnings(rating: Rating) -> list[str]:
 def _unlit(rating: Rating) -> list[str]:
     found = []
     for profile in rating.profiles:
+        if profile.w[-1] <= 0.0:
+            continue
         rise, approach = (_number(rating, f"{profile.owner}.{word}") for word in _lit_words(rating))
         if rise is not None and approach is not None and rise < UNLIT_RISE_K and approach > UNLIT_APPROACH_K:
             where = f"stands {approach:.0f} K from equilibrium"
@@ -163,8 +177,7 @@ def _unlit(rating: Rating) -> list[str]:
 
 
 def _lit_words(rating: Rating) -> tuple[str, str]:
-    main = rating.reactions[0] if rating.reactions else ""
-    return "rise", f"approach to equilibrium of {main}"
+    return "rise", f"approach to equilibrium of {main_reaction(rating)}"
 
 
 def _number(rating: Rating, name: str) -> float | None:

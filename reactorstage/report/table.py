@@ -52,7 +52,7 @@ def table(title: str, columns: Sequence[Column | None]) -> Table:
 def marks(rating: Rating) -> dict[str, str]:
     """Quantity names that a limit holds (`*`) or that break one (`!`)."""
     found = {state.quantity: AT_WORK for state in rating.limits if state.at_work}
-    return found | {state.quantity: BROKEN for state in rating.limits if not state.met}
+    return found | {state.quantity: BROKEN for state in rating.limits if not (state.met or state.soft)}
 
 
 def marked(values: Sequence[float | None], decimals: int, signs: Sequence[str]) -> tuple[str, ...]:

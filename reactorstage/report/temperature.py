@@ -123,7 +123,7 @@ def _limits(axes: Axes, rating: Rating, beds: Sequence[BedProfile]) -> None:
         labels.append(
             (min(max(y, low), high), _limit_label(label, bound, states, len(beds), y, low, high), look.LIMIT)
         )
-    look.end_labels(axes, labels, apart=19.0)
+    look.end_labels(axes, labels)
 
 
 def _limit_label(
@@ -177,11 +177,12 @@ class HeatLabel:
 def heat_labels(rating: Rating, beds: Sequence[BedProfile]) -> list[HeatLabel]:
     """Heat of entry, gaps and effluent, sign in words; labels that would touch go into rows above."""
     total = float(beds[-1].catalyst[-1])
+    exchanging = {step.owner for step in rating.steps if step.kind in ("heat", "cool")}
     ends: list[float] = []
     found = []
     for place, x in _places(beds):
         heat = rating.quantities.get(f"{place}.heat removed")
-        if heat is None or heat.value is None:
+        if place not in exchanging or heat is None or heat.value is None:
             continue
         side, before = HEAT_SIDES.get(place, ("center", LABEL_PART / 2))
         start = x / total - before

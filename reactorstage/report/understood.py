@@ -31,8 +31,9 @@ CLOSED = 1e-9
 
 def understood_tables(seen: Understanding) -> list[Table]:
     """Feeds, reactions, free numbers, what fixes what, limits, prices."""
-    tables = [_feeds(seen.streams), _reactions(seen), _numbers(seen.numbers), _degrees(seen), _limits(seen.limits)]
-    return [made for made in [*tables, _prices(seen)] if made.rows]
+    tables = [_feeds(seen.streams), _reactions(seen), _equilibria(seen.reactions), _numbers(seen.numbers)]
+    tables += [_degrees(seen), _limits(seen.limits), _prices(seen)]
+    return [made for made in tables if made.rows]
 
 
 def _feeds(rows: Sequence[StreamRow]) -> Table:
@@ -62,26 +63,35 @@ def _reactions(seen: Understanding) -> Table:
     columns = [
         Column(("",), tuple(row.name for row in rows), left=True),
         Column(("equation",), tuple(row.equation for row in rows), left=True),
-        Column(("atoms",), tuple(_atoms(row) for row in rows), rank=4, left=True),
-        *_at_temperature(rows, 0, rank=1),
-        *_at_temperature(rows, 1, rank=3),
         Column(("orders",), tuple(_orders(row) for row in rows), rank=5, left=True),
-        Column(("rate per, driven by",), tuple(f"{r.rate_per}, {r.driven_by}" for r in rows), rank=6, left=True),
+        Column(
+            ("rate per, driven by",), tuple(f"{r.rate_per}, {r.driven_by}" for r in rows), rank=6, left=True
+        ),
     ]
     if seen.split_reactant:
         cells = tuple(brief(row.order_in_split) for row in rows)
-        columns.insert(2, Column(("order in", seen.split_reactant), cells))
+        columns.insert(2, Column((f"order in {seen.split_reactant}",), cells))
     return table("REACTIONS", columns)
 
 
-def _at_temperature(rows: Sequence[ReactionRow], index: int, rank: int) -> list[Column]:
+def _equilibria(rows: Sequence[ReactionRow]) -> Table:
+    return table("HEAT AND EQUILIBRIUM", [
+        Column(("",), tuple(row.name for row in rows), left=True),
+        *_at_temperature(rows, 0),
+        *_at_temperature(rows, 1),
+        Column(("atoms",), tuple(_atoms(row) for row in rows), left=True),
+    ])  # fmt: skip
+
+
+def _at_temperature(rows: Sequence[ReactionRow], index: int) -> list[Column]:
     """Heat and equilibrium constant at one of the two temperatures; all reactions share it as a rule."""
     degrees = sorted({fixed(shown(row.T[index], "temperature"), 0) for row in rows})
     group = (f"at {'/'.join(degrees)} {unit('temperature')}",)
-    heats = [shown(row.heat[index], "molar energy") for row in rows]
+    heats = [fixed(shown(row.heat[index], "molar energy"), 1) for row in rows]
+    K = [f"{row.K[index]:.3g}" if row.reversible else "-" for row in rows]
     return [
-        Column((unit("molar energy"),), tuple(fixed(heat, 1) for heat in heats), rank, group),
-        Column(("K (1 bar)",), tuple(f"{row.K[index]:.3g}" if row.reversible else "-" for row in rows), rank, group),
+        Column((unit("molar energy"),), tuple(heats), group=group),
+        Column(("K (1 bar)",), tuple(K), group=group),
     ]
 
 
@@ -123,13 +133,19 @@ def _limits(rows: Sequence[LimitRow]) -> Table:
     return table("LIMITS", [
         Column(("",), tuple(row.label for row in firsts), left=True),
         Column(("of",), tuple(_of(group) for group in groups.values()), left=True),
-        Column(("allowed",), tuple(f"{row.direction} {allowed(row.bound, row.kind)}" for row in firsts), left=True),
+        Column(("allowed",), tuple(_allowed(row) for row in firsts), left=True),
         Column(("kept away",), tuple(_kept(row) for row in firsts), rank=2),
         Column(("why",), tuple(_why(row) for row in firsts), rank=3, left=True),
     ])  # fmt: skip
 
 
+def _allowed(row: LimitRow) -> str:
+    return f"{row.direction} {allowed(row.bound, row.kind)}"
+
+
 def _of(group: Sequence[LimitRow]) -> str:
+    if len(group) == 1:
+        return group[0].quantity
     return f"{group[0].quantity.partition('.')[2]} of {owners_text([row.owner for row in group])}"
 
 
@@ -163,7 +179,9 @@ def order_sentence(seen: Understanding) -> str:
             f"Every reaction of {name} is of order {order} in it: how {name} is divided acts on by-products "
             "only through temperatures and limits."
         )
-    return f"Reactions of {name} differ in their order in it: how {name} is divided changes selectivity by itself."
+    return (
+        f"Reactions of {name} differ in their order in it: how it is divided changes selectivity by itself."
+    )
 
 
 def summary(case: Case, seen: Understanding) -> str:
@@ -219,7 +237,11 @@ def _reaction_json(row: ReactionRow) -> dict[str, Any]:
         "equation": row.equation,
         "atom imbalance": row.imbalance,
         "at": at,
-        "units": {"temperature": unit("temperature"), "heat of reaction": unit("molar energy"), "K": "(1 bar)"},
+        "units": {
+            "temperature": unit("temperature"),
+            "heat of reaction": unit("molar energy"),
+            "K": "(1 bar)",
+        },
         "orders": dict(row.orders),
         "order in split reactant": row.order_in_split,
         "rate per": row.rate_per,

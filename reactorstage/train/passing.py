@@ -8,11 +8,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from reactorstage.bed import integrate as status
-from reactorstage.bed.balance import work_space
-from reactorstage.bed.data import Beds, Chemistry
-from reactorstage.bed.integrate import Tolerance
+from reactorstage.bed.data import Beds, Chemistry, Stages, Tolerance
 from reactorstage.bed.sample import sample_bed
-from reactorstage.bed.train_pass import Stages, train_pass
+from reactorstage.bed.train_pass import train_pass
 from reactorstage.train.layout import BedPlace, Layout
 
 Array = NDArray[np.float64]
@@ -59,32 +57,31 @@ class Pass:
 
     def stages(self, most: int) -> Stages:
         """Empty step sequences of up to `most` steps."""
-        B, n = len(self.layout.beds), self.chemistry.nu.shape[0] + 1
-        return Stages(
-            np.zeros(B, np.int64),
-            np.zeros((B, most + 1)),
-            np.zeros((B, most, n)),
-            np.zeros((B, most, 3, n)),
-            np.zeros((B, most, 3)),
-        )
+        n = self.chemistry.R + 1
+        B = len(self.layout.beds)
+        return Stages(np.zeros(B, np.int64), np.empty((B, most, 2 + 4 * n + 3)))
 
     def tolerance(self, flow: float) -> Tolerance:
         return Tolerance(flow, 100.0 * flow, min(1e-12, 1e-5 * flow), self.named)
 
-    def adaptive(self, u: Array, du: Array, flow: float = SEARCH, most: int | None = None) -> Outcome:
+    def adaptive(
+        self, u: Array, du: Array, flow: float = SEARCH, most: int | None = None, places: bool = True
+    ) -> Outcome:
         """Integrate with steps chosen by error control at tolerance `flow`."""
-        return self._run(u, du, self.tolerance(flow), False, self.stages(most or MOST_STEPS.get(flow, 3000)))
+        stages = self.stages(most or MOST_STEPS.get(flow, 3000))
+        return self._run(u, du, self.tolerance(flow), False, places, stages, stages)
 
-    def frozen(self, u: Array, du: Array, mesh: Stages) -> Outcome:
+    def frozen(self, u: Array, du: Array, mesh: Stages, places: bool = True) -> Outcome:
         """Integrate on the step sequences of an earlier pass."""
         stages = self.stages(max(1, int(mesh.counts.max())))
-        stages.counts[:] = mesh.counts
-        stages.edges[:] = mesh.edges[:, : stages.edges.shape[1]]
-        return self._run(u, du, self.tolerance(SEARCH), True, stages)
+        return self._run(u, du, self.tolerance(SEARCH), True, places, stages, mesh)
 
-    def _run(self, u: Array, du: Array, tolerance: Tolerance, frozen: bool, stages: Stages) -> Outcome:
+    def _run(
+        self, u: Array, du: Array, tolerance: Tolerance, frozen: bool, places: bool, stages: Stages, mesh: Stages
+    ) -> Outcome:
         layout = self.layout
         out = np.empty((layout.rows, 1 + du.shape[1]))
+        moved = np.full((du.shape[1], 2), -1, dtype=np.int64)
         code, reached, depth, evaluations, steps = train_pass(
             self.chemistry,
             self.beds,
@@ -92,9 +89,12 @@ class Pass:
             layout.compositions,
             u,
             du,
+            moved,
             tolerance,
             frozen,
+            places,
             stages,
+            mesh,
             out,
         )
         failure = "" if code == status.DONE else f"{self._place(reached, depth)}: {SENTENCES[code]}"
@@ -113,7 +113,7 @@ class Pass:
         """w, T, p (N,), F (N, S), r (N, R) along a bed, N about `points`."""
         b = bed.number - 1
         count = int(outcome.stages.counts[b])
-        R, S = self.chemistry.nu.shape
+        R, S = self.chemistry.R, self.chemistry.S
         per_step = max(1, -(-points // max(count, 1)))
         N = count * per_step + 1
         w, T, p, F, r = np.zeros(N), np.zeros(N), np.zeros(N), np.zeros((N, S)), np.zeros((N, R))
@@ -122,22 +122,7 @@ class Pass:
             record = outcome.out[row : row + self.layout.width, 0]
             F[0], p[0], T[0] = record[:S], record[S + 1], record[S + 2]
             return w, T, p, F, r
-        work = work_space(R, S, self.chemistry.member.shape[1])
-        first = u[bed.inputs : bed.inputs + 3]
         sample_bed(
-            self.chemistry,
-            self.beds,
-            b,
-            row,
-            outcome.out,
-            *first,
-            outcome.stages,
-            per_step,
-            work,
-            w,
-            T,
-            p,
-            F,
-            r,
+            self.chemistry, self.beds, b, row, outcome.out, u, bed.inputs, outcome.stages, per_step, w, T, p, F, r
         )
         return w, T, p, F, r

@@ -29,7 +29,7 @@ from reactorstage.train.passing import FINAL, Outcome, Pass
 from reactorstage.train.quantities import Catalogue
 
 if TYPE_CHECKING:
-    from reactorstage.bed.train_pass import Stages
+    from reactorstage.bed.data import Stages
     from reactorstage.case.model import Case
     from reactorstage.train.result import Rating
     from reactorstage.train.understanding import Understanding

@@ -37,11 +37,15 @@ def test_species_and_fluid(read_lead: Read) -> None:
 
 
 def test_reactions_take_what_every_reaction_says(read_lead: Read) -> None:
-    case = read_lead(("    equation: benzene + eth", "    driven by: mole fraction\n    equation: benzene + eth"),
-                     ("4.2e-3 kmol/(kg h bar^2)", "4.2e-3 kmol/(kg h)"))  # fmt: skip
+    case = read_lead(
+        ("    equation: benzene + eth", "    driven by: mole fraction\n    equation: benzene + eth"),
+        ("4.2e-3 kmol/(kg h bar^2)", "4.2e-3 kmol/(kg h)"),
+    )
     first, second, _ = case.reactions.values()
     assert (first.driven_by, second.driven_by) == ("mole fraction", "partial pressure")
-    assert first.rate_per == "catalyst mass" and first.orders is None and first.backward == "from Gibbs energies"
+    assert (
+        first.rate_per == "catalyst mass" and first.orders is None and first.backward == "from Gibbs energies"
+    )
     assert first.valid and first.valid.temperature == (623.15, 713.15)
     assert second.constant.is_ == Raw("2.2e-3 kmol/(kg h bar^2)")
     assert (second.constant.at, second.constant.activation_energy) == (673.15, 88e3)
@@ -49,7 +53,11 @@ def test_reactions_take_what_every_reaction_says(read_lead: Read) -> None:
 
 def test_irreversible_equation_has_no_backward_rate(read_lead: Read) -> None:
     case = read_lead(("benzene + ethylene <=>", "benzene + ethylene =>"))
-    assert [r.backward for r in case.reactions.values()] == [None, "from Gibbs energies", "from Gibbs energies"]
+    assert [r.backward for r in case.reactions.values()] == [
+        None,
+        "from Gibbs energies",
+        "from Gibbs energies",
+    ]
 
 
 def test_reversible_equation_takes_gibbs_energies_by_itself(read_lead: Read) -> None:
@@ -65,10 +73,12 @@ def test_constant_as_plain_text(read_lead: Read) -> None:
 
 
 def test_orders_by_species(read_lead: Read) -> None:
-    case = read_lead(("    orders: as written\n", "    orders: {benzene: 0.5, ethylene: 1}\n"),
-                     ("4.2e-3 kmol/(kg h bar^2)", "4.2e-3 kmol/(kg h bar^1.5)"),
-                     ("2.2e-3 kmol/(kg h bar^2)", "2.2e-3 kmol/(kg h bar^1.5)"),
-                     ("1.0e-5 kmol/(kg h bar^2)", "1.0e-5 kmol/(kg h bar^1.5)"))  # fmt: skip
+    case = read_lead(
+        ("    orders: as written\n", "    orders: {benzene: 0.5, ethylene: 1}\n"),
+        ("4.2e-3 kmol/(kg h bar^2)", "4.2e-3 kmol/(kg h bar^1.5)"),
+        ("2.2e-3 kmol/(kg h bar^2)", "2.2e-3 kmol/(kg h bar^1.5)"),
+        ("1.0e-5 kmol/(kg h bar^2)", "1.0e-5 kmol/(kg h bar^1.5)"),
+    )
     assert case.reactions["ethylation"].orders == {"benzene": 0.5, "ethylene": 1.0}
 
 
@@ -78,6 +88,11 @@ def test_feeds(read_lead: Read) -> None:
     assert feed.temperature == Number(318.15, kind="temperature")
     assert feed.composition == {"ethylene": pytest.approx(0.9985), "ethane": pytest.approx(0.0015)}
     assert sum(feed.composition.values()) == pytest.approx(1.0, abs=1e-15)
+
+
+def test_a_composition_that_nearly_closes_is_scaled(read_lead: Read) -> None:
+    composition = read_lead(("ethane: rest", "ethane: 0.14999 %")).feeds["ethylene"].composition
+    assert sum(composition.values()) == pytest.approx(1.0, abs=1e-15)
 
 
 def test_split_frees_all_but_the_rest(read_lead: Read) -> None:
@@ -91,7 +106,12 @@ def test_split_frees_all_but_the_rest(read_lead: Read) -> None:
 SPLITS = [
     ("{bed 1: 67 kmol/h, bed 2: 67 kmol/h, bed 3: 67 kmol/h, bed 4: 67 kmol/h}", "all", "bed 4", [1, 2, 3]),
     ("{bed 1: 67 kmol/h, bed 2: 67 kmol/h, bed 3: 67 kmol/h, bed 4: 67 kmol/h}", None, None, []),
-    ("{bed 1: rest, bed 2: 67 kmol/h, bed 3: 67 kmol/h, bed 4: 67 kmol/h}", "[bed 2, bed 4]", "bed 1", [2, 4]),
+    (
+        "{bed 1: rest, bed 2: 67 kmol/h, bed 3: 67 kmol/h, bed 4: 67 kmol/h}",
+        "[bed 2, bed 4]",
+        "bed 1",
+        [2, 4],
+    ),
     ("{bed 1: 25 %, bed 2: 25 %, bed 3: {now: 25 %, from: 10 %, to: 30 %}, bed 4: rest}", None, "bed 4", [3]),
     ("{bed 1: 25 %, bed 2: 25 %, bed 3: 25 %, bed 4: rest}", "bed 2", "bed 4", [2]),
 ]
@@ -110,7 +130,17 @@ def test_splits(read_lead: Read, now: str, free: str | None, rest: str | None, f
 
 def test_train(read_lead: Read) -> None:
     train = read_lead().train
-    assert [s.owner for s in train] == ["entry", "bed 1", "gap 1", "bed 2", "gap 2", "bed 3", "gap 3", "bed 4", "effluent"]
+    assert [s.owner for s in train] == [
+        "entry",
+        "bed 1",
+        "gap 1",
+        "bed 2",
+        "gap 2",
+        "bed 3",
+        "gap 3",
+        "bed 4",
+        "effluent",
+    ]
     assert [s.kind for s in train[:3]] == ["entry", "bed", "gap"] and train[3].index == 3
     take, heat, inject = train[0].steps
     assert (take.kind, take.feed, inject.kind, inject.feed) == ("take", "benzene", "inject", "ethylene")
@@ -125,8 +155,15 @@ def test_beds_take_what_every_bed_says(read_lead: Read) -> None:
     first, second = case.train[1].bed, case.train[3].bed
     assert first and second and (first.diameter, second.diameter) == (1.8, 2.0)
     assert first.catalyst == Number(2600.0, kind="mass") and first.equivalent_size == 0.0024
-    assert first.inlet_temperature == Number(657.15, 623.15, 683.15, "temperature") and first.inlet_temperature.free
-    assert first.inlet_pressure and first.inlet_pressure.now == pytest.approx(1.94e6) and not first.inlet_pressure.free
+    assert (
+        first.inlet_temperature == Number(657.15, 623.15, 683.15, "temperature")
+        and first.inlet_temperature.free
+    )
+    assert (
+        first.inlet_pressure
+        and first.inlet_pressure.now == pytest.approx(1.94e6)
+        and not first.inlet_pressure.free
+    )
     assert (second.catalyst_activity, second.state, first.state) == (Number(0.9), "bypassed", "running")
     assert first.pressure_drop_factor == Number(1.0) and first.design_temperature == 753.15
 
@@ -161,7 +198,9 @@ def test_what_the_example_does_not_show(read_lead: Read) -> None:
     assert second.pressure_drop_factor.free and case.feeds["benzene"].flow.kind == "mass flow"
     assert case.heat_levels and case.heat_levels.levels["air"].capacity == 5e6
     assert case.limits["rise"].soft == Raw("5 EUR/h per K")
-    assert case.limits["valve"].at_least == Raw("30 kmol/h") and case.limits["valve"].at_most == Raw("82 kmol/h")
+    assert case.limits["valve"].at_least == Raw("30 kmol/h") and case.limits["valve"].at_most == Raw(
+        "82 kmol/h"
+    )
     (cool,) = case.train[-1].steps
     assert cool.heat == Number(3e6, kind="power") and cool.levels == ("air", "steam 9 bar")
     assert case.train[0].steps[1].levels == "unpriced"
@@ -169,14 +208,23 @@ def test_what_the_example_does_not_show(read_lead: Read) -> None:
 
 @pytest.mark.parametrize("empty", ["[]", ""])
 def test_a_gap_may_be_empty(read_lead: Read, empty: str) -> None:
-    steps = "\n      - inject: ethylene\n      - cool: {holds: bed 2.inlet temperature, heat to: every cooling level}"
+    cooler = "- cool: {holds: bed 2.inlet temperature, heat to: every cooling level}"
+    steps = f"\n      - inject: ethylene\n      {cooler}"
     case = read_lead(
         (f"  - gap 1:{steps}", f"  - gap 1: {empty}"),
         ("bed 1: 67 kmol/h, bed 2: 67 kmol/h", "bed 1: 134 kmol/h"),
-        ("{catalyst: 3.0 t, inlet temperature: {now: 384 degC, from: 350 degC, to: 410 degC}}", "{catalyst: 0 t}"),
+        (
+            "{catalyst: 3.0 t, inlet temperature: {now: 384 degC, from: 350 degC, to: 410 degC}}",
+            "{catalyst: 0 t}",
+        ),
     )
     second = case.train[3].bed
-    assert case.train[2].steps == () and second and second.inlet_temperature is None and second.catalyst.now == 0.0
+    assert (
+        case.train[2].steps == ()
+        and second
+        and second.inlet_temperature is None
+        and second.catalyst.now == 0.0
+    )
 
 
 def test_data_file_is_looked_up_beside_the_case(tmp_path: Path, lead_text: str) -> None:

@@ -81,7 +81,9 @@ def test_several_problems_come_together() -> None:
 
 
 def test_alias_bomb_is_only_a_list_of_problems() -> None:
-    bomb = "a: &a [x, x]\n" + "".join(f"{b}: &{b} [*{a}, *{a}]\n" for a, b in zip("abcdefgh", "bcdefghi", strict=True))
+    bomb = "a: &a [x, x]\n" + "".join(
+        f"{b}: &{b} [*{a}, *{a}]\n" for a, b in zip("abcdefgh", "bcdefghi", strict=True)
+    )
     assert len(refused(bomb)) == 9 + 16
 
 

@@ -7,8 +7,6 @@ from collections.abc import Callable
 from pathlib import Path
 
 import pytest
-from hypothesis import given
-from hypothesis import strategies as st
 
 from reactorstage.case.reading import load_data
 from reactorstage.errors import CaseProblems, Problem
@@ -29,16 +27,37 @@ ONE_PROBLEM = [
     ("- cool: {to:", "- cooll: {to:", 68, "cooll", "'cooll' is not a key", r"did you mean cool\?"),
     ("train:  ", "traim:  ", 49, "traim", "'traim' is not a key", r"did you mean train\?"),
     ("case: Selke", "case:\nsite: Selke", 1, "", "nothing is written here", "give a value"),
-    ("fluid: {density: ideal gas, viscosity: 1.7e-5 Pa s}", "fluid: gas", 20, "gas", "a mapping .* expected", ""),
-    ("    equation: benzene + ethylene <=> ethylbenzene\n", "", 30, "ethylation", "equation is missing in ethyl", ""),
+    (
+        "fluid: {density: ideal gas, viscosity: 1.7e-5 Pa s}",
+        "fluid: gas",
+        20,
+        "gas",
+        "a mapping .* expected",
+        "",
+    ),
+    (
+        "    equation: benzene + ethylene <=> ethylbenzene\n",
+        "",
+        29,
+        "ethylation",
+        "equation is missing in ethyl",
+        "",
+    ),
     ("bed 1: {catalyst: 2.6 t, ", "bed 1: {", 54, "bed 1", "catalyst is missing in bed 1", ""),
     ("    temperature: 45 degC\n", "", 41, "ethylene:", "temperature is missing in ethylene", ""),
     ("format: 1", "format: 2", 2, "2", "format '2' is not known", "write format: 1"),
     ("least money", "fewest money", 3, "fewest", "cannot stand here", "`least NAME` or `most NAME`"),
     ("percent: mol", "percent: mole", 4, "mole", "'mole' is not a choice", r"did you mean mol\?"),
     ("currency: EUR", "currency: euro", 5, "euro", "'euro' cannot stand here", "three capital letters"),
-    ("rate per: catalyst mass", "rate per: catalyst mas", 24, "catalyst mas", "not a choice", "did you mean cat"),
-    ("    rate per: catalyst mass\n", "", 29, "ethylation", "rate per is missing in ethylation", ""),
+    (
+        "rate per: catalyst mass",
+        "rate per: catalyst mas",
+        24,
+        "catalyst mas",
+        "not a choice",
+        "did you mean cat",
+    ),
+    ("    rate per: catalyst mass\n", "", 28, "ethylation", "rate per is missing in ethylation", ""),
     # numbers
     ("965 kmol/h", "965", 40, "965", "'965' has no unit: a molar flow such as 965 kmol/h or a mass flow", ""),
     ("965 kmol/h", "0 kmol/h", 40, "0 kmol", "'0 kmol/h' is not above 0 kmol/h", ""),
@@ -64,14 +83,28 @@ ONE_PROBLEM = [
     # free numbers
     ("now: 384", "now: 484", 54, "484", "'484 degC' lies outside its range 350 degC to 410 degC", "widen"),
     ("from: 350 degC, to: 410", "from: 410 degC, to: 350", 54, "410", "is not below to", "swap"),
-    (RANGE_1, "bar(a), inlet temperature: {now: 384 degC}", 54, "inlet temperature", "from is missing", "free number"),
+    (
+        RANGE_1,
+        "bar(a), inlet temperature: {now: 384 degC}",
+        54,
+        "inlet temperature",
+        "from is missing",
+        "free number",
+    ),
     ("from: 350", "form: 350", 54, "form", "'form' is not a key of a free number", "from"),
     # compositions and splits
     ("benzene: 100 %", "benzen: 100 %", 40, "benzen", "no species 'benzen'", r"did you mean benzene\?"),
     ("ethane: rest", "ethane: 0.1 %", 44, "composition", "sums to 99.95 %, not 100 %", "rest"),
-    ("ethane: rest", "ethane: 0.14999 %", 44, "composition", "sums to 99.99999 %", "rest") ,
+    ("ethane: rest", "ethane: 0.1498 %", 44, "composition", "sums to 99.9998 %", "rest"),
     ("99.85 %", "101 %", 44, "101 %", "'101 %' is above 100 %", ""),
-    ("99.85 %, ethane: rest", "99 %, ethane: rest, benzene: 2 %", 44, "rest", "nothing is left for the rest", ""),
+    (
+        "99.85 %, ethane: rest",
+        "99 %, ethane: rest, benzene: 2 %",
+        44,
+        "rest",
+        "nothing is left for the rest",
+        "",
+    ),
     ("99.85 %", "rest", 44, "rest}", "`rest` is already taken by ethylene", "once"),
     ("bed 4: rest", "bed 4: 66 kmol/h", 46, "now", "sums to 267 kmol/h, not 268 kmol/h", "bed 4: rest"),
     ("bed 1: 67 kmol/h", "bed 1: 200 kmol/h", 46, "rest", "others sum to 334 kmol/h of 268 kmol/h", ""),
@@ -82,18 +115,60 @@ ONE_PROBLEM = [
     # train
     ("- gap 2:", "- gab 2:", 59, "gab 2", "a section of the train is expected", "gap 1"),
     ("- take: benzene", "- inject: benzene", 51, "inject", "does not begin with a feed", "take"),
-    ("      - inject: ethylene   ", "      - take: ethylene   ", 53, "ethylene", "taken once, as the first", "inject"),
-    ("      - inject: ethylene\n" + f"      {COOL_2}", f"      {COOL_2}", 46, "bed 2", "bed 2 has a share", "gap 1"),
+    (
+        "      - inject: ethylene   ",
+        "      - take: ethylene   ",
+        53,
+        "ethylene",
+        "taken once, as the first",
+        "inject",
+    ),
+    (
+        "      - inject: ethylene\n" + f"      {COOL_2}",
+        f"      {COOL_2}",
+        46,
+        "bed 2",
+        "bed 2 has a share",
+        "gap 1",
+    ),
     ("holds: bed 2.inlet", "holds: bed 3.inlet", 57, "bed 3.", "the next bed is bed 2", "holds: bed 2"),
-    ("holds: bed 2.inlet", "holds: bed 2.exit", 57, "bed 2.exit", "cannot be held", "holds: bed 2.inlet temp"),
+    (
+        "holds: bed 2.inlet",
+        "holds: bed 2.exit",
+        57,
+        "bed 2.exit",
+        "cannot be held",
+        "holds: bed 2.inlet temp",
+    ),
     ("cool: {to: 190 degC", "cool: {holds: bed 5.inlet temperature", 68, "bed 5", "no bed follows", "to:"),
-    ("- cool: {holds: bed 2.inlet temperature", "- cool: {to: 380 degC", 58, "{now", "no device makes bed 2.in", "gap 1"),
+    (
+        "- cool: {holds: bed 2.inlet temperature",
+        "- cool: {to: 380 degC",
+        58,
+        "inlet temp",
+        "no device makes bed 2.in",
+        "gap 1",
+    ),
     (COOL_2, "- cool: {heat to: air}", 57, "cool", "nothing says how much", "holds, to, heat removed"),
     (COOL_2, COOL_2.replace("holds", "to: 3 degC, holds"), 57, "cool", "holds and to are given together", ""),
     (COOL_2, f"{COOL_2}\n      {COOL_2}", 58, "bed 2.", "already held by another device", ""),
-    ("heat to: every cooling level", "heat to: fired heater", 57, "fired", "'fired heater' only heats", "steam 28"),
+    (
+        "heat to: every cooling level",
+        "heat to: fired heater",
+        57,
+        "fired",
+        "'fired heater' only heats",
+        "steam 28",
+    ),
     ("from: fired heater", "from: air", 52, "air", "'air' only cools", "fired heater"),
-    ("from: fired heater", "from: fired heatr", 52, "fired heatr", "no heat level 'fired heatr'", "did you mean fired"),
+    (
+        "from: fired heater",
+        "from: fired heatr",
+        52,
+        "fired heatr",
+        "no heat level 'fired heatr'",
+        "did you mean fired",
+    ),
     ("from: fired heater", "from: [fired heater, fired heater]", 52, "heat from", "named twice", ""),
     ("degC, heat to: every cooling level", "degC", 68, "cool", "heat to is missing in cool", ""),
     (LAST, "  - effluent:\n      - stop\n", 68, "stop", "a mapping .* expected", ""),
@@ -102,47 +177,145 @@ ONE_PROBLEM = [
     # beds
     ("inlet pressure: 19.4 bar(a), ", "", 54, "bed 1", "bed 1 has no inlet pressure", "inlet pressure"),
     ("bed 2: {", "bed 2: {inlet pressure: 19 bar(a), ", 58, "19 bar", "follows from bed 1", "bed 1 only"),
-    ("  diameter: 1.8 m\n", "", 54, "bed 1", "diameter is missing in bed 1, bed 2, bed 3, bed 4", "pressure drop"),
+    (
+        "  diameter: 1.8 m\n",
+        "",
+        54,
+        "bed 1",
+        "diameter is missing in bed 1, bed 2, bed 3, bed 4",
+        "pressure drop",
+    ),
     # reactions and species
-    ("bar^2), activation energy: 66", "bar), activation energy: 66", 31, "4.2e-3", r"kmol/\(kg h bar\^2\) is exp", ""),
+    (
+        "bar^2), activation energy: 66",
+        "bar), activation energy: 66",
+        31,
+        "4.2e-3",
+        r"kmol/\(kg h bar\^2\) is exp",
+        "",
+    ),
     (ETHYLATION, "3 kmol/h", 31, "3 kmol/h", r"kmol/\(kg h bar\^2\) is expected", "sum to 2"),
-    (ETHYLATION, "{at: 400 degC, is: 3 kmol/(kg h bar^2)}", 31, "400", "`at` has no meaning", "activation energy"),
-    ("driven by: partial pressure", "driven by: concentration", 31, "4.2e-3", r"kmol/\(kg h \(kmol/m\^3\)\^2\)", ""),
-    ("orders: as written", "orders: {benzen: 1, ethylene: 1}", 26, "benzen:", "no species 'benzen'", "benzene"),
+    (
+        ETHYLATION,
+        "{at: 400 degC, is: 3 kmol/(kg h bar^2)}",
+        31,
+        "400",
+        "`at` has no meaning",
+        "activation energy",
+    ),
+    (
+        "driven by: partial pressure",
+        "driven by: concentration",
+        31,
+        "4.2e-3",
+        r"kmol/\(kg h \(kmol/m\^3\)\^2\)",
+        "",
+    ),
+    (
+        "orders: as written",
+        "orders: {benzen: 1, ethylene: 1}",
+        26,
+        "benzen:",
+        "no species 'benzen'",
+        "benzene",
+    ),
     ("orders: as written", "orders: 2", 26, "2", "orders are `as written` or", ""),
-    ("{gas data: C6H6}", "{gas data: C6H6, formula: C6H6}", 8, "formula", "both `gas data` and `formula`", ""),
+    (
+        "{gas data: C6H6}",
+        "{gas data: C6H6, formula: C6H6}",
+        8,
+        "formula",
+        "both `gas data` and `formula`",
+        "",
+    ),
     ("{gas data: C6H6}", "{source: none}", 8, "benzene", "benzene has no data", "gas data: NAME"),
     ("    entropy: 435 J/(mol K)\n", "", 12, "diethylbenzene", "entropy missing in diethylbenzene", ""),
-    ("gas data: C2H4", 'gas data: "none.yaml:C2H4"', 9, '"none', "there is no file 'none.yaml'", "folder of the case"),
+    (
+        "gas data: C2H4",
+        'gas data: "none.yaml:C2H4"',
+        9,
+        '"none',
+        "there is no file 'none.yaml'",
+        "folder of the case",
+    ),
     # money, levels, limits
     ("62 EUR/kmol", "62 USD/kmol", 87, "62 USD", "'USD' is not the currency", "write EUR"),
     ("62 EUR/kmol", "-62 EUR/kmol", 87, "-62", "is negative", "no sign"),
     ("62 EUR/kmol", "62 kmol/h", 87, "62 kmol", "is not money for something", "EUR/kmol"),
     ("62 EUR/kmol", "62 EUR/year", 87, "62 EUR/year", "how many hours", "hours per year"),
-    ("costs: 62 EUR/kmol", "costs: 1 EUR/kmol, earns: 1 EUR/kmol", 87, "earns", "both `costs` and `earns`", ""),
+    (
+        "costs: 62 EUR/kmol",
+        "costs: 1 EUR/kmol, earns: 1 EUR/kmol",
+        87,
+        "earns",
+        "both `costs` and `earns`",
+        "",
+    ),
     (", costs: 62 EUR/kmol", "", 87, "by-product", "neither `costs` nor `earns`", ""),
     ("  by-product", "  total", 87, "total", "money.total has a meaning of its own", "another label"),
     ("34 EUR/MWh", "34 EUR/kmol", 80, "34 EUR/kmol", "a price on a power is written in EUR/MWh", ""),
     ("cools down to: 60 degC, ", "", 84, "air", "neither `heats up to` nor `cools down to`", ""),
     ("{cools down to: 60", "{heats up to: 90 degC, cools down to: 60", 84, "cools", "both `heats up to`", ""),
     ("  air:  ", "  unpriced:  ", 84, "unpriced", "has a meaning of its own", "another name"),
-    ("of: every bed.exit", "of: evry bed.exit", 90, "evry", "no 'evry bed' in this case", "did you mean every bed"),
-    ("of: every bed.exit temperature", "of: bed 7.exit temperature", 90, "bed 7", "there is no 'bed 7'", "bed 4"),
-    ("of: effluent.flow of eth", "of: efluent.flow of eth", 96, "efluent", "no 'efluent'", "did you mean effluent"),
-    ("of: every bed.exit temperature", "of: money", 90, "money", "not the name of a quantity", "owner.quantity"),
+    (
+        "of: every bed.exit",
+        "of: evry bed.exit",
+        90,
+        "evry",
+        "no 'evry bed' in this case",
+        "did you mean every bed",
+    ),
+    (
+        "of: every bed.exit temperature",
+        "of: bed 7.exit temperature",
+        90,
+        "bed 7",
+        "there is no 'bed 7'",
+        "bed 4",
+    ),
+    (
+        "of: effluent.flow of eth",
+        "of: efluent.flow of eth",
+        96,
+        "efluent",
+        "no 'efluent'",
+        "did you mean effluent",
+    ),
+    (
+        "of: every bed.exit temperature",
+        "of: money",
+        90,
+        "money",
+        "not the name of a quantity",
+        "owner.quantity",
+    ),
     ("least money.total", "least every bed.rise", 3, "least", "there is no 'every bed'", ""),
     ("at most: 424 degC, ", "", 90, "hot exit", "hot exit has no bound", "between"),
     ("at most: 424 degC", "at most: 424 foo", 90, "424 foo", "'foo' is not a known unit", ""),
     ("keep away: 0 K", "keep away: -1 K", 90, "-1 K", "'-1 K' is negative", ""),
     ("at most: 46 K", "at most: 46 K, soft: 5 K", 93, "5 K", "is not money", ""),
     ("at most: 46 K", "between: 40 K to 46 K", 93, "40 K", "two bounds are expected", "A and B"),
-    ("at most: 46 K", "at least: 50 K, at most: 46 K", 93, "50 K", "at least 50 K lies above at most 46 K", ""),
+    (
+        "at most: 46 K",
+        "at least: 50 K, at most: 46 K",
+        93,
+        "50 K",
+        "at least 50 K lies above at most 46 K",
+        "",
+    ),
     ("except: {gap 3", "except: {gap 4", 95, "gap 4", "no 'gap 4' to except", "gap 3"),
     ("at most: 46 K", "at most: 46 K, except: {bed 1: {}}", 93, "bed 1", "the exception has no bound", ""),
     ("kmol/h, why: vent", "kmol/h, except: {bed 1: {at most: 1 K}}", 96, "bed 1", "`except` belongs to", ""),
     ("  valve:", "  hot-exit:", 94, "hot-exit", "differ only in hyphens", "different names"),
-    ("  ethane:       {", "  2 ethane:       {", 10, "2 ethane", "cannot be the name of a species", "without"),
-]  # fmt: skip
+    (
+        "  ethane:       {",
+        "  2 ethane:       {",
+        10,
+        "2 ethane",
+        "cannot be the name of a species",
+        "without",
+    ),
+]
 
 
 @pytest.mark.parametrize(("old", "new", "line", "caret", "message", "hint"), ONE_PROBLEM)
@@ -202,11 +375,18 @@ def test_sections_out_of_order(problems: Problems) -> None:
 def test_needs_of_rate_bases(problems: Problems) -> None:
     factor = ("  bulk density: 640 kg/m^3\n", "  pressure drop factor: 0\n")
     (found,) = problems(factor, ("catalyst: 2.6 t", "catalyst: 4 m^3"))
-    assert "bulk density is missing in bed 1: needed for rates per catalyst mass with catalyst by volume" in found.message
+    assert (
+        "bulk density is missing in bed 1: needed for rates per catalyst mass with catalyst by volume"
+        in found.message
+    )
     units = [("kmol/(kg h bar^2)", "kmol/(m^3 h bar^2)")] * 3
     found, *_ = problems(factor, ("per: catalyst mass", "per: bed volume"), *units)
     assert "needed for rates per bed volume with catalyst by mass" in found.message
-    found, *_ = problems(("  void fraction: 0.41\n", "  pressure drop factor: 0\n"), ("per: catalyst mass", "per: void volume"), *units)
+    found, *_ = problems(
+        ("  void fraction: 0.41\n", "  pressure drop factor: 0\n"),
+        ("per: catalyst mass", "per: void volume"),
+        *units,
+    )
     assert "void fraction is missing" in found.message and "rates per void volume" in found.message
 
 
@@ -218,7 +398,12 @@ def test_feeds_used_twice_and_never(problems: Problems) -> None:
 
 
 def test_an_irreversible_reaction_has_no_backward(problems: Problems) -> None:
-    (found,) = problems(("benzene + ethylene <=> ethylbenzene", "benzene + ethylene => ethylbenzene\n    backward: from Gibbs energies"))
+    (found,) = problems(
+        (
+            "benzene + ethylene <=> ethylbenzene",
+            "benzene + ethylene => ethylbenzene\n    backward: from Gibbs energies",
+        )
+    )
     assert "so it has no backward rate" in found.message
 
 
@@ -237,37 +422,16 @@ def test_what_is_no_case_at_all() -> None:
         load_data(b"case: 3", Path("a.yaml"))
 
 
-@given(st.binary(max_size=300))
-def test_any_bytes_give_problems(data: bytes) -> None:
-    with pytest.raises(CaseProblems):
-        load_data(data, Path("a.yaml"))
+def test_words_for_every_level_need_a_level(problems: Problems, lead_text: str) -> None:
+    ladder = lead_text[lead_text.index("heat levels:") : lead_text.index("prices:")]
+    found = problems((ladder, ""))
+    assert {p.message for p in found} == {
+        "there is no level for 'every cooling level'",
+        "there is no heat level 'fired heater'",
+    }
+    assert [p.line for p in found] == [52, 57, 61, 65, 68]
 
 
-@given(st.text(max_size=20), st.integers(0, 4600), st.integers(0, 20))
-def test_a_lead_case_with_any_damage_gives_a_case_or_problems(piece: str, at: int, length: int) -> None:
-    text = LEAD.read_text(encoding="utf-8")
-    try:
-        load_data((text[:at] + piece + text[at + length :]).encode("utf-8", "surrogatepass"), LEAD)
-    except CaseProblems as found:
-        assert all(p.line >= 1 and p.column >= 1 and p.message for p in found.problems)
-
-
-TREES = st.recursive(
-    st.sampled_from(["1", "1 t", "rest", "all", "benzene", "bed 1", "every cooling level", "5 %", "", "x"]),
-    lambda inner: st.lists(inner, max_size=3) | st.dictionaries(st.sampled_from(["now", "bed 1", "cool", "x"]), inner, max_size=3),
-    max_leaves=6,
-)
-
-
-@given(tree=TREES, key=st.sampled_from([
-    "case", "aim", "species", "fluid", "reactions", "feeds", "train", "every bed", "heat levels", "prices", "limits"
-]))  # fmt: skip
-def test_any_tree_under_a_key_gives_a_case_or_problems(tree: object, key: str) -> None:
-    import yaml
-
-    whole = yaml.safe_load(LEAD.read_text(encoding="utf-8"))
-    whole[key] = tree
-    try:
-        load_data(yaml.safe_dump(whole).encode(), LEAD)
-    except CaseProblems as found:
-        assert found.problems
+def test_prices_per_year_need_hours(problems: Problems) -> None:
+    (found,) = problems(("62 EUR/kmol", "62 EUR/(t year)"))
+    assert "how many hours it runs" in found.message

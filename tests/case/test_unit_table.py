@@ -37,11 +37,14 @@ def test_factors_agree_with_published_ones(text: str, unit: str, expected: float
 def test_table_agrees_with_pint(word: str) -> None:
     pint = registry().Quantity(1.0, word).to_base_units()
     assert COMMON[word].factor == pytest.approx(pint.magnitude, rel=1e-12)
-    assert {d: p for d, p in zip(DIMENSIONS, COMMON[word].powers, strict=True) if p} == dict(pint.dimensionality)
+    assert {d: p for d, p in zip(DIMENSIONS, COMMON[word].powers, strict=True) if p} == dict(
+        pint.dimensionality
+    )
 
 
 @pytest.mark.parametrize(
-    "text", ["kmol/(kg h bar^2)", "J/(mol K^2)", "kW/(m^2 K)", "mol/(m^3 s)", "kJ/kmol", "kmol/(m^3 h bar^0.5)"]
+    "text",
+    ["kmol/(kg h bar^2)", "J/(mol K^2)", "kW/(m^2 K)", "mol/(m^3 s)", "kJ/kmol", "kmol/(m^3 h bar^0.5)"],
 )
 def test_compound_units_agree_with_pint(text: str) -> None:
     assert parse_unit(text).factor == pytest.approx(registry().Quantity(1.0, text).to_base_units().magnitude)

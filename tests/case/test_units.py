@@ -54,7 +54,7 @@ RIGHT = [
     ("66 kJ/mol", "molar energy", 66000.0),
     ("2.0 MW", "power", 2e6),
     ("36 EUR/h", "money rate", 0.01),
-    ("−5 kJ/mol", "molar energy", -5000.0),  # noqa: RUF001
+    ("−5 kJ/mol", "molar energy", -5000.0),
 ]
 
 
@@ -132,7 +132,9 @@ def test_display_and_back(value: float, kind: str) -> None:
 
 
 def test_money_rate_and_back() -> None:
-    assert to_si(f"{to_display(0.25, 'money rate')!r} {display_unit('money rate', 'EUR')}", "money rate") == 0.25
+    assert (
+        to_si(f"{to_display(0.25, 'money rate')!r} {display_unit('money rate', 'EUR')}", "money rate") == 0.25
+    )
 
 
 @pytest.mark.parametrize(

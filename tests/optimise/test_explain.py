@@ -10,11 +10,12 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from reactorstage.optimise import optimise
+from reactorstage.optimise.programme import SplitGroup
 from reactorstage.optimise.resolve import Base, resolve
 from reactorstage.optimise.result import CANNOT, INSIDE
 from reactorstage.optimise.wrappers import Pinned, Shifted
 from tests.optimise.toy_train import ETHYLENE, ToyTrain
-from tests.optimise.toys import Toy, box, contradiction, corner, linear, row
+from tests.optimise.toys import Toy, box, contradiction, corner, linear, number, row
 
 
 def test_worths_of_a_linear_programme_in_closed_form() -> None:
@@ -73,25 +74,32 @@ def test_tightening_beyond_what_is_possible_says_so() -> None:
 
 
 def test_relaxing_looks_into_the_other_basins_too() -> None:
-    # cost (x - 1)^2 x^2 - 0.1 x; x <= 0.9 near the better basin... two answers, the left one held by a limit
+    # basins at 0 and 1, both cost 0; one limit keeps 0.05 from the left one, another 0.2 from the right one
     def cost(x):
         return (x[0] - 1) ** 2 * x[0] ** 2, [2 * (x[0] - 1) * x[0] ** 2 + 2 * (x[0] - 1) ** 2 * x[0]]
 
-    # basins at 0 and 1, both cost 0; the gap limit (x - 0.1)(x - 0.93) >= 0 with a step of 0.1 moves
     left = (row("left", step=0.05), lambda x: (x[0] - 0.05, [1.0]))
     right = (row("right", step=0.2), lambda x: (0.8 - x[0], [-1.0]))
-    found = optimise(Toy(box([0.3], -1.0, 2.0), cost, [left, right]), starts=12, jobs=1)
+    toy = Toy(box([0.3], -1.0, 2.0), cost, [left, right])
+    found = optimise(toy, starts=12, jobs=1)
     assert [answer.x[0] for answer in found.answers] == pytest.approx([0.05, 0.8], abs=1e-6)
     (worth,) = found.worths
     assert worth.label == "left" and worth.saves == pytest.approx(found.best.cost, abs=1e-9)
-    base = Base(
-        Toy(box([0.3], -1.0, 2.0), cost, [left, right]),
-        tuple(a.x for a in found.answers),
-        found.best.cost,
-        1.0,
-    )
-    freed = resolve(Shifted(base.programme, np.array([0.0, 0.2])), base.known, base)
-    assert freed.x == pytest.approx([1.0], abs=1e-4)
+    known = tuple(answer.x for answer in found.answers)
+    base = Base(toy, known, found.best.cost, 1.0)
+    freed = Shifted(toy, np.array([0.0, 0.2]))
+    assert resolve(freed, known, base).x == pytest.approx([1.0], abs=1e-4)
+    assert resolve(freed, known[:1], base).x == pytest.approx([0.05])
+
+
+def test_bookkeeping_limits_have_no_worth() -> None:
+    books = replace(row("ladder"), implied=True)
+    cooler = replace(row("no heating"), implied=True)
+    numbers = [number("x1", 0.5, 0.0, 1.0), number("heat above a level", 0.5, 0.0, 1.0, role="internal")]
+    limits = [(books, linear(0.0, -1.0, 1.0)), (cooler, linear(-0.2, 1.0, 0.0))]
+    found = optimise(Toy(numbers, linear(0.0, 1.0, 1.0), limits), starts=2, jobs=1)
+    assert set(found.best.at_work) == {0, 1}
+    assert [worth.label for worth in found.worths] == ["no heating"]
 
 
 def test_keep_away_costs_what_leaving_it_out_saves() -> None:
@@ -133,6 +141,23 @@ def test_equal_split_that_needs_a_limit_relaxed() -> None:
     shifts[index] = amount
     free = optimise(Shifted(train, shifts), starts=4, jobs=1, explain=False)
     assert split.penalty == pytest.approx(split.cost - free.best.cost, rel=1e-6)
+
+
+def test_an_equal_split_that_costs_less_becomes_the_answer() -> None:
+    # basins near 0.5 (lower) and near 0.95, where the only start stands
+    def cost(x):
+        a = x[0]
+        value = 10 * (a - 0.5) ** 2 * (a - 0.95) ** 2 + 0.05 * a
+        return value, [20 * (a - 0.5) * (a - 0.95) * (2 * a - 1.45) + 0.05]
+
+    shares = [number("bed 1.injected feed", 0.95, 0.0, 1.0, role="split", feed="feed", bed=1, total=1.0)]
+    toy = Toy(shares, cost, splits=[SplitGroup("feed", (0,), 1.0, 0.0, 2)])
+    found = optimise(toy, starts=1, jobs=1)
+    assert found.best.x == pytest.approx([0.5], abs=0.03)
+    assert found.notes == ("the best answer was found while explaining, from none of the starts",)
+    assert len(found.answers) == 2 and found.starts[0].answer == 1
+    (split,) = found.equal_splits
+    assert split.cost >= found.best.cost and split.penalty == pytest.approx(split.cost - found.best.cost)
 
 
 def test_conflict_names_what_is_broken_and_what_holds_it() -> None:

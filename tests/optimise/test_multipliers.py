@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from reactorstage.optimise.correct import correction, least_distance, least_norm
-from reactorstage.optimise.multipliers import multipliers, non_negative, own_units
+from reactorstage.optimise.multipliers import Multipliers, multipliers, non_negative, own_units
 from reactorstage.optimise.polish import answer_at, polished
 from reactorstage.optimise.scaling import Point, scale_at, scaled
 from tests.optimise.toys import Toy, box, corner, hs43, hs71, linear, number, row
@@ -127,6 +127,18 @@ def test_correction_puts_what_has_a_multiplier_at_zero_and_breaks_nothing() -> N
     assert at.margin + at.margin_du @ step == pytest.approx([0.0, 0.0], abs=1e-12)
     aimed = correction(at, found, np.ones(2), target=1e-3)
     assert aimed is not None and np.min(at.margin + at.margin_du @ aimed) == pytest.approx(1e-3)
+
+
+def test_correction_swaps_a_limit_that_another_one_replaces() -> None:
+    # at (1, 1) x1 <= 1 and x2 <= 1 are held with multipliers 1 and 2; x1 + x2 <= 2 has moved in by 1e-5
+    # and takes the place of the first, whose multiplier it drives to zero first
+    at = point([0.5, 0.5], [-1, -2], [0.0, 0.0, -1e-5], [[-1, 0], [0, -1], [-1, -1]])
+    found = Multipliers(np.array([1.0, 2.0, 0.0]), np.zeros(2), np.zeros(2), np.zeros(0), 0.0)
+    assert correction(at, found, np.ones(2)) == pytest.approx([-1e-5, 0.0])
+    # nothing can take the place where the limits exclude each other
+    apart = point([0.5], [-1], [0.0, -1e-3], [[-1.0], [1.0]])
+    held = Multipliers(np.array([1.0, 0.0]), np.zeros(1), np.zeros(1), np.zeros(0), 0.0)
+    assert correction(apart, held, np.ones(1)) is None
 
 
 def test_correction_stays_within_the_ranges() -> None:

@@ -91,15 +91,17 @@ def test_new_meshes_until_the_cost_stands_still(error: float) -> None:
     assert ending.cost == pytest.approx(exact.cost, rel=10 * error)
 
 
+def wrong_far_away(x: Array, mesh: Array) -> tuple[float, list[float]]:
+    apart = float(x[0] - mesh[0])
+    return 0.03 * np.sin(apart) ** 2, [0.03 * np.sin(2 * apart)]
+
+
 def test_a_mesh_made_far_away_is_not_believed() -> None:
     # on a mesh made at m the cost is off by 0.03 sin(x1 - m)^2: its first optimum is wrong
     toy = Toy(
         box([0.9], 0.0, 1.0),
         lambda x: ((x[0] - 0.4) ** 2, [2 * (x[0] - 0.4)]),
-        mesh_error=lambda x, mesh: (
-            0.03 * np.sin(x[0] - mesh[0]) ** 2,
-            [0.03 * np.sin(2 * (x[0] - mesh[0]))],
-        ),
+        mesh_error=wrong_far_away,
     )
     ending = descend(toy, np.array([0.9]))
     assert ending.optimal

@@ -175,11 +175,13 @@ def _quantities(beds: Sequence[Bed], options: Options, profiles: Sequence[Profil
             "pressure drop": (bed.drop * 1e5, "pressure difference"),
             f"inlet ratio {names.excess}/{names.main}": (bed.ratio, "ratio"),
             f"conversion of {names.main}": (0.95, "fraction"),
-            f"selectivity to {names.product} from {names.main}": (0.91, "fraction"),
             "depth at 90 % of rise": (bed.lit, "fraction"),
             f"approach to equilibrium of {names.main_reaction}": (bed.approach, "temperature difference"),
             f"outside validity of {names.main_reaction}": (0.0, "fraction"),
         }
+        flow = bed.injected * FLOW if bed.ratio else 0.0
+        numbers[f"inlet flow of {names.main}"] = (flow, "molar flow")
+        numbers[f"inlet flow of {names.excess}"] = ((bed.ratio or 0.0) * flow, "molar flow")
         if options.split:
             numbers[f"injected {names.main}"] = (bed.injected * FLOW, "molar flow")
         if names.by_product:
@@ -192,7 +194,8 @@ def _quantities(beds: Sequence[Bed], options: Options, profiles: Sequence[Profil
         f"effluent.flow of {s}": Value(float(F), "molar flow")
         for s, F in zip(_species(names), last, strict=True)
     }
-    found[f"train.selectivity to {names.product} from {names.main}"] = Value(0.870, "fraction")
+    found[f"train.made {names.product}"] = Value(231.6 * FLOW, "molar flow")
+    found[f"train.made {names.main}"] = Value(-266.2 * FLOW, "molar flow")
     found["train.catalyst"] = Value(sum(bed.catalyst for bed in beds) * 1e3, "mass")
     for step in _steps(beds, options):
         if step.kind in ("heat", "cool"):

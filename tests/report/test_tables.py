@@ -101,6 +101,15 @@ def test_limits_table_names_every_broken_one_in_words() -> None:
     assert table.columns[3].cells[0] == "-0.30 K"
 
 
+def test_a_soft_limit_is_beyond_at_its_price_and_not_broken() -> None:
+    rating = synthetic.rating(synthetic.TODAY)
+    soft = tuple(replace(s, soft=True) if s.label == "hot exit" else s for s in rating.limits)
+    rating = replace(rating, limits=soft)
+    assert bounds.together(bounds.broken(rating)) == ["coking (bed 4)"]
+    assert "beyond, at its price" in bounds.rating_table(rating).columns[4].cells
+    assert "424.3!" not in cells(bed_table(rating), "exit")
+
+
 def test_many_broken_limits_are_all_listed() -> None:
     beds = [replace(synthetic.LEAD[3], exit=430.0)] * 12
     rating = synthetic.rating(beds)
@@ -152,8 +161,8 @@ def test_sentences_of_the_lead_outcome() -> None:
     assert first.startswith("Change first: inlet temperature of beds 1-3 from 384 to 364 degC")
     assert "89.6 EUR/h less than today" in first
     second = sentences.second_answer(outcome.programme, outcome.optimum, outcome.best, outcome.others)
-    assert second == "A second answer (inlet temperature of bed 4 at 364 degC) costs 18.4 EUR/h more."
-    assert sentences.today_text(outcome.today) == "Today breaks hot exit, bed 1 and coking, bed 4."
+    assert second == "A second answer (inlet of bed 4 at 364 instead of 398 degC) costs 18.4 EUR/h more."
+    assert sentences.today_text(outcome.today) == "Today breaks hot exit (bed 1) and coking (bed 4)."
 
 
 def test_one_answer_and_nothing_to_change_are_said_so() -> None:
@@ -167,7 +176,7 @@ def test_one_answer_and_nothing_to_change_are_said_so() -> None:
 def test_equal_split_says_what_it_costs_and_what_must_give_way() -> None:
     outcome = synthetic.optimisation()
     text = sentences.equal_split_text(outcome.optimum.equal_splits[0], outcome.best)
-    assert "costs 7.9 EUR/h more (0.6 %) even with coking, bed 4 relaxed by 0.3 mol/mol" in text
+    assert "costs 7.9 EUR/h more (0.6 %) even with coking (bed 4) relaxed by 0.3 mol/mol" in text
     none = EqualSplit("ethylene", None, None, None, note="no start ended")
     assert sentences.equal_split_text(none, outcome.best).endswith("no start ended.")
 
