@@ -1,10 +1,10 @@
 """reactorstage: rate and optimise trains of adiabatic catalyst beds with an exothermic reaction.
 
-    import reactorstage as rs
+import reactorstage as rs
 
-    case = rs.load("case.yaml")
-    rating = rs.rate(case)
-    found = rs.optimise(case)
+case = rs.load("case.yaml")
+rating = rs.rate(case)
+found = rs.optimise(case)
 """
 
 from reactorstage.case import load

@@ -1,4 +1,4 @@
-"""The Python face: load a case, rate it, optimise it. Everything the command line does, it does through here."""
+"""The Python face: load a case, rate it, optimise it. The command line does everything through here."""
 
 from __future__ import annotations
 

@@ -30,7 +30,7 @@ def flows(chem, bed, y, work):
 
 @compiled
 def evaluate(chem, bed, y, T, work, f, J, with_J):
-    """dy/d(depth) into f (n,), its Jacobian into J (n * n,) when asked; the corrected temperature is returned.
+    """dy/d(depth) into f (n,), its Jacobian into J (n * n,) when asked; the corrected temperature returned.
 
     Not a number when temperature leaves the species' data range or pressure is not positive.
     """

@@ -1,13 +1,21 @@
-"""How the kernel is compiled: one place for the options.
+"""How the kernel is compiled and where the machine code is kept: one place for both.
 
 Compiled functions take few, flat arrays: every array that crosses a call costs time in each call and at
 compilation, which here decides both.
+
+Machine code is kept in the user's cache folder, under a name that changes with the sources of the kernel, so
+that an upgrade never meets code of another version. Where no folder can be written, every process compiles
+for itself.
 """
 
 from __future__ import annotations
 
+import hashlib
 import os
+import tempfile
 from collections.abc import Callable
+from functools import lru_cache
+from pathlib import Path
 from typing import Any
 
 os.environ.setdefault("NUMBA_OPT", "2")
@@ -16,15 +24,72 @@ os.environ.setdefault("NUMBA_SLP_VECTORIZE", "0")
 
 import numba
 
-_OPTIONS: dict[str, Any] = {"cache": True, "nogil": True, "fastmath": False, "error_model": "numpy"}
 
-compiled: Callable[[Any], Any] = numba.njit(no_cpython_wrapper=True, no_cfunc_wrapper=True, **_OPTIONS)
+@lru_cache(maxsize=1)
+def cache_folder() -> Path | None:
+    """Folder of this version's machine code, or None where nothing can be written.
+
+    NUMBA_CACHE_DIR, when set, is used as the place for it; else XDG_CACHE_HOME or the user's .cache folder;
+    else the system's folder for temporary files.
+    """
+    name = f"reactorstage-{os.getuid() if hasattr(os, 'getuid') else 'user'}"
+    home = os.environ.get("XDG_CACHE_HOME") or os.path.expanduser("~/.cache")
+    wanted = os.environ.get("NUMBA_CACHE_DIR")
+    places = [Path(wanted)] if wanted else [Path(home) / "reactorstage", Path(tempfile.gettempdir()) / name]
+    for place in places:
+        folder = place / f"kernel-{_fingerprint()}"
+        try:
+            folder.mkdir(parents=True, exist_ok=True)
+            with tempfile.TemporaryFile(dir=folder):
+                return folder
+        except OSError:
+            continue
+    return None
+
+
+def _fingerprint() -> str:
+    """Changes with every source file that machine code depends on, and with Numba's version."""
+    here = Path(__file__).parent
+    digest = hashlib.sha256(numba.__version__.encode())
+    for file in [*sorted(here.glob("*.py")), here.parent / "chemistry" / "rates.py"]:
+        digest.update(file.read_bytes())
+    return digest.hexdigest()[:16]
+
+
+def is_compiled() -> bool:
+    """Whether an earlier process left the machine code of the whole kernel for this one."""
+    folder = cache_folder()
+    return folder is not None and any(folder.rglob("train_pass.train_pass*.nbc"))
+
+
+def _compiler(**options: Any) -> Callable[[Any], Any]:
+    """A decorator that compiles on first use and keeps the result in `cache_folder`."""
+    folder = cache_folder()
+    make = numba.njit(
+        cache=folder is not None,
+        nogil=True,
+        fastmath=False,
+        error_model="numpy",
+        no_cfunc_wrapper=True,
+        **options,
+    )
+
+    def decorate(function: Any) -> Any:
+        before = numba.config.CACHE_DIR
+        numba.config.CACHE_DIR = str(folder) if folder is not None else before
+        try:
+            return make(function)
+        finally:
+            numba.config.CACHE_DIR = before
+
+    return decorate
+
+
+compiled = _compiler(no_cpython_wrapper=True)
 """Compile a function of the kernel that only other compiled functions call."""
 
-entry: Callable[[Any], Any] = numba.njit(no_cfunc_wrapper=True, **_OPTIONS)
-"""Compile a function of the kernel that Python calls: cached on disk, releases the GIL, divides as NumPy does."""
+entry = _compiler()
+"""Compile a function of the kernel that Python calls: releases the GIL, divides as NumPy does."""
 
-inlined: Callable[[Any], Any] = numba.njit(
-    inline="always", no_cpython_wrapper=True, no_cfunc_wrapper=True, **_OPTIONS
-)
-"""For a function with one caller: it becomes part of that caller before compilation, which halves its cost."""
+inlined = _compiler(no_cpython_wrapper=True, inline="always")
+"""For a function with one caller: it becomes part of that caller before compilation."""

@@ -124,7 +124,7 @@ def passing(chem, bed, steps, count, target, rising, y, work):
     theta = 0.5 * (low + high)
     for _ in range(60):
         T = temperature_within(chem, bed, step, theta, T, y, work)
-        if (T >= target) == rising:
+        if (target <= T) == rising:
             high = theta
         else:
             low = theta

@@ -35,7 +35,9 @@ def stage_correction(n, h, step, G, Z, real, complex_, pivots, U):
     for k in range(n):
         for i in range(3):
             G[i * n + k] -= (
-                INVERSE[i, 0] * step[Z + k] + INVERSE[i, 1] * step[Z + n + k] + INVERSE[i, 2] * step[Z + 2 * n + k]
+                INVERSE[i, 0] * step[Z + k]
+                + INVERSE[i, 1] * step[Z + n + k]
+                + INVERSE[i, 2] * step[Z + 2 * n + k]
             ) / h
     for k in range(n):
         first = low = high = 0.0
@@ -121,9 +123,7 @@ def error_size(chem, bed, y, T, error, tolerance, work):
         off *= unit
         allowed = tolerance.flow * unit
         if tolerance.named[s] > 0.0:
-            allowed = min(
-                allowed, NAMED_FACTOR * tolerance.flow * max(abs(work[s]), NAMED_FLOOR * unit)
-            )
+            allowed = min(allowed, NAMED_FACTOR * tolerance.flow * max(abs(work[s]), NAMED_FLOOR * unit))
         size = max(size, abs(off) / allowed)
         heat += off * work[2 * S + s]
     return max(size, abs(heat * T / heat_capacity_flow(chem, work)) / tolerance.temperature)
@@ -193,12 +193,12 @@ def first_step(slope, tol):
 
 @compiled
 def reason_of(chem, p_share, T, slope):
-    """Why no step can be taken from here: pressure exhausted, temperature out of range, or steps too small."""
+    """Why no step can be taken from here: pressure exhausted, temperature out of range, steps too small."""
     if p_share < 0.05 or -slope[chem.R] * 1e-6 > p_share:
         return NO_PRESSURE
-    if T > chem.T_high - 50.0:
+    if chem.T_high - 50.0 < T:
         return TOO_HOT
-    if T < chem.T_low + 5.0:
+    if chem.T_low + 5.0 > T:
         return TOO_COLD
     return STEP_TOO_SMALL
 

@@ -1,4 +1,4 @@
-"""Small dense linear algebra inside the kernel: LU with partial pivoting, real or complex, flat and in place."""
+"""Small dense linear algebra inside the kernel: LU with partial pivoting, real or complex, in place."""
 
 from __future__ import annotations
 

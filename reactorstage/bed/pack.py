@@ -19,13 +19,21 @@ def pack_chemistry(table: SpeciesTable, laws: RateLaws) -> Chemistry:
         [laws.lnk_ref, laws.T_ref, laws.E_over_R, laws.c, laws.d, laws.m, laws.nu.sum(axis=1)]
     )
     order = [
-        _padded(orders[r][used], L, 0.0) for r, used in enumerate(members) for orders in (laws.alpha, laws.beta)
+        _padded(orders[r][used], L, 0.0)
+        for r, used in enumerate(members)
+        for orders in (laws.alpha, laws.beta)
     ]
     term = np.column_stack([laws.term_lnK_ref, laws.term_T_ref, laws.term_H_over_R])
     parts = [table.coefficients, table.edges[:, 1:3], table.molar_mass, laws.nu, law, np.array(order)]
     parts += [laws.den_power, np.column_stack([term, _term_orders(laws, members, L)])]
     kind = np.column_stack(
-        [laws.driver, laws.reversible, [len(used) for used in members], laws.den_start[:-1], laws.den_start[1:]]
+        [
+            laws.driver,
+            laws.reversible,
+            [len(used) for used in members],
+            laws.den_start[:-1],
+            laws.den_start[1:],
+        ]
     )
     named = np.array([_padded(used, L, -1) for used in members], dtype=np.int64)
     factors = np.column_stack([laws.term_start[:-1], laws.term_start[1:]])

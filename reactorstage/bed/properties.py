@@ -78,7 +78,7 @@ def temperature_step(chem, H_R, T, work):
 
 @compiled
 def temperature_of(chem, H_R, T, work):
-    """T with H(F, T) = H by Newton from the guess T, kept within the data range (then the end is returned)."""
+    """T with H(F, T) = H by Newton from the guess T, kept within the data range (then its end is given)."""
     for _ in range(60):
         step = temperature_step(chem, H_R, T, work)
         if not np.isfinite(step):

@@ -42,7 +42,7 @@ COMPLEX = complex(_PAIR.real, -_PAIR.imag)
 
 
 def _lagrange() -> np.ndarray:
-    """Coefficients (3, 3) of the collocation polynomial: y0 + sum_i Z_i sum_k POLYNOMIAL[i, k] theta^(k+1)."""
+    """Coefficients (3, 3) of the polynomial y0 + sum_i Z_i sum_k POLYNOMIAL[i, k] theta^(k+1)."""
     powers = NODES[:, None] ** np.arange(1, 4)[None, :]
     return np.linalg.inv(powers).T
 

@@ -131,7 +131,7 @@ def term_constant(real, term, T):
 
 @compiled
 def denominator(chem, q, count, delta, T, work):
-    """Product of the factors under reaction q with d/dT; its slopes by the members into the fifth local row."""
+    """Product of the factors under reaction q with d/dT; slopes by the members into the fifth local row."""
     L, local, real, whole = chem.L, at_local(chem), chem.real, chem.whole
     kind, powers = q * (KIND + L), at_power(chem)
     out, slopes = local + 4 * L, local + 3 * L

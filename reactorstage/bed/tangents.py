@@ -84,13 +84,13 @@ def parameter_slope(chem, q, kind, index, T, p, F_total, work):
         return r if index == q else 0.0
     if kind == E_OVER_R:
         return r * (1.0 / real[at_law(chem) + q * LAW + 1] - 1.0 / T) if index == q else 0.0
-    if kind == LN_K_TERM or kind == H_TERM:
+    if kind in (LN_K_TERM, H_TERM):
         slope = -r * term_share(chem, q, index, T, p, F_total, work)
         if kind == H_TERM:
             term = at_power(chem) + chem.factors + index * (3 + chem.L)
             slope *= 1.0 / real[term + 1] - 1.0 / T
         return slope
-    if kind == ENTHALPY or kind == ENTROPY:
+    if kind in (ENTHALPY, ENTROPY):
         lnK = real[at_nu(chem) + q * chem.S + index] / GAS_CONSTANT
         return work[rate + 4 * R + q] * (-lnK / T if kind == ENTHALPY else lnK)
     return 0.0

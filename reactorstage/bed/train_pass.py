@@ -18,7 +18,6 @@ from reactorstage.bed.events import (
     passing,
     slope_within,
     temperature_tangent,
-    temperature_within,
 )
 from reactorstage.bed.integrate import DONE, TOO_COLD, TOO_HOT, integrate
 from reactorstage.bed.layout import at_factor, at_mass, at_nu, work_length

@@ -46,11 +46,14 @@ def _painted_line(line: str) -> str:
 
 
 class ProgressLine:
-    """One line on standard error that says how far the work is; nothing where it would be in the way."""
+    """One line on standard error that says how far the work is; nothing where it would be in the way.
+
+    currency is given where the aim is money; the best cost so far is then shown.
+    """
 
     def __init__(self, quiet: bool, currency: str = ""):
         self.active = not quiet and sys.stderr.isatty()
-        self.unit = f" {currency}/h" if currency else ""
+        self.currency = currency
         self.drawn = -1.0
         self.started = time.monotonic()
 
@@ -60,7 +63,7 @@ class ProgressLine:
         if not self.active or (now - self.drawn < REDRAW_SECONDS and done < total):
             return
         self.drawn = now
-        found = "" if best is None else f", best {3600.0 * best:.1f}{self.unit}"
+        found = f", best {3600.0 * best:.1f} {self.currency}/h" if best is not None and self.currency else ""
         self._write(f"{text}{found}, {now - self.started:.1f} s")
 
     def end(self) -> None:

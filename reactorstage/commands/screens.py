@@ -10,7 +10,7 @@ from reactorstage.optimise import result as words
 from reactorstage.report import bounds, sentences
 from reactorstage.report.accounts import accounts, heat_words
 from reactorstage.report.beds import bed_table
-from reactorstage.report.display import counted, fixed, money, unit
+from reactorstage.report.display import counted, unit
 from reactorstage.report.gaps import gap_table
 from reactorstage.train.result import Rating
 
@@ -36,7 +36,8 @@ def rating_lines(rating: Rating, seconds: float, width: int) -> list[str]:
 
 def optimum_lines(outcome: Optimisation, width: int) -> list[str]:
     """The screen of `optimise`: the best answer with today's setting beside it."""
-    best, today, optimum = outcome.best, outcome.today, outcome.optimum
+    best, optimum = outcome.best, outcome.optimum
+    today = outcome.today if not outcome.today.failure else None
     if best is None:
         return _no_answer(outcome, width)
     return [
@@ -195,9 +196,3 @@ def _no_answer(outcome: Optimisation, width: int) -> list[str]:
             [f"HOW {len(rows)} STARTS ENDED", *[line for row in rows for line in paragraph(row, width, 4)]]
         ),
     ]
-
-
-def done_text(rating: Rating) -> str:
-    """The total in one line, for progress."""
-    total = rating.money.get("total")
-    return "" if total is None else f"{fixed(money(total), 1)} {unit('money rate', rating.case.currency)}"

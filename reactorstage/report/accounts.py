@@ -61,11 +61,6 @@ def signed(value: float, decimals: int = 1) -> str:
     return text if text.startswith("-") or float(text) == 0.0 else f"+{text}"
 
 
-def total_difference(now: Rating, was: Rating) -> float:
-    """Currency per hour: now minus the other."""
-    return (money(now.money[TOTAL]) or 0.0) - (money(was.money[TOTAL]) or 0.0)
-
-
 def heat_words(rating: Rating) -> str:
     """How removed heat is priced, for the first line of every result."""
     levels = rating.case.heat_levels

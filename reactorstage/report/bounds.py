@@ -6,14 +6,13 @@ from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
 
 from reactorstage.optimise.result import Optimum, Worth
+from reactorstage.report.aim import Aim, aim_of
 from reactorstage.report.display import (
     allowed,
     brief,
     counted,
     difference,
     difference_kind,
-    fixed,
-    money,
     owners_text,
     readable,
     shown,
@@ -133,7 +132,7 @@ def state_word(state: LimitState) -> str:
 
 
 def _margin_text(state: LimitState, currency: str) -> str:
-    margin = difference(state.margin, state.kind)
+    margin = 0.0 if state.at_work else difference(state.margin, state.kind)
     if margin is None:
         return "-"
     return with_unit(readable(margin), unit(difference_kind(state.kind), currency))
@@ -164,23 +163,24 @@ def worth_rows(worths: Sequence[Worth]) -> list[WorthRow]:
 
 
 def worth_table(optimum: Optimum, rating: Rating) -> Table:
-    """Limits at work with what relaxing saves and tightening costs, per hour and step, re-solved."""
+    """Limits at work with what relaxing saves and tightening costs per step, re-solved."""
     told = {index for index, state in enumerate(rating.limits) if state.quantity in rating.quantities}
     rows = worth_rows([worth for worth in optimum.worths if told.intersection(worth.limits)])
+    aim = aim_of(rating)
     all_together = [row.together for row in rows]
-    return table(f"LIMITS AT WORK (*), {unit('money rate', rating.case.currency)}", [
+    return table(f"LIMITS AT WORK (*), {aim.heading}", [
         Column(("",), tuple(f"{row.label}, {owners_text(row.owners)}" for row in all_together), left=True),
         Column(("allowed",), tuple(_allowed_text(row, rating) for row in all_together), left=True),
         Column(("by",), tuple(step_text(row) for row in all_together), left=True),
-        Column(("relax", "saves"), tuple(fixed(money(row.saves), 1) for row in all_together)),
-        Column(("tighten", "costs"), tuple(fixed(money(row.costs), 1) for row in all_together)),
-        Column(("relaxed one", "by one save"), tuple(_alone_text(row) for row in rows), rank=1, left=True),
+        Column(("relax", "saves"), tuple(aim.number(row.saves) for row in all_together)),
+        Column(("tighten", "costs"), tuple(aim.number(row.costs) for row in all_together)),
+        Column(("relaxed one", "by one save"), tuple(_alone_text(row, aim) for row in rows), rank=1, left=True),
         Column(("re-solved",), tuple(row.note for row in all_together), rank=2, left=True),
     ])  # fmt: skip
 
 
-def _alone_text(row: WorthRow) -> str:
-    return ", ".join(fixed(money(worth.saves), 1) for worth in row.alone)
+def _alone_text(row: WorthRow, aim: Aim) -> str:
+    return ", ".join(aim.number(worth.saves) for worth in row.alone)
 
 
 def step_text(worth: Worth) -> str:

@@ -15,6 +15,7 @@ from typing import TYPE_CHECKING, Any
 from reactorstage import __version__
 from reactorstage.optimise.programme import FreeNumber, Programme
 from reactorstage.optimise.result import Answer, EqualSplit, Optimum, StartRecord, Worth
+from reactorstage.report.aim import Aim, aim_of
 from reactorstage.report.cautions import FULL
 from reactorstage.report.display import difference, difference_kind, money, shown, unit
 from reactorstage.train.result import HeatSale, LimitState, Rating, Value
@@ -54,6 +55,7 @@ def optimum_json(
 ) -> Json:
     """The content of result.json for `optimise`: the best answer first, today's setting beside it."""
     main = best if best is not None else today
+    aim = aim_of(main)
     return {
         **_head("optimum", main, overrides),
         "seed": seed,
@@ -61,19 +63,18 @@ def optimum_json(
         "failure": main.failure or None,
         "decisions": _decisions(programme.numbers, today, best),
         **(_setting(best) if best is not None else {}),
-        "worths": [_worth(programme, worth, main.case.currency) for worth in optimum.worths],
-        "equal splits": [
-            _equal_split(programme, split, main.case.currency) for split in optimum.equal_splits
-        ],
-        "keep away costs": money(optimum.keep_away_cost),
+        "worths": [_worth(programme, worth, aim, main.case.currency) for worth in optimum.worths],
+        "equal splits": [_equal_split(programme, split, aim) for split in optimum.equal_splits],
+        "aim": {"direction": main.case.aim.direction, "of": aim.quantity, "unit of differences": aim.unit},
+        "keep away costs": aim.size(optimum.keep_away_cost),
         "conflict": _conflict(programme, optimum),
-        "answers": [_answer(programme, answer) for answer in optimum.answers],
+        "answers": [_answer(programme, answer, aim) for answer in optimum.answers],
         "other answers": [_setting(rating) for rating in others],
         "today": {"status": today.status, "failure": today.failure or None, **_setting(today)},
-        "starts": [_start(start) for start in optimum.starts],
+        "starts": [_start(start, aim) for start in optimum.starts],
         "solver": {
             "evaluations": optimum.evaluations,
-            "discretisation error": money(optimum.discretisation_error),
+            "discretisation error": aim.size(optimum.discretisation_error),
             **_rating_work(main),
         },
         "notes": [*optimum.notes, *main.notes],
@@ -226,25 +227,25 @@ def _decisions(numbers: Sequence[FreeNumber], today: Rating, best: Rating | None
     }
 
 
-def _worth(programme: Programme, worth: Worth, currency: str) -> Json:
+def _worth(programme: Programme, worth: Worth, aim: Aim, currency: str) -> Json:
     return {
         "limit": worth.label,
         "owners": list(worth.owners),
         "step": difference(worth.step, worth.kind),
         "unit": unit(difference_kind(worth.kind), currency),
-        "relaxing saves": money(worth.saves),
-        "tightening costs": money(worth.costs),
-        "money unit": unit("money rate", currency),
+        "relaxing saves": aim.size(worth.saves),
+        "tightening costs": aim.size(worth.costs),
+        "saving unit": aim.unit,
         "moves": [programme.limits[index].name for index in worth.limits],
         **({"note": worth.note} if worth.note else {}),
     }
 
 
-def _equal_split(programme: Programme, split: EqualSplit, currency: str) -> Json:
+def _equal_split(programme: Programme, split: EqualSplit, aim: Aim) -> Json:
     return {
         "feed": split.feed,
-        "costs more": money(split.penalty),
-        "unit": unit("money rate", currency),
+        "costs more": aim.size(split.penalty),
+        "unit": aim.unit,
         "relaxed": [_moved(programme, index, amount) for index, amount in split.relaxed],
         **({"note": split.note} if split.note else {}),
     }
@@ -265,9 +266,9 @@ def _conflict(programme: Programme, optimum: Optimum) -> Json | None:
     }
 
 
-def _answer(programme: Programme, answer: Answer) -> Json:
+def _answer(programme: Programme, answer: Answer, aim: Aim) -> Json:
     return {
-        "cost": money(answer.cost),
+        "aim": aim.value(answer.cost),
         "violation": answer.violation,
         "optimality residual": answer.residual,
         "starts": answer.starts,
@@ -276,17 +277,17 @@ def _answer(programme: Programme, answer: Answer) -> Json:
             for index, number in enumerate(programme.numbers)
             if not number.internal
         },
-        "smallest curvature": money(answer.curvature),
+        "smallest curvature": aim.size(answer.curvature),
         "limits at work": [programme.limits[index].name for index in answer.at_work],
         "at an end of its range": list(answer.at_range),
     }
 
 
-def _start(start: StartRecord) -> Json:
+def _start(start: StartRecord, aim: Aim) -> Json:
     return {
         "start": start.name,
         "ended": start.ended,
-        "cost": money(start.cost),
+        "aim": aim.value(start.cost),
         "answer": start.answer if start.answer >= 0 else None,
         "iterations": start.iterations,
         "evaluations": start.evaluations,

@@ -8,7 +8,7 @@ from reactorstage.optimise.programme import Programme
 from reactorstage.optimise.result import Conflict, EqualSplit, Optimum
 from reactorstage.optimise.words import told_apart
 from reactorstage.report import bounds
-from reactorstage.report.accounts import total_difference
+from reactorstage.report.aim import MONEY, aim_of, cost_difference
 from reactorstage.report.beds import main_reaction, selectivity
 from reactorstage.report.cautions import SHORT
 from reactorstage.report.changes import changes, moves_text
@@ -18,7 +18,6 @@ from reactorstage.report.display import (
     difference,
     difference_kind,
     fixed,
-    money,
     readable,
     shown,
     unit,
@@ -26,7 +25,6 @@ from reactorstage.report.display import (
 )
 from reactorstage.train.result import LimitState, Rating
 
-SAME_MONEY = 0.05
 PHRASES = 2
 UNLIT_RISE_K = 3.0
 UNLIT_APPROACH_K = 30.0
@@ -64,20 +62,21 @@ def first_change(programme: Programme, now: Rating, was: Rating) -> str:
     found = changes(programme.numbers, was.x, now.x)
     if not found:
         return "Today's setting is already the best one found."
-    return f"Change first: {moves_text(found, 2)}; {_effect(now, was, len(found))}."
+    return f"Change first: {moves_text(found, 2)}{_effect(now, was, len(found))}."
 
 
 def _effect(now: Rating, was: Rating, count: int) -> str:
-    """`all 7 changes together: 89.6 EUR/h less than today`."""
-    more = total_difference(now, was)
-    rate = unit("money rate", now.case.currency)
-    size = (
-        "nothing"
-        if abs(more) < SAME_MONEY
-        else f"{fixed(abs(more), 1)} {rate} {'less' if more < 0 else 'more'}"
-    )
+    """`all changes together: 89.6 EUR/h less than today`; empty where today has no answer."""
+    aim, more = aim_of(now), cost_difference(now, was)
+    if more is None:
+        return ""
     who = "all changes together" if count > 1 else "this"
-    return f"{who}: {size} than today" if size != "nothing" else f"{who}: the same money as today"
+    if aim.same(more):
+        return f"; {who}: the same money as today"
+    size = f"{aim.number(abs(more))} {aim.unit}".rstrip()
+    if aim.kind == MONEY:
+        return f"; {who}: {size} {'less' if more < 0 else 'more'} than today"
+    return f"; {who}: {aim.quantity} {'better' if more < 0 else 'worse'} by {size} than today"
 
 
 def second_answer(programme: Programme, optimum: Optimum, best: Rating, others: Sequence[Rating]) -> str:
@@ -87,10 +86,9 @@ def second_answer(programme: Programme, optimum: Optimum, best: Rating, others: 
         return f"All {ended} starts that ended agree on this answer." if ended > 1 else ""
     other = others[0]
     apart = told_apart(programme, best.x, other.x)[:PHRASES]
-    more = total_difference(other, best)
-    rate = unit("money rate", best.case.currency)
+    more = cost_difference(other, best)
     where = f" ({'; '.join(apart)})" if apart else ""
-    cost = f"costs {fixed(more, 1)} {rate} more" if more >= SAME_MONEY else "costs the same"
+    cost = "has no value" if more is None else aim_of(best).worse(more)
     rest = f"; {len(others) - 1} more in result.json" if len(others) > 1 else ""
     return f"A second answer{where} {cost}{rest}."
 
@@ -116,8 +114,8 @@ def margin_text(optimum: Optimum, best: Rating) -> str:
     carried = [state for state in best.limits if state.keep_away > 0.0]
     if carried and optimum.keep_away_cost is not None:
         labels = and_list(list(dict.fromkeys(f"{_keep_away(state)} on {state.label}" for state in carried)))
-        rate = unit("money rate", best.case.currency)
-        return f"KEEP AWAY    {labels}: this costs {fixed(money(optimum.keep_away_cost), 1)} {rate}."
+        aim = aim_of(best)
+        return f"KEEP AWAY    {labels}: this costs {aim.number(optimum.keep_away_cost)} {aim.unit}."
     bare = list(dict.fromkeys(s.label for s in bounds.at_work(best) if not s.implied and s.keep_away == 0.0))
     if not bare:
         return ""
@@ -137,20 +135,13 @@ def equal_split_text(split: EqualSplit, best: Rating) -> str:
     head = f"EQUAL SPLIT  of {split.feed}, all else re-optimised,"
     if split.penalty is None:
         return f"{head}: {split.note or 'none was found'}."
-    extra = money(split.penalty) or 0.0
-    if extra < SAME_MONEY and not split.relaxed:
-        return f"{head} costs the same."
-    rate = unit("money rate", best.case.currency)
-    part = (
-        abs(split.penalty / (split.cost - split.penalty))
-        if split.cost and split.cost != split.penalty
-        else None
-    )
-    percent = "" if part is None else f" ({100 * part:.1f} %)"
+    aim = aim_of(best)
+    base = None if split.cost is None else split.cost - split.penalty
+    percent = f" ({100 * abs(split.penalty / base):.1f} %)" if base and not aim.same(split.penalty) else ""
     gives = [_relaxed(best, index, amount) for index, amount in split.relaxed]
     condition = f" even with {and_list(gives)}" if gives else ""
     note = f"; {split.note}" if split.note else ""
-    return f"{head} costs {fixed(extra, 1)} {rate} more{percent}{condition}{note}."
+    return f"{head} {aim.worse(split.penalty)}{percent}{condition}{note}."
 
 
 def _relaxed(best: Rating, index: int, amount: float) -> str:

@@ -1,4 +1,4 @@
-"""Equilibrium temperatures at bed exits, with exact derivatives: what approaches to equilibrium are made of."""
+"""Equilibrium temperatures at bed exits with exact derivatives, for approaches to equilibrium."""
 
 from __future__ import annotations
 

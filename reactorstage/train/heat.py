@@ -59,7 +59,8 @@ class Ladder:
     given[(owner, level)] is the heat to or from a level (W >= 0), cost[owner] money per second, both as
     linear forms of the base vector extended by hinges (from `hinge_start` on) and internal numbers
     (from `internal_start` on). rows are linear forms that must be >= 0, with a name; reach holds
-    (device, owner, temperature, direction) of outlets that must stay within reach of their levels.
+    (device, owner, temperature, direction) of outlets that must stay within reach of their levels;
+    capacities the most heat [W] of each level that states one.
     """
 
     hinge_start: int
@@ -72,6 +73,7 @@ class Ladder:
     rows: list[tuple[str, Linear]] = field(default_factory=list)
     reach: list[tuple[Device, str, float, str, str]] = field(default_factory=list)
     unpriced: list[str] = field(default_factory=list)
+    capacities: dict[str, float] = field(default_factory=dict)
 
     def hinge(self, form: Linear, width: Linear) -> Linear:
         self.hinges.append(Hinge(form, width))
@@ -132,7 +134,10 @@ def build_ladder(
             span = outlet_range.get(device.outlet, (0.0, np.inf))
             stream = _Stream(chemistry, layout, place, device, span)
             (_heat if device.heating else _cool)(ladder, stream, wanted)
-    _capacities(ladder, rungs, layout)
+    used = {level for _, level in ladder.given}
+    ladder.capacities = {
+        name: rung.capacity for name, rung in rungs.items() if rung.capacity is not None and name in used
+    }
     return ladder
 
 
@@ -246,15 +251,3 @@ def _book(ladder: Ladder, owner: str, rungs: Sequence[Rung], above: Sequence[Lin
         ladder.given[key] = ladder.given.get(key, Linear()) + share
         ladder.heating[rung.level] = heating
         ladder.cost[owner] = ladder.cost.get(owner, Linear()) + share * rung.price
-
-
-def _capacities(ladder: Ladder, rungs: dict[str, Rung], layout: Layout) -> None:
-    for name, rung in rungs.items():
-        if rung.capacity is None:
-            continue
-        used = [form for (_, level), form in ladder.given.items() if level == name]
-        if used:
-            spare = Linear(const=rung.capacity)
-            for form in used:
-                spare = spare - form
-            ladder.rows.append((f"capacity of {name}", spare))

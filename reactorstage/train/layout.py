@@ -9,7 +9,6 @@ import numpy as np
 from numpy.typing import NDArray
 
 from reactorstage.bed import train_pass as kernel
-from reactorstage.case.model import Number
 from reactorstage.train.chemistry import CaseChemistry
 from reactorstage.train.evaluation import SplitGroup
 from reactorstage.train.forms import Linear, at
@@ -64,7 +63,7 @@ class BedPlace:
 
 @dataclass(frozen=True)
 class Layout:
-    """Everything about positions: operations (K, 4), feeds (NF, S), places, beds, inputs by name."""
+    """Everything about positions: operations (K, 4), compositions (NF, S), places, beds, inputs."""
 
     operations: Index
     compositions: Array
@@ -287,14 +286,9 @@ def mole_fractions(case: Case, chemistry: CaseChemistry, feed: Feed) -> Array:
     shares = np.array([feed.composition.get(name, 0.0) for name in chemistry.species])
     if case.percent == "mass":
         shares = shares / chemistry.table.molar_mass
-    return shares / shares.sum()
+    return np.asarray(shares / shares.sum())
 
 
 def lay_out(case: Case, chemistry: CaseChemistry, inputs: InputBuilder) -> Layout:
     """Operations and positions of a checked case; its inputs and free numbers go to `inputs`."""
     return _Writer(case, chemistry, inputs).write()
-
-
-def number_of(value: float, kind: str) -> Number:
-    """A fixed number."""
-    return Number(value, None, None, kind)

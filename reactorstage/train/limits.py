@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from math import floor, log10
 from typing import TYPE_CHECKING
 
@@ -180,7 +180,7 @@ def _implied(catalogue: Catalogue, ladder: Ladder, given: Sequence[Bound]) -> li
     for device, owner, T, direction, level in ladder.reach:
         form = Form("temperature", layout.temperature(device.operation))
         row = _rule(f"reach of {level}", owner, f"{owner}.temperature after exchanger", "temperature")
-        bounds.append(Bound(_moved(row, T, direction), form))
+        bounds.append(Bound(replace(row, bound=T, direction=direction), form))
     for group in layout.splits:
         name = f"bed {group.rest_bed}.injected {group.feed}"
         if group.rest_bed and not _has(given, name):
@@ -190,6 +190,10 @@ def _implied(catalogue: Catalogue, ladder: Ladder, given: Sequence[Bound]) -> li
                     catalogue.find(name),
                 )
             )
+    for level, most in ladder.capacities.items():
+        row = _rule("capacity", f"level {level}", f"level {level}.heat", "power")
+        row = replace(row, bound=most, direction="at most", scale=scale_of("power", most), implied=False)
+        bounds.append(Bound(row, catalogue.levels[level]))
     for name, form_ in ladder.rows:
         owner = name.partition(",")[0]
         bounds.append(Bound(_rule("heat ladder", owner, name, "power"), Form("power", form_)))
@@ -216,9 +220,3 @@ def _rule(label: str, owner: str, quantity: str, kind: str) -> LimitRow:
         step_of(kind, 0.0),
         implied=True,
     )
-
-
-def _moved(row: LimitRow, bound: float, direction: str) -> LimitRow:
-    from dataclasses import replace
-
-    return replace(row, bound=bound, direction=direction)

@@ -77,7 +77,14 @@ class Pass:
         return self._run(u, du, self.tolerance(SEARCH), True, places, stages, mesh)
 
     def _run(
-        self, u: Array, du: Array, tolerance: Tolerance, frozen: bool, places: bool, stages: Stages, mesh: Stages
+        self,
+        u: Array,
+        du: Array,
+        tolerance: Tolerance,
+        frozen: bool,
+        places: bool,
+        stages: Stages,
+        mesh: Stages,
     ) -> Outcome:
         layout = self.layout
         out = np.empty((layout.rows, 1 + du.shape[1]))
@@ -123,6 +130,19 @@ class Pass:
             F[0], p[0], T[0] = record[:S], record[S + 1], record[S + 2]
             return w, T, p, F, r
         sample_bed(
-            self.chemistry, self.beds, b, row, outcome.out, u, bed.inputs, outcome.stages, per_step, w, T, p, F, r
+            self.chemistry,
+            self.beds,
+            b,
+            row,
+            outcome.out,
+            u,
+            bed.inputs,
+            outcome.stages,
+            per_step,
+            w,
+            T,
+            p,
+            F,
+            r,
         )
         return w, T, p, F, r

@@ -39,7 +39,7 @@ Array = NDArray[np.float64]
 
 @dataclass(frozen=True)
 class Model:
-    """Everything compiled from a case; the base vector is records, inputs, x, hinges."""
+    """Everything compiled from a case; the base vector is records, inputs, equilibria, x, hinges."""
 
     case: Case
     chemistry: CaseChemistry
@@ -54,11 +54,11 @@ class Model:
 
     @property
     def x_start(self) -> int:
-        return self.layout.rows + len(self.inputs.names)
+        return self.layout.rows + len(self.inputs.names) + len(self.catalogue.equilibria)
 
     @property
     def size(self) -> int:
-        return self.x_start + len(self.numbers) + len(self.ladder.hinges) + len(self.catalogue.equilibria)
+        return self.x_start + len(self.numbers) + len(self.ladder.hinges)
 
     @cached_property
     def hinge_rows(self) -> tuple[Rows, Rows]:
@@ -80,15 +80,16 @@ class Model:
         D = out.shape[1] - 1
         base = np.zeros((self.size, 1 + D))
         rows, end = self.layout.rows, self.x_start + len(x)
+        inputs = slice(rows, rows + len(u))
         base[:rows] = out
-        base[rows : self.x_start, 0] = u
+        base[inputs, 0] = u
         base[self.x_start : end, 0] = x
         if D:
-            base[rows : self.x_start, 1:] = du
+            base[inputs, 1:] = du
             base[self.x_start : end, 1:] = np.eye(len(x))
         if self.ladder.hinges:
             forms, widths = self.hinge_rows
-            base[end : end + len(self.ladder.hinges)] = _hinged(forms.of_base(base), widths.of_base(base))
+            base[end:] = _hinged(forms.of_base(base), widths.of_base(base))
         for one in equilibria:
             base[one.index] = one.temperature(self.chemistry, self.layout, base)
         return base
@@ -107,7 +108,7 @@ def _hinged(y: Array, width: Array) -> Array:
 
 
 class TrainProgramme:
-    """A compiled train. Safe to call from several threads at once; raises CaseProblems when made of a wrong case."""
+    """A compiled train, safe to call from several threads; raises CaseProblems when made of a wrong case."""
 
     def __init__(self, case: Case):
         self.model = compile_model(case)
@@ -195,14 +196,7 @@ def compile_model(case: Case) -> Model:
     chemistry = read_chemistry(case)
     inputs = InputBuilder()
     layout = lay_out(case, chemistry, inputs)
-    soft = _soft_limits(case, layout, chemistry)
-    draft = _Draft(case, chemistry, inputs, layout)
-    return draft.finish(soft)
-
-
-def _soft_limits(case: Case, layout: Layout, chemistry: CaseChemistry) -> list[str]:
-    """Labels of the limits that may be broken at a price."""
-    return [label for label, limit in case.limits.items() if limit.soft is not None]
+    return _Draft(case, chemistry, inputs, layout).finish()
 
 
 @dataclass
@@ -214,22 +208,20 @@ class _Draft:
     inputs: InputBuilder
     layout: Layout
 
-    def finish(self, soft: list[str]) -> Model:
+    def finish(self) -> Model:
         users = len(self.inputs.numbers)
-        x_start = self.layout.rows + len(self.inputs.build().names)
+        first = self.layout.rows + len(self.inputs.build().names)
+        equilibria = equilibria_of(self.layout, self.chemistry, first)
+        x_start = first + len(equilibria)
         counted = self._ladder(x_start, users, 0)
-        slacks = self._slack_count(soft, counted)
+        draft = Catalogue(self.layout, self.chemistry, {}, self._levels(counted), equilibria)
+        slacks = sum(bound.row.soft_price is not None for bound in expand_limits(self.case, draft, counted))
         ladder = self._ladder(x_start, users, len(counted.internal) + slacks)
         internal = [
             FreeNumber(name, 0.0, 0.0, self._most_heat(), "power", role="internal")
             for name in ladder.internal
         ]
-        catalogue = Catalogue(self.layout, self.chemistry, {}, self._levels(ladder))
-        slack_count = sum(
-            bound.row.soft_price is not None for bound in expand_limits(self.case, catalogue, ladder)
-        )
-        first = x_start + users + len(internal) + slack_count + len(ladder.hinges)
-        catalogue = replace(catalogue, equilibria=equilibria_of(self.layout, self.chemistry, first))
+        catalogue = replace(draft, levels=self._levels(ladder))
         bounds = expand_limits(self.case, catalogue, ladder)
         softened, slack_numbers, price = _soften(bounds, x_start + users + len(internal))
         numbers = (*self.inputs.numbers, *internal, *slack_numbers)
@@ -258,12 +250,6 @@ class _Draft:
         return build_ladder(
             self.case, self.chemistry, self.layout, spans, x_start + users + internal, x_start + users
         )
-
-    def _slack_count(self, soft: list[str], ladder: Ladder) -> int:
-        if not soft:
-            return 0
-        catalogue = Catalogue(self.layout, self.chemistry, {}, self._levels(ladder))
-        return sum(bound.row.soft_price is not None for bound in expand_limits(self.case, catalogue, ladder))
 
     def _outlet_spans(self) -> dict[int, tuple[float, float]]:
         spans: dict[int, tuple[float, float]] = {}

@@ -1,6 +1,6 @@
 """Every result with a name and a unit: the one namespace of limits, prices, tables and files.
 
-A quantity's name, unit and meaning stand in the table of patterns at the end of this module, and nowhere else.
+A quantity's name, unit and meaning stand in the table of patterns of this module, and nowhere else.
 """
 
 from __future__ import annotations
@@ -64,7 +64,7 @@ class Catalogue:
     def owners(self) -> list[str]:
         feeds = [f"feed {name}" for name in self.layout.feeds]
         levels = [f"level {name}" for name in self.levels]
-        places = sorted([*self.layout.places, *self.layout.beds], key=_position)
+        places: list[Place | BedPlace] = sorted([*self.layout.places, *self.layout.beds], key=_position)
         return [*[place.owner for place in places], *feeds, *levels, "train", "money"]
 
     def names(self) -> Iterator[str]:
@@ -322,7 +322,7 @@ def _depth(c: Catalogue, bed: BedPlace, which: int) -> Form:
 
 
 def _approach(c: Catalogue, bed: BedPlace, reaction: str) -> Form:
-    """Equilibrium temperature at the exit composition less the exit temperature; positive while forward remains."""
+    """Equilibrium temperature at the exit composition less that of the exit; positive while forward remains."""
     number = c.chemistry.reactions.index(reaction)
     kind, why = "temperature difference", "a species of the reaction is absent"
     for one in c.equilibria:

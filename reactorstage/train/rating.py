@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 from numpy.typing import NDArray
 
+from reactorstage.bed.train_pass import EXTRAS
 from reactorstage.chemistry.thermo import h
 from reactorstage.train.passing import Outcome
 from reactorstage.train.result import HeatSale, LimitState, Profile, Rating, StepState, Value
@@ -77,7 +78,7 @@ def _profiles(model: Model, outcome: Outcome, u: Array, dense: bool) -> tuple[Pr
     profiles = []
     for bed in done:
         w, T, p, F, r = model.passing.sample(outcome, bed, u, POINTS if dense else 1)
-        start = len(model.layout.operations) * model.layout.width + (bed.number - 1) * 5
+        start = len(model.layout.operations) * model.layout.width + (bed.number - 1) * EXTRAS
         peak, depth = outcome.out[start, 0], outcome.out[start + 1, 0]
         profiles.append(Profile(bed.owner, w, T, p, F, r, float(peak), float(depth * u[bed.inputs])))
     return tuple(profiles)
@@ -100,15 +101,18 @@ def _quantities(model: Model, outcome: Outcome, base: Array) -> dict[str, Value]
 
 
 def _reached(model: Model, form: Form, reached: int) -> bool:
-    """Whether a form reads only records of operations that were finished, or inputs."""
-    records, rows, inputs = (
-        len(model.layout.operations) * model.layout.width,
-        model.layout.rows,
-        model.x_start,
-    )
-    last = reached * model.layout.width
-    ok = [i < last if i < records else rows <= i < inputs for i in form.top.terms]
-    return bool(ok) and all(ok)
+    """Whether a form reads only records and beds that were finished, or inputs."""
+    layout = model.layout
+    records = len(layout.operations) * layout.width
+
+    def there(index: int) -> bool:
+        if index < records:
+            return index < reached * layout.width
+        if index < layout.rows:
+            return layout.beds[(index - records) // EXTRAS].exit < reached
+        return index < layout.rows + len(model.inputs.names)
+
+    return all(there(index) for index in form.top.terms)
 
 
 def _closures(atoms: float, energy: float) -> dict[str, Value]:

@@ -18,7 +18,7 @@ from tests.bed.reference import Gas, Twin
 
 Floats = NDArray[np.float64]
 
-COARSE = 1e-5
+COARSE = 1e-3
 """Few, long steps: the derivative of the steps must be exact however rough they are."""
 
 TINY = 1e-20

@@ -91,6 +91,7 @@ def case(options: Options, number_of_beds: int) -> Any:
         currency="EUR",
         hash="0" * 64,
         heat_levels=levels,
+        aim=SimpleNamespace(direction="least", quantity="money.total"),
     )
 
 
@@ -196,6 +197,7 @@ def _quantities(beds: Sequence[Bed], options: Options, profiles: Sequence[Profil
     }
     found[f"train.made {names.product}"] = Value(231.6 * FLOW, "molar flow")
     found[f"train.made {names.main}"] = Value(-266.2 * FLOW, "molar flow")
+    found["money.total"] = Value(_money(beds, options)["total"], "money rate")
     found["train.catalyst"] = Value(sum(bed.catalyst for bed in beds) * 1e3, "mass")
     for step in _steps(beds, options):
         if step.kind in ("heat", "cool"):

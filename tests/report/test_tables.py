@@ -3,16 +3,20 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from types import SimpleNamespace
 
 import numpy as np
 
+from reactorstage.commands.screens import optimum_lines
 from reactorstage.optimise.result import EqualSplit
 from reactorstage.report import bounds, sentences
 from reactorstage.report.accounts import accounts, heat_words
 from reactorstage.report.beds import bed_table
 from reactorstage.report.changes import changes, moves_text
 from reactorstage.report.gaps import gap_table
+from reactorstage.report.result_json import optimum_json
 from reactorstage.report.table import Column, Table
+from reactorstage.train.result import Rating, Value
 from tests.report import synthetic
 
 
@@ -125,8 +129,8 @@ def test_worths_are_per_hour_and_step() -> None:
     assert table.columns[0].cells[1] == "light-off, beds 1-3"
     assert table.columns[1].cells[0] == "at most 424 degC"
     assert [c.strip() for c in table.columns[2].cells] == ["1 K", "1 K", "0.1 mol/mol", "1 K"]
-    assert cells(table, "relax saves") == ["2.2", "3.9", "0.4", "0.0"]
-    assert cells(table, "tighten costs") == ["2.8", "4.5", "0.5", "-"]
+    assert cells(table, "relax", "saves") == ["2.2", "3.9", "0.4", "0.0"]
+    assert cells(table, "tighten", "costs") == ["2.8", "4.5", "0.5", "-"]
 
 
 def test_next_limits_are_of_labels_that_are_not_at_work() -> None:
@@ -163,6 +167,40 @@ def test_sentences_of_the_lead_outcome() -> None:
     second = sentences.second_answer(outcome.programme, outcome.optimum, outcome.best, outcome.others)
     assert second == "A second answer (inlet of bed 4 at 364 instead of 398 degC) costs 18.4 EUR/h more."
     assert sentences.today_text(outcome.today) == "Today breaks hot exit (bed 1) and coking (bed 4)."
+
+
+def test_an_aim_that_is_not_money_is_told_in_its_own_unit() -> None:
+    outcome = synthetic.optimisation()
+    aim = SimpleNamespace(direction="most", quantity="train.conversion of ethylene")
+
+    def aimed(rating: Rating, conversion: float) -> Rating:
+        case = SimpleNamespace(**{**vars(rating.case), "aim": aim})
+        value = Value(conversion, "fraction")
+        return replace(rating, case=case, quantities={**rating.quantities, aim.quantity: value})
+
+    best, today, other = (
+        aimed(rating, value)
+        for rating, value in ((outcome.best, 0.996), (outcome.today, 0.99), (outcome.others[0], 0.994))
+    )
+    first = sentences.first_change(outcome.programme, best, today)
+    assert first.endswith("all changes together: train.conversion of ethylene better by 0.60 % than today.")
+    second = sentences.second_answer(outcome.programme, outcome.optimum, best, [other])
+    assert second.endswith("is worse by 0.20 %.")
+    worths = bounds.worth_table(outcome.optimum, best)
+    assert worths.title == "LIMITS AT WORK (*), train.conversion of ethylene in %"
+    assert cells(worths, "relax", "saves")[0] == f"{100 * 2.2 / 3600:.2g}"
+    content = optimum_json(outcome.programme, outcome.optimum, today, best, [other], 1)
+    assert content["worths"][0]["saving unit"] == "%"
+
+
+def test_today_without_an_answer_is_not_compared() -> None:
+    outcome = synthetic.optimisation()
+    today = replace(outcome.today, failure="bed 1 runs away", quantities={}, money={}, profiles=())
+    first = sentences.first_change(outcome.programme, outcome.best, today)
+    assert first.endswith("from 384 to 397.9 degC.")
+    outcome.today = today
+    text = " ".join("\n".join(optimum_lines(outcome, 100)).split())
+    assert "Today's setting has no answer: bed 1 runs away." in text and " was " not in text
 
 
 def test_one_answer_and_nothing_to_change_are_said_so() -> None:
