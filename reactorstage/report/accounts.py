@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from reactorstage.report.display import and_list, fixed, money
+from reactorstage.report.display import fixed, money, owners_text
 from reactorstage.train.result import Rating
 
 TOTAL = "total"
@@ -73,4 +73,6 @@ def heat_words(rating: Rating) -> str:
         words = "heat earns"
     else:
         words = f"heat on {len(coolers)} levels"
-    return f"{words}, {and_list(rating.unpriced)} unpriced (!)" if rating.unpriced else words
+    if not rating.unpriced:
+        return words
+    return f"{words}, {owners_text(rating.unpriced)} unpriced (!)" if coolers else "heat unpriced (!)"

@@ -167,6 +167,7 @@ def worth_table(optimum: Optimum, rating: Rating) -> Table:
     told = {index for index, state in enumerate(rating.limits) if state.quantity in rating.quantities}
     rows = worth_rows([worth for worth in optimum.worths if told.intersection(worth.limits)])
     aim = aim_of(rating)
+    alone = tuple(_alone_text(row, aim) for row in rows)
     all_together = [row.together for row in rows]
     return table(f"LIMITS AT WORK (*), {aim.heading}", [
         Column(("",), tuple(f"{row.label}, {owners_text(row.owners)}" for row in all_together), left=True),
@@ -174,7 +175,7 @@ def worth_table(optimum: Optimum, rating: Rating) -> Table:
         Column(("by",), tuple(step_text(row) for row in all_together), left=True),
         Column(("relax", "saves"), tuple(aim.number(row.saves) for row in all_together)),
         Column(("tighten", "costs"), tuple(aim.number(row.costs) for row in all_together)),
-        Column(("relaxed one", "by one save"), tuple(_alone_text(row, aim) for row in rows), rank=1, left=True),
+        Column(("relaxed one", "by one save"), alone, rank=1, left=True),
         Column(("re-solved",), tuple(row.note for row in all_together), rank=2, left=True),
     ])  # fmt: skip
 

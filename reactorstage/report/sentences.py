@@ -151,8 +151,8 @@ def _relaxed(best: Rating, index: int, amount: float) -> str:
 
 
 def warnings(rating: Rating) -> list[str]:
-    """Unlit beds and the notes of the rating."""
-    return [*_unlit(rating), *rating.notes]
+    """Unlit beds and the notes of the rating, but for unpriced heat: the first line and GAPS say that."""
+    return [*_unlit(rating), *(note for note in rating.notes if "carries no price" not in note)]
 
 
 def _unlit(rating: Rating) -> list[str]:

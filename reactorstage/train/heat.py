@@ -114,7 +114,7 @@ def build_ladder(
     hinge_start: int,
     internal_start: int,
 ) -> Ladder:
-    """The ladder of a case; outlet_range gives lowest and highest value of each input that fixes an outlet."""
+    """The ladder of a case; outlet_range gives lowest and highest of each input that fixes an outlet."""
     problems: list[Problem] = []
     rungs = read_rungs(case, problems)
     if problems:

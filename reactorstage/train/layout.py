@@ -102,7 +102,7 @@ class Layout:
         return at(operation * self.width + self.species + 2)
 
     def extra(self, bed: int, which: int) -> Linear:
-        """What was found in bed (counted from 0): 0 peak temperature, 1 its depth, 2..4 depths of the rise."""
+        """What was found in bed (from 0): 0 peak temperature, 1 its depth, 2..4 depths of the rise."""
         return at(len(self.operations) * self.width + bed * kernel.EXTRAS + which)
 
     def input(self, index: int) -> Linear:

@@ -153,9 +153,22 @@ def _limit(bound: Bound, base: Array) -> LimitState:
     met = margin is None or margin >= -AT_WORK * row.scale
     at_work = margin is not None and abs(margin) <= AT_WORK * row.scale
     return LimitState(
-        row.label, row.owner, row.quantity, row.direction, row.kind, row.bound, row.keep_away, value, margin,
-        met, at_work, row.soft_price is not None, row.implied, row.why, "" if value is not None else bound.form.reason,
-    )  # fmt: skip
+        label=row.label,
+        owner=row.owner,
+        quantity=row.quantity,
+        direction=row.direction,
+        kind=row.kind,
+        bound=row.bound,
+        keep_away=row.keep_away,
+        value=value,
+        margin=margin,
+        met=met,
+        at_work=at_work,
+        soft=row.soft_price is not None,
+        implied=row.implied,
+        why=row.why,
+        reason="" if value is not None else bound.form.reason,
+    )
 
 
 def closure(model: Model, base: Array) -> tuple[float, float]:

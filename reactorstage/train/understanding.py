@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 from numpy.typing import NDArray
 
+from reactorstage.case import units
 from reactorstage.chemistry.reaction import data_range, heat_of_reaction, imbalance, ln_K
 from reactorstage.chemistry.thermo import cp
 from reactorstage.train.evaluation import FreeNumber, LimitRow
@@ -25,7 +26,7 @@ SPAN = 100.0
 
 @dataclass(frozen=True)
 class StreamRow:
-    """A feed: flow mol/s, mass flow kg/s, T in K, mole fractions, and (place, flow now mol/s) where it enters."""
+    """A feed: flow mol/s, mass flow kg/s, T in K, mole fractions; (place, flow now mol/s) where it enters."""
 
     name: str
     flow: float
@@ -206,7 +207,7 @@ def _empty_limits(model: Model) -> Iterator[str]:
     for label, limit in model.case.limits.items():
         if label not in labels:
             found = ", ".join(owner for owner, _ in names_of(limit.of, model.layout)) or "nothing"
-            yield f"Limit {label!r} on {limit.of!r} holds nothing: {found} has no such quantity that can move."
+            yield f"Limit {label!r} on {limit.of!r} holds nothing: {found} has nothing there that can move."
 
 
 def _unused_species(model: Model) -> Iterator[str]:
@@ -233,15 +234,15 @@ def _injection_sums(model: Model) -> Iterator[str]:
         }
         least = sum(ends.get((bed, "at least"), 0.0) for bed in beds)
         most = sum(ends.get((bed, "at most"), np.inf) for bed in beds)
-        flows = f"{3.6 * total:.4g} kmol/h of {feed}"
+        flows = f"there are {_shown(total, 'molar flow')} of {feed}"
         if least > total * (1.0 + 1e-9):
-            yield f"The limits on injections ask for at least {3.6 * least:.4g} kmol/h in all; there are {flows}."
+            yield f"Limits on injections ask for at least {_shown(least, 'molar flow')} in all; {flows}."
         if most < total * (1.0 - 1e-9):
-            yield f"The limits on injections let at most {3.6 * most:.4g} kmol/h in; there are {flows}."
+            yield f"Limits on injections let at most {_shown(most, 'molar flow')} in; {flows}."
 
 
 def _rise_against_exit(programme: TrainProgramme, reactant: str) -> Iterator[str]:
-    """Lowest allowed inlet plus the rise of the smallest allowed injection, against the highest allowed exit."""
+    """Lowest allowed inlet plus the rise of the smallest injection, against the highest allowed exit."""
     model = programme.model
     if not reactant:
         return
@@ -259,10 +260,15 @@ def _rise_against_exit(programme: TrainProgramme, reactant: str) -> Iterator[str
         rise = _rise_of(model, reactant, bed.injections[0][1], least, inlet)
         if inlet + rise > exit_:
             yield (
-                f"{bed.owner}: lowest inlet {inlet - 273.15:.1f} degC plus the rise of its smallest injection "
-                f"({3.6 * least:.4g} kmol/h, about {rise:.0f} K) is {inlet + rise - 273.15:.1f} degC, above the "
-                f"limit of {exit_ - 273.15:.1f} degC at its exit."
+                f"{bed.owner}: lowest inlet {_shown(inlet, 'temperature')} plus the rise of its smallest "
+                f"injection ({_shown(least, 'molar flow')}, about {rise:.0f} K) is "
+                f"{_shown(inlet + rise, 'temperature')}, above the limit of {_shown(exit_, 'temperature')} "
+                "at its exit."
             )
+
+
+def _shown(value: float, kind: str) -> str:
+    return f"{units.to_display(value, kind):.4g} {units.display_unit(kind)}"
 
 
 def _lowest_inlet(model: Model, owner: str, bounds: dict[tuple[str, str], float]) -> float | None:
