@@ -8,8 +8,8 @@ found = rs.optimise(case)
 """
 
 from reactorstage.case import load
-from reactorstage.face import Optimisation, compile, optimise, rate
+from reactorstage.face import Optimisation, compile, optimise, rate, rate_many, sensitivities
 
-__all__ = ["Optimisation", "__version__", "compile", "load", "optimise", "rate"]
+__all__ = ["Optimisation", "__version__", "compile", "load", "optimise", "rate", "rate_many", "sensitivities"]
 
 __version__ = "0.1.0"

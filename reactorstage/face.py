@@ -3,15 +3,20 @@
 from __future__ import annotations
 
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
     from threading import Event
 
+    import numpy as np
+    from numpy.typing import ArrayLike, NDArray
+
     from reactorstage.case.model import Case
-    from reactorstage.optimise.result import Optimum
+    from reactorstage.optimiser.result import Optimum
+    from reactorstage.train.batch import Batch
+    from reactorstage.train.parameters import Sensitivities
     from reactorstage.train.programme import TrainProgramme
     from reactorstage.train.result import Rating
 
@@ -72,7 +77,7 @@ def optimise(
     text) is called as work goes on; setting stop, or Ctrl-C, keeps the best answer so far.
     Raises CaseProblems for a case that chemistry or quantities find wrong.
     """
-    from reactorstage.optimise import optimise as search
+    from reactorstage.optimiser import optimise as search
 
     begun = time.perf_counter()
     programme = compile(case)
@@ -91,3 +96,35 @@ def optimise(
         seconds=time.perf_counter() - begun,
         seed=seed,
     )
+
+
+def rate_many(
+    case: Case | TrainProgramme,
+    settings: Mapping[str, ArrayLike],
+    *,
+    quantities: Sequence[str] | None = None,
+    jobs: int | None = None,
+) -> Batch:
+    """Rate at many settings or parameter samples; see `reactorstage.train.batch.rate_many`."""
+    from reactorstage.train.batch import rate_many as many
+
+    return many(_programme(case), settings, quantities=quantities, jobs=jobs)
+
+
+def sensitivities(
+    case: Case | TrainProgramme,
+    x: NDArray[np.float64] | None = None,
+    *,
+    parameters: Sequence[str] | None = None,
+    quantities: Sequence[str] | None = None,
+) -> Sensitivities:
+    """Exact derivatives of quantities by parameters; see `reactorstage.train.parameters.sensitivities`."""
+    from reactorstage.train.parameters import sensitivities as found
+
+    return found(_programme(case), x, parameters, quantities)
+
+
+def _programme(case: Case | TrainProgramme) -> TrainProgramme:
+    from reactorstage.train.programme import TrainProgramme
+
+    return case if isinstance(case, TrainProgramme) else compile(case)

@@ -26,7 +26,7 @@ TOP_LEVEL = {
     "tests",
 }
 MADE_BY_TOOLS = ("build", "dist", "reactorstage.egg-info")
-FLOORS = ("errors", "case", "chemistry", "bed", "train", "optimise", "face", "report", "commands")
+FLOORS = ("errors", "case", "chemistry", "bed", "train", "optimiser", "face", "report", "commands")
 PHYSICS = ("chemistry", "bed")
 HEAVY = ("cantera", "matplotlib", "numba", "pint", "pydantic", "scipy", "yaml")
 DISTRIBUTIONS = {"yaml": "pyyaml", "pydantic_core": "pydantic"}

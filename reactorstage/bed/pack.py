@@ -2,11 +2,21 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 
 import numpy as np
 
-from reactorstage.bed.data import Array, Beds, Chemistry, Index
+from reactorstage.bed.data import (
+    E_OVER_R,
+    H_TERM,
+    LAW,
+    LN_K,
+    LN_K_TERM,
+    Array,
+    Beds,
+    Chemistry,
+    Index,
+)
 from reactorstage.chemistry.rate_law import RateLaws, basis_factors
 from reactorstage.chemistry.species import SpeciesTable
 
@@ -47,6 +57,19 @@ def pack_chemistry(table: SpeciesTable, laws: RateLaws) -> Chemistry:
         T_low=float(table.edges[:, 0].max()),
         T_high=float(table.edges[:, -1].min()),
     )
+
+
+def shift_kinetics(chem: Chemistry, shifts: Mapping[tuple[int, int], float]) -> Chemistry:
+    """The chemistry with kinetic parameters (kind, index; see `data.PARAMETERS`) shifted, kernel units."""
+    real = chem.real.copy()
+    law = 30 * chem.S + chem.R * chem.S
+    term = law + chem.R * (LAW + 2 * chem.L) + chem.factors
+    starts = {LN_K: (law, LAW), E_OVER_R: (law + 2, LAW)}
+    starts |= {LN_K_TERM: (term, 3 + chem.L), H_TERM: (term + 2, 3 + chem.L)}
+    for (kind, index), amount in shifts.items():
+        first, width = starts[kind]
+        real[first + width * index] += amount
+    return chem._replace(real=real)
 
 
 def ergun_terms(

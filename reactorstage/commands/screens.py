@@ -6,7 +6,7 @@ from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 from reactorstage.commands.layout import INDENT, items, paragraph, spread, table_lines
-from reactorstage.optimise import result as words
+from reactorstage.optimiser import result as words
 from reactorstage.report import bounds, sentences
 from reactorstage.report.accounts import accounts, heat_words
 from reactorstage.report.beds import bed_table
@@ -75,6 +75,8 @@ def _limits(count: int) -> str:
 
 
 def _closure(rating: Rating) -> str:
+    if rating.failure:
+        return f"{counted(len(rating.profiles), 'bed')} rated before the failure"
     return f"atoms {_small(rating.atoms)}, energy {_small(rating.energy)}"
 
 
@@ -187,12 +189,18 @@ def _numbered(texts: Sequence[str], width: int) -> list[str]:
 def _no_answer(outcome: Optimisation, width: int) -> list[str]:
     """Nothing was found: why, and how each start ended."""
     optimum, today = outcome.optimum, outcome.today
-    rows = [f"  {start.name}: {start.ended}" for start in optimum.starts]
+    endings: dict[str, list[str]] = {}
+    for start in optimum.starts:
+        endings.setdefault(start.ended, []).append(start.name)
+    rows = [f"  {', '.join(names)}: {ended}" for ended, names in endings.items()]
     return [
         *spread([today.case.name, optimum.status.upper()], width),
         *_failure(today, width),
         *[line for note in optimum.notes for line in paragraph(note, width)],
         *_block(
-            [f"HOW {len(rows)} STARTS ENDED", *[line for row in rows for line in paragraph(row, width, 4)]]
+            [
+                f"HOW {len(optimum.starts)} STARTS ENDED",
+                *[line for row in rows for line in paragraph(row, width, 4)],
+            ]
         ),
     ]

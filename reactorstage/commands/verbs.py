@@ -89,7 +89,7 @@ def _defect(error: Exception) -> int:
 
 def status_of(words: str) -> int:
     """The exit status for the status words of a result."""
-    from reactorstage.optimise import result
+    from reactorstage.optimiser import result
 
     return {
         result.INSIDE: 0,

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
 
-from reactorstage.optimise.result import Optimum, Worth
+from reactorstage.optimiser.result import Optimum, Worth
 from reactorstage.report.aim import Aim, aim_of
 from reactorstage.report.display import (
     allowed,

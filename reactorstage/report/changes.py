@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
-from reactorstage.optimise.programme import Array, FreeNumber
+from reactorstage.optimiser.programme import Array, FreeNumber
 from reactorstage.report.display import and_list, brief, owners_text, shown, unit, with_unit
 
 WORTH_SAYING = 0.01

@@ -13,8 +13,8 @@ from importlib import metadata
 from typing import TYPE_CHECKING, Any
 
 from reactorstage import __version__
-from reactorstage.optimise.programme import FreeNumber, Programme
-from reactorstage.optimise.result import Answer, EqualSplit, Optimum, StartRecord, Worth
+from reactorstage.optimiser.programme import FreeNumber, Programme
+from reactorstage.optimiser.result import Answer, EqualSplit, Optimum, StartRecord, Worth
 from reactorstage.report.aim import Aim, aim_of
 from reactorstage.report.cautions import FULL
 from reactorstage.report.display import difference, difference_kind, money, shown, unit

@@ -4,9 +4,9 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from reactorstage.optimise.programme import Programme
-from reactorstage.optimise.result import Conflict, EqualSplit, Optimum
-from reactorstage.optimise.words import told_apart
+from reactorstage.optimiser.programme import Programme
+from reactorstage.optimiser.result import Conflict, EqualSplit, Optimum
+from reactorstage.optimiser.words import told_apart
 from reactorstage.report import bounds
 from reactorstage.report.aim import MONEY, aim_of, cost_difference
 from reactorstage.report.beds import main_reaction, selectivity

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any
 
-from reactorstage.optimise.programme import FreeNumber, LimitRow
+from reactorstage.optimiser.programme import FreeNumber, LimitRow
 from reactorstage.report.display import (
     allowed,
     brief,

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from reactorstage.bed.data import ENTHALPY, ENTROPY
 from reactorstage.chemistry.constants import R_GAS
 from reactorstage.chemistry.reaction import equilibrium_temperature, heat_of_reaction, ln_Q
 from reactorstage.train.chemistry import CaseChemistry
@@ -29,8 +30,17 @@ class Equilibrium:
     reaction: int
     exothermic: bool
 
-    def temperature(self, chemistry: CaseChemistry, layout: Layout, base: Array) -> Array:
-        """T_eq with its derivatives (1 + D,), from ln K(T_eq) = ln Q; not a number where Q does not exist."""
+    def temperature(
+        self,
+        chemistry: CaseChemistry,
+        layout: Layout,
+        base: Array,
+        moved: NDArray[np.int64] | None = None,
+    ) -> Array:
+        """T_eq with its derivatives (1 + D,), from ln K(T_eq) = ln Q; not a number where Q does not exist.
+
+        moved (D, 2) states parameters of the chemistry that directions move, as in the kernel.
+        """
         record = base[self.operation * layout.width : (self.operation + 1) * layout.width]
         F, p = record[: layout.species, 0], record[layout.species + 1, 0]
         row = chemistry.laws.nu[self.reaction]
@@ -48,8 +58,21 @@ class Equilibrium:
         ln_Q_d = (row[used] / F[used]) @ record[: layout.species][used, 1:]
         ln_Q_d = ln_Q_d - change * record[: layout.species, 1:].sum(axis=0) / F.sum()
         ln_Q_d = ln_Q_d + change * record[layout.species + 1, 1:] / p
+        if moved is not None:
+            ln_Q_d = ln_Q_d - _ln_K_shift(row, T, moved)
         found[0], found[1:] = T, ln_Q_d / slope
         return found
+
+
+def _ln_K_shift(row: Array, T: float, moved: NDArray[np.int64]) -> Array:
+    """d ln K / d parameter (D,) at T: formation enthalpies and entropies of the reaction's species."""
+    shift = np.zeros(len(moved))
+    for d, (kind, index) in enumerate(moved):
+        if kind == ENTHALPY:
+            shift[d] = -row[index] / (R_GAS * T)
+        elif kind == ENTROPY:
+            shift[d] = row[index] / R_GAS
+    return shift
 
 
 def equilibria_of(layout: Layout, chemistry: CaseChemistry, first: int) -> tuple[Equilibrium, ...]:

@@ -46,10 +46,11 @@ class Rung:
 
 @dataclass(frozen=True)
 class Hinge:
-    """A rounded max(0, form), with its half width as a form too."""
+    """A rounded max(0, form) of the stream at an operation, with its half width as a form too."""
 
     form: Linear
     width: Linear
+    operation: int
 
 
 @dataclass
@@ -75,8 +76,8 @@ class Ladder:
     unpriced: list[str] = field(default_factory=list)
     capacities: dict[str, float] = field(default_factory=dict)
 
-    def hinge(self, form: Linear, width: Linear) -> Linear:
-        self.hinges.append(Hinge(form, width))
+    def hinge(self, form: Linear, width: Linear, operation: int) -> Linear:
+        self.hinges.append(Hinge(form, width, operation))
         return at(self.hinge_start + len(self.hinges) - 1)
 
     def number(self, name: str) -> Linear:
@@ -192,7 +193,11 @@ def _cool(ladder: Ladder, stream: _Stream, rungs: Sequence[Rung]) -> None:
         if not limited and low >= rung.reach:
             above.append(stream.removed)
         elif not limited and high <= rung.reach:
-            above.append(ladder.hinge(stream.before_above(rung.reach), stream.width(rung.reach)))
+            above.append(
+                ladder.hinge(
+                    stream.before_above(rung.reach), stream.width(rung.reach), stream.device.operation
+                )
+            )
         else:
             above.append(_internal(ladder, stream, rung, above[-1]))
     _book(ladder, owner, kept, above, stream.device.heating)
@@ -202,7 +207,9 @@ def _internal(ladder: Ladder, stream: _Stream, rung: Rung, less: Linear) -> Line
     """Heat above a rung as an internal number, bounded by what lies above it and by the rung below."""
     owner = stream.place.owner
     number = ladder.number(f"{owner}.heat above {rung.level}")
-    reachable = ladder.hinge(stream.before_above(rung.reach), stream.width(rung.reach))
+    reachable = ladder.hinge(
+        stream.before_above(rung.reach), stream.width(rung.reach), stream.device.operation
+    )
     ladder.rows.append((f"{owner}, heat that reaches {rung.level}", reachable - number))
     ladder.rows.append((f"{owner}, heat left for {rung.level}", less - number))
     return number
@@ -217,8 +224,12 @@ def _heat(ladder: Ladder, stream: _Stream, rungs: Sequence[Rung]) -> None:
     kept = _rising(rungs)
     above = [stream.removed * -1.0]
     for rung in kept[:-1]:
-        after = ladder.hinge(stream.after_above(rung.reach), stream.width(rung.reach))
-        before = ladder.hinge(stream.before_above(rung.reach), stream.width(rung.reach))
+        after = ladder.hinge(
+            stream.after_above(rung.reach), stream.width(rung.reach), stream.device.operation
+        )
+        before = ladder.hinge(
+            stream.before_above(rung.reach), stream.width(rung.reach), stream.device.operation
+        )
         above.append(after - before)
     _book(ladder, owner, kept, above, stream.device.heating)
 

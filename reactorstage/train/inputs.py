@@ -1,8 +1,11 @@
-"""From the numbers x to the inputs u of a pass, with the derivatives du/dx."""
+"""From the numbers of a case to the inputs u of a pass, with derivatives.
+
+v (V,) are all numbers of the case that a pass depends on, x (D,) those of them that are free, followed by
+internal numbers, which no input depends on.
+"""
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -17,16 +20,35 @@ Array = NDArray[np.float64]
 
 @dataclass(frozen=True)
 class InputMap:
-    """u = constant + slope @ x, then u[target] = u[a] * u[b] for each product (shares of a free flow)."""
+    """u = constant + slope @ v, then u[target] = u[a] * u[b] for each product (shares of a flow).
+
+    names (U,) are those of the inputs, numbers (V,) the numbers of the case (fixed ones with low = high),
+    free the positions in v of the first numbers of x.
+    """
 
     names: tuple[str, ...]
+    numbers: tuple[FreeNumber, ...]
+    free: NDArray[np.intp]
     constant: Array
     slope: Array
     products: tuple[tuple[int, int, int], ...]
 
+    def all_numbers(self, x: Array) -> Array:
+        """v (V,) with the free numbers taken from x and the others as the case states them."""
+        v = np.array([number.now for number in self.numbers])
+        v[self.free] = x[: len(self.free)]
+        return v
+
     def values(self, x: Array) -> tuple[Array, Array]:
-        """u (U,) and du (U, D) at x (D,)."""
-        u = self.constant + self.slope @ x
+        """u (U,) and du/dx (U, D) at x (D,)."""
+        u, du = self.of_numbers(self.all_numbers(x))
+        slope = np.zeros((len(u), len(x)))
+        slope[:, : len(self.free)] = du[:, self.free]
+        return u, slope
+
+    def of_numbers(self, v: Array) -> tuple[Array, Array]:
+        """u (U,) and du/dv (U, V) at v (V,)."""
+        u = self.constant + self.slope @ v
         if not self.products:
             return u, self.slope
         du = self.slope.copy()
@@ -37,13 +59,19 @@ class InputMap:
 
 
 class InputBuilder:
-    """Collects inputs and free numbers while a case is laid out."""
+    """Collects numbers and inputs while a case is laid out; forms are linear in v."""
 
     def __init__(self) -> None:
-        self.numbers: list[FreeNumber] = []
+        self.all: list[FreeNumber] = []
+        self._free: list[int] = []
         self._names: list[str] = []
         self._forms: list[Linear] = []
         self._products: list[tuple[int, int, int]] = []
+
+    @property
+    def numbers(self) -> list[FreeNumber]:
+        """The free numbers, in the order of x."""
+        return [self.all[index] for index in self._free]
 
     def constant(self, name: str, value: float) -> int:
         """An input that never moves."""
@@ -51,23 +79,29 @@ class InputBuilder:
 
     def number(self, name: str, number: Number, factor: float = 1.0, **role: str | int | float) -> int:
         """An input from a number of the case, times a conversion factor; free numbers join x."""
-        if not number.free:
-            return self.constant(name, factor * number.now)
-        return self._append(name, at(self.free(name, number, **role)) * factor)
-
-    def free(self, name: str, number: Number, **role: str | int | float) -> int:
-        """A free number without an input of its own; its position in x."""
-        assert number.low is not None and number.high is not None
-        self.numbers.append(FreeNumber(name, number.now, number.low, number.high, number.kind, **role))  # type: ignore[arg-type]
-        return len(self.numbers) - 1
+        low = number.now if number.low is None else number.low
+        high = number.now if number.high is None else number.high
+        self.all.append(FreeNumber(name, number.now, low, high, number.kind, **role))  # type: ignore[arg-type]
+        if number.free:
+            self._free.append(len(self.all) - 1)
+        return self._append(name, at(len(self.all) - 1) * factor)
 
     def combination(self, name: str, form: Linear) -> int:
-        """An input that is a linear form of x."""
+        """An input that is a linear form of v."""
         return self._append(name, form)
 
     def form(self, index: int) -> Linear:
-        """The linear form of x behind an input."""
+        """The linear form of v behind an input."""
         return self._forms[index]
+
+    def span(self, index: int) -> tuple[float, float]:
+        """Lowest and highest value of an input within the ranges of the numbers behind it."""
+        form = self._forms[index]
+        ends = [
+            form.const + sum(c * (self.all[i].low, self.all[i].high)[k] for i, c in form.terms.items())
+            for k in (0, 1)
+        ]
+        return min(ends), max(ends)
 
     def product(self, name: str, a: int, b: int) -> int:
         """An input that is the product of two earlier ones."""
@@ -75,12 +109,18 @@ class InputBuilder:
         self._products.append((target, a, b))
         return target
 
-    def build(self, extra: Sequence[FreeNumber] = ()) -> InputMap:
-        """The finished map for x made of the collected numbers and `extra` internal ones."""
-        size = len(self.numbers) + len(extra)
+    def build(self) -> InputMap:
+        """The finished map."""
+        size = len(self.all)
         slope = np.array([form.row(size) for form in self._forms]).reshape(len(self._forms), size)
-        constant = np.array([form.const for form in self._forms])
-        return InputMap(tuple(self._names), constant, np.ascontiguousarray(slope), tuple(self._products))
+        return InputMap(
+            names=tuple(self._names),
+            numbers=tuple(self.all),
+            free=np.array(self._free, dtype=np.intp),
+            constant=np.array([form.const for form in self._forms]),
+            slope=np.ascontiguousarray(slope),
+            products=tuple(self._products),
+        )
 
     def _append(self, name: str, form: Linear) -> int:
         self._names.append(name)

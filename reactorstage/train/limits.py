@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from math import floor, log10
 from typing import TYPE_CHECKING
 
@@ -30,17 +30,18 @@ SCALES = {"temperature": 10.0, "temperature difference": 10.0, "power": 0.3e6}
 
 @dataclass(frozen=True)
 class Bound:
-    """An expanded limit and the form of its quantity."""
+    """An expanded limit, the form of its quantity, and the slack number of a soft one."""
 
     row: LimitRow
     form: Form
+    slack: Linear = field(default_factory=Linear)
 
     def margin(self, shift: float = 0.0) -> Linear:
         """Linear form that is >= 0 inside, with the bound moved by shift towards more freedom."""
         sign = 1.0 if self.row.direction == "at most" else -1.0
         bound = self.row.bound + sign * shift
         held = self.form.bottom * bound if self.form.bottom is not None else Linear(const=bound)
-        return (held - self.form.top) * sign
+        return (held - self.form.top) * sign + self.slack
 
     def weight(self) -> Linear:
         return self.form.bottom if self.form.bottom is not None else Linear(const=1.0)

@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from reactorstage.bed import integrate as status
-from reactorstage.bed.data import Beds, Chemistry, Stages, Tolerance
+from reactorstage.bed.data import Beds, Chemistry, Index, Stages, Tolerance
 from reactorstage.bed.sample import sample_bed
 from reactorstage.bed.train_pass import train_pass
 from reactorstage.train.layout import BedPlace, Layout
@@ -65,11 +65,22 @@ class Pass:
         return Tolerance(flow, 100.0 * flow, min(1e-12, 1e-5 * flow), self.named)
 
     def adaptive(
-        self, u: Array, du: Array, flow: float = SEARCH, most: int | None = None, places: bool = True
+        self,
+        u: Array,
+        du: Array,
+        flow: float = SEARCH,
+        most: int | None = None,
+        places: bool = True,
+        moved: Index | None = None,
+        chemistry: Chemistry | None = None,
     ) -> Outcome:
-        """Integrate with steps chosen by error control at tolerance `flow`."""
+        """Integrate with steps chosen by error control at tolerance `flow`.
+
+        moved (D, 2) names a parameter of the chemistry for each direction (see `reactorstage.bed.data`);
+        chemistry replaces that of the case.
+        """
         stages = self.stages(most or MOST_STEPS.get(flow, 3000))
-        return self._run(u, du, self.tolerance(flow), False, places, stages, stages)
+        return self._run(u, du, self.tolerance(flow), False, places, stages, stages, moved, chemistry)
 
     def frozen(self, u: Array, du: Array, mesh: Stages, places: bool = True) -> Outcome:
         """Integrate on the step sequences of an earlier pass."""
@@ -85,12 +96,15 @@ class Pass:
         places: bool,
         stages: Stages,
         mesh: Stages,
+        moved: Index | None = None,
+        chemistry: Chemistry | None = None,
     ) -> Outcome:
         layout = self.layout
         out = np.empty((layout.rows, 1 + du.shape[1]))
-        moved = np.full((du.shape[1], 2), -1, dtype=np.int64)
+        if moved is None:
+            moved = np.full((du.shape[1], 2), -1, dtype=np.int64)
         code, reached, depth, evaluations, steps = train_pass(
-            self.chemistry,
+            chemistry or self.chemistry,
             self.beds,
             layout.operations,
             layout.compositions,

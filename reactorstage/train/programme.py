@@ -1,11 +1,11 @@
 """A case compiled into one function of its numbers: quantities with exact derivatives.
 
-`TrainProgramme` is what the optimiser sees (`reactorstage.optimise.programme.Programme`) and what rates.
+`TrainProgramme` is what the optimiser sees (`reactorstage.optimiser.programme.Programme`) and what rates.
 """
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Container, Sequence
 from dataclasses import dataclass, replace
 from functools import cached_property
 from typing import TYPE_CHECKING, Any
@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 from numpy.typing import NDArray
 
-from reactorstage.bed.data import Beds
+from reactorstage.bed.data import ENTHALPY, Beds
 from reactorstage.bed.pack import ergun_terms, pack_beds, pack_chemistry
 from reactorstage.errors import CaseProblems, ComputationError
 from reactorstage.train.chemistry import CaseChemistry, read_chemistry
@@ -69,13 +69,25 @@ class Model:
     def wanted_equilibria(self) -> tuple[Equilibrium, ...]:
         """Equilibrium temperatures that a limit or the aim needs; a rating finds all of them."""
         forms = [self.aim.top, *(bound.form.top for bound in self.bounds)]
-        named = {index for form in forms for index in form.terms}
-        return tuple(one for one in self.catalogue.equilibria if one.index in named)
+        return self.equilibria_in({index for form in forms for index in form.terms})
 
-    def base(self, out: Array, u: Array, du: Array, x: Array, equilibria: Sequence[Equilibrium]) -> Array:
+    def equilibria_in(self, used: Container[int]) -> tuple[Equilibrium, ...]:
+        """Equilibrium temperatures among positions of the base vector."""
+        return tuple(one for one in self.catalogue.equilibria if one.index in used)
+
+    def base(
+        self,
+        out: Array,
+        u: Array,
+        du: Array,
+        x: Array,
+        equilibria: Sequence[Equilibrium],
+        moved: NDArray[np.int64] | None = None,
+    ) -> Array:
         """The base vector and its derivatives (size, 1 + D); D = 0 when out has values only.
 
-        Only the given equilibrium temperatures are found; the others are left at zero.
+        Only the given equilibrium temperatures are found; the others are left at zero. Directions are those
+        of x, or with moved (D, 2) those of the parameters and numbers that du and moved state.
         """
         D = out.shape[1] - 1
         base = np.zeros((self.size, 1 + D))
@@ -86,13 +98,25 @@ class Model:
         base[self.x_start : end, 0] = x
         if D:
             base[inputs, 1:] = du
-            base[self.x_start : end, 1:] = np.eye(len(x))
+            if moved is None:
+                base[self.x_start : end, 1:] = np.eye(len(x))
         if self.ladder.hinges:
             forms, widths = self.hinge_rows
-            base[end:] = _hinged(forms.of_base(base), widths.of_base(base))
+            above = forms.of_base(base)
+            if moved is not None:
+                above[:, 1:] -= self._held(base, moved)
+            base[end:] = _hinged(above, widths.of_base(base))
         for one in equilibria:
-            base[one.index] = one.temperature(self.chemistry, self.layout, base)
+            base[one.index] = one.temperature(self.chemistry, self.layout, base, moved)
         return base
+
+    def _held(self, base: Array, moved: NDArray[np.int64]) -> Array:
+        """What a shift of a formation enthalpy adds to each hinge's stream at the level's temperature."""
+        first = np.array([one.operation * self.layout.width for one in self.ladder.hinges])
+        held = np.zeros((len(first), len(moved)))
+        for d in np.flatnonzero(moved[:, 0] == ENTHALPY):
+            held[:, d] = base[first + moved[d, 1], 0]
+        return held
 
 
 def _hinged(y: Array, width: Array) -> Array:
@@ -110,8 +134,8 @@ def _hinged(y: Array, width: Array) -> Array:
 class TrainProgramme:
     """A compiled train, safe to call from several threads; raises CaseProblems when made of a wrong case."""
 
-    def __init__(self, case: Case):
-        self.model = compile_model(case)
+    def __init__(self, case: Case, chemistry: CaseChemistry | None = None):
+        self.model = compile_model(case, chemistry)
         self.numbers: tuple[FreeNumber, ...] = self.model.numbers
         self.limits: tuple[LimitRow, ...] = tuple(bound.row for bound in self.model.bounds)
         self.splits: tuple[SplitGroup, ...] = self.model.layout.splits
@@ -123,6 +147,10 @@ class TrainProgramme:
     @property
     def case(self) -> Case:
         return self.model.case
+
+    def with_chemistry(self, chemistry: CaseChemistry) -> TrainProgramme:
+        """The same case with other numbers in its chemistry."""
+        return TrainProgramme(self.case, chemistry)
 
     @property
     def now(self) -> Array:
@@ -191,9 +219,9 @@ class TrainProgramme:
         )
 
 
-def compile_model(case: Case) -> Model:
+def compile_model(case: Case, chemistry: CaseChemistry | None = None) -> Model:
     """Chemistry, layout, heat, limits and money of a checked case; raises CaseProblems."""
-    chemistry = read_chemistry(case)
+    chemistry = chemistry or read_chemistry(case)
     inputs = InputBuilder()
     layout = lay_out(case, chemistry, inputs)
     return _Draft(case, chemistry, inputs, layout).finish()
@@ -231,7 +259,7 @@ class _Draft:
             case=self.case,
             chemistry=self.chemistry,
             layout=self.layout,
-            inputs=self.inputs.build((*internal, *slack_numbers)),
+            inputs=self.inputs.build(),
             ladder=ladder,
             catalogue=catalogue,
             bounds=tuple(softened),
@@ -252,22 +280,8 @@ class _Draft:
         )
 
     def _outlet_spans(self) -> dict[int, tuple[float, float]]:
-        spans: dict[int, tuple[float, float]] = {}
-        for place in self.layout.places:
-            for device in place.devices:
-                if device.outlet >= 0:
-                    form = self.inputs.form(device.outlet)
-                    ends = [
-                        form.const
-                        + sum(
-                            c * (n.low, n.high)[k]
-                            for i, c in form.terms.items()
-                            for n in [self.inputs.numbers[i]]
-                        )
-                        for k in (0, 1)
-                    ]
-                    spans[device.outlet] = (min(ends), max(ends))
-        return spans
+        devices = [device for place in self.layout.places for device in place.devices]
+        return {one.outlet: self.inputs.span(one.outlet) for one in devices if one.outlet >= 0}
 
     def _levels(self, ladder: Ladder) -> dict[str, Form]:
         names = self.case.heat_levels.levels if self.case.heat_levels else {}
@@ -315,9 +329,7 @@ def _soften(bounds: list[Bound], first: int) -> tuple[list[Bound], list[FreeNumb
         price = price + slack * bound.row.soft_price
         name = f"{bound.row.name}, beyond the limit"
         numbers.append(FreeNumber(name, 0.0, 0.0, 100.0 * bound.row.scale, bound.row.kind, role="internal"))
-        sign = 1.0 if bound.row.direction == "at most" else -1.0
-        top = bound.form.top - slack * sign
-        softened.append(Bound(bound.row, replace(bound.form, top=top)))
+        softened.append(replace(bound, slack=slack))
     return softened, numbers, price
 
 

@@ -322,7 +322,7 @@ def _depth(c: Catalogue, bed: BedPlace, which: int) -> Form:
 
 
 def _approach(c: Catalogue, bed: BedPlace, reaction: str) -> Form:
-    """Equilibrium temperature at the exit composition less the exit temperature; > 0 while forward remains."""
+    """Equilibrium temperature at the exit composition less that of the exit; > 0 while forward remains."""
     number = c.chemistry.reactions.index(reaction)
     kind, why = "temperature difference", "a species of the reaction is absent"
     for one in c.equilibria:

@@ -267,20 +267,27 @@ def _roles(model: Model, base: Array) -> tuple[str, str, str, tuple[str, ...]]:
         if nu[r, s] < 0
     }
     excess = max((n for n in consumed if n != main and n in partners), key=lambda n: given[n], default="")
-    produced = sorted((n for n in names if made[n] > 1e-9 * sum(given.values())), key=lambda n: -made[n])
-    return main, excess, produced[0] if produced else "", tuple(produced[1:])
+    product = _product(nu, names, main, made)
+    floor = 1e-9 * sum(given.values())
+    others = sorted((n for n in names if made[n] > floor and n != product), key=lambda n: -made[n])
+    return main, excess, product, tuple(others)
+
+
+def _product(nu: Array, names: tuple[str, ...], main: str, made: dict[str, float]) -> str:
+    """What the first reaction that consumes the main reactant makes; else the species made most."""
+    for row in nu:
+        if main and row[names.index(main)] < 0.0 and (row > 0.0).any():
+            return names[int(row.argmax())]
+    return max(names, key=lambda n: made[n])
 
 
 def _notes(model: Model, quantities: dict[str, Value]) -> tuple[str, ...]:
     notes = [f"Heat of {owner} carries no price." for owner in dict.fromkeys(model.ladder.unpriced)]
-    outside = [
-        (name, value.value)
-        for name, value in quantities.items()
-        if ".outside validity of " in name and value.value
-    ]
-    for name, share in outside:
-        owner, _, rest = name.partition(".outside validity of ")
-        notes.append(
-            f"{100.0 * float(share or 0.0):.0f} % of {owner} lies outside the stated validity of {rest}."
-        )
+    outside: dict[tuple[str, str], list[str]] = {}
+    for name, value in quantities.items():
+        owner, found, reaction = name.partition(".outside validity of ")
+        if found and value.value:
+            outside.setdefault((owner, f"{100.0 * value.value:.0f} %"), []).append(reaction)
+    for (owner, share), reactions in outside.items():
+        notes.append(f"{share} of {owner} lies outside the stated validity of {', '.join(reactions)}.")
     return tuple(notes)

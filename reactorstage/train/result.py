@@ -99,7 +99,7 @@ class HeatSale:
 class Rating:
     """A train at one setting: every quantity by name, profiles, limits, money, closure.
 
-    status is one of the words of `reactorstage.optimise.result` (inside all limits, limits broken,
+    status is one of the words of `reactorstage.optimiser.result` (inside all limits, limits broken,
     no answer); failure is the sentence with the place when the train has no answer, and the beds rated
     before it are still there. x (D,) are the numbers used (user, then internal).
     main_reactant is the split (scarce) reactant, product the species made most, by_products the other

@@ -187,7 +187,8 @@ def _degrees(model: Model) -> Iterator[tuple[str, str]]:
         if split is not None:
             count = sum(number.role == "split" and number.feed == feed for number in model.numbers)
             rest = f"{split.rest} takes the rest" if split.rest else "all given"
-            yield f"division of {feed} over {len(split.beds)} beds", f"{count} free numbers, {rest}"
+            counted = f"{count} free number{'' if count == 1 else 's'}"
+            yield f"division of {feed} over {len(split.beds)} beds", f"{counted}, {rest}"
     users = [number for number in model.numbers if not number.internal]
     yield "free numbers in all", str(len(users))
 

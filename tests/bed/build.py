@@ -7,9 +7,12 @@ from pathlib import Path
 from tempfile import TemporaryDirectory
 from typing import Any
 
+import numpy as np
 import yaml
+from numpy.typing import NDArray
 
 import reactorstage as rs
+from reactorstage.bed.data import Stages
 from reactorstage.case.model import Case
 from reactorstage.train.programme import TrainProgramme
 
@@ -66,6 +69,12 @@ def load(tree: Tree) -> Case:
 def programme(tree: Tree) -> TrainProgramme:
     """The compiled train of a tree."""
     return rs.compile(load(tree))
+
+
+def edges(mesh: Stages) -> list[NDArray[np.float64]]:
+    """Depths (0 to 1) at which the steps of each bed begin and end."""
+    steps = [mesh.steps[b, :count, :2] for b, count in enumerate(mesh.counts)]
+    return [np.append(one[:, 0], one[-1, 0] + one[-1, 1]) if len(one) else np.zeros(1) for one in steps]
 
 
 def changed(tree: Tree, *path: str | int, to: Any) -> Tree:

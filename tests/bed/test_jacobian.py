@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 
 from reactorstage.train.evaluation import Evaluation
 from reactorstage.train.programme import TrainProgramme
-from tests.bed.build import Tree, programme
+from tests.bed.build import Tree, edges, programme
 from tests.bed.random_trees import trees
 from tests.bed.reference import Gas, Twin
 
@@ -51,9 +51,8 @@ class Trial:
         D = max(1, len(self.x))
         moved = self.x[:, None] + 1j * TINY * np.eye(len(self.x), D) * self.span[:, None]
         values = {number.name: row for number, row in zip(self.train.numbers, moved, strict=True)}
-        edges = [self.mesh.edges[b, : count + 1] for b, count in enumerate(self.mesh.counts)]
         chemistry = self.train.model.chemistry
-        return Twin(self.train.case, Gas(chemistry.table, chemistry.laws), values, D, edges).run()
+        return Twin(self.train.case, Gas(chemistry.table, chemistry.laws), values, D, edges(self.mesh)).run()
 
 
 @settings(max_examples=25)

@@ -23,7 +23,7 @@ from reactorstage.chemistry import (
     rates,
 )
 from reactorstage.train.programme import TrainProgramme
-from tests.bed.build import FLUID, HEAD, Tree, programme
+from tests.bed.build import FLUID, HEAD, Tree, edges, programme
 from tests.bed.laws import with_laws
 from tests.bed.reference import Gas, Twin
 
@@ -136,15 +136,15 @@ def test_derivatives_of_random_laws_are_those_of_a_complex_step(laws: list[RateL
     train = train_of(laws)
     x = np.array([number.now for number in train.numbers])
     mesh = train.model.passing.adaptive(*train.model.inputs.values(x), 1e-3).stages
-    found, twin = train.evaluate(x, mesh), _twin(train, x, mesh.edges[0, : mesh.counts[0] + 1])
+    found, twin = train.evaluate(x, mesh), _twin(train, x, edges(mesh))
     for i, (name, scale) in enumerate(zip(SEEN, (10.0, 10.0, 100.0, 1e4), strict=True)):
         slopes = twin[name].imag / 1e-20
         away = np.abs(found.margin_dx[i] * x - slopes).max()
         assert away < 1e-10 * max(scale, np.abs(slopes).max()), name
 
 
-def _twin(train: TrainProgramme, x: np.ndarray, edges: np.ndarray) -> dict[str, np.ndarray]:
+def _twin(train: TrainProgramme, x: np.ndarray, steps: list[np.ndarray]) -> dict[str, np.ndarray]:
     moved = x[:, None] * (1.0 + 1j * 1e-20 * np.eye(len(x)))
     values = {number.name: row for number, row in zip(train.numbers, moved, strict=True)}
     chemistry = train.model.chemistry
-    return Twin(train.case, Gas(chemistry.table, chemistry.laws), values, len(x), [edges]).run()
+    return Twin(train.case, Gas(chemistry.table, chemistry.laws), values, len(x), steps).run()

@@ -18,7 +18,7 @@ from reactorstage.commands import console, main
 from reactorstage.commands.layout import screen_width
 from reactorstage.commands.verbs import status_of
 from reactorstage.errors import CaseProblems, ComputationError, Problem
-from reactorstage.optimise import result as words
+from reactorstage.optimiser import result as words
 from reactorstage.report import cautions
 from tests.report import synthetic
 
@@ -86,6 +86,7 @@ def test_rate_ends_with_4_and_shows_the_beds_before_the_failure(run: Run, called
     done = run("rate", "plant.yaml", "--no-figures")
     assert done.exit_code == 4
     assert "NO ANSWER: bed 3 at 12 % depth" in done.stdout and "410.0" in done.stdout
+    assert "2 beds rated before the failure" in done.stdout and "nan" not in done.stdout
     content = json.loads(Path("figures/plant/result.json").read_text())
     assert content["failure"].startswith("bed 3") and content["closure"]["atoms"] is None
 
@@ -145,13 +146,13 @@ def test_limits_that_conflict_are_named(run: Run, called: dict[str, Any]) -> Non
 
 def test_optimise_without_any_answer_tells_how_starts_ended(run: Run, called: dict[str, Any]) -> None:
     outcome = synthetic.optimisation(status=words.NO_ANSWER)
-    starts = (words.StartRecord("today", "bed 2 runs away", None, -1, 0, 1),)
+    starts = tuple(words.StartRecord(n, "bed 2 runs away", None, -1, 0, 1) for n in ("today", "all hot"))
     outcome.optimum = replace(outcome.optimum, answers=(), starts=starts)
     outcome.best, outcome.others = None, ()
     called["outcome"] = outcome
     done = run("optimise", "plant.yaml")
     assert done.exit_code == 4
-    assert "NO ANSWER" in done.stdout and "today: bed 2 runs away" in done.stdout
+    assert "NO ANSWER" in done.stdout and "today, all hot: bed 2 runs away" in done.stdout
     assert written(Path("figures")) == ["result.json"]
 
 

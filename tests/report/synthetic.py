@@ -13,8 +13,8 @@ from typing import Any
 
 import numpy as np
 
-from reactorstage.optimise import result as optimise_result
-from reactorstage.optimise.programme import FreeNumber, LimitRow
+from reactorstage.optimiser import result as optimise_result
+from reactorstage.optimiser.programme import FreeNumber, LimitRow
 from reactorstage.train.result import HeatSale, LimitState, Profile, Rating, StepState, Value
 
 KELVIN = 273.15

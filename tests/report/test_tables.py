@@ -8,7 +8,7 @@ from types import SimpleNamespace
 import numpy as np
 
 from reactorstage.commands.screens import optimum_lines
-from reactorstage.optimise.result import EqualSplit
+from reactorstage.optimiser.result import EqualSplit
 from reactorstage.report import bounds, sentences
 from reactorstage.report.accounts import accounts, heat_words
 from reactorstage.report.beds import bed_table
