@@ -18,7 +18,8 @@ Array = NDArray[np.float64]
 SEARCH, FINAL = 1e-5, 1e-7
 """Error per step relative to the feed of a bed while searching and for what is reported."""
 
-MOST_STEPS = {SEARCH: 600, FINAL: 3000}
+ROOM = (80, 600, 4000)
+"""Steps that a bed may take: more room is made only when the first does not do; the last caps the work."""
 
 SENTENCES = {
     status.TOO_MANY_STEPS: "more integration steps would be needed than allowed",
@@ -79,8 +80,13 @@ class Pass:
         moved (D, 2) names a parameter of the chemistry for each direction (see `reactorstage.bed.data`);
         chemistry replaces that of the case.
         """
-        stages = self.stages(most or MOST_STEPS.get(flow, 3000))
-        return self._run(u, du, self.tolerance(flow), False, places, stages, stages, moved, chemistry)
+        tolerance = self.tolerance(flow)
+        for room in ROOM if most is None else (most,):
+            stages = self.stages(room)
+            outcome = self._run(u, du, tolerance, False, places, stages, stages, moved, chemistry)
+            if outcome.code != status.TOO_MANY_STEPS:
+                break
+        return outcome
 
     def frozen(self, u: Array, du: Array, mesh: Stages, places: bool = True) -> Outcome:
         """Integrate on the step sequences of an earlier pass."""

@@ -81,7 +81,7 @@ def random_laws(draw: Any) -> list[RateLaw]:
 def _law(draw: Any, label: str, nu: dict[str, float]) -> RateLaw:
     driver = draw(st.sampled_from(list(DRIVERS)))
     reversible, m = draw(st.booleans()), draw(st.sampled_from([1.0, 0.5, 2.0]))
-    orders = {name: _order(draw, max(0.0, -m * n) if reversible else -0.5) for name, n in nu.items()}
+    orders = {name: _order(draw, _least(n, m, reversible)) for name, n in nu.items()}
     return RateLaw(
         label,
         nu,
@@ -92,6 +92,11 @@ def _law(draw: Any, label: str, nu: dict[str, float]) -> RateLaw:
         m=m,
         denominators=tuple(_factor(draw, driver) for _ in range(draw(st.integers(0, 2)))),
     )
+
+
+def _least(n: float, m: float, reversible: bool) -> float:
+    """Lowest forward order: reactants must run out smoothly, backward orders must not be negative."""
+    return max(0.5, -m * n * reversible) if n < 0.0 else -0.5 * (not reversible)
 
 
 def _order(draw: Any, least: float) -> float:
