@@ -29,8 +29,8 @@ def flows(chem, bed, y, work):
 
 
 @compiled
-def evaluate(chem, bed, y, T, work, f, J, with_J):
-    """dy/d(depth) into f (n,), its Jacobian into J (n * n,) when asked; the corrected temperature returned.
+def evaluate(chem, bed, y, T, work, f, J):
+    """dy/d(depth) into f (n,), its Jacobian into J (n * n,) unless J is empty; gives the corrected temperature.
 
     Not a number when temperature leaves the species' data range or pressure is not positive.
     """
@@ -42,7 +42,7 @@ def evaluate(chem, bed, y, T, work, f, J, with_J):
         return np.nan
     heat_and_enthalpy(chem, T, work)
     entropy(chem, T, work)
-    rates(chem, bed, T, p, work, with_J)
+    rates(chem, bed, T, p, work, J.shape[0] > 0)
     F_total, rate = 0.0, at_rate(chem)
     for s in range(chem.S):
         F_total += work[s]
@@ -50,7 +50,7 @@ def evaluate(chem, bed, y, T, work, f, J, with_J):
         f[q] = bed[W_BED] / bed[F_UNIT] * work[rate + q]
     drag = bed[W_BED] * bed[FRICTION] / (bed[P_UNIT] * p)
     f[R] = -drag * F_total * T
-    if with_J:
+    if J.shape[0] > 0:
         jacobian(chem, bed, T, p, F_total, drag, work, J)
     return T
 

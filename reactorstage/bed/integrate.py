@@ -59,7 +59,7 @@ def stage_correction(n, h, step, G, Z, real, complex_, pivots, U):
 
 
 @inlined
-def newton(chem, bed, h, step, J, real, complex_, pivots, tol, work, f, point, G, U):
+def newton(chem, bed, h, step, real, complex_, pivots, tol, work, f, point, G, U, none):
     """Simplified Newton on the three stages of a step; (converged, evaluations).
 
     real and complex_ hold the factors of gamma/h - J and (alpha - i beta)/h - J; the stages and their
@@ -75,7 +75,7 @@ def newton(chem, bed, h, step, J, real, complex_, pivots, tol, work, f, point, G
             if iteration == 0:
                 flows(chem, bed, point, work)
                 step[T + i] = temperature_of(chem, bed[H_IN] / GAS_CONSTANT, step[T + i], work)
-            T_new = evaluate(chem, bed, point, step[T + i], work, f, J, False)
+            T_new = evaluate(chem, bed, point, step[T + i], work, f, none)
             if not np.isfinite(T_new):
                 return False, 3 * iteration + i
             step[T + i] = T_new
@@ -212,7 +212,7 @@ def integrate(chem, bed, tolerance, frozen, count, steps, reference, work):
     """
     n = chem.R + 1
     Z, T = 2 + n, 2 + 4 * n
-    J, f, slope = np.empty(n * n), np.empty(n), np.empty(n)
+    J, none, f, slope = np.empty(n * n), np.empty(0), np.empty(n), np.empty(n)
     y, point, error, G = np.zeros(n), np.empty(n), np.empty(n), np.empty(3 * n)
     real, complex_ = np.empty(n * n), np.empty(n * n, np.complex128)
     U, pivots = np.empty(n, np.complex128), np.empty(2 * n, np.int64)
@@ -222,7 +222,7 @@ def integrate(chem, bed, tolerance, frozen, count, steps, reference, work):
         if k >= steps.shape[0]:
             return TOO_MANY_STEPS, depth, k, calls
         if not rejected:
-            T_new = evaluate(chem, bed, y, T_now, work, slope, J, True)
+            T_new = evaluate(chem, bed, y, T_now, work, slope, J)
             calls += 1
             if not np.isfinite(T_new):
                 if k == 0:
@@ -245,7 +245,7 @@ def integrate(chem, bed, tolerance, frozen, count, steps, reference, work):
         ok = factorise_step(J, n, h, real, complex_, pivots)
         if ok:
             ok, used = newton(
-                chem, bed, h, step, J, real, complex_, pivots, tolerance.newton, work, f, point, G, U
+                chem, bed, h, step, real, complex_, pivots, tolerance.newton, work, f, point, G, U, none
             )
             calls += used
         if frozen and not ok:
@@ -257,7 +257,7 @@ def integrate(chem, bed, tolerance, frozen, count, steps, reference, work):
                 for i in range(n):
                     point[i] = y[i] + error[i]
                 calls += 1
-                if np.isfinite(evaluate(chem, bed, point, T_now, work, f, J, False)):
+                if np.isfinite(evaluate(chem, bed, point, T_now, work, f, none)):
                     size = estimate(chem, bed, h, f, step, real, pivots, tolerance, work, error, point)
             growth = min(8.0, max(0.2, 0.9 * (size + 1e-30) ** -0.25))
             ok = size <= 1.0

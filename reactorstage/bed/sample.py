@@ -22,14 +22,14 @@ def sample_bed(chem, beds, b, row, out, u, first, stages, per_step, w, T, p, F, 
     S, R, rate = chem.S, chem.R, at_rate(chem)
     bed, work = np.empty(BED + S + R), np.zeros(work_length(chem))
     fill_bed(chem, beds, b, row, out, u, first, bed)
-    y, f, J = np.zeros(R + 1), np.empty(R + 1), np.empty((R + 1) * (R + 1))
+    y, f, none = np.zeros(R + 1), np.empty(R + 1), np.empty(0)
     T_now, position = bed[T_IN], 0
     for k in range(stages.counts[b]):
         step = stages.steps[b, k]
         for i in range(0 if k == 0 else 1, per_step + 1):
             state_within(step, R + 1, i / per_step, y)
             for _ in range(4):
-                found = evaluate(chem, bed, y, T_now, work, f, J, False)
+                found = evaluate(chem, bed, y, T_now, work, f, none)
                 if np.isfinite(found):
                     T_now = found
             w[position] = bed[W_BED] * (step[0] + i / per_step * step[1])

@@ -143,7 +143,7 @@ def differentiate(chem, bed, ways, moved, D, steps, count, work, y0_d, Z_d):
         for i in range(3):
             for m in range(n):
                 point[m] = step[2 + m] + step[2 + n + i * n + m]
-            T = evaluate(chem, bed, point, step[2 + 4 * n + i], work, f, J, True)
+            T = evaluate(chem, bed, point, step[2 + 4 * n + i], work, f, J)
             forcing(chem, bed, ways, moved, D, point, T, f, work, b, i * n * D)
             for m in range(n):
                 row = (i * n + m) * size

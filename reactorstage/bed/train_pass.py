@@ -146,7 +146,7 @@ def fill_bed(chem, beds, b, row, out, u, first, bed):
     bed[d_.FRICTION] = u[first + 2] * GAS_CONSTANT * (beds.viscous[b] + beds.inertial[b] * mass_flow)
 
 
-@inlined
+@compiled
 def active_directions(row, rows, out, du, first, moved):
     """Directions that reach a bed through its inlet, its numbers or the chemistry: positions and how many."""
     D = du.shape[1]
@@ -163,7 +163,7 @@ def active_directions(row, rows, out, du, first, moved):
     return picked, count
 
 
-@inlined
+@compiled
 def bed_directions(chem, beds, b, row, out, u, du, first, picked, D):
     """Derivatives of the bed's inlet along the D picked directions, rows as in `tangents`, flat."""
     S, mass = chem.S, at_mass(chem)
@@ -255,7 +255,8 @@ def run_bed(
     S, n = chem.S, chem.R + 1
     if u[first] <= 0.0:
         copy_record(out, row, exit_row, S + 3)
-        copy_record(out, row + S + 2, extra, 1)
+        for d in range(out.shape[1]):
+            out[extra, d] = out[row + S + 2, d]
         for i in range(2, EXTRAS):
             out[extra + i, 0] = np.nan
         stages.counts[b] = 0

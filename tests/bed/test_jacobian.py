@@ -40,9 +40,11 @@ class Trial:
         assert found.ok, found.failure
         return found
 
-    def row(self, i: int) -> str:
-        names = [row.quantity for row in self.train.limits]
-        return [*names, "cost", *names][i]
+    @property
+    def names(self) -> list[str]:
+        """Of margins, cost and weights."""
+        names = [f"{row.quantity} " for row in self.train.limits]
+        return [*names, "cost", *names]
 
     def size(self, quantity: str) -> float:
         """A sensible scale: 100 K, 0.2 bar, all feeds, their heat through 100 K; else 1."""
@@ -59,7 +61,7 @@ class Trial:
         return Twin(self.train.case, Gas(chemistry.table, chemistry.laws), values, D, edges(self.mesh)).run()
 
 
-@settings(max_examples=200, phases=[__import__("hypothesis").Phase.generate])
+@settings(max_examples=25)
 @given(trees())
 def test_frozen_steps_have_the_values_and_derivatives_of_the_numpy_twin(tree: Tree) -> None:
     trial = Trial(tree)
@@ -76,7 +78,7 @@ def test_frozen_steps_have_the_values_and_derivatives_of_the_numpy_twin(tree: Tr
     assert seen >= 10
 
 
-@settings(max_examples=200, phases=[__import__("hypothesis").Phase.generate])
+@settings(max_examples=25)
 @given(trees())
 def test_derivatives_of_every_limit_and_of_money_are_central_differences(tree: Tree) -> None:
     trial = Trial(tree)
@@ -86,7 +88,8 @@ def test_derivatives_of_every_limit_and_of_money_are_central_differences(tree: T
     scale = np.maximum(np.concatenate([sizes, [1e-3], sizes]), np.abs(slopes).max(axis=1, initial=0.0))
     for d, number in enumerate(trial.train.numbers):
         away = np.abs(difference(trial, d) - slopes[:, d]) / scale
-        assert away.max() < 1e-6, (number.name, trial.row(int(away.argmax())))
+        allowed = np.array([1e-6 if ".depth " in name or ".peak " in name else 1e-7 for name in trial.names])
+        assert np.all(away < allowed), (number.name, trial.names[int(np.argmax(away / allowed))])
 
 
 def difference(trial: Trial, d: int) -> Floats:
