@@ -29,6 +29,16 @@ def tell(text: str) -> None:
     click.echo(text, err=True)
 
 
+def tell_of_compilation(quiet: bool) -> None:
+    """Say that the first use takes longer, unless an earlier process left the bed model's machine code."""
+    from reactorstage.bed.compiled import cache_folder, is_compiled
+
+    if quiet or is_compiled():
+        return
+    kept = f"kept in {cache_folder()}" if cache_folder() else "no folder for it can be written"
+    tell(f"compiling the bed model, once, about 20 s ({kept})")
+
+
 def coloured(stream: object) -> bool:
     """Colour only on a terminal and only when NO_COLOR is not set."""
     return not os.environ.get("NO_COLOR") and bool(getattr(stream, "isatty", lambda: False)())

@@ -22,12 +22,14 @@ def rate(case_file: Path, overrides: tuple[str, ...], **options: Any) -> int:
     """
     from reactorstage import face
     from reactorstage.case import load
+    from reactorstage.commands.console import tell_of_compilation
     from reactorstage.commands.deliver import Result, deliver
     from reactorstage.commands.screens import rating_lines
     from reactorstage.report.result_json import rating_json
 
     output = output_of(case_file, overrides=overrides, **options)
     case = load(case_file, overrides)
+    tell_of_compilation(output.quiet)
     started = time.perf_counter()
     rating = face.rate(case)
     seconds = time.perf_counter() - started

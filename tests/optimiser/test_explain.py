@@ -14,8 +14,8 @@ from reactorstage.optimiser.programme import SplitGroup
 from reactorstage.optimiser.resolve import Base, resolve
 from reactorstage.optimiser.result import CANNOT, INSIDE
 from reactorstage.optimiser.wrappers import Pinned, Shifted
-from tests.optimise.toy_train import ETHYLENE, ToyTrain
-from tests.optimise.toys import Toy, box, contradiction, corner, linear, number, row
+from tests.optimiser.toy_train import ETHYLENE, ToyTrain
+from tests.optimiser.toys import Toy, box, contradiction, corner, linear, number, row
 
 
 def test_worths_of_a_linear_programme_in_closed_form() -> None:

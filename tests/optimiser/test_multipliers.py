@@ -9,7 +9,7 @@ from reactorstage.optimiser.correct import correction, least_distance, least_nor
 from reactorstage.optimiser.multipliers import Multipliers, multipliers, non_negative, own_units
 from reactorstage.optimiser.polish import answer_at, polished
 from reactorstage.optimiser.scaling import Point, scale_at, scaled
-from tests.optimise.toys import Toy, box, corner, hs43, hs71, linear, number, row
+from tests.optimiser.toys import Toy, box, corner, hs43, hs71, linear, number, row
 
 
 def point(u, cost_du, margin, margin_du, residual=(), residual_du=()) -> Point:

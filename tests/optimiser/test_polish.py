@@ -8,8 +8,8 @@ import pytest
 from reactorstage.optimiser.polish import answer_at, polished
 from reactorstage.optimiser.programme import Array, Evaluation
 from reactorstage.optimiser.solve import descend
-from tests.optimise.toy_train import Prices, ToyTrain
-from tests.optimise.toys import Toy, Values, box, corner, hs43, hs100, linear, row
+from tests.optimiser.toy_train import Prices, ToyTrain
+from tests.optimiser.toys import Toy, Values, box, corner, hs43, hs100, linear, row
 
 
 def test_curvature_along_a_circle_in_closed_form() -> None:

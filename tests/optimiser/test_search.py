@@ -14,8 +14,8 @@ from reactorstage.optimiser import optimise
 from reactorstage.optimiser.merge import grouped, merged, sameness
 from reactorstage.optimiser.pool import run, usable_jobs
 from reactorstage.optimiser.result import INSIDE, NO_ANSWER, STOPPED, Answer, Optimum
-from tests.optimise.toy_train import Prices, ToyTrain
-from tests.optimise.toys import Toy, box, corner, hs71, hump, linear, number, row
+from tests.optimiser.toy_train import Prices, ToyTrain
+from tests.optimiser.toys import Toy, box, corner, hs71, hump, linear, number, row
 
 
 def test_both_basins_are_found_and_ranked() -> None:

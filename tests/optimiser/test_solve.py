@@ -10,8 +10,8 @@ import pytest
 from reactorstage.optimiser.local import local_solve
 from reactorstage.optimiser.programme import Array
 from reactorstage.optimiser.solve import descend
-from tests.optimise.toy_train import Prices, ToyTrain
-from tests.optimise.toys import (
+from tests.optimiser.toy_train import Prices, ToyTrain
+from tests.optimiser.toys import (
     Toy,
     box,
     contradiction,
@@ -188,7 +188,7 @@ def test_nothing_left_to_optimise_is_an_evaluation() -> None:
 
 
 def test_a_number_without_width_stays() -> None:
-    from tests.optimise.toys import number
+    from tests.optimiser.toys import number
 
     toy = Toy([number("x1", 0.3, 0.3, 0.3), number("x2", 0.1, 0.0, 1.0)], bowl)
     ending = descend(toy, np.array([0.3, 0.1]))

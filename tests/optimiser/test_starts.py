@@ -9,8 +9,8 @@ from hypothesis import strategies as st
 
 from reactorstage.optimiser.programme import SplitGroup
 from reactorstage.optimiser.starts import allowed_range, divided, falling_shares, starts, summing_to
-from tests.optimise.toy_train import ETHYLENE, ToyTrain
-from tests.optimise.toys import Toy, box, linear, number, row
+from tests.optimiser.toy_train import ETHYLENE, ToyTrain
+from tests.optimiser.toys import Toy, box, linear, number, row
 
 
 def by_name(train: ToyTrain, count: int = 20, seed: int = 1) -> dict[str, np.ndarray]:

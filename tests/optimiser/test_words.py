@@ -6,8 +6,8 @@ import numpy as np
 import pytest
 
 from reactorstage.optimiser.words import called, loading, told_apart
-from tests.optimise.toy_train import ETHYLENE, ToyTrain
-from tests.optimise.toys import Toy, box, linear, number
+from tests.optimiser.toy_train import ETHYLENE, ToyTrain
+from tests.optimiser.toys import Toy, box, linear, number
 
 
 def setting(shares: list[float], inlets: list[float]) -> np.ndarray:

@@ -1,0 +1,103 @@
+"""Every shipped case is checked, rated and optimised; what it claims to show is there."""
+
+from __future__ import annotations
+
+from functools import cache
+from pathlib import Path
+
+import pytest
+
+import reactorstage
+from reactorstage.face import Optimisation
+
+FOLDER = Path(__file__).parent.parent / "cases"
+CASES = sorted(path.name for path in FOLDER.glob("*.yaml"))
+KELVIN = 273.15
+PER_HOUR = 3600.0
+KMOL_PER_H = 3.6
+
+
+@cache
+def solved(name: str) -> Optimisation:
+    return reactorstage.optimise(reactorstage.load(FOLDER / name), starts=20, seed=1)
+
+
+@pytest.mark.parametrize("name", CASES)
+def test_case_is_understood_without_warnings_about_itself(name: str) -> None:
+    understood = reactorstage.compile(reactorstage.load(FOLDER / name)).understanding()
+    assert all(row.imbalance <= 1e-9 for row in understood.reactions)
+    assert not [text for text in understood.warnings if "carries no price" not in text]
+
+
+@pytest.mark.parametrize("name", CASES)
+def test_case_closes_and_meets_its_limits_at_the_optimum(name: str) -> None:
+    outcome = solved(name)
+    assert outcome.best is not None
+    for rating in (outcome.today, outcome.best):
+        assert rating.atoms <= 1e-12
+        assert rating.energy <= 1e-9
+    assert outcome.status == "inside all limits" == outcome.best.status
+    assert outcome.today.status == "limits broken"
+    assert outcome.optimum.discretisation_error is not None
+    assert abs(outcome.optimum.discretisation_error) < 1e-6 * abs(outcome.optimum.best.cost)
+
+
+@pytest.mark.parametrize("name", CASES)
+def test_every_start_ends_or_says_why(name: str) -> None:
+    for record in solved(name).optimum.starts:
+        assert record.answer >= 0 or record.ended
+
+
+def numbers(outcome: Optimisation, which: int) -> dict[str, float]:
+    x = outcome.optimum.answers[which].x
+    return {number.name: value for number, value in zip(outcome.programme.numbers, x, strict=True)}
+
+
+def test_lead_case_has_a_cool_and_a_hot_answer() -> None:
+    """Frozen: computed with the shipped data; the two basins were first found by an independent model."""
+    outcome = solved("selkemouth-ethylation.yaml")
+    cool, hot = outcome.optimum.answers[:2]
+    assert cool.cost * PER_HOUR == pytest.approx(979.81, abs=0.02)
+    assert hot.cost * PER_HOUR == pytest.approx(993.50, abs=0.02)
+    assert numbers(outcome, 0)["bed 4.inlet temperature"] - KELVIN == pytest.approx(364.0, abs=0.01)
+    assert numbers(outcome, 1)["bed 4.inlet temperature"] - KELVIN == pytest.approx(397.6, abs=0.1)
+
+
+def test_lead_case_as_rated_is_near_an_independent_model() -> None:
+    """Independent model with other thermochemical data: exits 424, 423, 422, 421 degC, 18.2 and 0.91 kmol/h.
+
+    Ours are cooler by up to 0.6 K, the slip higher by 15 %: the slip is held by equilibrium, and K moves by
+    7 % with 1 kJ/mol in the formation enthalpies.
+    """
+    today = solved("selkemouth-ethylation.yaml").today
+    for bed, exit_ in enumerate((424.0, 423.0, 422.0, 421.0), start=1):
+        value = today.number(f"bed {bed}.exit temperature")
+        assert value is not None
+        assert value - KELVIN == pytest.approx(exit_, abs=1.0)
+    assert today.number("effluent.flow of diethylbenzene") == pytest.approx(18.2 / KMOL_PER_H, rel=0.02)
+    assert today.number("effluent.flow of ethylene") == pytest.approx(0.91 / KMOL_PER_H, rel=0.2)
+    broken = [limit.label for limit in today.limits if not limit.met]
+    assert broken == ["coking"]
+
+
+def test_unpriced_effluent_shuts_the_last_cooler_and_lets_bed_4_run_hot() -> None:
+    """Independent model: 76.9/74.9/69.1/47.2 kmol/h, inlets 364/364/364/398 degC; ours near each."""
+    outcome = solved("selkemouth-effluent-unpriced.yaml")
+    found = numbers(outcome, 0)
+    for bed, flow in enumerate((76.9, 74.9, 69.1), start=1):
+        assert found[f"bed {bed}.injected ethylene"] * KMOL_PER_H == pytest.approx(flow, abs=2.0)
+    for bed, inlet in enumerate((364.0, 364.0, 364.0, 398.0), start=1):
+        assert found[f"bed {bed}.inlet temperature"] - KELVIN == pytest.approx(inlet, abs=1.0)
+    assert outcome.best is not None
+    assert outcome.best.number("gap 3.heat removed") == pytest.approx(0.0, abs=1.0)
+    assert outcome.best.unpriced == ("effluent",)
+
+
+def test_equal_division_breaks_the_ratio_limit_of_bed_4_and_costs_a_few_percent() -> None:
+    """An independent model put the penalty at 0.6 % with the ratio limit at 11.3; ours relaxes it to 11.4."""
+    outcome = solved("selkemouth-ethylation.yaml")
+    [equal] = outcome.optimum.equal_splits
+    relaxed = [outcome.programme.limits[index].name for index, _ in equal.relaxed]
+    assert relaxed == ["coking, bed 4"]
+    assert equal.penalty is not None
+    assert 0.0 < equal.penalty < 0.04 * abs(outcome.optimum.best.cost)
