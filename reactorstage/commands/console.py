@@ -6,6 +6,7 @@ import os
 import re
 import sys
 import time
+from typing import TextIO
 
 import click
 
@@ -17,16 +18,20 @@ REDRAW_SECONDS = 0.1
 
 def say(text: str) -> None:
     """Result text; a reader that goes away early (as `head` does) is no error."""
-    try:
-        click.echo(painted(text) if coloured(sys.stdout) else text)
-        sys.stdout.flush()
-    except BrokenPipeError:
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+    _write(painted(text) if coloured(sys.stdout) else text, sys.stdout)
 
 
 def tell(text: str) -> None:
     """A message to the person who called."""
-    click.echo(text, err=True)
+    _write(text, sys.stderr)
+
+
+def _write(text: str, stream: TextIO) -> None:
+    try:
+        click.echo(text, file=stream)
+        stream.flush()
+    except BrokenPipeError:
+        os.dup2(os.open(os.devnull, os.O_WRONLY), stream.fileno())
 
 
 def tell_of_compilation(quiet: bool) -> None:
