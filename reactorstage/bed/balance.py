@@ -30,7 +30,7 @@ def flows(chem, bed, y, work):
 
 @compiled
 def evaluate(chem, bed, y, T, work, f, J):
-    """dy/d(depth) into f (n,), its Jacobian into J (n * n,) unless J is empty; gives the corrected temperature.
+    """dy/d(depth) into f (n,), its Jacobian into J (n * n,) unless J is empty; gives the corrected T.
 
     Not a number when temperature leaves the species' data range or pressure is not positive.
     """

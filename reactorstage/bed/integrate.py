@@ -218,6 +218,8 @@ def integrate(chem, bed, tolerance, frozen, count, steps, reference, work):
     U, pivots = np.empty(n, np.complex128), np.empty(2 * n, np.int64)
     y[n - 1] = 1.0
     T_now, depth, k, calls, rejected, h = bed[T_IN], 0.0, 0, 0, False, 0.0
+    if frozen and count == 0:
+        return FROZEN_FAILED, 0.0, 0, 0
     while depth < 1.0:
         if k >= steps.shape[0]:
             return TOO_MANY_STEPS, depth, k, calls
@@ -226,7 +228,7 @@ def integrate(chem, bed, tolerance, frozen, count, steps, reference, work):
             calls += 1
             if not np.isfinite(T_new):
                 if k == 0:
-                    return (TOO_HOT if T_now > 1000.0 else TOO_COLD), 0.0, 0, calls
+                    return (TOO_HOT if T_now > 0.5 * (chem.T_low + chem.T_high) else TOO_COLD), 0.0, 0, calls
                 return reason_of(chem, y[n - 1], T_now, slope), depth, k, calls
             T_now = T_new
         if k == 0 and h == 0.0:

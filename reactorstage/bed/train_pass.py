@@ -30,8 +30,20 @@ ADD a feed, b flow, c temperature; HOLD nothing (its heat follows at the next AR
 SET_TEMPERATURE a; REMOVE_HEAT a; ARRIVE a held temperature, b pressure, c position of the HOLD;
 BED a bed number, b first of its three numbers in u: catalyst, catalyst activity, friction factor."""
 
+LEAST = 1e-200
+"""Catalyst and catalyst activity are not taken below this, so that derivatives exist at zero."""
+
 EXTRAS = 5
 """Rows that a bed adds: peak temperature, its depth, depths at 10, 50 and 90 % of the rise."""
+
+
+@compiled
+def moves(du, index):
+    """Whether any direction moves an input."""
+    for d in range(du.shape[1]):
+        if du[index, d] != 0.0:
+            return True
+    return False
 
 
 @compiled
@@ -140,9 +152,9 @@ def fill_bed(chem, beds, b, row, out, u, first, bed):
         F_total += out[row + s, 0]
         mass_flow += out[row + s, 0] * chem.real[mass + s]
     for q in range(chem.R):
-        bed[at_factor(chem) + q] = u[first + 1] * beds.rate_factor[b, q]
+        bed[at_factor(chem) + q] = max(u[first + 1], LEAST) * beds.rate_factor[b, q]
     bed[d_.H_IN], bed[d_.T_IN] = out[row + S, 0], out[row + S + 2, 0]
-    bed[F_UNIT], bed[P_UNIT], bed[d_.W_BED] = F_total, out[row + S + 1, 0], u[first]
+    bed[F_UNIT], bed[P_UNIT], bed[d_.W_BED] = F_total, out[row + S + 1, 0], max(u[first], LEAST)
     bed[d_.FRICTION] = u[first + 2] * GAS_CONSTANT * (beds.viscous[b] + beds.inertial[b] * mass_flow)
 
 
@@ -183,7 +195,7 @@ def bed_directions(chem, beds, b, row, out, u, du, first, picked, D):
             + u[first + 2] * beds.inertial[b] * mass_d
         )
         for q in range(chem.R):
-            ways[(S + 4 + q) * D + i] = du[first + 1, d] / u[first + 1]
+            ways[(S + 4 + q) * D + i] = du[first + 1, d] / max(u[first + 1], LEAST)
     return ways
 
 
@@ -253,7 +265,7 @@ def run_bed(
 ):  # fmt: skip
     """Integrate bed b between two records; (status, depth reached, evaluations)."""
     S, n = chem.S, chem.R + 1
-    if u[first] <= 0.0:
+    if u[first] <= 0.0 and not moves(du, first):
         copy_record(out, row, exit_row, S + 3)
         for d in range(out.shape[1]):
             out[extra, d] = out[row + S + 2, d]

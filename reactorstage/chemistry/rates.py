@@ -23,9 +23,9 @@ def rates(laws: RateLaws, table: SpeciesTable, F: Array, T: Scalar, p: Scalar, f
     """Rates of the reactions of an ideal gas (R,), mol/(kg s) with factors that make them so.
 
     F (S,) molar flows, mol/s, only their ratios matter; T K; p Pa; factor (R,) catalyst activity
-    times `basis_factors`.
+    times `basis_factors`. Several compositions at once, F (S, N), give rates (R, N).
     """
-    y = F / np.sum(F)
+    y = F / np.sum(F, axis=0)
     k = np.exp(ln_k(laws, T))
     ln_Ka = ln_K_of_driver(laws, table, T, p)
     found = []

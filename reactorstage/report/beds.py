@@ -28,6 +28,7 @@ def bed_table(now: Rating, was: Rating | None = None) -> Table:
             before.column("exit temperature", ("exit", "was", unit("temperature")), 1, rank=16),
             _peak(now, beds),
             _quantity(now, beds, "rise", ("rise", unit("temperature difference")), 1, rank=1),
+            _quantity(now, beds, "utilisation", ("of the", "possible", "rise %"), 0, rank=11),
             _quantity(now, beds, "depth at 90 % of rise", ("90 % of", "rise at", "depth %"), 0, rank=8),
             _approach(now, beds),
             _made(now, beds),

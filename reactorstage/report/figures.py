@@ -4,13 +4,15 @@ from __future__ import annotations
 
 from reactorstage.report import look
 from reactorstage.report.composition import composition_figure
+from reactorstage.report.conversion import has_conversion
+from reactorstage.report.diagram import conversion_figure
 from reactorstage.report.selectivity import says_something, selectivity_figure
 from reactorstage.report.temperature import temperature_figure
 from reactorstage.train.result import Rating
 
 
 def figure_files(rating: Rating, today: Rating | None, status: str) -> dict[str, bytes]:
-    """PNG and SVG of temperature, composition and, where there are by-products, selectivity.
+    """PNG and SVG of temperature, composition, conversion and, where there are by-products, selectivity.
 
     today is drawn thin behind the rating; status stands under the title. Nothing is drawn of a train of
     which no bed was rated.
@@ -23,6 +25,9 @@ def figure_files(rating: Rating, today: Rating | None, status: str) -> dict[str,
     with look.drawing():
         files = look.as_files(temperature_figure(rating, behind, title, status), "temperature")
         files |= look.as_files(composition_figure(rating, behind, title, status), "composition")
+        if has_conversion(rating):
+            earlier = behind if behind is not None and has_conversion(behind) else None
+            files |= look.as_files(conversion_figure(rating, earlier, title, status), "conversion")
         if says_something(rating):
             files |= look.as_files(selectivity_figure(rating, behind, title, status), "selectivity")
     return files

@@ -9,7 +9,7 @@ from reactorstage.optimiser.result import Conflict, EqualSplit, Optimum
 from reactorstage.optimiser.words import told_apart
 from reactorstage.report import bounds
 from reactorstage.report.aim import MONEY, aim_of, cost_difference
-from reactorstage.report.beds import main_reaction, selectivity
+from reactorstage.report.beds import selectivity
 from reactorstage.report.cautions import SHORT
 from reactorstage.report.changes import changes, moves_text
 from reactorstage.report.display import (
@@ -26,8 +26,6 @@ from reactorstage.report.display import (
 from reactorstage.train.result import LimitState, Rating
 
 PHRASES = 2
-UNLIT_RISE_K = 3.0
-UNLIT_APPROACH_K = 30.0
 
 
 def out_line(now: Rating, was: Rating | None = None) -> str:
@@ -151,24 +149,8 @@ def _relaxed(best: Rating, index: int, amount: float) -> str:
 
 
 def warnings(rating: Rating) -> list[str]:
-    """Unlit beds and the notes of the rating, but for unpriced heat: the first line and GAPS say that."""
-    return [*_unlit(rating), *(note for note in rating.notes if "carries no price" not in note)]
-
-
-def _unlit(rating: Rating) -> list[str]:
-    found = []
-    for profile in rating.profiles:
-        if profile.w[-1] <= 0.0:
-            continue
-        rise, approach = (_number(rating, f"{profile.owner}.{word}") for word in _lit_words(rating))
-        if rise is not None and approach is not None and rise < UNLIT_RISE_K and approach > UNLIT_APPROACH_K:
-            where = f"stands {approach:.0f} K from equilibrium"
-            found.append(f"{profile.owner.capitalize()} is unlit: it rises {rise:.1f} K and {where}.")
-    return found
-
-
-def _lit_words(rating: Rating) -> tuple[str, str]:
-    return "rise", f"approach to equilibrium of {main_reaction(rating)}"
+    """The notes of the rating, but for unpriced heat: the first line and GAPS say that."""
+    return [note for note in rating.notes if "carries no price" not in note]
 
 
 def _number(rating: Rating, name: str) -> float | None:

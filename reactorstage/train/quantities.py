@@ -1,6 +1,7 @@
 """Every result with a name and a unit: the one namespace of limits, prices, tables and files.
 
-A quantity's name, unit and meaning stand in the table of patterns of this module, and nowhere else.
+A quantity's name, unit and meaning stand in the table of patterns of this module, and nowhere else; names
+that only a rating gives, without derivatives, stand in a table of their own.
 """
 
 from __future__ import annotations
@@ -34,7 +35,7 @@ class Catalogue:
             raise LookupError(
                 f"{name!r} is not a quantity; write owner.quantity, as in 'bed 1.exit temperature'"
             )
-        for pattern in PATTERNS:
+        for pattern in (*PATTERNS, *REPORTED):
             if pattern.owner == owner.split(" ", 1)[0]:
                 words = pattern.matches(quantity, self)
                 if words is not None:
@@ -315,6 +316,28 @@ PATTERNS: tuple[Pattern, ...] = (
     Pattern("level", "heat", lambda c, level: c.levels[level]),
     Pattern("money", "<term>", lambda c, _, term: c.money[term]),
 )
+
+
+def _reported(owner: str, words: str) -> Pattern:
+    """A value that a rating works out at its end, without derivatives."""
+
+    def refuse(*_: object) -> Form:
+        raise LookupError(f"{words!r} is reported only, it cannot be a limit, a price or the aim")
+
+    return Pattern(owner, words, refuse)
+
+
+REPORTED: tuple[Pattern, ...] = (
+    _reported("bed", "equilibrium temperature"),
+    _reported("bed", "potential rise"),
+    _reported("bed", "utilisation"),
+    _reported("bed", "idle catalyst"),
+    _reported("bed", "Q/K of <reaction>"),
+    _reported("bed", "outside validity of <reaction>"),
+    _reported("train", "atom closure"),
+    _reported("train", "energy closure"),
+)
+"""Names of results that have no derivative; the rating adds them to its quantities."""
 
 
 def _depth(c: Catalogue, bed: BedPlace, which: int) -> Form:

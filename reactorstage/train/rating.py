@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 from reactorstage.bed.train_pass import EXTRAS
 from reactorstage.chemistry.thermo import h
 from reactorstage.train.passing import Outcome
+from reactorstage.train.potential import bed_potentials, potential_values, unlit_notes
 from reactorstage.train.result import HeatSale, LimitState, Profile, Rating, StepState, Value
 
 if TYPE_CHECKING:
@@ -44,6 +45,8 @@ def rate(programme: TrainProgramme, x: Array, dense: bool, tolerance: float) -> 
         quantities |= _closures(atoms, energy)
     quantities |= _outside(model, profiles)
     roles = _roles(model, base) if not outcome.failure else ("", "", "", ())
+    potentials = bed_potentials(model, base, profiles, roles[0])
+    quantities |= potential_values(model, potentials)
     return Rating(
         case=model.case,
         status=status,
@@ -67,9 +70,10 @@ def rate(programme: TrainProgramme, x: Array, dense: bool, tolerance: float) -> 
         unpriced=tuple(dict.fromkeys(model.ladder.unpriced)),
         atoms=atoms,
         energy=energy,
-        notes=_notes(model, quantities),
+        notes=(*unlit_notes(potentials), *_notes(model, quantities)),
         integration_steps=outcome.steps,
         right_hand_sides=outcome.evaluations,
+        chemistry=model.chemistry,
     )
 
 

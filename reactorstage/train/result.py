@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 if TYPE_CHECKING:
     from reactorstage.case.model import Case
+    from reactorstage.train.chemistry import CaseChemistry
 
 Array = NDArray[np.float64]
 
@@ -104,7 +105,8 @@ class Rating:
     before it are still there. x (D,) are the numbers used (user, then internal).
     main_reactant is the split (scarce) reactant, product the species made most, by_products the other
     species that reactions make, most made first. unpriced lists places whose heat carries no price.
-    atoms and energy are relative closure errors over the whole train.
+    atoms and energy are relative closure errors over the whole train. chemistry is that of the train, for
+    pictures that need more than the profiles.
     """
 
     case: Case
@@ -130,6 +132,7 @@ class Rating:
     notes: tuple[str, ...]
     integration_steps: int
     right_hand_sides: int
+    chemistry: CaseChemistry | None = field(default=None, repr=False)
 
     def number(self, name: str) -> float | None:
         """SI value of a quantity by its name; None where it does not exist."""

@@ -11,7 +11,7 @@ from typing import Any
 
 import numpy as np
 import pytest
-from hypothesis import assume, given, settings
+from hypothesis import given, settings
 
 from reactorstage.chemistry import h
 from reactorstage.train.result import Rating
@@ -22,7 +22,7 @@ from tests.bed.reference import Gas, Twin
 
 def rated(tree: Tree) -> Rating:
     rating = programme(tree).rate(dense=False)
-    assume(not rating.failure)
+    assert not rating.failure
     return rating
 
 
@@ -41,6 +41,19 @@ def number(rating: Rating, name: str) -> float:
     return value
 
 
+def assert_same(first: Rating, second: Rating, within: float) -> None:
+    """Every quantity, also in which of them do not exist; the place of a flat peak is left out."""
+    assert set(first.quantities) == set(second.quantities)
+    for name, value in first.quantities.items():
+        if name.endswith("depth of the peak"):
+            continue
+        if value.value is None or second.number(name) is None:
+            assert second.number(name) == value.value, name
+        else:
+            size = {"power": 1e6, "pressure": 1e5, "pressure difference": 1e5}.get(value.kind, 1.0)
+            assert second.number(name) == pytest.approx(value.value, rel=within, abs=within * size), name
+
+
 def exits(rating: Rating) -> np.ndarray:
     """Flows (mol/s), temperature (K) and pressure (bar) behind every bed."""
     beds = [profile.owner for profile in rating.profiles]
@@ -49,12 +62,12 @@ def exits(rating: Rating) -> np.ndarray:
     return found * np.append(np.ones(found.shape[1] - 1), 1e-5)
 
 
-@settings(max_examples=25)
+@settings(max_examples=15)
 @given(trees())
 def test_atoms_and_energy_close_over_every_train(tree: Tree) -> None:
     train = programme(tree)
     rating = train.rate(dense=False)
-    assume(not rating.failure)
+    assert not rating.failure
     table = train.model.chemistry.table
     fed, heat_in, size = _fed(train)
     out = np.array([number(rating, f"effluent.flow of {name}") for name in table.names])
@@ -97,9 +110,7 @@ def test_the_order_of_species_and_reactions_in_the_file_changes_nothing(tree: Tr
         "species": dict(reversed(tree["species"].items())),
         "reactions": dict(reversed(tree["reactions"].items())),
     }
-    first, second = rated(tree), rated(turned)
-    for name, value in first.quantities.items():
-        assert second.number(name) == pytest.approx(value.value, rel=1e-9, abs=1e-9), name
+    assert_same(rated(tree), rated(turned), 1e-9)
 
 
 @settings(max_examples=15)
@@ -123,9 +134,7 @@ def _seven_times(text: str) -> str:
 @given(trees(plain=True))
 def test_the_same_case_in_other_units_gives_the_same_numbers(tree: Tree) -> None:
     kept = {key: tree[key] for key in ("heat levels", "prices")}
-    first, second = rated(tree), rated({**texts(tree, _other_unit), **kept})
-    for name, value in first.quantities.items():
-        assert second.number(name) == pytest.approx(value.value, rel=1e-8, abs=1e-8), name
+    assert_same(rated(tree), rated({**texts(tree, _other_unit), **kept}), 1e-8)
 
 
 FACTORS = {

@@ -45,7 +45,8 @@ class Lead:
 
     coefficients (S, 9) of the polynomials below 1000 K, nu (R, S), k_ref (R,) in mol/(kg s Pa2).
     benzene (S,) and ethylene_makeup (S,) are a flow in mol/s and mole fractions; reach (levels,) and
-    price (levels,) are those of the cooling levels, coldest first.
+    price (levels,) are those of the cooling levels, coldest first. bounds holds the limits by label and
+    direction, one number for each bed or gap.
     """
 
     species: tuple[str, ...]
@@ -68,6 +69,10 @@ class Lead:
     fired_price: float
     by_product_price: float
     effluent_T: float
+    bounds: dict[tuple[str, str], Array]
+
+    def index(self, species: str) -> int:
+        return self.species.index(species)
 
     def divided(self, x: Array) -> tuple[Array, Array]:
         """Ethylene feed to each bed and inlet temperatures, from the free numbers (three shares, four T)."""
@@ -114,7 +119,16 @@ def lead_numbers(programme: TrainProgramme) -> Lead:
         fired_price=rungs["fired heater"].price,
         by_product_price=units.price_to_si(price.text, "molar flow", case.currency, None),
         effluent_T=effluent_T.now,
+        bounds=bounds(programme),
     )
+
+
+def bounds(programme: TrainProgramme) -> dict[tuple[str, str], Array]:
+    """The limits by label and direction, in the order in which the case lists beds and gaps."""
+    found: dict[tuple[str, str], list[float]] = {}
+    for limit in programme.limits:
+        found.setdefault((limit.label, limit.direction), []).append(limit.bound)
+    return {key: np.array(values) for key, values in found.items()}
 
 
 def packing(bed: Bed) -> Packing:

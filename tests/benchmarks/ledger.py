@@ -41,26 +41,31 @@ class Ledger:
         mixed = H_out[:3] + streams.injected[1:] * self.h_ethylene
         cooled = mixed - H_in[1:]
         effluent = H_out[3] - F_out[3] @ self.h_effluent
-        money = fired * lead.fired_price + lead.by_product_price * F_out[3, lead.species.index("diethylbenzene")]
+        money = fired * lead.fired_price
+        money += lead.by_product_price * F_out[3, lead.index("diethylbenzene")]
         money += sum(self.earned(F_in[g + 1], mixed[g], cooled[g]) for g in range(3))
         money += self.earned(F_out[3], H_out[3], effluent)
-        benzene, ethylene = F_in[:, lead.species.index("benzene")], F_in[:, lead.species.index("ethylene")]
         furnace_T = gas.temperature(lead.benzene, self.h_benzene + fired, T_in[0])
-        valve = np.column_stack([streams.injected - 30 / 3.6, 82 / 3.6 - streams.injected])
-        cooler = np.column_stack([cooled, np.array([2.0e6, 2.0e6, 1.6e6]) - cooled])
-        slip = 1.35 / 3.6 - F_out[3, lead.species.index("ethylene")]
+        benzene, ethylene = F_in[:, lead.index("benzene")], F_in[:, lead.index("ethylene")]
         return np.concatenate(
             [
                 [money],
-                697.15 - T_out,
-                T_in - 637.15,
-                benzene - 11.6 * ethylene,
-                46.0 - (T_out - T_in),
-                valve.ravel(),
-                cooler.ravel(),
-                [slip, fired, effluent, 738.15 - furnace_T],
+                lead.bounds["hot exit", "at most"] - T_out,
+                T_in - lead.bounds["light-off", "at least"],
+                benzene - lead.bounds["coking", "at least"] * ethylene,
+                lead.bounds["rise", "at most"] - (T_out - T_in),
+                self.between("valve", streams.injected),
+                self.between("cooler", cooled),
+                lead.bounds["slip", "at most"] - F_out[3, lead.index("ethylene")],
+                [fired, effluent],
+                lead.bounds["reach of fired heater", "at most"] - furnace_T,
             ]
         )
+
+    def between(self, label: str, values: Array) -> Array:
+        """Margins above the least and below the most, for each value in turn."""
+        low, high = self.lead.bounds[label, "at least"], self.lead.bounds[label, "at most"]
+        return np.column_stack([values - low, high - values]).ravel()
 
     def earned(self, F: Array, H: float, Q: float) -> float:
         """Money for the heat Q of a stream of enthalpy flow H: each part to the best level it reaches."""

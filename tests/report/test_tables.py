@@ -230,10 +230,7 @@ def test_limits_without_a_margin_are_pointed_out_and_margins_have_a_price() -> N
     assert text == "KEEP AWAY    2 K on hot exit: this costs 17.9 EUR/h."
 
 
-def test_an_unlit_bed_is_said_before_the_notes_of_the_rating() -> None:
-    beds = (synthetic.LEAD[0], replace(synthetic.LEAD[1], exit=365.0, approach=80.0))
-    rating = replace(
-        synthetic.rating(beds), notes=("Heat of effluent carries no price.", "12 % of bed 1 lies outside.")
-    )
-    unlit = "Bed 2 is unlit: it rises 1.0 K and stands 80 K from equilibrium."
-    assert sentences.warnings(rating) == [unlit, "12 % of bed 1 lies outside."]
+def test_notes_of_the_rating_are_told_but_for_unpriced_heat() -> None:
+    unlit = "Bed 2 is practically unlit: it rises 1 K of a possible 39 K."
+    rating = replace(synthetic.rating(), notes=(unlit, "Heat of effluent carries no price."))
+    assert sentences.warnings(rating) == [unlit]

@@ -1,0 +1,144 @@
+"""One pass through the lead case by every route at equal accuracy, all in turn."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from functools import partial
+from itertools import cycle
+from typing import Any
+
+import numpy as np
+
+from reactorstage import compile
+from reactorstage.train.passing import SEARCH
+from tests.benchmarks import casadi_route
+from tests.benchmarks.accuracy import Chosen, Yardstick, kernel_error
+from tests.benchmarks.cantera_route import FlowRoute, ParcelRoute, solution
+from tests.benchmarks.kernel_route import KernelRoute
+from tests.benchmarks.lead import Array, lead_case, lead_numbers
+from tests.benchmarks.scipy_route import ScipyRoute
+from tests.benchmarks.search import STEP
+from tests.benchmarks.table import Row, ratio, timed
+from tests.benchmarks.timing import interleaved
+
+NO_PRESSURE_DROP = tuple(f"bed {b}.pressure drop factor=0" for b in range(1, 5))
+NEAR = 0.02
+"""Every pass is at another setting, this share of the ranges away from the one of the frozen mesh."""
+
+
+class Lead:
+    """The lead case with every route at equal accuracy."""
+
+    def __init__(self) -> None:
+        self.programme = compile(lead_case())
+        self.numbers = lead_numbers(self.programme)
+        self.kernel = KernelRoute(self.programme)
+        self.yardstick = Yardstick.of(self.programme, self.numbers)
+        self.error = kernel_error(self.programme, self.yardstick)
+        self.scipy = self.yardstick.chosen(partial(ScipyRoute, self.numbers), self.error)
+        self.low = np.array([number.low for number in self.programme.numbers])
+        self.span = np.array([number.high for number in self.programme.numbers]) - self.low
+
+    def settings(self) -> list[Array]:
+        """Settings near today's."""
+        away = np.random.default_rng(1).uniform(-NEAR, NEAR, (16, len(self.span)))
+        return [self.programme.now + self.span * one for one in away]
+
+    def in_turn(self, function: Callable[[Array], object]) -> Callable[[], object]:
+        """A task that takes the next setting at every call."""
+        settings = cycle(self.settings())
+        return lambda: function(next(settings))
+
+
+def gradient_rows(lead: Lead, rounds: int) -> list[Row]:
+    """Value and gradient: kernel, finite differences, forward sensitivities."""
+    mesh, step = lead.kernel.mesh(lead.programme.now), STEP * lead.span
+    tasks = {
+        "both": lead.in_turn(lambda x: lead.kernel.value_and_gradient(x, mesh)),
+        "value": lead.in_turn(lambda x: lead.kernel.frozen_value(x, mesh)),
+        "adaptive": lead.in_turn(lead.programme.start_mesh),
+        "scipy value": lead.in_turn(lead.scipy.route.value),
+        "scipy both": lead.in_turn(lambda x: lead.scipy.route.value_and_gradient(x, step)),
+    }
+    symbolic = chosen_casadi(lead)
+    if symbolic is not None:
+        tasks |= {
+            "casadi value": lead.in_turn(symbolic.route.value),
+            "casadi both": lead.in_turn(symbolic.route.value_and_gradient),
+        }
+    found = interleaved(tasks, rounds)
+    rows = [
+        timed("value and gradient, steps frozen", found["both"], at_most=1.0, note=accuracy_note(lead)),
+        timed("value, steps frozen", found["value"]),
+        ratio("value and gradient over value", found["both"], found["value"], at_most=3.0),
+        timed("value and gradient, steps by error control", found["adaptive"]),
+        timed("SciPy LSODA, value", found["scipy value"], note=chosen_note(lead.scipy)),
+        timed(
+            "SciPy LSODA with forward differences, value and gradient",
+            found["scipy both"],
+            note=f"gradient within {finite_difference_error(lead):.0e}",
+        ),
+        ratio("SciPy over this kernel, both", found["scipy both"], found["both"], at_least=150.0),
+    ]
+    if symbolic is None:
+        return [*rows, Row("CasADi with CVODES forward sensitivities", None, "ms", note="not installed")]
+    return [
+        *rows,
+        timed("CasADi with CVODES, value", found["casadi value"], note=chosen_note(symbolic)),
+        timed("CasADi with CVODES forward sensitivities, value and gradient", found["casadi both"]),
+        ratio("CasADi over this kernel, both", found["casadi both"], found["both"]),
+    ]
+
+
+def rating_rows(lead: Lead, rounds: int) -> list[Row]:
+    """A rating without gradient and without pressure drop: kernel and Cantera."""
+    programme = compile(lead_case(*NO_PRESSURE_DROP))
+    numbers, kernel = lead_numbers(programme), KernelRoute(programme)
+    yardstick = Yardstick.of(programme, numbers)
+    error = kernel_error(programme, yardstick)
+    gas = solution(numbers, programme.model.chemistry)
+    flow = yardstick.chosen(partial(FlowRoute, numbers, gas), error)
+    parcel = yardstick.chosen(partial(ParcelRoute, numbers, gas), error)
+    for x in lead.settings():
+        parcel.route.value(x)
+    found = interleaved(
+        {
+            "kernel": lead.in_turn(kernel.value),
+            "flow": lead.in_turn(flow.route.value),
+            "parcel": lead.in_turn(parcel.route.value),
+        },
+        rounds,
+    )
+    return [
+        timed("rating without gradient", found["kernel"], note="pressure drop off, as Cantera needs it"),
+        timed("Cantera, plug-flow reactors", found["flow"], note=chosen_note(flow)),
+        ratio("Cantera's plug-flow reactors over this kernel", found["flow"], found["kernel"], at_least=4.0),
+        timed(
+            "Cantera, parcels of gas with residence times known beforehand",
+            found["parcel"],
+            note=f"a bound, no rating; {chosen_note(parcel)}",
+        ),
+        ratio("Cantera's parcels over this kernel", found["parcel"], found["kernel"]),
+    ]
+
+
+def chosen_casadi(lead: Lead) -> Chosen[casadi_route.CasadiRoute] | None:
+    if not casadi_route.INSTALLED:
+        return None
+    return lead.yardstick.chosen(partial(casadi_route.CasadiRoute, lead.numbers), lead.error)
+
+
+def finite_difference_error(lead: Lead) -> float:
+    """Error of the forward differences at the first setting, by the kernel's exact derivatives there."""
+    x = lead.yardstick.settings[0]
+    _, exact = lead.kernel.value_and_gradient(x, lead.kernel.mesh(x))
+    _, found = lead.scipy.route.value_and_gradient(x, STEP * lead.span)
+    return lead.yardstick.gradient_error(found, lead.span, exact)
+
+
+def accuracy_note(lead: Lead) -> str:
+    return f"tolerance {SEARCH:.0e}, error {lead.error:.0e} of scaled cost and limits"
+
+
+def chosen_note(chosen: Chosen[Any]) -> str:
+    return f"tolerance {chosen.tolerance:.0e}, error {chosen.error:.0e}"

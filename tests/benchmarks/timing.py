@@ -1,0 +1,59 @@
+"""Times that can be compared on a noisy machine: everything in turn, many rounds, medians."""
+
+from __future__ import annotations
+
+import os
+import time
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+from statistics import median
+
+
+@dataclass(frozen=True)
+class Timing:
+    """Seconds per call, one sample per round."""
+
+    samples: tuple[float, ...]
+
+    @property
+    def median(self) -> float:
+        return median(self.samples)
+
+    @property
+    def least(self) -> float:
+        return min(self.samples)
+
+
+def seconds(task: Callable[[], object], calls: int = 1) -> float:
+    """Wall time of one call."""
+    begun = time.perf_counter()
+    for _ in range(calls):
+        task()
+    return (time.perf_counter() - begun) / calls
+
+
+def interleaved(
+    tasks: Mapping[str, Callable[[], object]], rounds: int = 15, slot: float = 0.02
+) -> dict[str, Timing]:
+    """Every task once per round, repeated within the round until about `slot` seconds are spent.
+
+    All are called once or twice beforehand, which makes them warm.
+    """
+    calls = {name: repeats(task, slot) for name, task in tasks.items()}
+    samples: dict[str, list[float]] = {name: [] for name in tasks}
+    for _ in range(rounds):
+        for name, task in tasks.items():
+            samples[name].append(seconds(task, calls[name]))
+    return {name: Timing(tuple(values)) for name, values in samples.items()}
+
+
+def repeats(task: Callable[[], object], slot: float) -> int:
+    """How often a task goes into a slot, at least once."""
+    first = seconds(task)
+    return 1 if first >= slot else max(1, round(slot / seconds(task)))
+
+
+def load() -> str:
+    """How busy the machine is, for the record."""
+    busy = os.getloadavg()[0] if hasattr(os, "getloadavg") else float("nan")
+    return f"load {busy:.1f} on {os.cpu_count()} processors"
