@@ -78,6 +78,7 @@ def optimise(
     Raises CaseProblems for a case that chemistry or quantities find wrong.
     """
     from reactorstage.optimiser import optimise as search
+    from reactorstage.optimiser.result import CANNOT
 
     begun = time.perf_counter()
     programme = compile(case)
@@ -85,7 +86,8 @@ def optimise(
     optimum = search(
         programme, starts=starts, seed=seed, jobs=jobs, progress=progress, stop=stop, explain=explain
     )
-    rated = [programme.rate(answer.x) for answer in optimum.answers]
+    cannot = optimum.status == CANNOT
+    rated = [programme.rate(programme.complete(a.x) if cannot else a.x) for a in optimum.answers]
     return Optimisation(
         case=case,
         programme=programme,

@@ -40,10 +40,10 @@ EXTRAS = 5
 @compiled
 def moves(du, index):
     """Whether any direction moves an input."""
+    size = 0.0
     for d in range(du.shape[1]):
-        if du[index, d] != 0.0:
-            return True
-    return False
+        size += abs(du[index, d])
+    return size > 0.0
 
 
 @compiled

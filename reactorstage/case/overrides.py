@@ -73,9 +73,14 @@ def device_names(tree: Tree, path: TreePath) -> Targets:
 
 
 def feed_names(tree: Tree, feed: str) -> Targets:
+    """A feed's own numbers, and its entry for each bed as a flow or as a share."""
     split = keys(tree, "feeds", feed, "split", "now")
-    shares: Targets = {f"{bed}.injected {feed}": [("feeds", feed, "split", "now", bed)] for bed in split}
-    return shares | {f"feed {feed}.{key}": [("feeds", feed, key)] for key in ("flow", "temperature")}
+    entries: Targets = {
+        f"{bed}.{words} {feed}": [("feeds", feed, "split", "now", bed)]
+        for bed in split
+        for words in ("injected", "share of")
+    }
+    return entries | {f"feed {feed}.{key}": [("feeds", feed, key)] for key in ("flow", "temperature")}
 
 
 def entry_names(tree: Tree, group: str, owner: str, names: Sequence[str]) -> Targets:

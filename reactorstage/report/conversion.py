@@ -1,13 +1,12 @@
-"""What the conversion-temperature diagram shows: the way through the train, and equilibrium and rates behind it.
+"""What the conversion-temperature diagram shows: the way through the train; equilibrium and rates behind it.
 
-Key conversion of the main reactant: the part that has reacted of all that was fed up to there,
-X = 1 - F/(sum of what came in with feeds). An exchanger leaves it as it is; an injection mixes it with that of
-the feed, which is zero.
+Key conversion of the main reactant is the part that has reacted of all that was fed up to there,
+X = 1 - F/(sum of what came in with feeds). An exchanger leaves it as it is, an injection mixes it with that
+of the feed, which is zero.
 """
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 from itertools import pairwise
 
@@ -80,7 +79,7 @@ def has_conversion(rating: Rating) -> bool:
 
 
 def way(rating: Rating) -> list[Leg]:
-    """Beds, and the steps of the gaps between them, in flow order; nothing before the main reactant is fed."""
+    """Beds and the steps of gaps in flow order, from the first bed that the main reactant enters."""
     s = rating.species.index(rating.main_reactant)
     legs: list[Leg] = []
     fed = 0.0
@@ -126,7 +125,7 @@ def whole_feed(rating: Rating) -> Feed:
 
 
 def background(rating: Rating, low: float, high: float) -> Background | None:
-    """Equilibrium and rates between two temperatures in K; None where no reaction of the key is reversible."""
+    """Equilibrium and rates between two temperatures, K; None if only irreversible reactions use the key."""
     chemistry = rating.chemistry
     assert chemistry is not None
     s = rating.species.index(rating.main_reactant)
@@ -156,7 +155,7 @@ def _rates(rating: Rating, chemistry: CaseChemistry, key: int, feed: Feed, s: in
     F = feed.F[:, None] + np.outer(nu[key] / -nu[key, s], X * feed.main)
     factor = basis_factors(laws, *_packing(rating))
     used = [-(nu[:, s] @ rates(laws, chemistry.table, F, float(t), feed.p, factor)) for t in T]
-    there = (F >= -1e-9 * feed.main).all(axis=0)
+    there = np.all(-1e-9 * feed.main <= F, axis=0)
     grid = np.where(there, np.array(used), np.nan).T
     return Rates(X, grid, best_temperature(T, grid))
 
@@ -175,17 +174,17 @@ def best_temperature(T: Array, rate: Array) -> Array:
     best = np.full(len(rate), np.nan)
     for m, row in enumerate(rate):
         n = int(np.argmax(np.where(np.isfinite(row), row, -np.inf)))
-        if 0 < n < len(T) - 1 and row[n] > 0.0:
+        if n in range(1, len(T) - 1) and row[n] > 0.0:
             below, at, above = row[n - 1 : n + 2]
             best[m] = T[n] + 0.5 * (T[1] - T[0]) * (below - above) / (below - 2.0 * at + above)
     return best
 
 
-def levels(rate: Array, most: int) -> list[float]:
-    """Round rates (1, 2, 5 times a power of ten), at most so many, from the greatest downwards."""
+def round_rates(rate: Array, most: int) -> list[float]:
+    """Round values (1, 2, 5 times a power of ten) below the greatest rate, rising, at most so many."""
     top = float(np.nanmax(rate, initial=0.0))
-    if not top > 0.0:
+    if top <= 0.0:
         return []
     decade = np.floor(np.log10(top))
-    steps: Sequence[float] = [part * 10.0 ** (decade - d) for d in range(4) for part in (5.0, 2.0, 1.0)]
-    return sorted([step for step in steps if step < 0.95 * top][:most])
+    steps = [part * 10.0 ** (decade - d) for d in range(4) for part in (5.0, 2.0, 1.0)]
+    return sorted([float(step) for step in steps if step < 0.95 * top][:most])

@@ -10,7 +10,15 @@ from matplotlib.figure import Figure
 
 from reactorstage.report import look
 from reactorstage.report.cautions import SHORT
-from reactorstage.report.conversion import Background, Leg, background, levels, way, whole_feed
+from reactorstage.report.conversion import (
+    Background,
+    Leg,
+    background,
+    has_conversion,
+    round_rates,
+    way,
+    whole_feed,
+)
 from reactorstage.report.display import allowed, brief, owners_text, shown, told, unit
 from reactorstage.report.profiles import displayed
 from reactorstage.report.temperature import WORDS
@@ -25,13 +33,14 @@ MOST_LEVELS = 7
 RATE = "#a9b0b8"
 RATE_WEIGHT, LINE_WEIGHT, GAP_PART = 0.7, 1.4, 0.5
 BEST: look.LineStyle = (0, (7.0, 2.0, 1.5, 2.0))
-LABEL_HEIGHT, LABEL_APART = 0.03, 0.07
+LABEL_ROWS, LABEL_APART = (0.03, 0.13, 0.23, 0.33), 0.07
 HEAD_APART = 62.0
+NAME_ROOM, NAME_WIDTH = 7.0, 0.08
 
 
 def conversion_figure(rating: Rating, today: Rating | None, title: str, status: str) -> Figure:
     """The way through the train, today's thin behind it, limits dashed; what the lines are for, below."""
-    legs, before = way(rating), way(today) if today is not None else []
+    legs, before = way(rating), _way_of_today(rating, today)
     figure = look.new_figure(HEIGHT, title, status)
     axes = look.panel(figure, BOTTOM, HEIGHT - TOP)
     low, high = temperature_range(rating, [*legs, *before])
@@ -45,11 +54,18 @@ def conversion_figure(rating: Rating, today: Rating | None, title: str, status: 
     _temperature_limits(axes, rating)
     _bed_names(axes, legs)
     axes.set_xlabel(f"temperature, {unit('temperature')}")
-    look.value_axis(axes, f"{rating.main_reactant} converted, % of what was fed so far")
+    look.value_axis(axes, f"{rating.main_reactant} converted,\n% of what was fed so far")
     axes.tick_params(labelsize=look.TEXT - 0.5)
-    look.key(figure, _key_rows(rating, behind, legs, today is not None), look.SPLIT_REACTANT)
+    look.key(figure, _key_rows(rating, behind, legs, bool(before)), look.SPLIT_REACTANT)
     _notes(figure, rating, behind)
     return figure
+
+
+def _way_of_today(rating: Rating, today: Rating | None) -> list[Leg]:
+    """Today's way, where it counts the same conversion."""
+    if today is None or not has_conversion(today) or today.main_reactant != rating.main_reactant:
+        return []
+    return way(today)
 
 
 def temperature_range(rating: Rating, legs: Sequence[Leg]) -> tuple[float, float]:
@@ -95,15 +111,14 @@ def _rates(axes: Axes, behind: Background | None, legs: Sequence[Leg]) -> None:
         return
     T, X = displayed(behind.T, "temperature"), 100.0 * behind.rates.X
     rate = 1e3 * displayed(behind.rates.rate, "molar flow")
-    values = levels(rate, MOST_LEVELS)
+    values = round_rates(rate, MOST_LEVELS)
     if not values:
         return
     axes.contour(T, X, rate, levels=values, colors=RATE, linewidths=RATE_WEIGHT, zorder=1.5)
-    foot = int(np.searchsorted(behind.rates.X, LABEL_HEIGHT))
-    for x, value in _placed(axes, T, rate[foot], values, legs):
+    for value, x, y in _placed(axes, behind, rate, values, legs):
         axes.annotate(
             brief(value),
-            (x, float(X[foot])),
+            (x, y),
             ha="center",
             va="center",
             fontsize=look.SMALL - 0.6,
@@ -114,21 +129,35 @@ def _rates(axes: Axes, behind: Background | None, legs: Sequence[Leg]) -> None:
 
 
 def _placed(
-    axes: Axes, T: Array, row: Array, values: Sequence[float], legs: Sequence[Leg]
-) -> list[tuple[float, float]]:
-    """Where the rates of a row rise through the values, leaving out what would stand on something else."""
+    axes: Axes, behind: Background, rate: Array, values: Sequence[float], legs: Sequence[Leg]
+) -> list[tuple[float, float, float]]:
+    """Each value with a place (T, %) where the rate rises through it, low down and clear of all else."""
+    assert behind.rates is not None
+    T = displayed(behind.T, "temperature")
     left, right = axes.get_xlim()
-    apart = LABEL_APART * (right - left)
-    taken = [left, right, *(float(displayed(leg.T[:1], "temperature")[0]) for leg in legs if leg.X[0] < 0.1)]
-    found = []
-    top = int(np.nanargmax(row))
+    found: list[tuple[float, float, float]] = []
     for value in values:
-        if not row[0] < value < row[top]:
-            continue
-        x = float(np.interp(value, row[: top + 1], T[: top + 1]))
-        if all(abs(x - other) > apart for other in taken):
-            taken.append(x)
-            found.append((x, value))
+        for height in LABEL_ROWS:
+            m = int(np.searchsorted(behind.rates.X, height))
+            top = int(np.argmax(np.nan_to_num(rate[m])))
+            if not rate[m, 0] < value < rate[m, top]:
+                continue
+            x, y = float(np.interp(value, rate[m, : top + 1], T[: top + 1])), 100.0 * float(behind.rates.X[m])
+            taken = [left, right, *_crossings(legs, y), *(other for _, other, row in found if row == y)]
+            if all(abs(x - other) > LABEL_APART * (right - left) for other in taken):
+                found.append((value, x, y))
+                break
+    return found
+
+
+def _crossings(legs: Sequence[Leg], y: float) -> list[float]:
+    """Temperatures at which beds pass a level, names beside their beginnings included."""
+    found = []
+    for leg in legs:
+        T, X = displayed(leg.T, "temperature"), 100.0 * leg.X
+        if leg.kind == "bed" and X[0] - NAME_ROOM < y < X[-1]:
+            found.append(float(np.interp(y, X, T)))
+            found += [float(T[0]) - NAME_WIDTH * float(np.ptp(T))] if y < X[0] + NAME_ROOM else []
     return found
 
 
@@ -233,12 +262,13 @@ def _key_rows(
     """What the kinds of line mean, as far as they are there."""
     injects = any(leg.kind == "injection" for leg in legs)
     single = behind is not None and behind.rates is not None
+    best = behind is not None and behind.rates is not None and bool(np.isfinite(behind.rates.best).any())
     rows = [
         look.KeyRow("this setting", look.THIS_WEIGHT),
         look.KeyRow("today", look.TODAY_WEIGHT) if with_today else None,
         look.KeyRow("injection", look.THIS_WEIGHT * GAP_PART, look.DOTTED) if injects else None,
         look.KeyRow("limit", look.LIMIT_WEIGHT, look.DASHED, look.LIMIT) if _limits(rating) else None,
-        look.KeyRow("best rate", 1.0, BEST, look.INK) if single else None,
+        look.KeyRow("best rate", 1.0, BEST, look.INK) if best else None,
         look.KeyRow("equal rate, kmol/(t h)", RATE_WEIGHT, look.SOLID, RATE) if single else None,
     ]
     return [row for row in rows if row is not None]
@@ -262,6 +292,6 @@ def explained(rating: Rating, behind: Background | None) -> list[str]:
     if behind.rates is not None:
         return [f"Equilibrium, best rate and equal rates: for {feed}, catalyst activity 1."]
     return [
-        f"Several reactions: the way shows {name} used by all of them. Equilibrium is that of {behind.reaction}",
-        f"alone, for {feed}, without by-products; the way may cross it. No lines of rate.",
+        f"Several reactions: the train shows {name} used by all of them and may cross the equilibrium,",
+        f"which is that of {behind.reaction} alone, for {feed}, without by-products. No rates drawn.",
     ]

@@ -26,8 +26,7 @@ def figure_files(rating: Rating, today: Rating | None, status: str) -> dict[str,
         files = look.as_files(temperature_figure(rating, behind, title, status), "temperature")
         files |= look.as_files(composition_figure(rating, behind, title, status), "composition")
         if has_conversion(rating):
-            earlier = behind if behind is not None and has_conversion(behind) else None
-            files |= look.as_files(conversion_figure(rating, earlier, title, status), "conversion")
+            files |= look.as_files(conversion_figure(rating, behind, title, status), "conversion")
         if says_something(rating):
             files |= look.as_files(selectivity_figure(rating, behind, title, status), "selectivity")
     return files

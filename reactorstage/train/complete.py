@@ -22,24 +22,27 @@ def complete(programme: TrainProgramme, x: Array, internal: list[int]) -> Array:
     from scipy.optimize import linprog
 
     start = x.copy()
-    start[internal] = 0.0
+    start[internal] = [programme.numbers[i].low for i in internal]
     evaluation, _ = programme.start_mesh(start)
     if not evaluation.ok:
         return x
     assert (
         evaluation.cost_dx is not None and evaluation.margin is not None and evaluation.margin_dx is not None
     )
-    slopes = evaluation.margin_dx[:, internal]
+    low = np.array([programme.numbers[i].low for i in internal])
+    size = np.array([programme.numbers[i].high for i in internal]) - low
+    slopes = evaluation.margin_dx[:, internal] * size
     held = np.flatnonzero(np.abs(slopes).max(axis=1) > 0.0)
     scale = np.abs(slopes[held]).max(axis=1, keepdims=True)
+    cost = evaluation.cost_dx[internal] * size
     found = linprog(
-        evaluation.cost_dx[internal],
+        cost / max(float(np.abs(cost).max()), 1e-300),
         A_ub=-slopes[held] / scale,
         b_ub=evaluation.margin[held] / scale[:, 0],
-        bounds=[(programme.numbers[i].low, programme.numbers[i].high) for i in internal],
+        bounds=(0.0, 1.0),
         method="highs",
     )
     if not found.success:
         return x
-    start[internal] = found.x
+    start[internal] = low + size * found.x
     return start

@@ -221,17 +221,29 @@ def _heat(ladder: Ladder, stream: _Stream, rungs: Sequence[Rung]) -> None:
     hottest = max(rungs, key=lambda rung: rung.reach)
     if high > hottest.reach:
         ladder.reach.append((stream.device, owner, hottest.reach, "at most", hottest.level))
-    kept = _rising(rungs)
+    limited = any(rung.capacity is not None for rung in rungs)
+    kept = list(rungs) if limited else _rising(rungs)
     above = [stream.removed * -1.0]
     for rung in kept[:-1]:
-        after = ladder.hinge(
-            stream.after_above(rung.reach), stream.width(rung.reach), stream.device.operation
-        )
-        before = ladder.hinge(
-            stream.before_above(rung.reach), stream.width(rung.reach), stream.device.operation
-        )
-        above.append(after - before)
+        needed = _needed_above(ladder, stream, rung)
+        above.append(_internal_heat(ladder, stream, rung, needed, above[-1]) if limited else needed)
     _book(ladder, owner, kept, above, stream.device.heating)
+
+
+def _needed_above(ladder: Ladder, stream: _Stream, rung: Rung) -> Linear:
+    """Heat that a rung is too cold to give."""
+    T, width, operation = rung.reach, stream.width(rung.reach), stream.device.operation
+    after = ladder.hinge(stream.after_above(T), width, operation)
+    return after - ladder.hinge(stream.before_above(T), width, operation)
+
+
+def _internal_heat(ladder: Ladder, stream: _Stream, rung: Rung, needed: Linear, most: Linear) -> Linear:
+    """Heat from rungs hotter than this one, an internal number: what is needed or, where it is full, more."""
+    owner = stream.place.owner
+    number = ladder.number(f"{owner}.heat from above {rung.level}")
+    ladder.rows.append((f"{owner}, heat that {rung.level} is too cold for", number - needed))
+    ladder.rows.append((f"{owner}, heat from {rung.level}", most - number))
+    return number
 
 
 def _improving(rungs: Sequence[Rung]) -> list[Rung]:

@@ -134,15 +134,16 @@ def _attainable(model: Model, inlet: Array, exit_: Array) -> float:
 def idle_share(along: Profile) -> float | None:
     """Share of the catalyst behind the last place that is more than 1 % of the bed's rise from its exit.
 
-    Between points the distance from the exit temperature is taken to fall exponentially. None without a rise.
+    Between points the distance from the exit temperature is taken to fall exponentially, before the last one
+    linearly. None without a rise.
     """
     away = np.abs(along.T - along.T[-1])
     least = (1.0 - DONE_SHARE) * away[0]
     if away[0] <= NO_RISE_K:
         return None
     last = int(np.flatnonzero(away > least)[-1])
-    after = max(float(away[last + 1]), 1e-3 * least)
-    part = np.log(away[last] / least) / np.log(away[last] / after)
+    before, after = float(away[last]), float(away[last + 1])
+    part = np.log(before / least) / np.log(before / after) if after > 0.0 else 1.0 - least / before
     w = along.w[last] + part * (along.w[last + 1] - along.w[last])
     return float(1.0 - w / along.w[-1])
 

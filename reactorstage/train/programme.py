@@ -292,7 +292,9 @@ class _Draft:
 
     def _most_heat(self) -> float:
         """A generous end of range for heat numbers: all feeds through 300 K at 300 J/(mol K)."""
-        return 300.0 * 300.0 * sum(feed.flow.now for feed in self.case.feeds.values())
+        inputs = self.inputs.build()
+        u, _ = inputs.of_numbers(np.array([number.high for number in inputs.numbers]))
+        return 300.0 * 300.0 * float(sum(u[index] for index in self.layout.feed_flow.values()))
 
     def _aim(self, catalogue: Catalogue) -> Form:
         try:

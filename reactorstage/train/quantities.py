@@ -347,7 +347,7 @@ def _depth(c: Catalogue, bed: BedPlace, which: int) -> Form:
 def _approach(c: Catalogue, bed: BedPlace, reaction: str) -> Form:
     """Equilibrium temperature at the exit composition less that of the exit; > 0 while forward remains."""
     number = c.chemistry.reactions.index(reaction)
-    kind, why = "temperature difference", "a species of the reaction is absent"
+    kind, why = "temperature difference", "no equilibrium at any temperature of the data"
     for one in c.equilibria:
         if one.bed == bed.owner and one.reaction == number:
             form = at(one.index) - c.layout.temperature(bed.exit)

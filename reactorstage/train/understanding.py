@@ -137,7 +137,8 @@ def _reactions(model: Model, reactant: str) -> Iterator[ReactionRow]:
         orders = {
             s: float(a) for s, a in zip(chemistry.species, chemistry.laws.alpha[r], strict=True) if a != 0.0
         }
-        takes_part = bool(reactant) and bool(row[0, chemistry.species.index(reactant)] < 0.0)
+        consumed = bool(reactant) and bool(row[0, chemistry.species.index(reactant)] < 0.0)
+        takes_part = consumed or reactant in orders
         yield ReactionRow(
             name=name,
             equation=case.reactions[name].equation,

@@ -15,7 +15,10 @@ R = 8.31446261815324
 
 @dataclass(frozen=True)
 class Family:
-    """A chemistry with typical flows: main feed (kmol/h), side feed per bed, inlet temperature (K), p (bar)."""
+    """A chemistry with typical flows: main feed (kmol/h), side feed per bed, inlet temperature (K), p (bar).
+
+    molar: roughly the molar masses of both feeds (kg/mol); named: a reaction that is always there.
+    """
 
     species: Tree
     main: Tree
@@ -27,6 +30,8 @@ class Family:
     catalyst: float
     bed: Tree
     ratio: str
+    named: str
+    molar: tuple[float, float]
 
 
 ALKYLATION = Family(
@@ -40,6 +45,8 @@ ALKYLATION = Family(
     3000.0,
     {"diameter": "1.8 m", "equivalent size": "2.4 mm"},
     "benzene/ethylene",
+    "ethylation",
+    (0.079, 0.028),
 )
 OXIDATION = Family(
     {name: {"gas data": name} for name in ("SO2", "O2", "SO3", "N2")},
@@ -52,6 +59,8 @@ OXIDATION = Family(
     20_000.0,
     {"diameter": "5 m", "equivalent size": "8 mm"},
     "O2/SO2",
+    "oxidation",
+    (0.032, 0.034),
 )
 
 
@@ -62,6 +71,7 @@ def trees(draw: Draw, most_beds: int = 4, plain: bool = False) -> Tree:
     beds = draw(st.integers(1, most_beds))
     some = Some(draw, plain)
     feeds = _feeds(some, family, beds)
+    train = _train(some, family, feeds, beds)
     tree: Tree = {
         **HEAD,
         "percent": draw(st.sampled_from(["mol", "mass"])),
@@ -69,10 +79,10 @@ def trees(draw: Draw, most_beds: int = 4, plain: bool = False) -> Tree:
         "fluid": FLUID,
         "reactions": _reactions(some, family),
         "feeds": feeds,
-        "train": _train(some, family, feeds, beds),
+        "train": train,
         "every bed": {**family.bed, "bulk density": "640 kg/m^3", "void fraction": "42 %"},
     }
-    return {**tree, **MONEY, "limits": {} if plain else _limits(family)}
+    return {**tree, **MONEY, "limits": {} if plain else _limits(family, train)}
 
 
 @dataclass
@@ -150,30 +160,37 @@ def _constant(some: Some, family: Family, given: Tree, size: float, E: float, n:
 
 
 def _feeds(some: Some, family: Family, beds: int) -> Tree:
-    main = {
-        "flow": some.number(family.main_flow, 0.1, "kmol/h"),
+    main, side = (_flow(some, molar) for molar in family.molar)
+    first = {
+        "flow": some.number(family.main_flow * main[0], 0.1, main[1]),
         "temperature": some.number(family.T - 15.0, 0.01, "K"),
         "composition": family.main,
     }
-    side = {
-        "flow": some.number(family.side_flow * beds, 0.1, "kmol/h"),
+    second = {
+        "flow": some.number(family.side_flow * beds * side[0], 0.1, side[1]),
         "temperature": some.number(330.0, 0.05, "K"),
         "composition": family.side,
     }
     if beds > 1:
-        side["split"] = _split(some, family.side_flow * beds, [1.0 / beds] * beds)
+        second["split"] = _split(some, family.side_flow * beds, [1.0 / beds] * beds, side)
     if beds > 1 and some.choice(True, False, False):
-        main["split"] = _split(some, family.main_flow, [0.7] + [0.3 / (beds - 1)] * (beds - 1))
-    return {"main": main, "side": side}
+        first["split"] = _split(some, family.main_flow, [0.7] + [0.3 / (beds - 1)] * (beds - 1), main)
+    return {"main": first, "side": second}
 
 
-def _split(some: Some, flow: float, parts: list[float]) -> Tree:
+def _flow(some: Some, molar: float) -> tuple[float, str]:
+    """Factor from kmol/h and unit of a flow, by moles or by mass."""
+    found: tuple[float, str] = some.choice((1.0, "kmol/h"), (molar, "t/h"))
+    return found
+
+
+def _split(some: Some, flow: float, parts: list[float], unit: tuple[float, str]) -> Tree:
     """Shares or flows, the rest to one of the beds."""
     rest, shares = some.choice(*range(len(parts))), some.choice(True, False)
     now: Tree = {}
     for b, part in enumerate(parts):
-        value = 100.0 * part if shares else part * flow
-        now[f"bed {b + 1}"] = "rest" if b == rest else some.number(value, 0.1, "%" if shares else "kmol/h")
+        value, text = (100.0 * part, "%") if shares else (part * flow * unit[0], unit[1])
+        now[f"bed {b + 1}"] = "rest" if b == rest else some.number(value, 0.1, text)
     return {"now": now}
 
 
@@ -196,6 +213,8 @@ def _train(some: Some, family: Family, feeds: Tree, beds: int) -> list[Tree]:
             bed["inlet pressure"] = some.number(family.p, 0.1, "bar(a)")
         if held:
             bed["inlet temperature"] = some.number(family.T, 0.03, "K")
+        if beds > 1 and not some.draw(st.integers(0, 5)):
+            bed["state"] = "bypassed"
         train.append({f"bed {b}": bed})
     return [*train, {"effluent": _effluent(some)}]
 
@@ -258,19 +277,26 @@ MONEY: Tree = {
 }
 
 
-def _limits(family: Family) -> Tree:
+def _limits(family: Family, train: list[Tree]) -> Tree:
     """Every quantity that the reference gives, bounded below by zero, and some that only the program gives."""
     names = [f"{place}.{what}" for place in PLACES for what in AT_PLACES]
     names += ["every gap.temperature after exchanger"]
     names += [f"every bed.{what}" for what in AT_BEDS]
     names += [f"every bed.exit flow of {name}" for name in family.species]
     zero = {name: {"of": name, "at least": _zero(name)} for name in names}
-    return zero | {
+    running = [owner for section in train for owner, bed in section.items() if _runs(owner, bed)]
+    middle = {f"middle {bed}": {"of": f"{bed}.depth at 50 % of rise", "at most": "50 %"} for bed in running}
+    approach = {"of": f"every bed.approach to equilibrium of {family.named}", "at least": "1 K"}
+    return zero | middle | {
+        "approach": approach,
         "ratio": {"of": f"every bed.inlet ratio {family.ratio}", "at least": "3 mol/mol"},
         "peak": {"of": "every bed.peak temperature", "at most": "800 K"},
-        "middle": {"of": "every bed.depth at 50 % of rise", "at most": "50 %"},
         "drop": {"of": "train.pressure drop", "at most": "1 bar"},
     }
+
+
+def _runs(owner: str, bed: Tree) -> bool:
+    return owner.startswith("bed") and bed.get("state") != "bypassed"
 
 
 PLACES = ("entry", "every gap", "effluent")

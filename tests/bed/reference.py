@@ -225,7 +225,7 @@ class Twin:
             stream = self._bed(section, stream) if section.bed else self._place(section, following, stream)
         return self.found
 
-    def _fractions(self, feed: Feed) -> NDArray[np.float64]:
+    def fractions(self, feed: Feed) -> NDArray[np.float64]:
         shares = np.array([feed.composition.get(name, 0.0) for name in self.gas.table.names])
         shares = shares / self.gas.table.molar_mass if self.case.percent == "mass" else shares
         return shares / shares.sum()
@@ -233,7 +233,7 @@ class Twin:
     def _amount(self, name: str, bed: str) -> Array:
         """Molar flow of a feed into a bed: the whole, an entry of its split, or what the others leave."""
         feed = self.case.feeds[name]
-        molar = float(self._fractions(feed) @ self.gas.table.molar_mass)
+        molar = float(self.fractions(feed) @ self.gas.table.molar_mass)
         whole = self.number(f"feed {name}.flow", feed.flow) / (molar if feed.flow.kind == "mass flow" else 1.0)
         if feed.split is None:
             return whole
@@ -247,7 +247,7 @@ class Twin:
 
     def _mixed(self, stream: Stream | None, name: str, bed: str) -> Stream:
         feed = self.case.feeds[name]
-        F = self._amount(name, bed)[:, None] * self._fractions(feed)
+        F = self._amount(name, bed)[:, None] * self.fractions(feed)
         H = self.gas.enthalpy(F, self.number(f"feed {name}.temperature", feed.temperature))
         if stream is None:
             return Stream(F, H, np.zeros(self.D, complex))
@@ -302,6 +302,8 @@ class Twin:
         bed, owner = section.bed, section.owner
         assert bed is not None and stream is not None
         W = self.number(f"{owner}.catalyst", bed.catalyst)
+        if bed.state == "bypassed":
+            return self._behind(owner, stream, stream)
         W = W * (bed.bulk_density or 1.0) if bed.catalyst.kind == "volume" else W
         layer = Layer(
             self.gas,
@@ -314,6 +316,9 @@ class Twin:
             self.case.fluid.viscosity,
         )
         out = layer.exit(self.edges[int(owner.split()[1]) - 1])
+        return self._behind(owner, stream, out)
+
+    def _behind(self, owner: str, stream: Stream, out: Stream) -> Stream:
         self.found[f"{owner}.inlet temperature"] = self._T(stream)
         self.found[f"{owner}.exit temperature"] = self._T(out)
         self.found[f"{owner}.exit pressure"] = out.p

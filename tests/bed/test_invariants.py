@@ -62,7 +62,7 @@ def exits(rating: Rating) -> np.ndarray:
     return found * np.append(np.ones(found.shape[1] - 1), 1e-5)
 
 
-@settings(max_examples=15)
+@settings(max_examples=60)
 @given(trees())
 def test_atoms_and_energy_close_over_every_train(tree: Tree) -> None:
     train = programme(tree)
@@ -84,12 +84,14 @@ def _fed(train: Any) -> tuple[np.ndarray, float, float]:
     twin = Twin(train.case, Gas(chemistry.table, chemistry.laws), {}, 1, [])
     fed, heat = np.zeros(len(chemistry.table.names)), 0.0
     for name, feed in train.case.feeds.items():
-        flow = feed.flow.now * twin._fractions(feed)
+        shares = twin.fractions(feed)
+        molar = float(shares @ chemistry.table.molar_mass) if feed.flow.kind == "mass flow" else 1.0
+        flow = feed.flow.now / molar * shares
         fed, heat = fed + flow, heat + float(flow @ h(chemistry.table, feed.temperature.now))
     return fed, heat, float(fed @ (h(chemistry.table, 700.0) - h(chemistry.table, 600.0)))
 
 
-@settings(max_examples=15)
+@settings(max_examples=60)
 @given(trees(most_beds=1, plain=True))
 def test_one_bed_is_two_half_beds(tree: Tree) -> None:
     whole, bed = rated(tree), tree["train"][1]["bed 1"]
@@ -102,7 +104,7 @@ def test_one_bed_is_two_half_beds(tree: Tree) -> None:
     assert np.abs((exits(whole)[-1] - exits(halves)[-1]) / size).max() < 2e-7
 
 
-@settings(max_examples=15)
+@settings(max_examples=60)
 @given(trees(plain=True))
 def test_the_order_of_species_and_reactions_in_the_file_changes_nothing(tree: Tree) -> None:
     turned = {
@@ -113,7 +115,7 @@ def test_the_order_of_species_and_reactions_in_the_file_changes_nothing(tree: Tr
     assert_same(rated(tree), rated(turned), 1e-9)
 
 
-@settings(max_examples=15)
+@settings(max_examples=60)
 @given(trees(plain=True))
 def test_all_flows_and_catalyst_times_a_factor_leave_temperatures_alone(tree: Tree) -> None:
     sections = [{o: {**b, "pressure drop factor": 0} if "bed" in o else b} for s in tree["train"] for o, b in s.items()]
@@ -126,11 +128,11 @@ def test_all_flows_and_catalyst_times_a_factor_leave_temperatures_alone(tree: Tr
 
 
 def _seven_times(text: str) -> str:
-    found = re.fullmatch(r"(\S+) (kmol/h|kg|m\^3|MW)", text)
+    found = re.fullmatch(r"(\S+) (kmol/h|t/h|kg|m\^3|MW)", text)
     return f"{7.0 * float(found[1])!r} {found[2]}" if found else text
 
 
-@settings(max_examples=15)
+@settings(max_examples=60)
 @given(trees(plain=True))
 def test_the_same_case_in_other_units_gives_the_same_numbers(tree: Tree) -> None:
     kept = {key: tree[key] for key in ("heat levels", "prices")}
@@ -139,6 +141,7 @@ def test_the_same_case_in_other_units_gives_the_same_numbers(tree: Tree) -> None
 
 FACTORS = {
     "kmol/h": ("mol/s", 1e3 / 3600.0),
+    "t/h": ("kg/s", 1e3 / 3600.0),
     "kg": ("lb", 1.0 / 0.45359237),
     "m^3": ("ft^3", 1.0 / 0.3048**3),
     "MW": ("kW", 1e3),

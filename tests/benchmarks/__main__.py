@@ -21,7 +21,7 @@ PARTS = ("pass", "search", "batch", "start", "scaling")
 
 def main() -> None:
     options = arguments()
-    print(f"{load()} at the beginning; medians of rounds in which everything is measured in turn", flush=True)
+    print(f"{load()} at the beginning; time of one core unless processors are named", flush=True)
     lead = Lead() if {"pass", "search"} & set(options.only) else None
     rows: list[Row] = []
     for part in options.only:

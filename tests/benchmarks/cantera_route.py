@@ -37,8 +37,12 @@ def _species(name: str, atoms: dict[str, float], c: Array) -> ct.Species:
     """One species with a seven-coefficient polynomial: the data of the lead case are of that form."""
     assert not c[:2].any()
     data = [*c[2:7].tolist(), float(c[7]), float(c[8])]
-    thermo = {"model": "NASA7", "temperature-ranges": [200.0, 1000.0], "data": [data]}
-    thermo["reference-pressure"] = 1e5
+    thermo: Any = {
+        "model": "NASA7",
+        "temperature-ranges": [200.0, 1000.0],
+        "data": [data],
+        "reference-pressure": 1e5,
+    }
     return ct.Species.from_dict({"name": name, "composition": atoms, "thermo": thermo})
 
 

@@ -42,7 +42,7 @@ class ScipyRoute:
         drag = ergun(packing, self.lead.viscosity, float(F_in @ self.lead.molar_mass)) * R_GAS * W / p_in
 
         def slope(_: float, y: Array) -> Array:
-            F, T, p = F_in + nuT @ y[:R], 1000.0 * y[R], p_in * y[R + 1]
+            F, T, p = F_in + nuT @ y[:R], 1000.0 * float(y[R]), p_in * float(y[R + 1])
             out = np.empty(R + 2)
             r, T_w = self.gas.along(F, T, p)
             out[:R] = W / unit * r

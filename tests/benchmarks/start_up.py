@@ -11,7 +11,7 @@ from pathlib import Path
 from tempfile import TemporaryDirectory
 
 from tests.benchmarks.lead import LEAD
-from tests.benchmarks.timing import Timing, interleaved, seconds
+from tests.benchmarks.timing import WALL, Timing, interleaved, seconds
 
 ROOT = LEAD.parents[1]
 
@@ -27,7 +27,7 @@ def start_times(rounds: int = 5) -> dict[str, Timing]:
             "--help": ["--help"],
         }
         tasks: dict[str, Callable[[], object]] = {name: partial(call, words) for name, words in calls.items()}
-        return interleaved(tasks, rounds, slot=0.0)
+        return interleaved(tasks, rounds, slot=0.0, clock=WALL)
 
 
 def first_use() -> tuple[float, float]:

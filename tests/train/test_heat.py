@@ -146,7 +146,6 @@ def test_several_heaters_and_coolers_add_up() -> None:
     assert by_level["entry", "furnace"] == pytest.approx(heat_between(700.0, 520.0), rel=1e-9)
 
 
-@pytest.mark.xfail(reason="a heating level's capacity is a limit on the cheapest split, not part of it")
 def test_a_capacity_of_a_heating_level_sends_the_rest_to_the_next_one() -> None:
     """Half of what 400 to 450 K needs may come from steam at 14, the rest from oil at 25 EUR/MWh."""
     half = 0.5 * heat_between(450.0, 400.0)
@@ -189,7 +188,6 @@ def test_unpriced_heat_is_free_and_said_so() -> None:
     assert rating.number("money.total") == 0.0
 
 
-@pytest.mark.xfail(reason="the most heat of an internal number counts kg/s as mol/s")
 def test_a_feed_by_mass_has_the_same_money_as_one_by_moles() -> None:
     tree = still_train(cooled(FREE))
     first = programme(tree).rate()
