@@ -91,6 +91,8 @@ def newton(chem, bed, h, step, real, complex_, pivots, tol, work, f, point, G, U
             rate = size / before
             if rate >= 2.0 or (rate >= 1.0 and size > 100.0 * tol):
                 return False, calls
+            if rate >= 0.5 and size <= 100.0 * tol:
+                return True, calls
             if size * min(rate / max(1.0 - rate, 1e-3), 1.0) <= tol:
                 return True, calls
         before = size

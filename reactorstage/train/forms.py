@@ -104,7 +104,13 @@ class Rows:
         return cls(used, matrix, np.array([form.const for form in forms]))
 
     def of_base(self, base: Array) -> Array:
-        """Values and derivatives (M, 1 + D) from base (size, 1 + D)."""
-        out = self.matrix @ base[self.used]
+        """Values and derivatives (M, 1 + D) from base (size, 1 + D); not a number where a part is missing."""
+        used = base[self.used]
+        missing = ~np.isfinite(used[:, 0])
+        if missing.any():
+            used = np.where(missing[:, None], 0.0, used)
+        out = self.matrix @ used
         out[:, 0] += self.const
+        if missing.any():
+            out[(self.matrix[:, missing] != 0.0).any(axis=1)] = np.nan
         return out

@@ -62,7 +62,7 @@ def exits(rating: Rating) -> np.ndarray:
     return found * np.append(np.ones(found.shape[1] - 1), 1e-5)
 
 
-@settings(max_examples=60)
+@settings(max_examples=15)
 @given(trees())
 def test_atoms_and_energy_close_over_every_train(tree: Tree) -> None:
     train = programme(tree)
@@ -91,7 +91,7 @@ def _fed(train: Any) -> tuple[np.ndarray, float, float]:
     return fed, heat, float(fed @ (h(chemistry.table, 700.0) - h(chemistry.table, 600.0)))
 
 
-@settings(max_examples=60)
+@settings(max_examples=15)
 @given(trees(most_beds=1, plain=True))
 def test_one_bed_is_two_half_beds(tree: Tree) -> None:
     whole, bed = rated(tree), tree["train"][1]["bed 1"]
@@ -104,7 +104,7 @@ def test_one_bed_is_two_half_beds(tree: Tree) -> None:
     assert np.abs((exits(whole)[-1] - exits(halves)[-1]) / size).max() < 2e-7
 
 
-@settings(max_examples=60)
+@settings(max_examples=15)
 @given(trees(plain=True))
 def test_the_order_of_species_and_reactions_in_the_file_changes_nothing(tree: Tree) -> None:
     turned = {
@@ -115,7 +115,7 @@ def test_the_order_of_species_and_reactions_in_the_file_changes_nothing(tree: Tr
     assert_same(rated(tree), rated(turned), 1e-9)
 
 
-@settings(max_examples=60)
+@settings(max_examples=15)
 @given(trees(plain=True))
 def test_all_flows_and_catalyst_times_a_factor_leave_temperatures_alone(tree: Tree) -> None:
     sections = [{o: {**b, "pressure drop factor": 0} if "bed" in o else b} for s in tree["train"] for o, b in s.items()]
@@ -132,7 +132,7 @@ def _seven_times(text: str) -> str:
     return f"{7.0 * float(found[1])!r} {found[2]}" if found else text
 
 
-@settings(max_examples=60)
+@settings(max_examples=15)
 @given(trees(plain=True))
 def test_the_same_case_in_other_units_gives_the_same_numbers(tree: Tree) -> None:
     kept = {key: tree[key] for key in ("heat levels", "prices")}

@@ -50,7 +50,7 @@ def expected(W: float = W, T: float = T_IN, flow: float = FLOW) -> Inside:
     return Inside(-top.fun, top.x / W, depths)
 
 
-def inside_bed():
+def inside_bed(wanted: dict[str, str] = WANTED):
     """The programme's evaluation of the same bed on fine steps: values and derivatives per span."""
     species = {
         "benzene": {"gas data": "C6H6"},
@@ -79,7 +79,7 @@ def inside_bed():
     }
     tree = one_bed(species, reactions, feed, f"{W} kg", "20 bar(a)")
     tree["train"][1]["bed 1"]["catalyst"] = {"now": f"{W} kg", "from": "2000 kg", "to": "6000 kg"}
-    tree["limits"] = {name: {"of": f"bed 1.{name}", "at least": zero} for name, zero in WANTED.items()}
+    tree["limits"] = {name: {"of": f"bed 1.{name}", "at least": zero} for name, zero in wanted.items()}
     train = programme(tree)
     x = np.array([number.now for number in train.numbers])
     mesh = train.model.passing.adaptive(*train.model.inputs.values(x), 1e-9, most=20_000).stages

@@ -6,6 +6,7 @@ What runs on one core is measured by the processor's time: waiting for other pro
 from __future__ import annotations
 
 import os
+import resource
 import time
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
@@ -31,6 +32,12 @@ Clock = Callable[[], float]
 
 ONE_CORE: Clock = time.process_time
 WALL: Clock = time.perf_counter
+
+
+def children() -> float:
+    """Processor seconds of all processes that were started and ended."""
+    used = resource.getrusage(resource.RUSAGE_CHILDREN)
+    return used.ru_utime + used.ru_stime
 
 
 def seconds(task: Callable[[], object], calls: int = 1, clock: Clock = WALL) -> float:

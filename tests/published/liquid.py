@@ -61,6 +61,9 @@ def species(slope: float) -> Tree:
     return isomers(HEAT, CHANGE, -HEAT / slope)
 
 
+SPECIES = species(72.0)
+
+
 def bed(number: int, volume: str | Tree, T_in: str | Tree | None) -> Tree:
     """One bed of a train; 1000 kg of catalyst are 1 m3, so that kg of results are L."""
     body: Tree = {"catalyst": volume, "bulk density": "1000 kg/m^3", "pressure drop factor": 0}

@@ -46,7 +46,7 @@ def our_settings() -> Iterator[None]:
 
 @pytest.fixture(scope="module")
 def ratings(cases: Path, lead: Path) -> dict[str, Rating]:
-    """One reversible reaction in two beds, three dependent ones in four, hydrogenation partly irreversible."""
+    """One reversible reaction in two beds, three dependent ones in four, two of three in hydrogenation."""
     paths = {
         "oxidation": DATA / "oxidation.yaml",
         "lead": lead,
@@ -85,7 +85,7 @@ def test_legs_join_and_exchangers_are_level(ratings: dict[str, Rating], name: st
 
 
 def test_a_cold_shot_of_feed_goes_towards_the_feed(ratings: dict[str, Rating]) -> None:
-    """Closed form: X is diluted as 1000 to 1100 kmol/h; T nearly likewise, as heat capacities differ little."""
+    """Closed form: X is diluted as 1000 to 1100 kmol/h, T nearly likewise: heat capacities differ little."""
     shot = way(ratings["oxidation"])[1]
     assert shot.X[1] / shot.X[0] == pytest.approx(1000.0 / 1100.0, rel=1e-9)
     part = (shot.T[0] - shot.T[1]) / (shot.T[0] - (200.0 + 273.15))
