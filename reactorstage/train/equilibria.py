@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from reactorstage.bed.data import ENTHALPY, ENTROPY
 from reactorstage.chemistry.constants import R_GAS
-from reactorstage.chemistry.reaction import equilibrium_temperature, heat_of_reaction, ln_Q
+from reactorstage.chemistry.reaction import equilibrium_temperature, heat_of_reaction, ln_K, ln_Q
 from reactorstage.train.chemistry import CaseChemistry
 from reactorstage.train.layout import Layout
 
@@ -47,12 +47,12 @@ class Equilibrium:
         found = np.full(base.shape[1], np.nan)
         if (F[row != 0.0] <= 0.0).any():
             return found
-        T = equilibrium_temperature(
-            chemistry.table, row, float(ln_Q(row[None, :], F, p)[0]), float(record[layout.species + 2, 0])
-        )
+        quotient = float(ln_Q(row[None, :], F, p)[0])
+        T = equilibrium_temperature(chemistry.table, row, quotient, float(record[layout.species + 2, 0]))
         if T is None:
             return found
         slope = float(heat_of_reaction(chemistry.table, row[None, :], T)[0]) / (R_GAS * T * T)
+        T -= (float(ln_K(chemistry.table, row[None, :], T)[0]) - quotient) / slope
         used = row != 0.0
         change = row.sum()
         ln_Q_d = (row[used] / F[used]) @ record[: layout.species][used, 1:]

@@ -79,7 +79,7 @@ def fed(flows: dict[str, float], T: float) -> Tree:
 
 
 def injected_train(base: Tree, shot: Tree, volumes: list[float], T_in: list[float], p: str) -> Tree:
-    """Train of beds (m3) with inlet temperatures (degC) and the feed `shot`, which has a split, before each."""
+    """Beds (m3) with inlet temperatures (degC), fed with `base`, and with `shot` before each by its split."""
     train: list[Tree] = []
     for b, (volume, T) in enumerate(zip(volumes, T_in, strict=True), start=1):
         first = b == 1

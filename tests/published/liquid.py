@@ -24,7 +24,7 @@ Array = NDArray[np.float64]
 
 R_BOOK, E1, E2, C_A0, FLOW = 8.314, 48_900.0, 124_200.0, 4.0, 1000.0
 HEAT, CHANGE = -(E2 - E1) * R / R_BOOK, (17.34 - 42.04) * R
-REACTION = {
+REACTION: Tree = {
     "equation": "A <=> B",
     "rate per": "bed volume",
     "driven by": "mole fraction",
@@ -74,9 +74,9 @@ def bed(number: int, volume: str | Tree, T_in: str | Tree | None) -> Tree:
     return {f"bed {number}": body}
 
 
-def case(slope: float, feed: Tree, train: list[Tree], X: float | None = None, **more: Any) -> Tree:
+def case(slope: float, feed: Tree, train: list[Tree], X: float, **more: Any) -> Tree:
     """Least catalyst for a conversion of at least X."""
-    limits = {"done": {"of": "train.conversion of A", "at least": f"{100.0 * X!r} %"}} if X is not None else {}
+    done = {"of": "train.conversion of A", "at least": f"{100.0 * X!r} %"}
     return {
         **HEAD,
         "aim": "least train.catalyst",
@@ -86,7 +86,7 @@ def case(slope: float, feed: Tree, train: list[Tree], X: float | None = None, **
         "feeds": {"fresh": {"flow": f"{FLOW} mol/min", "composition": {"A": "100 %"}, **feed}},
         "train": [*train, {"effluent": []}],
         **more,
-        "limits": {**limits, **more.get("limits", {})},
+        "limits": {"done": done, **more.get("limits", {})},
     }
 
 

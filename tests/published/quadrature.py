@@ -1,4 +1,4 @@
-"""Integrals along adiabatic beds from the published law of `liquid`, and a search over a grid: no package code."""
+"""Integrals along adiabatic beds and a search over a grid, from the law of `liquid`: no package code."""
 
 from __future__ import annotations
 
@@ -40,7 +40,7 @@ class Path:
 
 
 def volume_table(X: Array, T_in: Array, slope: float) -> Array:
-    """(N, N) least volume of one bed from X[i] to X[j] over the inlet temperatures; L, inf where impossible."""
+    """(N, N) L of one bed from X[i] to X[j] at the best of the inlet temperatures; inf where impossible."""
     best = np.full((X.size, X.size), np.inf)
     width = np.diff(X)
     inner = (X[:-1, None] + width[:, None] * np.array([0.5 - 0.5 / 3.0**0.5, 0.5 + 0.5 / 3.0**0.5])).ravel()

@@ -1,7 +1,9 @@
-"""NB: n-butane isomerisation in liquid, adiabatic plug flow, Fogler, Elements of Chemical Reaction Engineering,
-4th ed. 2006, Ex. 8-3; 5th ed. 2016, Ex. 11-3.
+"""NB: n-butane isomerisation in liquid, adiabatic plug flow.
 
-Constants and the exit at 360 K read; feed temperature and the book's volumes from memory; the rest recomputed.
+Fogler, Elements of Chemical Reaction Engineering, 4th ed. 2006, Ex. 8-3; 5th ed. 2016, Ex. 11-3.
+
+Constants and the exit at 360 K read; feed temperature and the book's volumes from memory; the rest is
+recomputed.
 
     k = 31.1 exp[7906 (T - 360)/(360 T)] 1/h      Kc = 3.03 exp[-830.3 (T - 333)/(333 T)]
     r = k C_A0 [1 - (1 + 1/Kc) X]                 T = 330 + 43.3 X

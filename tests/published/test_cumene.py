@@ -1,7 +1,9 @@
 """CU: vapour-phase cumene, Turton, Bailie, Whiting, Shaeiwitz, Analysis, Synthesis and Design of Chemical
 Processes, App. B.8 (constants from memory).
 
-    r1 = 3.5e4 exp(-24.90/RT) C_P C_B      r2 = 2.9e6 exp(-35.08/RT) C_P C_C     mol/(g cat s), mol/L, kcal/mol
+    r1 = 3.5e4 exp(-24.90/RT) C_P C_B      r2 = 2.9e6 exp(-35.08/RT) C_P C_C
+
+in mol/(g cat s), mol/L and kcal/mol.
 
 9.36 m3 of bed at 25 bar with 800 kg of catalyst per m3, no pressure drop; feed propylene 105, propane 5.5,
 benzene 207 kmol/h. The expected flows were recomputed with an independent model; the book's own reactor is
@@ -19,7 +21,13 @@ from tests.published.ideal import arrhenius, powers
 
 FEED = {"benzene": 207.0, "propylene": 105.0, "propane": 5.5}
 NAMES = ("propylene", "propane", "benzene", "cumene", "diisopropylbenzene")
-CARBON = {"propylene": "C3H6", "propane": "C3H8", "benzene": "C6H6", "cumene": "C9H12", "diisopropylbenzene": "C12H18"}
+CARBON = {
+    "propylene": "C3H6",
+    "propane": "C3H8",
+    "benzene": "C6H6",
+    "cumene": "C9H12",
+    "diisopropylbenzene": "C12H18",
+}
 
 
 def propylation(equation: str, k0: float, E: float) -> Tree:

@@ -2,7 +2,8 @@
 of Chemical Processes, 3rd ed. 2009, App. B.2 (Unit 300).
 
 Inputs and the book's exit temperatures from memory; the recomputed values come from an independent adiabatic
-plug-flow model with the same constants and heat data. Rates per bed volume in concentration, no pressure drop.
+plug-flow model with the same constants and heat data. Rates per bed volume in concentration, no pressure
+drop.
 """
 
 from __future__ import annotations
@@ -18,8 +19,9 @@ from tests.published.aromatics import ETHYLATIONS, divided, ethylations, fed, in
 NAMES = ("benzene", "toluene", "ethylene", "ethane", "propylene", "ethylbenzene", "diethylbenzene")
 AROMATICS = {"benzene": 226.51, "toluene": 2.0, "ethylbenzene": 0.17}
 ETHYLENE = {"ethylene": 0.93, "ethane": 0.07}
-VOLUMES, INLETS, PRESSURES, SHOTS = [20.0, 25.0, 30.0], [383.3, 380.0, 380.0], [1985, 1960, 1935], [30.0, 35.0, 35.0]
-"""m3, degC, kPa, kmol/h."""
+VOLUMES, INLETS = [20.0, 25.0, 30.0], [383.3, 380.0, 380.0]
+PRESSURES, SHOTS = [1985, 1960, 1935], [30.0, 35.0, 35.0]
+"""m3 and degC, kPa and kmol/h, by bed."""
 
 BOOK, RECOMPUTED = [444.1, 453.4, 449.2], [443.4, 455.1, 449.9]
 """degC behind each bed."""

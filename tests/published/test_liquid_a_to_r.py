@@ -50,17 +50,17 @@ def test_AR_1_equilibrium_constant_at_298_K() -> None:
 def test_AR_2_equilibrium_conversion(celsius: int, recomputed: float, book: float) -> None:
     """From dG298 and dH298, 0.001; book from memory."""
     K = K_of(gibbs_data(298.0), celsius + 273.0)
-    assert K / (1.0 + K) == pytest.approx(recomputed, abs=1e-3)
-    assert K / (1.0 + K) == pytest.approx(book, abs=1e-3)
+    assert pytest.approx(recomputed, abs=1e-3) == K / (1.0 + K)
+    assert pytest.approx(book, abs=1e-3) == K / (1.0 + K)
 
 
 def test_AR_3_optimal_progression_up_to_95_celsius() -> None:
-    """401.1 L (recomputed, 0.2 %) for X 0.8 at the best temperature everywhere; book 405 L (from memory, 2 %).
+    """X 0.8 at the best temperature everywhere: 401.1 L (recomputed, 0.2 %); book 405 L (from memory, 2 %).
 
     No train of adiabatic beds does it: rates of the compiled case are used, at the best T for each X.
     """
     chemistry = programme(isomerising(SPECIES, REACTION["constant"], 300.0, FEED, "1 L")).model.chemistry
-    T = np.linspace(300.0, 368.15, 1364)
+    T = np.linspace(300.0, 368.15, 400)
     k = 0.06 * np.exp([float(ln_k(chemistry.laws, one)[0]) for one in T])
     K = np.exp([float(ln_K(chemistry.table, NU, one)[0]) for one in T])
     nodes, weights = np.polynomial.legendre.leggauss(400)
@@ -84,7 +84,7 @@ def test_AR_4_stirred_tank_at_its_best_temperature() -> None:
     def rate(T: float) -> float:
         return 60.0 * float(train.rate(np.array([T])).profiles[0].r[0, 0])
 
-    best = minimize_scalar(lambda T: -rate(T), bounds=(310.0, 360.0), method="bounded", options={"xatol": 1e-4})
+    best = minimize_scalar(lambda T: -rate(T), bounds=(310.0, 360.0), options={"xatol": 1e-4})
     assert best.x - 273.15 == pytest.approx(62.1, abs=0.1)
     assert rate(best.x) == pytest.approx(0.3948, abs=1e-4)
     volume = FLOW * 0.8 / rate(best.x)
@@ -114,4 +114,5 @@ def test_AR_5_slope_is_72_kelvin() -> None:
     assert pytest.approx(-75_300.0, rel=1e-4) == HEAT
     rating = best_single_bed().best
     assert rating is not None
-    assert value(rating, "bed 1.rise") / value(rating, "bed 1.conversion of A") == pytest.approx(72.0, rel=1e-6)
+    slope = value(rating, "bed 1.rise") / value(rating, "bed 1.conversion of A")
+    assert slope == pytest.approx(72.0, rel=1e-6)
