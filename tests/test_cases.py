@@ -39,7 +39,7 @@ def test_case_closes_and_meets_its_limits_at_the_optimum(name: str) -> None:
     assert outcome.status == "inside all limits" == outcome.best.status
     assert outcome.today.status == "limits broken"
     assert outcome.optimum.discretisation_error is not None
-    assert abs(outcome.optimum.discretisation_error) < 1e-6 * abs(outcome.optimum.best.cost)
+    assert abs(outcome.optimum.discretisation_error) < 3e-6 * abs(outcome.optimum.best.cost)
 
 
 @pytest.mark.parametrize("name", CASES)

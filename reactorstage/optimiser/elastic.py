@@ -53,8 +53,8 @@ class Elastic:
         """Numbers of the programme underneath."""
         return len(self.programme.numbers)
 
-    def start_mesh(self, x: Array) -> tuple[Evaluation, Any]:
-        evaluation, mesh = self.programme.start_mesh(x[: self.count])
+    def start_mesh(self, x: Array, fine: bool = False) -> tuple[Evaluation, Any]:
+        evaluation, mesh = self.programme.start_mesh(x[: self.count], fine)
         return self.stretched(evaluation, x), mesh
 
     def evaluate(self, x: Array, mesh: Any) -> Evaluation:

@@ -40,11 +40,13 @@ class Work:
 class Oracle:
     """Evaluates a programme on its current mesh and remembers the last point.
 
-    A trial point that the frozen mesh cannot do gets a mesh of its own, a few times per solve.
+    A trial point that the frozen mesh cannot do gets a mesh of its own, a few times per solve. Meshes are
+    made at search tolerance, with `fine` at the final one.
     """
 
-    def __init__(self, programme: Programme, work: Work):
+    def __init__(self, programme: Programme, work: Work, fine: bool = False):
         self.programme = programme
+        self.fine = fine
         self.work = work
         self.mesh: Any = None
         self.new_meshes = 0
@@ -54,7 +56,7 @@ class Oracle:
     def start(self, x: Array) -> Evaluation:
         """Make the mesh anew at x; the old mesh stays when that fails."""
         self.work.spend()
-        evaluation, mesh = self.programme.start_mesh(x)
+        evaluation, mesh = self.programme.start_mesh(x, self.fine)
         evaluation = checked(evaluation)
         if evaluation.ok:
             self.mesh = mesh

@@ -14,11 +14,12 @@ from reactorstage.optimiser.programme import Array, Evaluation, Programme
 from reactorstage.optimiser.result import Answer
 from reactorstage.optimiser.scaling import Point, Scale, needed, scale_at, scaled
 from reactorstage.optimiser.solve import descend
-from reactorstage.optimiser.state import State, judged
+from reactorstage.optimiser.state import State, corrected, judged
 
 SETTLED = 1e-9
 CORRECTIONS = 5
 LARGEST_STEP = 1e-2
+FINE_STEPS = 2
 SADDLE = 1e-3
 SADDLE_STEP = 0.02
 
@@ -28,8 +29,8 @@ def polished(
 ) -> Answer | None:
     """The answer at a local optimum x, sharpened and evaluated at the final tolerance.
 
-    A stationary point from which the cost falls along the limits is left first. None when x cannot be
-    evaluated.
+    A stationary point from which the cost falls along the limits is left first; the last Newton steps are
+    taken on a mesh of the final tolerance. None when x cannot be evaluated.
     """
     for _ in range(2):
         looked = looked_at(programme, x, size, stop)
@@ -43,25 +44,31 @@ def polished(
         if lower is None:
             break
         x = lower
+    for _ in range(FINE_STEPS if smallest is not None else 0):
+        finer = looked_at(programme, x, size, stop, fine=True)
+        x = finer[0] if finer is not None else x
     money = None if smallest is None else smallest * state.scale.cost
     return answer_at(programme, x, size, state.found, money)
 
 
 def looked_at(
-    programme: Programme, x: Array, size: float, stop: threading.Event | None
+    programme: Programme, x: Array, size: float, stop: threading.Event | None, fine: bool = False
 ) -> tuple[Array, State, Curvature] | None:
-    """x after a Newton step, with the state and curvature before it; None where it cannot be evaluated."""
-    oracle = Oracle(programme, Work(4 * (x.size + 10), stop))
+    """x after steps onto its limits and a Newton step along them, with the state and curvature before it.
+
+    None where it cannot be evaluated.
+    """
+    oracle = Oracle(programme, Work(4 * (x.size + 10), stop), fine)
     try:
         evaluation = oracle.start(x)
         if not evaluation.ok:
             return None
-        state = judged(oracle, x, evaluation, size)
+        state = corrected(oracle, judged(oracle, x, evaluation, size))
         curved = curvature(oracle, state)
         if curved is None:
             return None
         moved = newton(oracle, state, curved)
-        return (moved.x if moved else x), state, curved
+        return (moved or state).x, state, curved
     except OutOfWorkError:
         return None
 

@@ -29,8 +29,8 @@ class Programme(Protocol):
     def splits(self) -> tuple[SplitGroup, ...]:
         """The feeds whose division over the beds is free."""
 
-    def start_mesh(self, x: Array) -> tuple[Evaluation, Any]:
-        """Integrate with adaptive steps at search tolerance; the evaluation and the step sequence.
+    def start_mesh(self, x: Array, fine: bool = False) -> tuple[Evaluation, Any]:
+        """Integrate with adaptive steps at search tolerance, or the final one; evaluation and step sequence.
 
         A failure comes as a value: Evaluation.failure is set and the mesh is None.
         """

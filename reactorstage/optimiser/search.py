@@ -27,7 +27,7 @@ from reactorstage.optimiser.result import (
     Optimum,
     StartRecord,
 )
-from reactorstage.optimiser.scaling import typical_change
+from reactorstage.optimiser.scaling import needed, typical_change
 from reactorstage.optimiser.solve import Ending
 from reactorstage.optimiser.starts import Start
 from reactorstage.optimiser.starts import starts as starting_points
@@ -169,6 +169,10 @@ def without_answer(job: Job, endings: Sequence[Ending], records: Sequence[StartR
 
 
 def discretisation_error(programme: Programme, answer: Answer) -> float | None:
-    """Change of cost from the search's to the final tolerance at the answer, money per second."""
+    """What the search's tolerance does to the answer, money per second: to its cost and, at their worth, to
+    the limits at work."""
     evaluation, _ = programme.start_mesh(answer.x)
-    return abs(answer.cost - evaluation.cost) if evaluation.ok else None
+    if not evaluation.ok:
+        return None
+    off = (needed(evaluation.margin) - answer.margin) / needed(evaluation.weight)
+    return abs(answer.cost - evaluation.cost) + float(np.abs(answer.multipliers * off).sum())

@@ -24,9 +24,9 @@ class Counted:
         self.evaluations = 0
         self._lock = threading.Lock()
 
-    def start_mesh(self, x: Array) -> tuple[Evaluation, Any]:
+    def start_mesh(self, x: Array, fine: bool = False) -> tuple[Evaluation, Any]:
         self._count()
-        return self.programme.start_mesh(x)
+        return self.programme.start_mesh(x, fine)
 
     def evaluate(self, x: Array, mesh: Any) -> Evaluation:
         self._count()
@@ -63,8 +63,8 @@ class Shifted:
     def splits(self) -> tuple[SplitGroup, ...]:
         return self.programme.splits
 
-    def start_mesh(self, x: Array) -> tuple[Evaluation, Any]:
-        evaluation, mesh = self.programme.start_mesh(x)
+    def start_mesh(self, x: Array, fine: bool = False) -> tuple[Evaluation, Any]:
+        evaluation, mesh = self.programme.start_mesh(x, fine)
         return self._shift(evaluation), mesh
 
     def evaluate(self, x: Array, mesh: Any) -> Evaluation:
@@ -112,8 +112,8 @@ class Pinned:
         """The numbers that are left of an x of the programme underneath."""
         return np.take(x, self.kept)
 
-    def start_mesh(self, x: Array) -> tuple[Evaluation, Any]:
-        evaluation, mesh = self.programme.start_mesh(self.full(x))
+    def start_mesh(self, x: Array, fine: bool = False) -> tuple[Evaluation, Any]:
+        evaluation, mesh = self.programme.start_mesh(self.full(x), fine)
         return self._cut(evaluation), mesh
 
     def evaluate(self, x: Array, mesh: Any) -> Evaluation:

@@ -25,7 +25,7 @@ from reactorstage.train.inputs import InputBuilder, InputMap
 from reactorstage.train.layout import Layout, lay_out
 from reactorstage.train.limits import Bound, expand_limits
 from reactorstage.train.money import money_forms
-from reactorstage.train.passing import FINAL, Outcome, Pass
+from reactorstage.train.passing import FINAL, SEARCH, Outcome, Pass
 from reactorstage.train.quantities import Catalogue
 
 if TYPE_CHECKING:
@@ -157,10 +157,10 @@ class TrainProgramme:
         """x at today's setting, internal numbers at their best."""
         return self.complete(np.array([number.now for number in self.numbers]))
 
-    def start_mesh(self, x: Array) -> tuple[Evaluation, Any]:
-        """Adaptive steps at search tolerance; see `Programme`."""
+    def start_mesh(self, x: Array, fine: bool = False) -> tuple[Evaluation, Any]:
+        """Adaptive steps at search tolerance, or the final one; see `Programme`."""
         u, du = self.model.inputs.values(x)
-        outcome = self.model.passing.adaptive(u, du)
+        outcome = self.model.passing.adaptive(u, du, FINAL if fine else SEARCH)
         evaluation = self._evaluation(outcome, u, du, x)
         return evaluation, (outcome.stages if evaluation.ok else None)
 
@@ -171,8 +171,7 @@ class TrainProgramme:
 
     def final(self, x: Array) -> Evaluation:
         """As start_mesh, at the tight final tolerance."""
-        u, du = self.model.inputs.values(x)
-        return self._evaluation(self.model.passing.adaptive(u, du, FINAL), u, du, x)
+        return self.start_mesh(x, fine=True)[0]
 
     def complete(self, x: Array) -> Array:
         """x with its internal numbers (heat above levels, slacks of soft limits) at their best values."""

@@ -100,7 +100,9 @@ class OutsideBed:
         r = self.rates(F, T, p)
         heat = self.nu @ self.gas.standard_enthalpies_RT * R * T
         cp = F @ self.gas.standard_cp_R * R
-        return np.concatenate([r @ self.nu, [-(heat @ r) / cp, -self.friction(self._mass(F), self.gas.density)]])
+        return np.concatenate(
+            [r @ self.nu, [-(heat @ r) / cp, -self.friction(self._mass(F), self.gas.density)]]
+        )
 
     def _mass(self, F: Floats) -> float:
         return float(F @ self.gas.molecular_weights) / 1e3
@@ -109,5 +111,12 @@ class OutsideBed:
         """SciPy's solution with dense output."""
         start, method = np.array([*F, T, p]), options.pop("method", "LSODA")
         return solve_ivp(
-            self.slope, (0.0, W), start, method, rtol=1e-12, atol=1e-12 * F.sum(), dense_output=True, **options
+            self.slope,
+            (0.0, W),
+            start,
+            method,
+            rtol=1e-12,
+            atol=1e-12 * F.sum(),
+            dense_output=True,
+            **options,
         )

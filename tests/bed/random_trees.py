@@ -1,4 +1,4 @@
-"""Random trains for Hypothesis: one to four beds, two chemistries, every kind of gap, split and free number."""
+"""Random trains for Hypothesis: one to four beds, two chemistries, all kinds of gap, split, free number."""
 
 from __future__ import annotations
 
@@ -116,7 +116,9 @@ def _reactions(some: Some, family: Family) -> Tree:
         orders = some.choice("as written", {"SO2": 1, "O2": 1}, {"SO2": 1.2, "O2": 0.5})
         return {"oxidation": _reaction(some, family, "SO2 + 0.5 O2", "SO3", 0.25, 90.0, orders, 1.5)}
     found = {
-        "ethylation": _reaction(some, family, "benzene + ethylene", "ethylbenzene", 0.4, 66.0, "as written", 2.0)
+        "ethylation": _reaction(
+            some, family, "benzene + ethylene", "ethylbenzene", 0.4, 66.0, "as written", 2.0
+        )
     }
     if some.choice(True, False):
         found["ethylation"] |= {"orders": some.choice({"benzene": 1, "ethylene": 2}, {"ethylene": 1.3})}
@@ -148,7 +150,11 @@ def _reaction(
 
 def _constant(some: Some, family: Family, given: Tree, size: float, E: float, n: float) -> Tree:
     """A constant that makes rates of about `size` mol/(kg s) times mole fractions at T and p."""
-    base = {"partial pressure": family.p * 1e5, "concentration": family.p * 1e5 / (R * family.T), "mole fraction": 1.0}
+    base = {
+        "partial pressure": family.p * 1e5,
+        "concentration": family.p * 1e5 / (R * family.T),
+        "mole fraction": 1.0,
+    }
     per = {"catalyst mass": 1.0, "bed volume": 640.0, "void volume": 640.0 / 0.42}[given["rate per"]]
     driver = {"partial pressure": f" Pa^{n:g}", "concentration": f" (mol/m^3)^{n:g}", "mole fraction": ""}
     unit = f"mol/({'kg' if per == 1.0 else 'm^3'} s{driver[given['driven by']]})"
@@ -278,7 +284,7 @@ MONEY: Tree = {
 
 
 def _limits(family: Family, train: list[Tree]) -> Tree:
-    """Every quantity that the reference gives, bounded below by zero, and some that only the program gives."""
+    """Every quantity of the reference, bounded below by zero, and some that only the program gives."""
     names = [f"{place}.{what}" for place in PLACES for what in AT_PLACES]
     names += ["every gap.temperature after exchanger"]
     names += [f"every bed.{what}" for what in AT_BEDS]
@@ -287,12 +293,16 @@ def _limits(family: Family, train: list[Tree]) -> Tree:
     running = [owner for section in train for owner, bed in section.items() if _runs(owner, bed)]
     middle = {f"middle {bed}": {"of": f"{bed}.depth at 50 % of rise", "at most": "50 %"} for bed in running}
     approach = {"of": f"every bed.approach to equilibrium of {family.named}", "at least": "1 K"}
-    return zero | middle | {
-        "approach": approach,
-        "ratio": {"of": f"every bed.inlet ratio {family.ratio}", "at least": "3 mol/mol"},
-        "peak": {"of": "every bed.peak temperature", "at most": "800 K"},
-        "drop": {"of": "train.pressure drop", "at most": "1 bar"},
-    }
+    return (
+        zero
+        | middle
+        | {
+            "approach": approach,
+            "ratio": {"of": f"every bed.inlet ratio {family.ratio}", "at least": "3 mol/mol"},
+            "peak": {"of": "every bed.peak temperature", "at most": "800 K"},
+            "drop": {"of": "train.pressure drop", "at most": "1 bar"},
+        }
+    )
 
 
 def _runs(owner: str, bed: Tree) -> bool:

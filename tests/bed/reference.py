@@ -234,7 +234,9 @@ class Twin:
         """Molar flow of a feed into a bed: the whole, an entry of its split, or what the others leave."""
         feed = self.case.feeds[name]
         molar = float(self.fractions(feed) @ self.gas.table.molar_mass)
-        whole = self.number(f"feed {name}.flow", feed.flow) / (molar if feed.flow.kind == "mass flow" else 1.0)
+        whole = self.number(f"feed {name}.flow", feed.flow) / (
+            molar if feed.flow.kind == "mass flow" else 1.0
+        )
         if feed.split is None:
             return whole
         split = feed.split

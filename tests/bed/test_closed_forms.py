@@ -32,10 +32,16 @@ def rated(kg: float, order: float, heat: float = 0.0, E_over_R: float = 0.0) -> 
         "rate per": "catalyst mass",
         "driven by": "mole fraction",
         "orders": {"A": order},
-        "constant": {"at": "600 K", "is": f"{K} mol/(kg s)", "activation energy": f"{8.31446261815324 * E_over_R!r} J/mol"},
+        "constant": {
+            "at": "600 K",
+            "is": f"{K} mol/(kg s)",
+            "activation energy": f"{8.31446261815324 * E_over_R!r} J/mol",
+        },
     }
     feed = {"flow": f"{FLOW} mol/s", "temperature": "600 K", "composition": {"A": "100 %"}}
-    return programme(one_bed({"A": isomer(0.0), "B": isomer(heat)}, {"turn": reaction}, feed, f"{kg!r} kg")).rate()
+    return programme(
+        one_bed({"A": isomer(0.0), "B": isomer(heat)}, {"turn": reaction}, feed, f"{kg!r} kg")
+    ).rate()
 
 
 @pytest.mark.parametrize(

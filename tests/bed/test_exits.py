@@ -32,7 +32,11 @@ def reactions(rate: Tree, unit: str, arrow: str = "<=>", factor: float = 1.0) ->
     return {
         name: {
             "equation": f"{left} {arrow} {right}",
-            "constant": {"at": "400 degC", "is": f"{factor * k!r} {unit}", "activation energy": f"{E} kJ/mol"},
+            "constant": {
+                "at": "400 degC",
+                "is": f"{factor * k!r} {unit}",
+                "activation energy": f"{E} kJ/mol",
+            },
             **rate,
         }
         for name, (left, right, k, E) in KINETICS.items()
@@ -68,7 +72,7 @@ def test_exit_of_a_bed_is_that_of_canteras_flow_reactor(volume: float, arrow: st
     net.advance(volume / reactor.area)
     expected = mass * gas.Y / gas.molecular_weights * 1e3
     assert np.abs(F - expected).max() < CLOSE * FLOW
-    assert T == pytest.approx(gas.T, rel=CLOSE)
+    assert pytest.approx(gas.T, rel=CLOSE) == T
     assert p == pytest.approx(P_IN, rel=1e-12)
 
 
@@ -87,7 +91,12 @@ def mechanism(arrow: str) -> ct.Solution:
 @pytest.mark.parametrize("size", ["2.4 mm", "0.3 mm"])
 def test_exit_with_pressure_drop_is_that_of_lsoda(size: str) -> None:
     """Independent program: SciPy's LSODA at 1e-12 with Cantera's properties; up to a third of p is lost."""
-    geometry = {"diameter": "1.8 m", "bulk density": "640 kg/m^3", "void fraction": "41 %", "equivalent size": size}
+    geometry = {
+        "diameter": "1.8 m",
+        "bulk density": "640 kg/m^3",
+        "void fraction": "41 %",
+        "equivalent size": size,
+    }
     per_mass = {"rate per": "catalyst mass", "driven by": "partial pressure"}
     tree = one_bed(
         ALKYLATION_SPECIES,
@@ -99,10 +108,12 @@ def test_exit_with_pressure_drop_is_that_of_lsoda(size: str) -> None:
     )
     F, T, p = tight_exit(tree)
     F_in = FLOW / 100.0 * np.array([SHARES[name] for name in NAMES])
-    bed = OutsideBed(NAMES, partial_pressure_reactions(), ergun(1.8, 640.0, 0.41, float(size.split()[0]) / 1e3))
+    bed = OutsideBed(
+        NAMES, partial_pressure_reactions(), ergun(1.8, 640.0, 0.41, float(size.split()[0]) / 1e3)
+    )
     found = bed.run(F_in, T_IN, P_IN, 4000.0).y[:, -1]
     assert np.abs(F - found[:-2]).max() < CLOSE * FLOW
-    assert T == pytest.approx(found[-2], rel=CLOSE)
+    assert pytest.approx(found[-2], rel=CLOSE) == T
     assert p == pytest.approx(found[-1], rel=CLOSE)
     assert p / P_IN < (0.99 if size == "2.4 mm" else 0.75)
 

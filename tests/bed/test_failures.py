@@ -10,7 +10,7 @@ import pytest
 
 from reactorstage.train.programme import TrainProgramme
 from reactorstage.train.result import Rating
-from tests.bed.build import EVERY_BED, FLUID, HEAD, Tree, changed, load, one_bed, programme
+from tests.bed.build import EVERY_BED, FLUID, HEAD, Tree, changed, one_bed, programme
 
 
 def inline(enthalpy: float, low: float = 250.0, high: float = 900.0) -> Tree:
@@ -96,7 +96,14 @@ def three_beds(catalyst: str = "20 t") -> Tree:
         {"bed 3": bed},
         {"effluent": []},
     ]
-    return {**tree, **HEAD, "aim": "least train.catalyst", "fluid": FLUID, "feeds": {**feeds, "side": side}, "train": train}
+    return {
+        **tree,
+        **HEAD,
+        "aim": "least train.catalyst",
+        "fluid": FLUID,
+        "feeds": {**feeds, "side": side},
+        "train": train,
+    }
 
 
 def test_the_beds_before_a_failure_are_rated() -> None:
@@ -145,7 +152,7 @@ def test_dead_catalyst_passes_the_stream(activity: float) -> None:
 
 
 def test_a_bed_that_starts_empty_can_be_filled_on_the_same_steps() -> None:
-    """The mesh of a bed without catalyst serves an evaluation with catalyst, or the evaluation says it does not."""
+    """Steps of a bed without catalyst serve an evaluation with catalyst, or the evaluation refuses them."""
     tree = isomer_bed(-20.0)
     tree["train"][1]["bed 1"]["catalyst"] = {"now": "0 kg", "from": "0 kg", "to": "500 kg"}
     tree["limits"] = {"hot": {"of": "bed 1.exit temperature", "at least": "0 K"}}

@@ -83,7 +83,7 @@ def _fed(train: Any) -> tuple[np.ndarray, float, float]:
     chemistry = train.model.chemistry
     twin = Twin(train.case, Gas(chemistry.table, chemistry.laws), {}, 1, [])
     fed, heat = np.zeros(len(chemistry.table.names)), 0.0
-    for name, feed in train.case.feeds.items():
+    for feed in train.case.feeds.values():
         shares = twin.fractions(feed)
         molar = float(shares @ chemistry.table.molar_mass) if feed.flow.kind == "mass flow" else 1.0
         flow = feed.flow.now / molar * shares
@@ -118,7 +118,11 @@ def test_the_order_of_species_and_reactions_in_the_file_changes_nothing(tree: Tr
 @settings(max_examples=15)
 @given(trees(plain=True))
 def test_all_flows_and_catalyst_times_a_factor_leave_temperatures_alone(tree: Tree) -> None:
-    sections = [{o: {**b, "pressure drop factor": 0} if "bed" in o else b} for s in tree["train"] for o, b in s.items()]
+    sections = [
+        {o: {**b, "pressure drop factor": 0} if "bed" in o else b}
+        for s in tree["train"]
+        for o, b in s.items()
+    ]
     tree = {**tree, "train": sections}
     first, second = rated(tree), rated(texts(tree, _seven_times))
     factor = np.append(np.full(len(first.species), 7.0), [1.0, 1.0])
@@ -181,10 +185,14 @@ def test_turndown_to_half_lights_earlier_and_drops_a_quarter_of_the_pressure(lea
     """Ergun's inertial term goes with the square of the flow; conversion comes closer to equilibrium."""
     full, half = rated(lead_tree), rated(texts(lead_tree, _half))
     for bed in ("bed 1", "bed 4"):
-        assert number(half, f"{bed}.depth at 50 % of rise") < 0.7 * number(full, f"{bed}.depth at 50 % of rise")
+        assert number(half, f"{bed}.depth at 50 % of rise") < 0.7 * number(
+            full, f"{bed}.depth at 50 % of rise"
+        )
         assert number(half, f"{bed}.conversion of ethylene") > number(full, f"{bed}.conversion of ethylene")
         assert 0.24 < number(half, f"{bed}.pressure drop") / number(full, f"{bed}.pressure drop") < 0.32
-    assert number(half, "gap 1.heat removed") == pytest.approx(0.5 * number(full, "gap 1.heat removed"), rel=0.05)
+    assert number(half, "gap 1.heat removed") == pytest.approx(
+        0.5 * number(full, "gap 1.heat removed"), rel=0.05
+    )
 
 
 def _half(text: str) -> str:

@@ -34,7 +34,9 @@ def long_bed(reaction: Tree, shares: dict[str, float], T: float, p: float) -> Ra
     feed = {
         "flow": "300 mol/s",
         "temperature": f"{T!r} K",
-        "composition": {name: "rest" if i == 0 else f"{100.0 * y!r} %" for i, (name, y) in enumerate(shares.items())},
+        "composition": {
+            name: "rest" if i == 0 else f"{100.0 * y!r} %" for i, (name, y) in enumerate(shares.items())
+        },
     }
     named = {"benzene": "C6H6", "ethylene": "C2H4", "ethylbenzene": "C8H10,ethylbenz"}
     known = {name: {"gas data": named.get(name, name)} for name in shares}

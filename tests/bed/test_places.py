@@ -44,7 +44,9 @@ def expected(W: float = W, T: float = T_IN, flow: float = FLOW) -> Inside:
     grid = np.linspace(0.0, W, 2001)
     middle = grid[int(np.argmax(profile(grid)[-2]))]
     near = (max(0.0, middle - W / 500), min(W, middle + W / 500))
-    top = minimize_scalar(lambda w: -profile(w)[-2], bounds=near, method="bounded", options={"xatol": 1e-9 * W})
+    top = minimize_scalar(
+        lambda w: -profile(w)[-2], bounds=near, method="bounded", options={"xatol": 1e-9 * W}
+    )
     targets = [T + share * (run.y[-2, -1] - T) for share in (0.1, 0.5, 0.9)]
     depths = tuple(brentq(lambda w, t=t: profile(w)[-2] - t, 0.0, top.x, xtol=1e-13) / W for t in targets)
     return Inside(-top.fun, top.x / W, depths)

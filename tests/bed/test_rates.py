@@ -37,7 +37,12 @@ EQUATIONS = {
 
 def bed() -> Tree:
     """One bed with pressure drop whose feed holds every species; five numbers are free."""
-    every = {"diameter": "2 m", "bulk density": "640 kg/m^3", "void fraction": "42 %", "equivalent size": "5 mm"}
+    every = {
+        "diameter": "2 m",
+        "bulk density": "640 kg/m^3",
+        "void fraction": "42 %",
+        "equivalent size": "5 mm",
+    }
     constant = {"rate per": "catalyst mass", "driven by": "mole fraction", "constant": "1 mol/(kg s)"}
     shares = {"SO2": "9 %", "O2": "12 %", "SO3": "3 %", "NO": "2 %", "N2": "rest"}
     free = {
@@ -100,7 +105,9 @@ def _least(n: float, m: float, reversible: bool) -> float:
 
 
 def _order(draw: Any, least: float) -> float:
-    return float(draw(st.sampled_from([n for n in (-0.5, -0.3, 0.0, 0.5, 0.8, 1.0, 1.5, 2.0, 3.0) if n >= least])))
+    return float(
+        draw(st.sampled_from([n for n in (-0.5, -0.3, 0.0, 0.5, 0.8, 1.0, 1.5, 2.0, 3.0) if n >= least]))
+    )
 
 
 def _constant(draw: Any, size: float, total: float, n: float) -> Constant:
@@ -112,7 +119,10 @@ def _constant(draw: Any, size: float, total: float, n: float) -> Constant:
 def _factor(draw: Any, driver: str) -> Denominator:
     terms = [Term(Constant(0.0), {})]
     for _ in range(draw(st.integers(1, 2))):
-        name, n = draw(st.sampled_from(["SO2", "SO3", "NO", "O2"])), draw(st.sampled_from([0.5, 1.0, 2.0, -0.5]))
+        name, n = (
+            draw(st.sampled_from(["SO2", "SO3", "NO", "O2"])),
+            draw(st.sampled_from([0.5, 1.0, 2.0, -0.5])),
+        )
         ln_K = float(np.log(draw(st.floats(0.3, 10.0))) - n * np.log(TOTALS[driver]))
         terms.append(Term(Constant(ln_K, T_REF, draw(st.floats(-9e3, 2e3))), {name: n}))
     return Denominator(tuple(terms), draw(st.sampled_from([1.0, 2.0, 0.5])))

@@ -14,14 +14,19 @@ from pathlib import Path
 from tests.benchmarks import batch, scaling, search, start_up
 from tests.benchmarks.lead_rows import Lead, gradient_rows, rating_rows
 from tests.benchmarks.table import Row, markdown, plain, timed
-from tests.benchmarks.timing import Timing, load
+from tests.benchmarks.timing import Timing, load, machine
 
 PARTS = ("pass", "search", "batch", "start", "scaling")
 
 
 def main() -> None:
     options = arguments()
-    print(f"{load()} at the beginning; time of one core unless processors are named", flush=True)
+    print(
+        machine(),
+        f"{load()} at the beginning; time of one core unless processors or wall are named",
+        sep="\n",
+        flush=True,
+    )
     lead = Lead() if {"pass", "search"} & set(options.only) else None
     rows: list[Row] = []
     for part in options.only:
@@ -36,7 +41,7 @@ def main() -> None:
         if options.figures:
             print(f"written: {scaling.draw(found_growths, options.figures)}")
     if options.markdown:
-        print("", *markdown(rows), sep="\n")
+        print("", *markdown(rows), "", f"{machine()}.", sep="\n")
 
 
 def arguments() -> argparse.Namespace:
@@ -72,7 +77,7 @@ def search_rows(lead: Lead) -> Iterator[Row]:
     what = "the same by SciPy with forward differences, once from today's setting"
     yield Row(what, scipy.seconds, "s", note=note)
     many = search.many_starts(lead.programme)
-    cores = f"{os.cpu_count()} processors"
+    cores = f"wall, {os.cpu_count()} processors"
     yield timed("40 starts", many["search"], "s", at_most=1.5, note=cores)
     yield timed("40 starts with the explanation of the best", many["with explanation"], "s", note=cores)
 
@@ -83,7 +88,7 @@ def batch_rows() -> Iterator[Row]:
     if run is None:
         yield Row(name, None, "s", note="no rate_many in this version")
         return
-    note = f"{os.cpu_count()} processors, {run.processor:.1f} s of processor time; {run.failed} failed"
+    note = f"wall, {os.cpu_count()} processors; {run.processor:.1f} s of processor time; {run.failed} failed"
     yield Row(name, run.seconds, "s", target=("at most", 6.0), note=note)
     yield Row("peak memory of that process", run.peak, "MB", target=("at most", 500.0))
 

@@ -17,6 +17,7 @@ from tests.benchmarks.cantera_route import FlowRoute, ParcelRoute, solution
 from tests.benchmarks.kernel_route import KernelRoute
 from tests.benchmarks.lead import Array, lead_case, lead_numbers
 from tests.benchmarks.scipy_route import ScipyRoute
+from tests.benchmarks.scipy_together import TogetherRoute
 from tests.benchmarks.search import STEP
 from tests.benchmarks.table import Row, ratio, timed
 from tests.benchmarks.timing import interleaved
@@ -36,6 +37,7 @@ class Lead:
         self.yardstick = Yardstick.of(self.programme, self.numbers)
         self.error = kernel_error(self.programme, self.yardstick)
         self.scipy = self.yardstick.chosen(partial(ScipyRoute, self.numbers), self.error)
+        self.together = TogetherRoute(self.numbers, self.scipy.tolerance)
         self.low = np.array([number.low for number in self.programme.numbers])
         self.span = np.array([number.high for number in self.programme.numbers]) - self.low
 
@@ -59,6 +61,7 @@ def gradient_rows(lead: Lead, rounds: int) -> list[Row]:
         "adaptive": lead.in_turn(lead.programme.start_mesh),
         "scipy value": lead.in_turn(lead.scipy.route.value),
         "scipy both": lead.in_turn(lambda x: lead.scipy.route.value_and_gradient(x, step)),
+        "together": lead.in_turn(lambda x: lead.together.value_and_gradient(x, step)),
     }
     symbolic = chosen_casadi(lead)
     if symbolic is not None:
@@ -78,7 +81,15 @@ def gradient_rows(lead: Lead, rounds: int) -> list[Row]:
             found["scipy both"],
             note=said["scipy both"],
         ),
-        ratio("SciPy over this kernel, both", found["scipy both"], found["both"], at_least=150.0),
+        ratio(
+            "SciPy over the kernel, value and gradient", found["scipy both"], found["both"], at_least=150.0
+        ),
+        timed(
+            "SciPy LSODA, all forward differences in one vectorised integration",
+            found["together"],
+            note=said["together"],
+        ),
+        ratio("the same over the kernel", found["together"], found["both"]),
     ]
     if symbolic is None:
         return [*rows, Row("CasADi with CVODES forward sensitivities", None, "ms", note="not installed")]
@@ -90,7 +101,7 @@ def gradient_rows(lead: Lead, rounds: int) -> list[Row]:
             found["casadi both"],
             note=said["casadi both"],
         ),
-        ratio("CasADi over this kernel, both", found["casadi both"], found["both"]),
+        ratio("CasADi over the kernel, value and gradient", found["casadi both"], found["both"]),
     ]
 
 
@@ -116,13 +127,13 @@ def rating_rows(lead: Lead, rounds: int) -> list[Row]:
     return [
         timed("rating without gradient", found["kernel"], note="pressure drop off, as Cantera needs it"),
         timed("Cantera, plug-flow reactors", found["flow"], note=chosen_note(flow)),
-        ratio("Cantera's plug-flow reactors over this kernel", found["flow"], found["kernel"], at_least=4.0),
+        ratio("Cantera's plug-flow reactors over the kernel", found["flow"], found["kernel"], at_least=4.0),
         timed(
             "Cantera, parcels of gas with residence times known beforehand",
             found["parcel"],
             note=f"a bound, no rating; {chosen_note(parcel)}",
         ),
-        ratio("Cantera's parcels over this kernel", found["parcel"], found["kernel"]),
+        ratio("Cantera's parcels over the kernel", found["parcel"], found["kernel"]),
     ]
 
 
@@ -138,6 +149,7 @@ def gradient_errors(lead: Lead, symbolic: Chosen[casadi_route.CasadiRoute] | Non
     found = {
         "both": lead.kernel.value_and_gradient(x, lead.kernel.mesh(x)),
         "scipy both": lead.scipy.route.value_and_gradient(x, STEP * lead.span),
+        "together": lead.together.value_and_gradient(x, STEP * lead.span),
     }
     if symbolic is not None:
         found["casadi both"] = symbolic.route.value_and_gradient(x)

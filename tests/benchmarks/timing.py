@@ -6,10 +6,12 @@ What runs on one core is measured by the processor's time: waiting for other pro
 from __future__ import annotations
 
 import os
+import platform
 import resource
 import time
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
+from importlib.metadata import version
 from statistics import median
 
 
@@ -67,6 +69,14 @@ def repeats(task: Callable[[], object], slot: float) -> int:
     """How often a task goes into a slot, at least once."""
     first = seconds(task)
     return 1 if first >= slot else max(1, round(slot / seconds(task)))
+
+
+def machine() -> str:
+    """What the numbers were measured on, without a name."""
+    libraries = ", ".join(f"{name} {version(name)}" for name in ("numpy", "scipy", "numba", "cantera"))
+    return (
+        f"{os.cpu_count()} processors ({platform.machine()}), Python {platform.python_version()}, {libraries}"
+    )
 
 
 def load() -> str:

@@ -92,7 +92,7 @@ class ToyTrain:
         self.splits = (SplitGroup("ethylene", (0, 1, 2), ETHYLENE, 0.0, 4),)
         self._delay = delay
 
-    def start_mesh(self, x: Array) -> tuple[Evaluation, Any]:
+    def start_mesh(self, x: Array, fine: bool = False) -> tuple[Evaluation, Any]:
         self._delay()
         return self._evaluation(x, x), x.copy()
 

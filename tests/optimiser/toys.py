@@ -69,7 +69,7 @@ class Toy:
         self._lock = threading.Lock()
         self.calls = {"start_mesh": 0, "evaluate": 0, "final": 0}
 
-    def start_mesh(self, x: Array) -> tuple[Evaluation, Any]:
+    def start_mesh(self, x: Array, fine: bool = False) -> tuple[Evaluation, Any]:
         self._count("start_mesh")
         failure = self._fails(x)
         return (Evaluation(failure), None) if failure else (self._values(x, x), x.copy())

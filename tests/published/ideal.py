@@ -8,7 +8,7 @@ R = 8.31446261815324
 
 
 def isomers(heat: float, entropy_change: float, capacity: float) -> Tree:
-    """A and B of one formula: A => B with `heat` J/mol and `entropy_change` J/(mol K) at every temperature."""
+    """A and B of one formula; A => B has `heat` J/mol and `entropy_change` J/(mol K) at every temperature."""
     return {
         "A": constant("C4H10", 0.0, 400.0, capacity),
         "B": constant("C4H10", heat, 400.0 + entropy_change, capacity),
@@ -28,7 +28,9 @@ def powers(formula: str, enthalpy: float, entropy: float, capacities: list[float
         "enthalpy of formation": f"{enthalpy!r} J/mol",
         "entropy": f"{entropy!r} J/(mol K)",
         "standard pressure": "1 bar(a)",
-        "heat capacity": {"powers of T": [f"{c!r} {unit}" for c, unit in zip(capacities, units, strict=True)]},
+        "heat capacity": {
+            "powers of T": [f"{c!r} {unit}" for c, unit in zip(capacities, units, strict=True)]
+        },
     }
 
 

@@ -50,14 +50,18 @@ def reactions(*names: str) -> Tree:
     return {
         name: {
             "equation": RATES[name][0],
-            "constant": arrhenius(RATES[name][1], RATES[name][2] / 1.987, f"kmol/(m^3 s (kmol/m^3)^{RATES[name][3]})"),
+            "constant": arrhenius(
+                RATES[name][1], RATES[name][2] / 1.987, f"kmol/(m^3 s (kmol/m^3)^{RATES[name][3]})"
+            ),
             **per,
         }
         for name in names
     }
 
 
-def three_beds(volumes: list[float], T_in: list[float], ethylene: list[float], names: list[str], **more: Tree) -> Tree:
+def three_beds(
+    volumes: list[float], T_in: list[float], ethylene: list[float], names: list[str], **more: Tree
+) -> Tree:
     """Ethylene shots (kmol/h of C2H4) in front of the beds; pressure drop off, 1985 kPa."""
     train: list[Tree] = []
     for b, (volume, T) in enumerate(zip(volumes, T_in, strict=True), start=1):
@@ -99,7 +103,7 @@ def test_EB_1_rate_constants_at_673_K() -> None:
 
 
 def turton() -> Tree:
-    """EB-2: 226.51 kmol/h benzene with 2 toluene and 0.17 ethylbenzene; 30 + 35 + 35 kmol/h of 93 % ethylene."""
+    """EB-2: 226.51 kmol/h benzene, 2 toluene, 0.17 ethylbenzene; 30 + 35 + 35 kmol/h of 93 % ethylene."""
     tree = three_beds([20.0, 25.0, 30.0], [383.3, 380.0, 380.0], [30.0, 35.0, 35.0], list(RATES))
     total = 226.51 + 2.0 + 0.17
     aromatics = {"toluene": f"{200.0 / total!r} %", "ethylbenzene": f"{17.0 / total!r} %", "benzene": "rest"}
@@ -149,7 +153,11 @@ def turton_bed(flows: dict[str, float], volume: float, T: float, p: float) -> Tr
     """One bed of the published train: flows in kmol/h, m3, degC, kPa."""
     total = sum(flows.values())
     shares = {name: f"{100.0 * flow / total!r} %" for name, flow in flows.items() if name != "benzene"}
-    feed = {"flow": f"{total!r} kmol/h", "temperature": f"{T!r} degC", "composition": {**shares, "benzene": "rest"}}
+    feed = {
+        "flow": f"{total!r} kmol/h",
+        "temperature": f"{T!r} degC",
+        "composition": {**shares, "benzene": "rest"},
+    }
     names = ("benzene", "toluene", "ethylene", "ethane", "propylene", "ethylbenzene", "diethylbenzene")
     return one_bed(species(*names), reactions(*RATES), feed, f"{volume!r} m^3", f"{p!r} kPa(a)")
 
@@ -176,7 +184,9 @@ def test_AL_1_ethylbenzene_follows_from_benzene_alone(split: list[float]) -> Non
 
     It holds behind every bed for any temperatures, volumes and ethylene split.
     """
-    rating = programme(three_beds([20.0, 25.0, 30.0], [383.3, 380.0, 380.0], split, ["first", "second"])).rate()
+    rating = programme(
+        three_beds([20.0, 25.0, 30.0], [383.3, 380.0, 380.0], split, ["first", "second"])
+    ).rate()
     B0 = 226.51
     for bed in (1, 2, 3):
         B, EB, DEB = (per_hour(rating, f"bed {bed}.exit flow of {name}") for name in PRODUCTS)
@@ -245,7 +255,12 @@ def cumene_bed(T: float, known: Tree) -> Tree:
 
 def without_heats() -> Tree:
     """Species whose reactions neither give nor take heat: an isothermal bed."""
-    carbon = {"benzene": ("C6H6", 6), "propylene": ("C3H6", 3), "cumene": ("C9H12", 9), "propane": ("C3H8", 3)}
+    carbon = {
+        "benzene": ("C6H6", 6),
+        "propylene": ("C3H6", 3),
+        "cumene": ("C9H12", 9),
+        "propane": ("C3H8", 3),
+    }
     carbon["diisopropylbenzene"] = ("C12H18", 12)
     return {name: powers(formula, 0.0, 300.0, [20.0 * n]) for name, (formula, n) in carbon.items()}
 

@@ -119,7 +119,6 @@ def test_CS_1_conditions_vanish_as_far_as_the_steps_of_the_search_go(beds: int) 
     assert worst(paths(optimum(beds))) < 1e-5
 
 
-@pytest.mark.xfail(reason="the answer is sharpened on the coarser steps of the search: up to 5e-6 remain")
 @pytest.mark.parametrize("beds", [2, 3])
 def test_CS_1_conditions_vanish(beds: int) -> None:
     """1e-6, the tolerance of OPT-4."""

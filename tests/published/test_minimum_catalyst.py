@@ -133,7 +133,6 @@ def test_OPT_4_rates_across_the_cooler_of_OPT_2() -> None:
         assert 60.0 * r == pytest.approx(0.789437, rel=1e-4)
 
 
-@pytest.mark.xfail(reason="sharpened on the coarser steps of the search: 1e-5, the first inlet 1e-4 K off")
 def test_OPT_4_rates_across_the_coolers_of_OPT_3() -> None:
     """Condition (1), 1e-6."""
     assert np.abs(ratios(found("OPT-3"))).max() < 1e-6

@@ -8,6 +8,7 @@ The beds of OPT-7 (recomputed in two ways, not published): T = T_in + 235.2 K (X
 
 from __future__ import annotations
 
+from itertools import pairwise
 from math import log
 
 import numpy as np
@@ -39,7 +40,9 @@ def collina() -> RateLaw:
         2.0,
     )
     k = Constant(12.160 + log(kmol_per_hour) - 2.0 * LN_ATM, E_over_R=5473.0)
-    return RateLaw("oxidation", NU, {"SO2": 1.0, "O2": 1.0}, k, "partial pressure", True, denominators=(slowed,))
+    return RateLaw(
+        "oxidation", NU, {"SO2": 1.0, "O2": 1.0}, k, "partial pressure", True, denominators=(slowed,)
+    )
 
 
 def species() -> Tree:
@@ -60,14 +63,24 @@ def bed(X_in: float, T_in: float, kg_per_kmol_per_hour: float) -> TrainProgramme
     moles = {name: n + NU.get(name, 0.0) * X_in for name, n in moles.items()}
     total = sum(moles.values())
     shares = {name: f"{100.0 * n / total!r} %" for name, n in moles.items() if name != "N2"}
-    feed = {"flow": f"{total!r} kmol/h", "temperature": f"{T_in!r} K", "composition": {**shares, "N2": "rest"}}
-    stand_in = {"rate per": "catalyst mass", "driven by": "partial pressure", "constant": "1 mol/(kg s Pa^1.5)"}
+    feed = {
+        "flow": f"{total!r} kmol/h",
+        "temperature": f"{T_in!r} K",
+        "composition": {**shares, "N2": "rest"},
+    }
+    stand_in = {
+        "rate per": "catalyst mass",
+        "driven by": "partial pressure",
+        "constant": "1 mol/(kg s Pa^1.5)",
+    }
     reaction = {"equation": "SO2 + 0.5 O2 <=> SO3", **stand_in}
     tree = one_bed(species(), {"oxidation": reaction}, feed, f"{kg_per_kmol_per_hour!r} kg", "1 atm(a)")
     return with_laws(programme(tree), [collina()])
 
 
-@pytest.mark.parametrize(("T", "rate"), [(693.0, 7.011e-4), (723.0, 7.939e-3), (753.0, 1.457e-2), (783.0, 2.091e-2)])
+@pytest.mark.parametrize(
+    ("T", "rate"), [(693.0, 7.011e-4), (723.0, 7.939e-3), (753.0, 1.457e-2), (783.0, 2.091e-2)]
+)
 def test_SO2_6_rates_at_half_conversion(T: float, rate: float) -> None:
     """kmol/(kg h) at X = 0.5 of 7.8/10.8/81.4 %, 1 atm (law from memory, rates recomputed, as printed)."""
     found = bed(0.5, T, 1e-6).rate().profiles[0].r[0, 0]
@@ -110,7 +123,7 @@ def test_inlet_layer_is_resolved() -> None:
         return 1.0 / published_rate(X, 659.58 + SLOPE * X)
 
     parts = [0.0, 1e-3, 1e-2, 0.1, 0.5, 0.7, X_out]
-    W = sum(quad(inverse, a, b, epsabs=0.0, epsrel=1e-11)[0] for a, b in zip(parts, parts[1:], strict=False))
+    W = sum(quad(inverse, a, b, epsabs=0.0, epsrel=1e-11)[0] for a, b in pairwise(parts))
     assert pytest.approx(211.12, rel=1e-7) == W
 
 

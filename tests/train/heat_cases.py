@@ -32,7 +32,11 @@ def still_train(
     effluent: list[Tree], entry: Sequence[Tree] = (), levels: Tree = LEVELS, T: str = "700 K", **more: Any
 ) -> Tree:
     """Benzene through one bypassed bed and the steps of an effluent."""
-    constant = {"rate per": "catalyst mass", "driven by": "partial pressure", "constant": "1e-9 mol/(kg s Pa^2)"}
+    constant = {
+        "rate per": "catalyst mass",
+        "driven by": "partial pressure",
+        "constant": "1e-9 mol/(kg s Pa^2)",
+    }
     feed = {"flow": f"{FLOW} mol/s", "temperature": T, "composition": {"benzene": "100 %"}}
     return {
         **HEAD,
@@ -42,7 +46,14 @@ def still_train(
         "feeds": {"fresh": feed},
         "train": [
             {"entry": [{"take": "fresh"}, *entry]},
-            {"bed 1": {"catalyst": "1 t", "inlet pressure": "19 bar(a)", "state": "bypassed", "pressure drop factor": 0}},
+            {
+                "bed 1": {
+                    "catalyst": "1 t",
+                    "inlet pressure": "19 bar(a)",
+                    "state": "bypassed",
+                    "pressure drop factor": 0,
+                }
+            },
             {"effluent": effluent},
         ],
         "heat levels": {"minimum approach": f"{APPROACH} K", **levels},
@@ -82,7 +93,9 @@ def best_cost_with_capacities(
     for hot, cold in streams:
         ends = sorted({cold, hot, *[e for e in edges if cold < e < hot]})
         slices += [(low, heat_between(high, low)) for low, high in pairwise(ends)]
-    prices = np.array([[price if reach <= low else 1e6 for reach, price, _ in rungs.values()] for low, _ in slices])
+    prices = np.array(
+        [[price if reach <= low else 1e6 for reach, price, _ in rungs.values()] for low, _ in slices]
+    )
     n, m = prices.shape
     each_slice, each_level = np.kron(np.eye(n), np.ones(m)), np.kron(np.ones(n), np.eye(m))
     found = linprog(

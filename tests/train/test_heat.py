@@ -113,7 +113,9 @@ HEATERS: Tree = {
 ENDS = {"steam": 465.0, "oil": 555.0, "furnace": 885.0}
 
 
-@pytest.mark.parametrize(("T_in", "T_out"), [(400.0, 450.0), (400.0, 500.0), (400.0, 700.0), (470.0, 560.0), (600.0, 700.0)])
+@pytest.mark.parametrize(
+    ("T_in", "T_out"), [(400.0, 450.0), (400.0, 500.0), (400.0, 700.0), (470.0, 560.0), (600.0, 700.0)]
+)
 def test_a_heater_takes_the_cheapest_level_that_is_hot_enough(T_in: float, T_out: float) -> None:
     entry = [{"heat": {"to": f"{T_out} K", "heat from": "every heating level"}}]
     rating = programme(still_train([], entry, HEATERS, f"{T_in} K")).rate()

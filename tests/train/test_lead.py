@@ -42,7 +42,7 @@ KINETICS = (
 
 
 def test_the_whole_train_is_that_of_lsoda_with_canteras_properties(rating: Rating) -> None:
-    """Independent program: four beds one after another, SciPy at 1e-12; 1e-7 of feed, temperature, pressure."""
+    """Independent program: SciPy at 1e-12, four beds; 1e-7 of feed, temperature and pressure."""
     outside = OutsideBed(NAMES, KINETICS, ergun(1.8, 640.0, 0.41, 2.4e-3))
     F, p = np.array([965.0, 0.0, 0.0, 0.0, 0.0]) / KMOL_PER_H, 19.4e5
     shot = 67.0 / KMOL_PER_H * np.array([0.0, 0.9985, 0.0015, 0.0, 0.0])
@@ -77,7 +77,9 @@ def test_rating_is_near_an_earlier_independent_model(rating: Rating) -> None:
     assert exits == pytest.approx([424.3, 423.0, 422.0, 421.0], abs=1.0)
     assert rating.number("effluent.flow of diethylbenzene") * KMOL_PER_H == pytest.approx(18.2, rel=0.02)
     assert rating.number("effluent.flow of ethylene") * KMOL_PER_H == pytest.approx(0.91, abs=0.2)
-    assert sum(rating.number(f"gap {gap}.heat removed") for gap in (1, 2, 3)) / 1e6 == pytest.approx(4.57, rel=0.02)
+    assert sum(rating.number(f"gap {gap}.heat removed") for gap in (1, 2, 3)) / 1e6 == pytest.approx(
+        4.57, rel=0.02
+    )
     assert rating.number("bed 4.inlet ratio benzene/ethylene") == pytest.approx(11.4, abs=0.1)
     assert [(one.label, one.owner) for one in rating.limits if not one.met] == [("coking", "bed 4")]
 
@@ -125,7 +127,7 @@ OPTIMUM = {
 
 
 def test_cost_at_the_optimum(train: TrainProgramme) -> None:
-    """Frozen: computed with the shipped data (kmol/h and degC as printed); guards against unintended change."""
+    """Frozen: computed with the shipped data, in kmol/h and degC; guards against unintended change."""
     x = [
         OPTIMUM[n.name] + 273.15 if n.kind == "temperature" else OPTIMUM[n.name] / KMOL_PER_H
         for n in train.numbers
@@ -143,7 +145,7 @@ def test_work_of_a_rating_is_bounded(rating: Rating) -> None:
 
 
 def test_work_of_an_evaluation_is_bounded(train: TrainProgramme) -> None:
-    """Frozen with a quarter to spare: 61 steps and 787 right-hand sides on a new mesh, 415 to 604 on an old one."""
+    """Frozen with a quarter to spare: 61 steps, 787 right-hand sides on new steps, 415 to 604 on old ones."""
     x = train.now
     evaluation, mesh = train.start_mesh(x)
     span = np.array([number.high - number.low for number in train.numbers])

@@ -29,7 +29,13 @@ def states(rating: Rating, label: str) -> dict[str, LimitState]:
 
 
 def test_every_bed_expands_and_the_particular_replaces_the_general(tree: Tree) -> None:
-    limits = {"hot": {"of": "every bed.exit temperature", "at most": "424 degC", "except": {"bed 3": {"at most": "420 degC"}}}}
+    limits = {
+        "hot": {
+            "of": "every bed.exit temperature",
+            "at most": "424 degC",
+            "except": {"bed 3": {"at most": "420 degC"}},
+        }
+    }
     found = states(programme({**tree, "limits": limits}).rate(), "hot")
     assert list(found) == [f"bed {b} at most" for b in (1, 2, 3, 4)]
     bounds = [one.bound - 273.15 for one in found.values()]
@@ -62,7 +68,9 @@ def test_a_limit_says_the_same_in_every_unit(tree: Tree) -> None:
         ("effluent.flow of ethylene", "1.35 kmol/h", "0.375 mol/s"),
         ("gap 1.heat removed", "2 MW", "2000 kW"),
     ]
-    limits = {f"{name} {k}": {"of": name, "at most": text} for name, *two in pairs for k, text in enumerate(two)}
+    limits = {
+        f"{name} {k}": {"of": name, "at most": text} for name, *two in pairs for k, text in enumerate(two)
+    }
     bounds = {one.label: one.bound for one in programme({**tree, "limits": limits}).rate().limits}
     for name, *_ in pairs:
         assert bounds[f"{name} 0"] == pytest.approx(bounds[f"{name} 1"], rel=1e-12)
@@ -102,7 +110,12 @@ def test_a_soft_limit_shows_where_it_stands_without_its_slack(tree: Tree) -> Non
 
 def test_completed_numbers_hold_at_the_tolerance_of_a_rating(tree: Tree) -> None:
     """Internal numbers are found at the search tolerance; the rating must not call their limits broken."""
-    effluent = {"cool": {"to": {"now": "190 degC", "from": "150 degC", "to": "260 degC"}, "heat to": "every cooling level"}}
+    effluent = {
+        "cool": {
+            "to": {"now": "190 degC", "from": "150 degC", "to": "260 degC"},
+            "heat to": "every cooling level",
+        }
+    }
     limited = changed(tree, "train", 8, to={"effluent": [effluent]})
     limited["heat levels"]["steam 9 bar"]["capacity"] = "1 MW"
     rating = programme({**limited, "limits": {}}).rate()
@@ -129,7 +142,9 @@ def test_the_rest_of_shares_may_not_be_negative(tree: Tree) -> None:
     for bed in (1, 2, 3, 4):
         name = f"bed {bed}.injected ethylene"
         assert whole.number(name) == pytest.approx(parts.number(name), rel=1e-12)
-    x = train.now + np.where([number.bed == 1 and number.role == "split" for number in train.numbers], 0.5, 0.0)
+    x = train.now + np.where(
+        [number.bed == 1 and number.role == "split" for number in train.numbers], 0.5, 0.0
+    )
     evaluation, _ = train.start_mesh(x)
     row = next(i for i, one in enumerate(train.limits) if one.label == "no negative injection")
     assert evaluation.margin[row] == pytest.approx(-0.25 * 268.0 / 3.6, rel=1e-9)
@@ -160,4 +175,6 @@ def test_cooling_before_or_after_an_injection_leaves_the_same_bed_but_another_ex
         assert second.number(name) == pytest.approx(first.number(name), rel=1e-9)
     exchanger = "gap 1.temperature after exchanger"
     assert second.number(exchanger) > first.number(exchanger) + 5.0
-    assert second.number("bed 2.inlet temperature") == pytest.approx(first.number("bed 2.inlet temperature"), rel=1e-12)
+    assert second.number("bed 2.inlet temperature") == pytest.approx(
+        first.number("bed 2.inlet temperature"), rel=1e-12
+    )

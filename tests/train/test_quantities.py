@@ -54,10 +54,14 @@ def test_bed_quantities_are_what_their_names_say(rating: Rating) -> None:
         made = value("exit flow of ethylbenzene") - value("inlet flow of ethylbenzene")
         assert value("conversion of ethylene") == pytest.approx(1.0 - left / fed, rel=1e-12)
         assert value("made ethylbenzene") == pytest.approx(made, rel=1e-12)
-        assert value("selectivity to ethylbenzene from ethylene") == pytest.approx(made / (fed - left), rel=1e-12)
+        assert value("selectivity to ethylbenzene from ethylene") == pytest.approx(
+            made / (fed - left), rel=1e-12
+        )
         ratio = value("inlet flow of benzene") / fed
         assert value("inlet ratio benzene/ethylene") == pytest.approx(ratio, rel=1e-12)
-        assert value("rise") == pytest.approx(value("exit temperature") - value("inlet temperature"), rel=1e-12)
+        assert value("rise") == pytest.approx(
+            value("exit temperature") - value("inlet temperature"), rel=1e-12
+        )
         drop = value("inlet pressure") - value("exit pressure")
         assert value("pressure drop") == pytest.approx(drop, rel=1e-12)
 
@@ -69,7 +73,9 @@ def test_train_quantities_are_what_their_names_say(rating: Rating) -> None:
     assert rating.number("train.made ethylbenzene") == pytest.approx(made, rel=1e-12)
     selectivity = rating.number("train.selectivity to ethylbenzene from ethylene")
     assert selectivity == pytest.approx(made / (fed - left), rel=1e-12)
-    assert rating.number("train.overall ratio benzene/ethylene") == pytest.approx(965.0 / 3.6 / fed, rel=1e-12)
+    assert rating.number("train.overall ratio benzene/ethylene") == pytest.approx(
+        965.0 / 3.6 / fed, rel=1e-12
+    )
     assert rating.number("train.catalyst") == pytest.approx(13_300.0)
     drops = sum(rating.number(f"bed {bed}.pressure drop") for bed in (1, 2, 3, 4))
     assert rating.number("train.pressure drop") == pytest.approx(drops, rel=1e-12)
@@ -172,11 +178,15 @@ NO_VALUE = pytest.mark.xfail(reason="a margin that is not a number fails the who
         "conversion of ethylene",
     ],
 )
-def test_a_limit_on_what_does_not_exist_in_one_bed_lets_the_train_be_evaluated(tree: Tree, quantity: str) -> None:
+def test_a_limit_on_what_does_not_exist_in_one_bed_lets_the_train_be_evaluated(
+    tree: Tree, quantity: str
+) -> None:
     """Bed 1 gets no ethylene: its limit is met, as the rating says, and the other beds count."""
     now = {"bed 1": "0 kmol/h", "bed 2": "100 kmol/h", "bed 3": "100 kmol/h", "bed 4": "rest"}
     shut = changed(tree, "feeds", "ethylene", "split", to={"now": now, "free": "all"})
-    unit = {"depth": "99 %", "approach": "-900 K", "inlet": "0 mol/mol", "conversion": "0 %"}[quantity.split()[0]]
+    unit = {"depth": "99 %", "approach": "-900 K", "inlet": "0 mol/mol", "conversion": "0 %"}[
+        quantity.split()[0]
+    ]
     bound = {"at most" if quantity.startswith("depth") else "at least": unit}
     train = programme({**shut, "limits": {"x": {"of": f"every bed.{quantity}", **bound}}})
     states = [one for one in train.rate().limits if one.label == "x"]
@@ -204,7 +214,7 @@ def test_the_depth_of_the_peak_has_exact_derivatives_or_none() -> None:
 
 @pytest.mark.xfail(reason="the later device then misses its own temperature")
 def test_an_inlet_is_not_held_through_a_device_that_fixes_its_outlet(tree: Tree) -> None:
-    """cool holds bed 2's inlet, then a heater goes `to` another temperature: one of the two must be refused."""
+    """A cooler holds bed 2's inlet, then a heater goes `to` a temperature: one of them must be refused."""
     steps = [
         {"inject": "ethylene"},
         {"cool": {"holds": "bed 2.inlet temperature", "heat to": "unpriced"}},
