@@ -7,6 +7,8 @@ import numpy as np
 from reactorstage.bed.compiled import compiled
 from reactorstage.bed.layout import at_edges
 
+THIRD = 1.0 / 3.0
+
 
 @compiled
 def first_coefficient(chem, s, T):
@@ -35,7 +37,7 @@ def heat_and_enthalpy(chem, T, work):
         work[2 * S + s] = (
             (-c[j] * inv + c[j + 1] * lnT + c[j + 7]) * inv
             + c[j + 2]
-            + T * (c[j + 3] / 2.0 + T * (c[j + 4] / 3.0 + T * (c[j + 5] / 4.0 + T * c[j + 6] / 5.0)))
+            + T * (c[j + 3] * 0.5 + T * (c[j + 4] * THIRD + T * (c[j + 5] * 0.25 + T * c[j + 6] * 0.2)))
         )
 
 
@@ -49,7 +51,7 @@ def entropy(chem, T, work):
         work[3 * S + s] = (
             (-0.5 * c[j] * inv - c[j + 1]) * inv
             + c[j + 2] * lnT
-            + T * (c[j + 3] + T * (c[j + 4] / 2.0 + T * (c[j + 5] / 3.0 + T * c[j + 6] / 4.0)))
+            + T * (c[j + 3] + T * (c[j + 4] * 0.5 + T * (c[j + 5] * THIRD + T * c[j + 6] * 0.25)))
             + c[j + 8]
         )
 

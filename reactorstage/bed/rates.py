@@ -60,9 +60,15 @@ def power(a, n, delta):
 def products(real, orders, count, delta, work, local, L, slopes):
     """Product of a_k^n_k over the members of a law; its slope by each a_k into the row `slopes` of work.
 
-    orders is the position of n_k in real; local that of the rows a, values, ... (each L) in work.
+    orders is the position of n_k in real; local that of the rows a, values, ... (each L) in work. No slopes
+    are made when `slopes` is negative.
     """
     total = 1.0
+    if slopes < 0:
+        for k in range(count):
+            if real[orders + k] != 0.0:
+                total *= power(work[local + k], real[orders + k], delta)[0]
+        return total
     for k in range(count):
         value, slope = power(work[local + k], real[orders + k], delta)
         work[local + L + k] = value
@@ -130,11 +136,11 @@ def term_constant(real, term, T):
 
 
 @compiled
-def denominator(chem, q, count, delta, T, work):
+def denominator(chem, q, count, delta, T, work, slopes):
     """Product of the factors under reaction q with d/dT; slopes by the members into the fifth local row."""
     L, local, real, whole = chem.L, at_local(chem), chem.real, chem.whole
     kind, powers = q * (KIND + L), at_power(chem)
-    out, slopes = local + 4 * L, local + 3 * L
+    out = local + 4 * L
     total, total_T = 1.0, 0.0
     for k in range(count):
         work[out + k] = 0.0
@@ -147,7 +153,7 @@ def denominator(chem, q, count, delta, T, work):
             size = K * products(real, term + 3, count, delta, work, local, L, slopes)
             under += size
             under_T += size * K_T
-        for t in range(first, last):
+        for t in range(first, last if slopes >= 0 else first):
             term = powers + chem.factors + t * (3 + L)
             K, _ = term_constant(real, term, T)
             products(real, term + 3, count, delta, work, local, L, slopes)
@@ -169,7 +175,8 @@ def rates(chem, bed, T, p, work, with_slopes):
     """
     S, R, L, real, whole = chem.S, chem.R, chem.L, chem.real, chem.whole
     local, rate, member, factor = at_local(chem), at_rate(chem), at_member(chem), at_factor(chem)
-    slope, back_slope = local + 2 * L, local + 3 * L
+    slope = local + 2 * L if with_slopes else -1
+    back_slope = local + 3 * L if with_slopes else -1
     F_total = 0.0
     for s in range(S):
         F_total += work[s]
@@ -191,15 +198,15 @@ def rates(chem, bed, T, p, work, with_slopes):
             force -= back
             back *= real[law + 5]
             force_T, force_p = back * lnK_T, back * lnK_p
-            for k in range(count):
+            for k in range(count if with_slopes else 0):
                 work[slope + k] -= share * work[back_slope + k]
         if whole[kind + 4] > whole[kind + 3]:
-            under, under_T = denominator(chem, q, count, delta, T, work)
+            under, under_T = denominator(chem, q, count, delta, T, work, back_slope)
             force /= under
             back /= under
             force_T = (force_T - force * under_T) / under
             force_p /= under
-            for k in range(count):
+            for k in range(count if with_slopes else 0):
                 work[slope + k] = (work[slope + k] - force * work[local + 4 * L + k]) / under
         work[rate + q] = constant * force
         if with_slopes:

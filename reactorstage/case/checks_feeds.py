@@ -67,7 +67,7 @@ def check_sum(
 def check_split(name: str, split: SplitWritten, flow: Number, findings: Findings) -> None:
     path: TreePath = ("feeds", name, "split", "now")
     entries = {bed: entry for bed, entry in split.now.items() if entry is not None}
-    check_free(name, split, findings)
+    check_free(name, split, flow, findings)
     if not one_rest(split.now, path, findings):
         return
     wrong = [bed for bed, entry in entries.items() if entry.kind not in (flow.kind, "fraction")]
@@ -87,7 +87,7 @@ def check_split(name: str, split: SplitWritten, flow: Number, findings: Findings
         check_sum(f"the split of {name}", split.now, known, whole, kind, path, findings)
 
 
-def check_free(name: str, split: SplitWritten, findings: Findings) -> None:
+def check_free(name: str, split: SplitWritten, flow: Number, findings: Findings) -> None:
     """What `free` names must be there, and something must take what is left."""
     path: TreePath = ("feeds", name, "split")
     named, rest = free_beds(split), rest_of(split)
@@ -104,6 +104,10 @@ def check_free(name: str, split: SplitWritten, findings: Findings) -> None:
         findings.add(
             (*path, "now"), message, f"write `rest` for one, as in {list(split.now)[-1]}: rest", True
         )
+    shares = [entry for entry in split.now.values() if entry is not None and entry.kind == "fraction"]
+    if flow.free and rest is None and not shares:
+        message = f"the flow of {name} is free, but its split is of fixed flows"
+        findings.add((*path, "now"), message, "write shares in %, or `rest` for one bed", True)
     if rest in ranged:
         message = f"{rest} takes what is left, so it has no range of its own"
         findings.add(

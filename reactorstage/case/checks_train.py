@@ -66,6 +66,7 @@ def check_train(case: CaseWritten, reactions: Mapping[str, Reaction], findings: 
         for path, step in part.steps:
             if step.heat or step.cool:
                 check_device(part, path, step, case, beds, findings)
+        check_behind_holder(part, findings)
     check_held(parts, beds, findings)
     check_beds(beds, reactions, findings)
 
@@ -190,6 +191,20 @@ def check_device(
     if device.holds:
         check_holds(part, (*path, "holds"), device.holds, beds, findings)
     check_levels_of(path, device, case, findings)
+
+
+def check_behind_holder(part: Part, findings: Findings) -> None:
+    """Behind the device that holds the inlet of the next bed nothing may fix another temperature."""
+    held = False
+    for path, step in part.steps:
+        device = step.heat or step.cool
+        if device is None:
+            continue
+        if held and device.to is not None:
+            verb = "heat" if step.heat else "cool"
+            message = f"the inlet of {part.next_bed} is held by an earlier device, which would undo this one"
+            findings.add((*path, verb, "to"), message, "let the last device of the gap hold the inlet")
+        held = held or device.holds is not None
 
 
 def check_holds(part: Part, path: TreePath, holds: str, beds: Mapping[str, Part], findings: Findings) -> None:

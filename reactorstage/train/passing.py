@@ -64,8 +64,8 @@ class Pass:
 
     def tolerance(self, flow: float, values_only: bool = False) -> Tolerance:
         """Newton goes to rounding where derivatives are taken, else well below the error of a step."""
-        newton = 1e-3 * flow if values_only else 1e-5 * flow
-        return Tolerance(flow, 100.0 * flow, min(newton, 1e-8 if values_only else 1e-13), self.named)
+        newton = min(1e-3 * flow, 1e-8) if values_only else min(1e-6 * flow, 1e-12)
+        return Tolerance(flow, 100.0 * flow, newton, self.named)
 
     def adaptive(
         self,

@@ -139,9 +139,10 @@ class TrainProgramme:
         self.numbers: tuple[FreeNumber, ...] = self.model.numbers
         self.limits: tuple[LimitRow, ...] = tuple(bound.row for bound in self.model.bounds)
         self.splits: tuple[SplitGroup, ...] = self.model.layout.splits
-        self._top = Rows.of([bound.margin() for bound in self.model.bounds])
-        self._weight = Rows.of([bound.weight() for bound in self.model.bounds])
-        self._aim = Rows.of([self.model.aim.top, self.model.aim.bottom or Linear(const=1.0)])
+        bounds, aim = self.model.bounds, self.model.aim
+        forms = [*(one.margin() for one in bounds), *(one.weight() for one in bounds)]
+        self._scales = np.array([bound.row.scale for bound in bounds])
+        self._rows = Rows.of([*forms, aim.top, aim.bottom or Linear(const=1.0)])
         self._sign = 1.0 if case.aim.direction == "least" else -1.0
 
     @property
@@ -158,7 +159,10 @@ class TrainProgramme:
         return self.complete(np.array([number.now for number in self.numbers]))
 
     def start_mesh(self, x: Array, fine: bool = False) -> tuple[Evaluation, Any]:
-        """Adaptive steps at search tolerance, or the final one; see `Programme`."""
+        """Adaptive steps at search tolerance, or the final one; see `Programme`.
+
+        A limit on what does not exist there is met, by its scale.
+        """
         u, du = self.model.inputs.values(x)
         outcome = self.model.passing.adaptive(u, du, FINAL if fine else SEARCH)
         evaluation = self._evaluation(outcome, u, du, x)
@@ -198,10 +202,14 @@ class TrainProgramme:
         if outcome.failure:
             return Evaluation(outcome.failure, work=outcome.evaluations)
         base = self.model.base(outcome.out, u, du, x, self.model.wanted_equilibria)
-        margin, weight = self._top.of_base(base), self._weight.of_base(base)
-        aim = self._aim.of_base(base)
-        if not (np.isfinite(margin).all() and np.isfinite(aim).all() and aim[1, 0] != 0.0):
-            return Evaluation("a limit or the aim has no value here", work=outcome.evaluations)
+        M = len(self.limits)
+        margin, weight, aim = np.split(self._rows.of_base(base), (M, 2 * M))
+        if not (np.isfinite(aim).all() and aim[1, 0] != 0.0):
+            return Evaluation("the aim has no value here", work=outcome.evaluations)
+        missing = ~np.isfinite(margin).all(axis=1)
+        if missing.any():
+            margin[missing], weight[missing] = 0.0, 0.0
+            margin[missing, 0], weight[missing, 0] = self._scales[missing], 1.0
         cost = aim[0, 0] / aim[1, 0]
         cost_dx = (aim[0, 1:] - cost * aim[1, 1:]) / aim[1, 0]
         return Evaluation(
@@ -242,18 +250,21 @@ class _Draft:
         x_start = first + len(equilibria)
         counted = self._ladder(x_start, users, 0)
         draft = Catalogue(self.layout, self.chemistry, {}, self._levels(counted), equilibria)
-        slacks = sum(bound.row.soft_price is not None for bound in expand_limits(self.case, draft, counted))
-        ladder = self._ladder(x_start, users, len(counted.internal) + slacks)
+        draft = replace(draft, money=money_forms(self.case, draft, counted, Linear()))
+        prices = [bound.row.soft_price for bound in expand_limits(self.case, draft, counted)]
+        soft = [price for price in prices if price is not None]
+        ladder = self._ladder(x_start, users, len(counted.internal) + len(soft))
         internal = [
             FreeNumber(name, 0.0, 0.0, self._most_heat(), "power", role="internal")
             for name in ladder.internal
         ]
+        first_slack = x_start + users + len(internal)
+        price = total([at(first_slack + k) * one for k, one in enumerate(soft)])
         catalogue = replace(draft, levels=self._levels(ladder))
+        catalogue = replace(catalogue, money=money_forms(self.case, catalogue, ladder, price))
         bounds = expand_limits(self.case, catalogue, ladder)
-        softened, slack_numbers, price = _soften(bounds, x_start + users + len(internal))
+        softened, slack_numbers = _soften(bounds, first_slack)
         numbers = (*self.inputs.numbers, *internal, *slack_numbers)
-        money = money_forms(self.case, catalogue, ladder, price)
-        catalogue = replace(catalogue, money=money)
         return Model(
             case=self.case,
             chemistry=self.chemistry,
@@ -317,21 +328,19 @@ class _Draft:
         return named
 
 
-def _soften(bounds: list[Bound], first: int) -> tuple[list[Bound], list[FreeNumber], Linear]:
-    """Soft limits get a slack number each, priced: margin + slack >= 0."""
+def _soften(bounds: list[Bound], first: int) -> tuple[list[Bound], list[FreeNumber]]:
+    """Soft limits get a slack number each, from position `first` on: margin + slack >= 0."""
     numbers: list[FreeNumber] = []
-    price = Linear()
     softened: list[Bound] = []
     for bound in bounds:
         if bound.row.soft_price is None:
             softened.append(bound)
             continue
         slack = at(first + len(numbers))
-        price = price + slack * bound.row.soft_price
         name = f"{bound.row.name}, beyond the limit"
         numbers.append(FreeNumber(name, 0.0, 0.0, 100.0 * bound.row.scale, bound.row.kind, role="internal"))
         softened.append(replace(bound, slack=slack))
-    return softened, numbers, price
+    return softened, numbers
 
 
 def _beds(case: Case, chemistry: CaseChemistry, layout: Layout) -> Beds:

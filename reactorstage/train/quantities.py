@@ -239,7 +239,6 @@ PATTERNS: tuple[Pattern, ...] = (
     Pattern("bed", "inlet temperature", lambda c, b: Form("temperature", c.layout.temperature(b.inlet))),
     Pattern("bed", "exit temperature", lambda c, b: Form("temperature", c.layout.temperature(b.exit))),
     Pattern("bed", "peak temperature", lambda c, b: Form("temperature", c.layout.extra(b.number - 1, 0))),
-    Pattern("bed", "depth of the peak", lambda c, b: Form("fraction", c.layout.extra(b.number - 1, 1))),
     Pattern(
         "bed",
         "rise",
@@ -328,6 +327,7 @@ def _reported(owner: str, words: str) -> Pattern:
 
 
 REPORTED: tuple[Pattern, ...] = (
+    _reported("bed", "depth of the peak"),
     _reported("bed", "equilibrium temperature"),
     _reported("bed", "potential rise"),
     _reported("bed", "utilisation"),

@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from reactorstage.bed.train_pass import EXTRAS
 from reactorstage.chemistry.thermo import h
+from reactorstage.train.limits import names_of
 from reactorstage.train.passing import Outcome
 from reactorstage.train.potential import bed_potentials, potential_values, unlit_notes
 from reactorstage.train.result import HeatSale, LimitState, Profile, Rating, StepState, Value
@@ -43,7 +44,7 @@ def rate(programme: TrainProgramme, x: Array, dense: bool, tolerance: float) -> 
         status = "inside all limits" if all(one.met or one.soft for one in limits) else "limits broken"
         atoms, energy = closure(model, base)
         quantities |= _closures(atoms, energy)
-    quantities |= _outside(model, profiles)
+    quantities |= _peaks(model, profiles) | _outside(model, profiles)
     roles = _roles(model, base) if not outcome.failure else ("", "", "", ())
     potentials = bed_potentials(model, base, profiles, roles[0])
     quantities |= potential_values(model, potentials)
@@ -92,6 +93,8 @@ def _quantities(model: Model, outcome: Outcome, base: Array) -> dict[str, Value]
     values: dict[str, Value] = {}
     listed = [
         *model.catalogue.names(),
+        model.case.aim.quantity,
+        *(name for price in model.case.prices.values() for _, name in names_of(price.of, model.layout)),
         *(b.row.quantity for b in model.bounds if b.row.label != "heat ladder"),
     ]
     for name in dict.fromkeys(listed):
@@ -123,6 +126,17 @@ def _closures(atoms: float, energy: float) -> dict[str, Value]:
     return {"train.atom closure": Value(atoms, "number"), "train.energy closure": Value(energy, "number")}
 
 
+def _peaks(model: Model, profiles: tuple[Profile, ...]) -> dict[str, Value]:
+    """Depth of the hottest place of every bed that was reached."""
+    places = {one.owner: one.w_peak / one.w[-1] if one.w[-1] > 0.0 else 0.0 for one in profiles}
+    return {
+        f"{bed.owner}.depth of the peak": Value(
+            places.get(bed.owner), "fraction", "" if bed.owner in places else "not reached"
+        )
+        for bed in model.layout.beds
+    }
+
+
 def _outside(model: Model, profiles: tuple[Profile, ...]) -> dict[str, Value]:
     """Share of each bed's catalyst outside the validity window of each rate law that states one."""
     values: dict[str, Value] = {}
@@ -130,23 +144,28 @@ def _outside(model: Model, profiles: tuple[Profile, ...]) -> dict[str, Value]:
         for name, reaction in model.case.reactions.items():
             if reaction.valid is None:
                 continue
-            out = np.zeros(len(profile.w), dtype=bool)
-            for window, along in (
-                (reaction.valid.temperature, profile.T),
-                (reaction.valid.pressure, profile.p),
-            ):
-                if window is not None:
-                    out |= (along < window[0] - 1e-9) | (along > window[1] + 1e-9)
-            share = _share_of_catalyst(profile.w, out)
+            inside = [
+                np.minimum(along - window[0], window[1] - along) / (window[1] - window[0])
+                for window, along in (
+                    (reaction.valid.temperature, profile.T),
+                    (reaction.valid.pressure, profile.p),
+                )
+                if window is not None
+            ]
+            share = _share_below_zero(profile.w, np.min(inside, axis=0)) if inside else 0.0
             values[f"{profile.owner}.outside validity of {name}"] = Value(share, "fraction")
     return values
 
 
-def _share_of_catalyst(w: Array, out: NDArray[np.bool_]) -> float:
+def _share_below_zero(w: Array, inside: Array) -> float:
+    """Share of the catalyst where a piecewise linear `inside` (N,) is below zero."""
     if len(w) < 2 or w[-1] <= 0.0:
         return 0.0
-    widths = np.diff(w)
-    return float((widths * 0.5 * (out[1:].astype(float) + out[:-1])).sum() / w[-1])
+    below = np.maximum(-inside, 0.0)
+    ends, spread = below[1:] + below[:-1], np.abs(np.diff(inside))
+    same_side = (inside[1:] < 0.0) == (inside[:-1] < 0.0)
+    share = np.where(same_side, inside[1:] < 0.0, ends / np.where(spread > 0.0, spread, 1.0))
+    return float((np.diff(w) * share).sum() / w[-1])
 
 
 def _limit(bound: Bound, base: Array) -> LimitState:

@@ -166,7 +166,9 @@ BEDS = (
     self_slowed("product order -0.5", -0.5, 10.0),
     self_slowed("product order -1", -1.0, 2.0),
     inhibited("reactant order -0.5", 30.0),
-    turn("adsorption lets go", -60e3, Reaction(TO_B, 300.0, 60e3, under={"A": 1e3}), THIN, 740.0, named=("A",)),
+    turn(
+        "adsorption lets go", -60e3, Reaction(TO_B, 300.0, 60e3, under={"A": 1e3}), THIN, 740.0, named=("A",)
+    ),
     chain("traces at zero", 1.0, 0.1, 3.0, named=("B", "C")),
     chain("rates 1e6 apart", 1.0, 1e6, 34.0, named=("A", "B")),
     chain("rates 1e6 apart, not named", 1.0, 1e6, 34.0),

@@ -52,7 +52,13 @@ class Trial:
     def size(self, quantity: str) -> float:
         """A sensible scale: 100 K, 0.2 bar, 400 mol/s, their heat through 100 K; else 1."""
         flow = 400.0
-        words = {"temperature": 100.0, "pressure": 2e4, "removed": 1e4 * flow, "exchanger": 100.0}
+        words = {
+            "temperature": 100.0,
+            "pressure": 2e4,
+            "drop": 2e4,
+            "removed": 1e4 * flow,
+            "exchanger": 100.0,
+        }
         if ".approach " in quantity:
             return 100.0
         return (

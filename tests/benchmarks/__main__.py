@@ -12,7 +12,7 @@ from collections.abc import Iterator
 from pathlib import Path
 
 from tests.benchmarks import batch, scaling, search, start_up
-from tests.benchmarks.lead_rows import Lead, gradient_rows, rating_rows
+from tests.benchmarks.lead_rows import LeadRoutes, gradient_rows, rating_rows
 from tests.benchmarks.table import Row, markdown, plain, timed
 from tests.benchmarks.timing import Timing, load, machine
 
@@ -27,7 +27,7 @@ def main() -> None:
         sep="\n",
         flush=True,
     )
-    lead = Lead() if {"pass", "search"} & set(options.only) else None
+    lead = LeadRoutes() if {"pass", "search"} & set(options.only) else None
     rows: list[Row] = []
     for part in options.only:
         if part == "scaling":
@@ -53,7 +53,7 @@ def arguments() -> argparse.Namespace:
     return parser.parse_args()
 
 
-def rows_of(part: str, lead: Lead | None, rounds: int) -> Iterator[Row]:
+def rows_of(part: str, lead: LeadRoutes | None, rounds: int) -> Iterator[Row]:
     """The rows of one part."""
     if part == "batch":
         yield from batch_rows()
@@ -65,7 +65,7 @@ def rows_of(part: str, lead: Lead | None, rounds: int) -> Iterator[Row]:
             yield from rating_rows(lead, rounds)
 
 
-def search_rows(lead: Lead) -> Iterator[Row]:
+def search_rows(lead: LeadRoutes) -> Iterator[Row]:
     local = search.local_optima(lead.programme)
     ended = f"{local.ended} of {len(local.endings)} starts ended at a local optimum"
     yield timed("one local optimum, median over 20 starts, one core", local.timing, at_most=50.0, note=ended)

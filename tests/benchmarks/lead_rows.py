@@ -23,11 +23,12 @@ from tests.benchmarks.table import Row, ratio, timed
 from tests.benchmarks.timing import interleaved
 
 NO_PRESSURE_DROP = tuple(f"bed {b}.pressure drop factor=0" for b in range(1, 5))
+ONE_BED = (*NO_PRESSURE_DROP, *(f"bed {b}.catalyst=0 t" for b in range(2, 5)))
 NEAR = 0.02
 """Every pass is at another setting, this share of the ranges away from the one of the frozen mesh."""
 
 
-class Lead:
+class LeadRoutes:
     """The lead case with every route at equal accuracy."""
 
     def __init__(self) -> None:
@@ -52,7 +53,7 @@ class Lead:
         return lambda: function(next(settings))
 
 
-def gradient_rows(lead: Lead, rounds: int) -> list[Row]:
+def gradient_rows(lead: LeadRoutes, rounds: int) -> list[Row]:
     """Value and gradient: kernel, finite differences, forward sensitivities."""
     mesh, step = lead.kernel.mesh(lead.programme.now), STEP * lead.span
     tasks = {
@@ -105,7 +106,7 @@ def gradient_rows(lead: Lead, rounds: int) -> list[Row]:
     ]
 
 
-def rating_rows(lead: Lead, rounds: int) -> list[Row]:
+def rating_rows(lead: LeadRoutes, rounds: int) -> list[Row]:
     """A rating without gradient and without pressure drop: kernel and Cantera."""
     programme = compile(lead_case(*NO_PRESSURE_DROP))
     numbers, kernel = lead_numbers(programme), KernelRoute(programme)
@@ -116,11 +117,15 @@ def rating_rows(lead: Lead, rounds: int) -> list[Row]:
     parcel = yardstick.chosen(partial(ParcelRoute, numbers, gas), error)
     for x in lead.settings():
         parcel.route.value(x)
+    inlet = numbers.benzene + numbers.injection(programme.now[0]), programme.now[3]
     found = interleaved(
         {
             "kernel": lead.in_turn(kernel.value),
             "flow": lead.in_turn(flow.route.value),
             "parcel": lead.in_turn(parcel.route.value),
+            "kernel, one": partial(KernelRoute(compile(lead_case(*ONE_BED))).value, programme.now),
+            "flow, one": partial(flow.route.bed, 0, *inlet),
+            "parcel, one": partial(parcel.route.bed, 0, *inlet),
         },
         rounds,
     )
@@ -134,16 +139,19 @@ def rating_rows(lead: Lead, rounds: int) -> list[Row]:
             note=f"a bound, no rating; {chosen_note(parcel)}",
         ),
         ratio("Cantera's parcels over the kernel", found["parcel"], found["kernel"]),
+        timed("one bed: rating without gradient", found["kernel, one"], note="limits and money included"),
+        timed("one bed: Cantera, plug-flow reactor", found["flow, one"], note="the bed alone"),
+        timed("one bed: Cantera, parcel", found["parcel, one"], note="the bed alone"),
     ]
 
 
-def chosen_casadi(lead: Lead) -> Chosen[casadi_route.CasadiRoute] | None:
+def chosen_casadi(lead: LeadRoutes) -> Chosen[casadi_route.CasadiRoute] | None:
     if not casadi_route.INSTALLED:
         return None
     return lead.yardstick.chosen(partial(casadi_route.CasadiRoute, lead.numbers), lead.error)
 
 
-def gradient_errors(lead: Lead, symbolic: Chosen[casadi_route.CasadiRoute] | None) -> dict[str, str]:
+def gradient_errors(lead: LeadRoutes, symbolic: Chosen[casadi_route.CasadiRoute] | None) -> dict[str, str]:
     """What to say of each gradient: its error at the first setting."""
     x, sizes = lead.yardstick.settings[0], lead.yardstick.sizes[0]
     found = {
@@ -158,7 +166,7 @@ def gradient_errors(lead: Lead, symbolic: Chosen[casadi_route.CasadiRoute] | Non
     return {name: f"error of the gradient {error:.0e}" for name, error in errors.items()}
 
 
-def accuracy_note(lead: Lead) -> str:
+def accuracy_note(lead: LeadRoutes) -> str:
     return f"tolerance {SEARCH:.0e}, error {lead.error:.0e} of scaled cost and limits"
 
 

@@ -133,7 +133,9 @@ def test_batch_agrees_with_the_rating_of_the_case_itself() -> None:
     rating = train.rate(tolerance=1e-5)
     for name, value in zip(batch.names, batch.values[0], strict=True):
         there = rating.number(name)
-        assert (there is None and np.isnan(value)) or value == pytest.approx(there, rel=1e-12, abs=1e-12), name
+        assert (there is None and np.isnan(value)) or value == pytest.approx(there, rel=1e-12, abs=1e-12), (
+            name
+        )
 
 
 def test_thermochemistry_can_be_sampled() -> None:
@@ -146,7 +148,9 @@ def test_thermochemistry_can_be_sampled() -> None:
 
 def test_a_setting_without_an_answer_says_where_and_spoils_nothing() -> None:
     train = programme("selkemouth-ethylation.yaml")
-    batch = reactorstage.rate_many(train, {"bed 1.pressure drop factor": [1.0, 500.0]}, quantities=["bed 1.rise"])
+    batch = reactorstage.rate_many(
+        train, {"bed 1.pressure drop factor": [1.0, 500.0]}, quantities=["bed 1.rise"]
+    )
     assert np.isfinite(batch.values[0, 0])
     assert np.isnan(batch.values[1, 0])
     assert batch.failures[0] == ""
