@@ -25,6 +25,10 @@ os.environ.setdefault("NUMBA_SLP_VECTORIZE", "0")
 import numba
 
 
+READ = ("rates.py", "cubic.py")
+"""Modules of the chemistry whose constants are frozen into the machine code."""
+
+
 @lru_cache(maxsize=1)
 def cache_folder() -> Path | None:
     """Folder of this version's machine code, or None where nothing can be written.
@@ -51,7 +55,7 @@ def _fingerprint() -> str:
     """Changes with every source file that machine code depends on, and with Numba's version."""
     here = Path(__file__).parent
     digest = hashlib.sha256(numba.__version__.encode())
-    for file in [*sorted(here.glob("*.py")), here.parent / "chemistry" / "rates.py"]:
+    for file in [*sorted(here.glob("*.py")), *(here.parent / "chemistry" / name for name in READ)]:
         digest.update(file.read_bytes())
     return digest.hexdigest()[:16]
 

@@ -96,7 +96,7 @@ def test_derivatives_by_every_parameter_are_central_differences(name: str) -> No
 
 
 def test_derivative_by_a_mole_fraction_is_that_of_adding_the_species() -> None:
-    """Closed form: d(flow of a species in the effluent of an inert train)/d(its fraction) is the feed's flow."""
+    """Closed form: an inert's flow in the effluent moves with its mole fraction by the flow of the feed."""
     train = programme("selkemouth-ethylation.yaml")
     name = "feed ethylene.mole fraction of ethane"
     found = sensitivities(train, parameters=[name], quantities=["effluent.flow of ethane"])
