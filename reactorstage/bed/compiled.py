@@ -10,10 +10,12 @@ for itself.
 
 from __future__ import annotations
 
+import gc
 import hashlib
 import os
 import tempfile
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
 from functools import lru_cache
 from pathlib import Path
 from typing import Any
@@ -23,7 +25,6 @@ os.environ.setdefault("NUMBA_LOOP_VECTORIZE", "0")
 os.environ.setdefault("NUMBA_SLP_VECTORIZE", "0")
 
 import numba
-
 
 READ = ("rates.py", "cubic.py")
 """Modules of the chemistry whose constants are frozen into the machine code."""
@@ -64,6 +65,19 @@ def is_compiled() -> bool:
     """Whether an earlier process left the machine code of the whole kernel for this one."""
     folder = cache_folder()
     return folder is not None and any(folder.rglob("train_pass.train_pass*.nbc"))
+
+
+@contextmanager
+def first_call(function: Any) -> Iterator[None]:
+    """Around a call of an entry: no garbage is collected while it compiles, which saves a tenth of the time."""
+    if function.signatures or not gc.isenabled():
+        yield
+        return
+    gc.disable()
+    try:
+        yield
+    finally:
+        gc.enable()
 
 
 def _compiler(**options: Any) -> Callable[[Any], Any]:

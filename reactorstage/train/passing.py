@@ -8,6 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from reactorstage.bed import integrate as status
+from reactorstage.bed.compiled import first_call
 from reactorstage.bed.data import Beds, Chemistry, Index, Stages, Tolerance
 from reactorstage.bed.sample import sample_bed
 from reactorstage.bed.train_pass import train_pass
@@ -111,21 +112,22 @@ class Pass:
         out = np.empty((layout.rows, 1 + du.shape[1]))
         if moved is None:
             moved = np.full((du.shape[1], 2), -1, dtype=np.int64)
-        code, reached, depth, evaluations, steps = train_pass(
-            chemistry or self.chemistry,
-            self.beds,
-            layout.operations,
-            layout.compositions,
-            u,
-            du,
-            moved,
-            tolerance,
-            frozen,
-            places,
-            stages,
-            mesh,
-            out,
-        )
+        with first_call(train_pass):
+            code, reached, depth, evaluations, steps = train_pass(
+                chemistry or self.chemistry,
+                self.beds,
+                layout.operations,
+                layout.compositions,
+                u,
+                du,
+                moved,
+                tolerance,
+                frozen,
+                places,
+                stages,
+                mesh,
+                out,
+            )
         failure = "" if code == status.DONE else f"{self._place(reached, depth)}: {SENTENCES[code]}"
         return Outcome(out, stages, code, failure, reached, evaluations, steps)
 
@@ -151,20 +153,21 @@ class Pass:
             record = outcome.out[row : row + self.layout.width, 0]
             F[0], p[0], T[0] = record[:S], record[S + 1], record[S + 2]
             return w, T, p, F, r
-        sample_bed(
-            self.chemistry,
-            self.beds,
-            b,
-            row,
-            outcome.out,
-            u,
-            bed.inputs,
-            outcome.stages,
-            per_step,
-            w,
-            T,
-            p,
-            F,
-            r,
-        )
+        with first_call(sample_bed):
+            sample_bed(
+                self.chemistry,
+                self.beds,
+                b,
+                row,
+                outcome.out,
+                u,
+                bed.inputs,
+                outcome.stages,
+                per_step,
+                w,
+                T,
+                p,
+                F,
+                r,
+            )
         return w, T, p, F, r
