@@ -69,7 +69,7 @@ def is_compiled() -> bool:
 
 @contextmanager
 def first_call(function: Any) -> Iterator[None]:
-    """Around a call of an entry: no garbage is collected while it compiles, which saves a tenth of the time."""
+    """Around a call of an entry: while it compiles no garbage is collected, which saves a tenth of time."""
     if function.signatures or not gc.isenabled():
         yield
         return
