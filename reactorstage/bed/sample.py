@@ -34,6 +34,8 @@ def sample_bed(chem, beds, b, row, out, u, first, stages, per_step, w, T, p, F, 
                     T_now = found
             w[position] = bed[W_BED] * (step[0] + i / per_step * step[1])
             T[position], p[position] = T_now, bed[P_UNIT] * y[R]
-            F[position] = work[:S]
-            r[position] = work[rate : rate + R]
+            for s in range(S):
+                F[position, s] = work[s]
+            for q in range(R):
+                r[position, q] = work[rate + q]
             position += 1
