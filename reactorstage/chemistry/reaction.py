@@ -168,12 +168,38 @@ def equilibrium_temperature(table: SpeciesTable, nu_row: Floats, ln_Q: float, T_
     def gap(T: float) -> float:
         return float(ln_K(table, nu_row[None, :], T)[0]) - ln_Q
 
-    bracket = _bracket(gap, float(np.clip(T_guess, low, high)), low, high)
+    start = float(np.clip(T_guess, low, high))
+    near = _newton(table, nu_row, gap, start, low, high)
+    if near is not None:
+        return near
+    bracket = _bracket(gap, start, low, high)
     if bracket is None:
         return None
     from scipy.optimize import brentq
 
     return float(brentq(gap, *bracket, xtol=1e-9, rtol=1e-13))
+
+
+def _newton(
+    table: SpeciesTable, nu_row: Floats, gap: Callable[[float], float], start: float, low: float, high: float
+) -> float | None:
+    """The answer by Newton in 1/T from `start`; None where it leaves the range or the heat changes sign."""
+
+    def heat(T: float) -> float:
+        return float(heat_of_reaction(table, nu_row[None, :], T)[0])
+
+    T, first = start, heat(start)
+    for _ in range(12):
+        slope = heat(T)
+        if slope * first <= 0.0:
+            return None
+        inverse = 1.0 / T + gap(T) * R_GAS / slope
+        if not 1.0 / high < inverse < 1.0 / low:
+            return None
+        T, before = 1.0 / inverse, T
+        if abs(T - before) <= 1e-12 * T:
+            return T
+    return None
 
 
 def data_range(table: SpeciesTable, nu_row: Floats) -> tuple[float, float]:
