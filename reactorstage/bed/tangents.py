@@ -32,8 +32,8 @@ from reactorstage.bed.data import (
 from reactorstage.bed.layout import at_law, at_local, at_member, at_nu, at_power, at_rate, at_terms
 from reactorstage.bed.linear import factorise, substitute_many
 from reactorstage.bed.properties import heat_capacity_flow
-from reactorstage.bed.radau import INVERSE
 from reactorstage.bed.rates import driver_scale, products, term_constant
+from reactorstage.bed.stages import stage_rows
 from reactorstage.chemistry.rates import DELTA
 
 
@@ -132,7 +132,8 @@ def forcing(chem, bed, ways, moved, D, y, T, f, work, out, first):
 def differentiate(chem, bed, ways, moved, D, steps, count, work, y0_d, Z_d):
     """Derivatives of every step along D directions: y0_d (count + 1, n * D), Z_d (count, 3 * n * D).
 
-    y0_d[0] holds the derivative of the inlet state on entry. False when a linear system is singular.
+    y0_d[0] holds the derivative of the inlet state on entry. False when a linear system is singular; the
+    derivatives from there on are then not numbers.
     """
     n = chem.R + 1
     J, f, point = np.empty(n * n), np.empty(n), np.empty(n)
@@ -146,18 +147,17 @@ def differentiate(chem, bed, ways, moved, D, steps, count, work, y0_d, Z_d):
             T = evaluate(chem, bed, point, step[2 + 4 * n + i], work, f, J)
             forcing(chem, bed, ways, moved, D, point, T, f, work, b, i * n * D)
             for m in range(n):
-                row = (i * n + m) * size
                 for j in range(n):
                     slope = J[m * n + j]
                     for d in range(D):
                         b[(i * n + m) * D + d] += slope * y0_d[k, j * D + d]
-                for j in range(size):
-                    M[row + j] = 0.0
-                for j in range(3):
-                    M[row + j * n + m] = INVERSE[i, j] / step[1]
-                for j in range(n):
-                    M[row + i * n + j] -= J[m * n + j]
+            stage_rows(n, i, step[1], J, M)
         if not factorise(M, size, pivot):
+            for j in range(k, count):
+                for m in range(3 * n * D):
+                    Z_d[j, m] = np.nan
+                for m in range(n * D):
+                    y0_d[j + 1, m] = np.nan
             return False
         substitute_many(M, size, pivot, b, D)
         for m in range(n * D):

@@ -8,6 +8,7 @@ from collections.abc import Sequence
 
 import numpy as np
 
+from reactorstage.report.cautions import SHORT
 from reactorstage.report.display import unit
 from reactorstage.report.profiles import BedProfile, train_profiles
 from reactorstage.train.result import Rating
@@ -16,12 +17,15 @@ SIGNIFICANT = 10
 
 
 def profiles_csv(rating: Rating) -> bytes:
-    """The profiles with a heading line; numbers with 10 figures, an empty field where there is no value."""
+    """The profiles with a heading line; numbers with 10 figures, an empty field where there is no value.
+
+    The last column, `note`, holds the caution in the first row and nothing below.
+    """
     stream = io.StringIO(newline="")
     writer = csv.writer(stream, lineterminator="\n")
     writer.writerow(headings(rating))
-    for bed in train_profiles(rating):
-        writer.writerows(_rows(rating, bed))
+    rows = [row for bed in train_profiles(rating) for row in _rows(rating, bed)]
+    writer.writerows([*row, SHORT if k == 0 else ""] for k, row in enumerate(rows))
     return stream.getvalue().encode()
 
 
@@ -43,6 +47,7 @@ def headings(rating: Rating) -> list[str]:
         *(f"flow of {species}, {flow}" for species in rating.species),
         *(f"rate of {reaction}, kmol/(kg h)" for reaction in rating.reactions),
         *selectivity,
+        "note",
     ]
 
 

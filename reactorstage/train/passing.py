@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
 
 from reactorstage.bed import integrate as status
 from reactorstage.bed.compiled import first_call
-from reactorstage.bed.data import Beds, Chemistry, Index, Stages, Tolerance
+from reactorstage.bed.data import KIND, LAW, Beds, Chemistry, Index, Stages, Tolerance
 from reactorstage.bed.sample import sample_bed
 from reactorstage.bed.train_pass import train_pass
 from reactorstage.train.layout import BedPlace, Layout
@@ -28,6 +29,8 @@ SENTENCES = {
     status.NO_PRESSURE: "the pressure is exhausted; less flow, a wider bed or larger particles would pass",
     status.TOO_HOT: "the temperature rises above the range of the species data",
     status.TOO_COLD: "the temperature falls below the range of the species data",
+    status.NO_FLOW: "nothing flows into it",
+    status.USED_UP: "a reactant is used up but its reaction runs on (an order of zero or below)",
     status.FROZEN_FAILED: "the step sequence of another setting does not fit here",
 }
 
@@ -66,7 +69,25 @@ class Pass:
     def tolerance(self, flow: float, values_only: bool = False) -> Tolerance:
         """Newton goes to rounding where derivatives are taken, else well below the error of a step."""
         newton = min(1e-3 * flow, 1e-8) if values_only else min(1e-6 * flow, 1e-12)
-        return Tolerance(flow, 100.0 * flow, newton, self.named)
+        return Tolerance(flow, 100.0 * flow, newton, self.followed)
+
+    @cached_property
+    def followed(self) -> Array:
+        """(S,) 1 for species that must be right relative to themselves, else 0.
+
+        Those that a limit names, and those that a reaction of an order between 0 and 1 uses up for good.
+        """
+        S, R, L = self.chemistry.S, self.chemistry.R, self.chemistry.L
+        start = 30 * S + R * (S + LAW)
+        nu = self.chemistry.real[30 * S : 30 * S + R * S].reshape(R, S)
+        order = self.chemistry.real[start : start + 2 * R * L].reshape(R, 2, L)
+        whole = self.chemistry.whole[: R * (KIND + L)].reshape(R, KIND + L)
+        found = self.named.copy()
+        for r in np.flatnonzero(whole[:, 1] == 0):
+            for s, n in zip(whole[r, KIND:], order[r, 0], strict=True):
+                if s >= 0 and 0.0 < n < 1.0 and nu[r, s] < 0.0:
+                    found[s] = 1.0
+        return found
 
     def adaptive(
         self,
@@ -134,7 +155,8 @@ class Pass:
     def _place(self, operation: int, depth: float) -> str:
         bed = next((bed for bed in self.layout.beds if bed.exit == operation), None)
         if bed is not None:
-            return f"{bed.owner} at {100.0 * depth:.0f} % of its depth"
+            percent = 100.0 * depth
+            return f"{bed.owner} at {percent:{'.0f' if percent >= 1.0 else '.2g'}} % of its depth"
         place = next((p for p in self.layout.places if p.first <= operation <= p.last), None)
         return place.owner if place is not None else "the train"
 

@@ -175,6 +175,7 @@ class Hard:
 
 
 def _range(value: float, unit: str, width: float = 0.5) -> Tree:
+    value = float(value)
     low, high = value * (1.0 - width), value * (1.0 + width)
     return {"now": f"{value!r} {unit}", "from": f"{low!r} {unit}", "to": f"{high!r} {unit}"}
 
@@ -253,8 +254,8 @@ class Model:
         return np.concatenate([self.F, [self.bed.p, self.bed.T]])
 
     def solve(self, method: str = "LSODA", **more: Any) -> Any:
-        """SciPy's solution over the bed; each flow relative to itself, down to 1e-18 of the feed."""
-        flows = np.full(len(self.F), 1e-18 * self.bed.unit)
+        """SciPy's solution over the bed; each flow relative to itself, down to 1e-22 of the feed."""
+        flows = np.full(len(self.F), 1e-22 * self.bed.unit)
         atol = np.append(flows, [1e-12 * self.bed.p, 1e-12 * self.bed.T])
         settings = {"rtol": 1e-12, "atol": atol, "first_step": 1e-22 * self.bed.W, **more}
         found = solve_ivp(self.slope, (0.0, self.bed.W), self.start(), method, **settings)

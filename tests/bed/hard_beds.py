@@ -55,10 +55,16 @@ def autocatalytic(name: str, seed: float, W: float, **more: Any) -> Hard:
     return turn(name, -60e3, law, {**THIN, "B": seed}, W, **more)
 
 
-def self_slowed(name: str, order: float, W: float) -> Hard:
-    """Its product, absent at the inlet, slows the reaction with a negative order."""
-    law = Reaction(TO_B, 1.0, 60e3, orders={"A": 1.0, "B": order})
+def self_slowed(name: str, order: float, W: float, own: float = 1.0) -> Hard:
+    """Its product, absent at the inlet, slows the reaction with a negative order; own is that of A."""
+    law = Reaction(TO_B, 1.0, 60e3, orders={"A": own, "B": order})
     return turn(name, -60e3, law, THIN, W, named=("A", "B"))
+
+
+def covered(name: str, W: float) -> Hard:
+    """A covers the catalyst, so that the rate rises a thousandfold as A disappears."""
+    law = Reaction(TO_B, 300.0, 60e3, under={"A": 1e3})
+    return turn(name, -60e3, law, THIN, W, named=("A",))
 
 
 def equilibrium(name: str, W: float, **more: Any) -> Hard:
@@ -155,6 +161,7 @@ BEDS = (
     depletion("order 0.5, used up", 40.0, order=0.5),
     depletion("order 0.5, used up, hot", 40.0, **HOT, order=0.5),
     depletion("order 0.1, used up", 3.0, order=0.1),
+    depletion("order 0.1, used up, not named", 3.0, order=0.1, named=()),
     autocatalytic("autocatalytic from 1e-5", 1e-3, 90.0),
     autocatalytic("autocatalytic from 1e-8", 1e-6, 150.0),
     autocatalytic("autocatalytic from 1e-11", 1e-9, 220.0),
@@ -165,10 +172,9 @@ BEDS = (
     branching("branching from 1e-9", 290.0),
     self_slowed("product order -0.5", -0.5, 10.0),
     self_slowed("product order -1", -1.0, 2.0),
+    self_slowed("product -1, reactant 0.5", -1.0, 2.0, own=0.5),
     inhibited("reactant order -0.5", 30.0),
-    turn(
-        "adsorption lets go", -60e3, Reaction(TO_B, 300.0, 60e3, under={"A": 1e3}), THIN, 740.0, named=("A",)
-    ),
+    covered("adsorption lets go", 740.0),
     chain("traces at zero", 1.0, 0.1, 3.0, named=("B", "C")),
     chain("rates 1e6 apart", 1.0, 1e6, 34.0, named=("A", "B")),
     chain("rates 1e6 apart, not named", 1.0, 1e6, 34.0),

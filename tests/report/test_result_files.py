@@ -15,6 +15,7 @@ import pytest
 
 from reactorstage.errors import CallError
 from reactorstage.report import files
+from reactorstage.report.cautions import SHORT
 from reactorstage.report.profiles import train_profiles
 from reactorstage.report.profiles_csv import profiles_csv
 from reactorstage.report.result_json import as_text, optimum_json, rating_json, rounded
@@ -154,3 +155,9 @@ def test_a_folder_that_is_a_file_is_refused_before_work(tmp_path: Path) -> None:
     with pytest.raises(CallError, match="is a file, not a folder"):
         files.check_folder(tmp_path / "taken" / "results")
     files.check_folder(tmp_path / "new" / "results")
+
+
+def test_csv_carries_the_caution_once() -> None:
+    rows = list(csv.DictReader(io.StringIO(profiles_csv(synthetic.rating()).decode())))
+    assert rows[0]["note"] == SHORT
+    assert all(row["note"] == "" for row in rows[1:])
