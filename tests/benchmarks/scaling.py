@@ -109,6 +109,9 @@ def draw(found: Sequence[Growth], folder: Path) -> Path:
         for what in (VALUE, GRADIENT, ADAPTIVE):
             costs = [1e3 * p.timings[what].least for p in one.points]
             ax.loglog([p.value for p in one.points], costs, "o-", label=f"{what}: {one.exponent(what):.1f}")
+        values = [p.value for p in one.points]
+        ax.set_xticks(values, [f"{value:g}" if value < 1e3 else f"{value:.0e}" for value in values])
+        ax.minorticks_off()
         ax.set(xlabel=one.name)
         ax.legend(fontsize=8, title="exponent at the upper end", title_fontsize=8)
     axes[0].set(ylabel="ms per pass")
