@@ -11,7 +11,9 @@ import numpy as np
 
 from reactorstage.bed.compiled import compiled, inlined
 from reactorstage.bed.data import BED, F_UNIT, FRICTION, GAS_CONSTANT, H_IN, KIND, LAW, P_UNIT, W_BED
-from reactorstage.bed.layout import at_law, at_member, at_nu, at_rate
+from reactorstage.bed.depth import local_activity
+from reactorstage.bed.effectiveness import limit_by_pores
+from reactorstage.bed.layout import at_law, at_member, at_nu, at_profile, at_rate
 from reactorstage.bed.properties import entropy, heat_and_enthalpy, heat_capacity_flow, temperature_step
 from reactorstage.bed.rates import rates
 
@@ -29,8 +31,8 @@ def flows(chem, bed, y, work):
 
 
 @compiled
-def evaluate(chem, bed, y, T, work, f, J):
-    """dy/d(depth) into f (n,), its Jacobian into J (n * n,) unless J is empty; gives the corrected T.
+def evaluate(chem, bed, depth, y, T, work, f, J):
+    """dy/d(depth) at `depth` into f (n,), its Jacobian into J (n * n,) unless that is empty; gives T.
 
     Not a number when temperature leaves the species' data range or pressure is not positive.
     """
@@ -42,7 +44,10 @@ def evaluate(chem, bed, y, T, work, f, J):
         return np.nan
     heat_and_enthalpy(chem, T, work)
     entropy(chem, T, work)
-    rates(chem, bed, T, p, work, J.shape[0] > 0)
+    active = local_activity(chem, bed, depth) if bed.shape[0] > at_profile(chem) else 1.0
+    rates(chem, bed, active, T, p, work, J.shape[0] > 0)
+    if chem.limited > 0:
+        limit_by_pores(chem, T, p, work, J.shape[0] > 0)
     F_total, rate = 0.0, at_rate(chem)
     for s in range(chem.S):
         F_total += work[s]
@@ -60,7 +65,7 @@ def jacobian(chem, bed, T, p, F_total, drag, work, J):
     """Total derivative of f along the constant-enthalpy manifold, from the work array after `evaluate`."""
     S, R, L, n, real = chem.S, chem.R, chem.L, chem.R + 1, chem.real
     nu, law, rate, member = at_nu(chem), at_law(chem), at_rate(chem), at_member(chem)
-    T_xi, unit = rate + 5 * R, bed[F_UNIT]
+    T_xi, unit = rate + 6 * R, bed[F_UNIT]
     per_unit = bed[W_BED] / unit
     capacity = heat_capacity_flow(chem, work)
     for j in range(R):

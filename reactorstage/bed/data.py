@@ -16,16 +16,24 @@ Index = NDArray[np.int64]
 GAS_CONSTANT = 8.31446261815324
 STANDARD_PRESSURE = 1e5
 
-CONCENTRATION, PARTIAL_PRESSURE, MOLE_FRACTION = 0, 1, 2
+CONCENTRATION, PARTIAL_PRESSURE, MOLE_FRACTION, FUGACITY = 0, 1, 2, 3
 
-LAW = 7
-"""Numbers of one law: ln k at T_ref, T_ref, E/R, c, d, m, sum of nu."""
+LAW = 12
+"""Numbers of one law: ln k at T_ref, T_ref, E/R, c, d; m, sum of nu; ln K at T_ref, T_ref, H/R, c, d."""
 
-KIND = 5
-"""Whole numbers of one law before its members: driver, 1 if reversible, members, first and last factor."""
+KIND = 9
+"""Whole numbers of one law before its members: driver; 1 if reversible, 2 with a K of its own; members; first
+and last factor; kind of effectiveness; positions among the members of its key species and of the product;
+1 with floors."""
+
+TERM = 5
+"""Numbers of one term of a denominator before its orders: ln K at T_ref, T_ref, H/R, c, d."""
 
 BED = 6
-"""Numbers of one bed before its flows: H [W], inlet T [K], F_unit [mol/s], p_unit [Pa], W [kg], friction."""
+"""Numbers of one bed before its flows: H [W], inlet T [K], F_unit [mol/s], p_unit [Pa], W [kg], friction.
+
+Behind the flows (S,) stand the factors of the rates (R,), then pairs of depth and share of activity.
+"""
 
 H_IN, T_IN, F_UNIT, P_UNIT, W_BED, FRICTION = 0, 1, 2, 3, 4, 5
 
@@ -39,9 +47,12 @@ class Chemistry(NamedTuple):
     """Species and rate laws of one case, see `reactorstage.chemistry.rate_law` for the law.
 
     real holds, one after another: coefficients (S, 3, 9), inner edges of their ranges (S, 2), molar masses
-    (S,), nu (R, S), law (R, LAW), orders (R, 2, L) forward and backward; then for each denominator factor
-    its power, then for each term ln K at T_ref, T_ref, H/R and its orders (L,).
-    whole holds kind and members (R, KIND + L), then first and last term of each factor.
+    (S,), nu (R, S), law (R, LAW), orders (R, 3, L) forward, backward and floors of the members (0: none),
+    effectiveness (R, ETA); then for each denominator factor its power, then for each term its numbers (TERM)
+    and its orders (L,). A species is two members where a law takes powers both of its driver and of its
+    floored driver.
+    whole holds kind and members (R, KIND + L), then first and last term of each factor. limited counts the
+    laws with an effectiveness.
     """
 
     real: Array
@@ -52,6 +63,7 @@ class Chemistry(NamedTuple):
     factors: int
     T_low: float
     T_high: float
+    limited: int
 
 
 class Beds(NamedTuple):
@@ -59,12 +71,14 @@ class Beds(NamedTuple):
 
     rate_factor (B, R) turns each rate into one per kg of catalyst; viscous and inertial (B,) give the
     Ergun gradient per kg of catalyst, dp/dw = -factor (viscous + inertial * m_dot) / rho * m_dot,
-    zero where the geometry is not given.
+    zero where the geometry is not given. profile (B, 2 N) holds points (depth, share of activity), deeper
+    ones behind; N = 0 where no bed has any.
     """
 
     rate_factor: Array
     viscous: Array
     inertial: Array
+    profile: Array
 
 
 class Stages(NamedTuple):

@@ -8,6 +8,7 @@ from reactorstage.bed.balance import evaluate, flows
 from reactorstage.bed.compiled import compiled, inlined
 from reactorstage.bed.damped import damped_newton
 from reactorstage.bed.data import BED, F_UNIT, T_IN
+from reactorstage.bed.depth import next_kink
 from reactorstage.bed.layout import at_nu
 from reactorstage.bed.linear import factorise, substitute
 from reactorstage.bed.properties import heat_capacity_flow
@@ -284,7 +285,7 @@ def integrate(chem, bed, tolerance, frozen, count, steps, reference, work):
     real, complex_ = np.empty(n * n), np.empty(n * n, np.complex128)
     U, pivots = np.empty(n, np.complex128), np.empty(2 * n, np.int64)
     y[n - 1] = 1.0
-    T_now, depth, k, calls, rejected, h, longest = bed[T_IN], 0.0, 0, 0, False, 0.0, 1.0
+    T_now, depth, kink, k, calls, rejected, h, longest = bed[T_IN], 0.0, 1.0, 0, 0, False, 0.0, 1.0
     if not bed[F_UNIT] > 0.0:
         return NO_FLOW, 0.0, 0, 0
     if frozen and count == 0:
@@ -293,7 +294,7 @@ def integrate(chem, bed, tolerance, frozen, count, steps, reference, work):
         if k >= steps.shape[0]:
             return TOO_MANY_STEPS, depth, k, calls
         if not rejected:
-            T_new = evaluate(chem, bed, y, T_now, work, slope, J)
+            T_new = evaluate(chem, bed, depth, y, T_now, work, slope, J)
             calls += 1
             if not np.isfinite(T_new):
                 return reason_of(chem, bed, y, T_now, slope, work), depth, k, calls
@@ -305,9 +306,9 @@ def integrate(chem, bed, tolerance, frozen, count, steps, reference, work):
         if frozen:
             h = reference[k, 1]
         else:
-            h = min(h, longest)
-            if depth + 1.01 * h >= 1.0:
-                h = 1.0 - depth
+            h, kink = min(h, longest), next_kink(chem, bed, depth)
+            if depth + 1.01 * h >= kink:
+                h = kink - depth
         step = steps[k]
         step[0], step[1] = depth, h
         for i in range(n):
@@ -334,7 +335,7 @@ def integrate(chem, bed, tolerance, frozen, count, steps, reference, work):
                 for i in range(n):
                     point[i] = y[i] + error[i]
                 calls += 1
-                if np.isfinite(evaluate(chem, bed, point, T_now, work, f, none)):
+                if np.isfinite(evaluate(chem, bed, depth, point, T_now, work, f, none)):
                     size = estimate(
                         chem, bed, h, f, step, real, pivots, tolerance, work, error, point, weight
                     )
@@ -359,6 +360,9 @@ def integrate(chem, bed, tolerance, frozen, count, steps, reference, work):
             y[i] += step[Z + 2 * n + i]
         T_now = step[T + 2]
         k += 1
-        depth = 1.0 if (k >= count if frozen else 1.0 - depth - h < 1e-14) else depth + h
+        if frozen:
+            depth = 1.0 if k >= count else reference[k, 0]
+        else:
+            depth = kink if kink - depth - h < 1e-14 else depth + h
         h *= growth
     return DONE, 1.0, k, calls

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from reactorstage.bed.compiled import compiled
 from reactorstage.bed.data import BED, KIND, LAW
+from reactorstage.chemistry.rate_law import ETA
 
 
 @compiled
@@ -32,14 +33,20 @@ def at_law(chem):
 
 @compiled
 def at_order(chem):
-    """Orders (R, 2, L) in real."""
+    """Orders and floors (R, 3, L) in real."""
     return 30 * chem.S + chem.R * (chem.S + LAW)
 
 
 @compiled
+def at_eta(chem):
+    """Effectiveness (R, ETA) in real."""
+    return 30 * chem.S + chem.R * (chem.S + LAW + 3 * chem.L)
+
+
+@compiled
 def at_power(chem):
-    """Powers of denominator factors in real; terms (each 3 + L) follow."""
-    return 30 * chem.S + chem.R * (chem.S + LAW + 2 * chem.L)
+    """Powers of denominator factors in real; terms (each TERM + L) follow."""
+    return 30 * chem.S + chem.R * (chem.S + LAW + 3 * chem.L + ETA)
 
 
 @compiled
@@ -55,6 +62,12 @@ def at_factor(chem):
 
 
 @compiled
+def at_profile(chem):
+    """Points of the activity along depth in the array of a bed."""
+    return BED + chem.S + chem.R
+
+
+@compiled
 def at_local(chem):
     """Local space (5, L) in the work array, behind flows, cp/R, h/(R T) and s/R (S each)."""
     return 4 * chem.S
@@ -62,17 +75,17 @@ def at_local(chem):
 
 @compiled
 def at_rate(chem):
-    """Rates (R,) in the work array; common slope, slope by T, by p, by ln K and T_xi (R each) follow."""
+    """Rates (R,) in the work array; common slope, slope by T, p, ln K, ln k and T_xi (R each) follow."""
     return 4 * chem.S + 5 * chem.L
 
 
 @compiled
 def at_member(chem):
     """Slopes by the members (R, L) in the work array."""
-    return 4 * chem.S + 5 * chem.L + 6 * chem.R
+    return 4 * chem.S + 5 * chem.L + 7 * chem.R
 
 
 @compiled
 def work_length(chem):
     """Length of the work array of one evaluation."""
-    return 4 * chem.S + 5 * chem.L + 6 * chem.R + chem.R * chem.L
+    return 4 * chem.S + 5 * chem.L + 7 * chem.R + chem.R * chem.L

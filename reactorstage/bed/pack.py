@@ -12,12 +12,13 @@ from reactorstage.bed.data import (
     LAW,
     LN_K,
     LN_K_TERM,
+    TERM,
     Array,
     Beds,
     Chemistry,
     Index,
 )
-from reactorstage.chemistry.rate_law import RateLaws, basis_factors
+from reactorstage.chemistry.rate_law import ETA, RateLaws, basis_factors
 from reactorstage.chemistry.species import SpeciesTable
 
 
@@ -28,24 +29,29 @@ def pack_chemistry(table: SpeciesTable, laws: RateLaws) -> Chemistry:
     law = np.column_stack(
         [laws.lnk_ref, laws.T_ref, laws.E_over_R, laws.c, laws.d, laws.m, laws.nu.sum(axis=1)]
     )
+    floors = np.concatenate([np.zeros((R, S)), laws.floor], axis=1)
     order = [
-        _padded(orders[r][used], L, 0.0)
+        _padded(rows[r][used], L, 0.0)
         for r, used in enumerate(members)
-        for orders in (laws.alpha, laws.beta)
+        for rows in (laws.forward, laws.backward, floors)
     ]
-    term = np.column_stack([laws.term_lnK_ref, laws.term_T_ref, laws.term_H_over_R])
-    parts = [table.coefficients, table.edges[:, 1:3], table.molar_mass, laws.nu, law, np.array(order)]
+    term = np.column_stack([laws.term_lnK_ref, laws.term_T_ref, laws.term_H_over_R, laws.term_c, laws.term_d])
+    parts = [table.coefficients, table.edges[:, 1:3], table.molar_mass, laws.nu]
+    parts += [np.column_stack([law, laws.K_form]), np.array(order), laws.eta]
     parts += [laws.den_power, np.column_stack([term, _term_orders(laws, members, L)])]
     kind = np.column_stack(
         [
             laws.driver,
-            laws.reversible,
+            laws.reversible * (1 + laws.own_K),
             [len(used) for used in members],
             laws.den_start[:-1],
             laws.den_start[1:],
+            laws.eta_kind,
+            *(_positions(laws.eta_species[:, i], members) for i in (0, 1)),
+            (laws.floor > 0.0).any(axis=1),
         ]
     )
-    named = np.array([_padded(used, L, -1) for used in members], dtype=np.int64)
+    named = np.array([_padded(used % S, L, -1) for used in members], dtype=np.int64)
     factors = np.column_stack([laws.term_start[:-1], laws.term_start[1:]])
     return Chemistry(
         real=np.concatenate([np.asarray(part, dtype=np.float64).ravel() for part in parts]),
@@ -56,6 +62,7 @@ def pack_chemistry(table: SpeciesTable, laws: RateLaws) -> Chemistry:
         factors=len(laws.den_power),
         T_low=float(table.edges[:, 0].max()),
         T_high=float(table.edges[:, -1].min()),
+        limited=int(np.count_nonzero(laws.eta_kind)),
     )
 
 
@@ -63,9 +70,9 @@ def shift_kinetics(chem: Chemistry, shifts: Mapping[tuple[int, int], float]) -> 
     """The chemistry with kinetic parameters (kind, index; see `data.PARAMETERS`) shifted, kernel units."""
     real = chem.real.copy()
     law = 30 * chem.S + chem.R * chem.S
-    term = law + chem.R * (LAW + 2 * chem.L) + chem.factors
+    term = law + chem.R * (LAW + 3 * chem.L + ETA) + chem.factors
     starts = {LN_K: (law, LAW), E_OVER_R: (law + 2, LAW)}
-    starts |= {LN_K_TERM: (term, 3 + chem.L), H_TERM: (term + 2, 3 + chem.L)}
+    starts |= {LN_K_TERM: (term, TERM + chem.L), H_TERM: (term + 2, TERM + chem.L)}
     for (kind, index), amount in shifts.items():
         first, width = starts[kind]
         real[first + width * index] += amount
@@ -93,11 +100,33 @@ def pack_beds(
     bulk_density: Sequence[float],
     void_fraction: Sequence[float],
     ergun: Sequence[tuple[float, float]],
+    profiles: Sequence[Sequence[tuple[float, float]]] = (),
 ) -> Beds:
-    """Arrays of the beds; densities and void fractions that no rate needs may be not a number."""
+    """Arrays of the beds; densities and void fractions that no rate needs may be not a number.
+
+    profiles: for each bed the points (depth, share of activity), none for the same everywhere.
+    """
     factors = np.array([basis_factors(laws, *bed) for bed in zip(bulk_density, void_fraction, strict=True)])
     terms = np.array(ergun, dtype=np.float64).reshape(-1, 2)
-    return Beds(np.ascontiguousarray(factors), terms[:, 0].copy(), terms[:, 1].copy())
+    most = max((len(points) for points in profiles), default=0)
+    profile = np.array([_profile(points, most) for points in profiles or [()] * len(terms)])
+    return Beds(
+        np.ascontiguousarray(factors),
+        terms[:, 0].copy(),
+        terms[:, 1].copy(),
+        profile.reshape(len(terms), 2 * most),
+    )
+
+
+BEYOND = 2.0
+"""Depth of the points that fill up a profile: never reached."""
+
+
+def _profile(points: Sequence[tuple[float, float]], most: int) -> list[float]:
+    """Points as the kernel reads them, filled up to `most` points by the last (1 without any)."""
+    last = points[-1][1] if points else 1.0
+    filled = [*points, *((BEYOND + i, last) for i in range(most - len(points)))]
+    return [number for point in filled for number in point]
 
 
 def _terms_of(laws: RateLaws, r: int) -> slice:
@@ -105,9 +134,18 @@ def _terms_of(laws: RateLaws, r: int) -> slice:
 
 
 def _members(laws: RateLaws, r: int) -> Index:
-    """Species that the law of reaction r names: in its products or in its denominator."""
-    named = (laws.alpha[r] != 0.0) | ((laws.beta[r] != 0.0) & (laws.reversible[r] == 1))
-    return np.flatnonzero(named | (laws.gamma[_terms_of(laws, r)] != 0.0).any(axis=0))
+    """Columns of the powers that the law of reaction r uses, and the species its effectiveness depends on."""
+    named = (laws.forward[r] != 0.0) | ((laws.backward[r] != 0.0) & (laws.reversible[r] == 1))
+    named = named | (laws.below[_terms_of(laws, r)] != 0.0).any(axis=0)
+    named[laws.eta_species[r][laws.eta_species[r] >= 0]] = True
+    return np.flatnonzero(named)
+
+
+def _positions(species: Index, members: Sequence[Index]) -> list[int]:
+    """Where a species of each reaction stands among its members; -1 for none."""
+    return [
+        int(np.flatnonzero(used == s)[0]) if s >= 0 else -1 for s, used in zip(species, members, strict=True)
+    ]
 
 
 def _padded(values: Array | Index, length: int, filler: float) -> list[float]:
@@ -118,6 +156,6 @@ def _term_orders(laws: RateLaws, members: Sequence[Index], longest: int) -> Arra
     rows = [
         _padded(line[used], longest, 0.0)
         for r, used in enumerate(members)
-        for line in laws.gamma[_terms_of(laws, r)]
+        for line in laws.below[_terms_of(laws, r)]
     ]
     return np.array(rows, dtype=np.float64).reshape(-1, longest)

@@ -15,6 +15,7 @@ from reactorstage.bed.data import (
     LAW,
     MOLE_FRACTION,
     STANDARD_PRESSURE,
+    TERM,
 )
 from reactorstage.bed.layout import (
     at_factor,
@@ -82,30 +83,33 @@ def products(real, orders, count, delta, work, local, L, slopes):
 
 
 @inlined
-def rate_constant(real, law, T):
-    """k(T) and d ln k / dT of the law at position `law`."""
-    lnk = real[law] + real[law + 2] * (1.0 / real[law + 1] - 1.0 / T)
-    slope = real[law + 2] / (T * T)
-    if real[law + 3] != 0.0:
-        lnk += real[law + 3] * np.log(T / real[law + 1])
-        slope += real[law + 3] / T
-    if real[law + 4] != 0.0:
-        lnk += real[law + 4] * (T - real[law + 1])
-        slope += real[law + 4]
-    return np.exp(lnk), slope
+def ln_constant(real, at, T):
+    """ln of a constant at T and its slope by T, from ln at T_ref, T_ref, E/R, c and d at position `at`."""
+    ln = real[at] + real[at + 2] * (1.0 / real[at + 1] - 1.0 / T)
+    slope = real[at + 2] / (T * T)
+    if real[at + 3] != 0.0:
+        ln += real[at + 3] * np.log(T / real[at + 1])
+        slope += real[at + 3] / T
+    if real[at + 4] != 0.0:
+        ln += real[at + 4] * (T - real[at + 1])
+        slope += real[at + 4]
+    return ln, slope
 
 
 @inlined
 def equilibrium(chem, q, driver, T, p, work):
     """ln Ka of reaction q in the units of its driver, with its derivatives by T and p."""
-    S, nu = chem.S, at_nu(chem) + q * chem.S
-    change = chem.real[at_law(chem) + q * LAW + 6]
+    S, nu, law = chem.S, at_nu(chem) + q * chem.S, at_law(chem) + q * LAW
+    change = chem.real[law + 6]
     lnK, slope_T, slope_p = 0.0, 0.0, 0.0
-    for s in range(S):
-        n = chem.real[nu + s]
-        lnK -= n * (work[2 * S + s] - work[3 * S + s])
-        slope_T += n * work[2 * S + s]
-    slope_T /= T
+    if chem.whole[q * (KIND + chem.L) + 1] == 2:
+        lnK, slope_T = ln_constant(chem.real, law + 7, T)
+    else:
+        for s in range(S):
+            n = chem.real[nu + s]
+            lnK -= n * (work[2 * S + s] - work[3 * S + s])
+            slope_T += n * work[2 * S + s]
+        slope_T /= T
     if change != 0.0:
         if driver == CONCENTRATION:
             lnK += change * np.log(STANDARD_PRESSURE / (GAS_CONSTANT * T))
@@ -128,11 +132,27 @@ def driver_scale(driver, F_total, T, p):
     return p / F_total, 0.0, 1.0 / p
 
 
+@inlined
+def fill_drivers(chem, q, scale, F_total, work):
+    """Drivers of the members of law q into the first local row; floored ones are above zero everywhere."""
+    kind, local = q * (KIND + chem.L), at_local(chem)
+    for k in range(chem.whole[kind + 2]):
+        work[local + k] = scale * work[chem.whole[kind + KIND + k]]
+    if chem.whole[kind + 8] > 0:
+        floors = at_order(chem) + (3 * q + 2) * chem.L
+        for k in range(chem.whole[kind + 2]):
+            if chem.real[floors + k] > 0.0:
+                a, floor = work[local + k], chem.real[floors + k] * scale * F_total
+                work[local + k] = 0.5 * (a + np.sqrt(a * a + 4.0 * floor * floor))
+
+
 @compiled
-def term_constant(real, term, T):
-    """K_j(T) of a denominator's term and d ln K_j / dT."""
-    K = np.exp(real[term] + real[term + 2] * (1.0 / real[term + 1] - 1.0 / T))
-    return K, real[term + 2] / (T * T)
+def term_size(chem, term, count, delta, T, work, slopes):
+    """A term of a denominator, its slope by T, its constant; slopes by the members without that into work."""
+    ln, slope = ln_constant(chem.real, term, T)
+    K = np.exp(ln)
+    size = K * products(chem.real, term + TERM, count, delta, work, at_local(chem), chem.L, slopes)
+    return size, size * slope, K
 
 
 @compiled
@@ -148,15 +168,13 @@ def denominator(chem, q, count, delta, T, work, slopes):
         under, under_T, q_f = 0.0, 0.0, real[powers + f]
         first, last = whole[at_terms(chem) + 2 * f], whole[at_terms(chem) + 2 * f + 1]
         for t in range(first, last):
-            term = powers + chem.factors + t * (3 + L)
-            K, K_T = term_constant(real, term, T)
-            size = K * products(real, term + 3, count, delta, work, local, L, slopes)
+            size, size_T, _ = term_size(
+                chem, powers + chem.factors + t * (TERM + L), count, delta, T, work, slopes
+            )
             under += size
-            under_T += size * K_T
+            under_T += size_T
         for t in range(first, last if slopes >= 0 else first):
-            term = powers + chem.factors + t * (3 + L)
-            K, _ = term_constant(real, term, T)
-            products(real, term + 3, count, delta, work, local, L, slopes)
+            _, _, K = term_size(chem, powers + chem.factors + t * (TERM + L), count, delta, T, work, slopes)
             for k in range(count):
                 work[out + k] += q_f * K * work[slopes + k] / under
         total *= under**q_f
@@ -167,31 +185,45 @@ def denominator(chem, q, count, delta, T, work, slopes):
 
 
 @compiled
-def rates(chem, bed, T, p, work, with_slopes):
-    """Rates (R,) in mol/(kg s) and, when asked, their derivatives, all in the work array.
+def through_floors(chem, q, scale, F_total, work, slope):
+    """Slopes by floored drivers in a row of work into those by drivers; slope by every flow over scale."""
+    kind, local, floors = q * (KIND + chem.L), at_local(chem), at_order(chem) + (3 * q + 2) * chem.L
+    spread = 0.0
+    for k in range(chem.whole[kind + 2]):
+        floor = chem.real[floors + k]
+        if floor > 0.0:
+            root = 2.0 * work[local + k] - scale * work[chem.whole[kind + KIND + k]]
+            spread += work[slope + k] * 2.0 * floor * floor * scale * F_total / root
+            work[slope + k] *= work[local + k] / root
+    return spread
+
+
+@compiled
+def rates(chem, bed, active, T, p, work, with_slopes):
+    """Rates (R,) without pore limitation in mol/(kg s) and, when asked, their derivatives, in the work array.
 
     dr/dF_s = common (R,) for every species, plus the slopes by the members (R, L) of the law. bed holds the
-    factors (catalyst activity times the basis factor); the work array the flows and the properties at T.
+    factors (catalyst activity times the basis factor), active what multiplies them here; the work array the
+    flows and the properties at T.
     """
     S, R, L, real, whole = chem.S, chem.R, chem.L, chem.real, chem.whole
-    local, rate, member, factor = at_local(chem), at_rate(chem), at_member(chem), at_factor(chem)
+    local, rate, factor = at_local(chem), at_rate(chem), at_factor(chem)
     slope = local + 2 * L if with_slopes else -1
     back_slope = local + 3 * L if with_slopes else -1
     F_total = 0.0
     for s in range(S):
         F_total += work[s]
     for q in range(R):
-        kind, law, orders = q * (KIND + L), at_law(chem) + q * LAW, at_order(chem) + q * 2 * L
+        kind, law, orders = q * (KIND + L), at_law(chem) + q * LAW, at_order(chem) + q * 3 * L
         driver, count = whole[kind], whole[kind + 2]
         scale, scale_T, scale_p = driver_scale(driver, F_total, T, p)
         delta = DELTA * scale * F_total
-        for k in range(count):
-            work[local + k] = scale * work[whole[kind + KIND + k]]
-        constant, lnk_T = rate_constant(real, law, T)
-        constant *= bed[factor + q]
+        fill_drivers(chem, q, scale, F_total, work)
+        lnk, lnk_T = ln_constant(real, law, T)
+        constant = bed[factor + q] * active * np.exp(lnk)
         force = products(real, orders, count, delta, work, local, L, slope)
         force_T, force_p, back = 0.0, 0.0, 0.0
-        if whole[kind + 1] == 1:
+        if whole[kind + 1] > 0:
             lnK, lnK_T, lnK_p = equilibrium(chem, q, driver, T, p, work)
             share = np.exp(-real[law + 5] * lnK)
             back = share * products(real, orders + L, count, delta, work, local, L, back_slope)
@@ -210,11 +242,15 @@ def rates(chem, bed, T, p, work, with_slopes):
                 work[slope + k] = (work[slope + k] - force * work[local + 4 * L + k]) / under
         work[rate + q] = constant * force
         if with_slopes:
-            drive = 0.0
+            drive, spread = 0.0, 0.0
             for k in range(count):
                 drive += work[slope + k] * work[local + k]
-                work[member + q * L + k] = constant * scale * work[slope + k]
-            work[rate + R + q] = -constant * drive / F_total
+            if whole[kind + 8] > 0:
+                spread = through_floors(chem, q, scale, F_total, work, slope)
+            for k in range(count):
+                work[at_member(chem) + q * L + k] = constant * scale * work[slope + k]
+            work[rate + R + q] = constant * (scale * spread - drive / F_total)
             work[rate + 2 * R + q] = constant * (lnk_T * force + force_T + drive * scale_T)
             work[rate + 3 * R + q] = constant * (force_p + drive * scale_p)
             work[rate + 4 * R + q] = constant * back
+            work[rate + 5 * R + q] = constant * force

@@ -11,7 +11,7 @@ from reactorstage.bed.balance import evaluate, flows
 from reactorstage.bed.compiled import compiled, inlined
 from reactorstage.bed.data import GAS_CONSTANT, H_IN
 from reactorstage.bed.properties import temperature_of
-from reactorstage.bed.radau import INVERSE
+from reactorstage.bed.radau import INVERSE, NODES
 
 
 @inlined
@@ -29,7 +29,7 @@ def stage_slopes(chem, bed, step, settled, work, f, J, point, G, M):
         if not settled:
             flows(chem, bed, point, work)
             step[T + i] = temperature_of(chem, bed[H_IN] / GAS_CONSTANT, step[T + i], work)
-        found = evaluate(chem, bed, point, step[T + i], work, f, J)
+        found = evaluate(chem, bed, step[0] + NODES[i] * step[1], point, step[T + i], work, f, J)
         if not np.isfinite(found):
             return i
         step[T + i] = found

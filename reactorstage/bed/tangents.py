@@ -27,12 +27,14 @@ from reactorstage.bed.data import (
     LN_K,
     LN_K_TERM,
     P_UNIT,
+    TERM,
     W_BED,
 )
 from reactorstage.bed.layout import at_law, at_local, at_member, at_nu, at_power, at_rate, at_terms
 from reactorstage.bed.linear import factorise, substitute_many
 from reactorstage.bed.properties import heat_capacity_flow
-from reactorstage.bed.rates import driver_scale, products, term_constant
+from reactorstage.bed.radau import NODES
+from reactorstage.bed.rates import driver_scale, fill_drivers, term_size
 from reactorstage.bed.stages import stage_rows
 from reactorstage.chemistry.rates import DELTA
 
@@ -56,18 +58,14 @@ def term_share(chem, q, wanted, T, p, F_total, work):
     kind, powers = q * (KIND + L), at_power(chem)
     count = whole[kind + 2]
     scale, _, _ = driver_scale(whole[kind], F_total, T, p)
-    for k in range(count):
-        work[local + k] = scale * work[whole[kind + KIND + k]]
+    fill_drivers(chem, q, scale, F_total, work)
     for f in range(whole[kind + 3], whole[kind + 4]):
         first, last = whole[at_terms(chem) + 2 * f], whole[at_terms(chem) + 2 * f + 1]
         if first <= wanted < last:
             under, size = 0.0, 0.0
             for t in range(first, last):
-                term = powers + chem.factors + t * (3 + L)
-                K, _ = term_constant(real, term, T)
-                part = K * products(
-                    real, term + 3, count, DELTA * scale * F_total, work, local, L, local + 3 * L
-                )
+                term = powers + chem.factors + t * (TERM + L)
+                part, _, _ = term_size(chem, term, count, DELTA * scale * F_total, T, work, local + 3 * L)
                 under += part
                 if t == wanted:
                     size = part
@@ -79,7 +77,7 @@ def term_share(chem, q, wanted, T, p, F_total, work):
 def parameter_slope(chem, q, kind, index, T, p, F_total, work):
     """Explicit derivative of rate q by a parameter of the chemistry."""
     R, real, rate = chem.R, chem.real, at_rate(chem)
-    r = work[rate + q]
+    r = work[rate + 5 * R + q]
     if kind == LN_K:
         return r if index == q else 0.0
     if kind == E_OVER_R:
@@ -87,10 +85,10 @@ def parameter_slope(chem, q, kind, index, T, p, F_total, work):
     if kind in (LN_K_TERM, H_TERM):
         slope = -r * term_share(chem, q, index, T, p, F_total, work)
         if kind == H_TERM:
-            term = at_power(chem) + chem.factors + index * (3 + chem.L)
+            term = at_power(chem) + chem.factors + index * (TERM + chem.L)
             slope *= 1.0 / real[term + 1] - 1.0 / T
         return slope
-    if kind in (ENTHALPY, ENTROPY):
+    if kind in (ENTHALPY, ENTROPY) and chem.whole[q * (KIND + chem.L) + 1] == 1:
         lnK = real[at_nu(chem) + q * chem.S + index] / GAS_CONSTANT
         return work[rate + 4 * R + q] * (-lnK / T if kind == ENTHALPY else lnK)
     return 0.0
@@ -114,7 +112,7 @@ def forcing(chem, bed, ways, moved, D, y, T, f, work, out, first):
         W_q = ways[(S + 2) * D + d]
         for q in range(R):
             whole = q * (KIND + L)
-            slope = work[rate + 2 * R + q] * T_q + work[rate + q] * ways[(S + 4 + q) * D + d]
+            slope = work[rate + 2 * R + q] * T_q + work[rate + 5 * R + q] * ways[(S + 4 + q) * D + d]
             slope += work[rate + R + q] * F_q
             for k in range(chem.whole[whole + 2]):
                 slope += work[member + q * L + k] * ways[chem.whole[whole + KIND + k] * D + d]
@@ -144,7 +142,7 @@ def differentiate(chem, bed, ways, moved, D, steps, count, work, y0_d, Z_d):
         for i in range(3):
             for m in range(n):
                 point[m] = step[2 + m] + step[2 + n + i * n + m]
-            T = evaluate(chem, bed, point, step[2 + 4 * n + i], work, f, J)
+            T = evaluate(chem, bed, step[0] + NODES[i] * step[1], point, step[2 + 4 * n + i], work, f, J)
             forcing(chem, bed, ways, moved, D, point, T, f, work, b, i * n * D)
             for m in range(n):
                 for j in range(n):

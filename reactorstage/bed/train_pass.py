@@ -20,7 +20,7 @@ from reactorstage.bed.events import (
     temperature_tangent,
 )
 from reactorstage.bed.integrate import DONE, TOO_COLD, TOO_HOT, integrate
-from reactorstage.bed.layout import at_factor, at_mass, at_nu, work_length
+from reactorstage.bed.layout import at_factor, at_mass, at_nu, at_profile, work_length
 from reactorstage.bed.properties import heat_and_enthalpy, heat_capacity_flow, temperature_of
 from reactorstage.bed.tangents import differentiate
 
@@ -28,7 +28,8 @@ ADD, HOLD, SET_TEMPERATURE, REMOVE_HEAT, ARRIVE, BED = 0, 1, 2, 3, 4, 5
 """Operations (code, a, b, c); numbers are positions in the input vector u, -1 for none:
 ADD a feed, b flow, c temperature; HOLD nothing (its heat follows at the next ARRIVE);
 SET_TEMPERATURE a; REMOVE_HEAT a; ARRIVE a held temperature, b pressure, c position of the HOLD;
-BED a bed number, b first of its three numbers in u: catalyst, catalyst activity, friction factor."""
+BED a bed number, b first of its three numbers in u: catalyst, catalyst activity, friction factor; c first of
+its catalyst activities by reaction (-1: that one holds for all)."""
 
 LEAST = 1e-200
 """Catalyst and catalyst activity are not taken below this, so that derivatives exist at zero."""
@@ -143,8 +144,14 @@ def take_heat(chem, row, out, Q, Q_d, moved, work):
 
 
 @compiled
-def fill_bed(chem, beds, b, row, out, u, first, bed):
-    """The integrator's view of bed b fed by the record at row, its numbers in u from `first` on."""
+def bed_length(chem, beds):
+    """Length of the array of a bed."""
+    return at_profile(chem) + beds.profile.shape[1]
+
+
+@compiled
+def fill_bed(chem, beds, b, row, out, u, first, each, bed):
+    """The integrator's view of bed b fed by the record at row, its numbers in u from first and each on."""
     S, mass = chem.S, at_mass(chem)
     F_total, mass_flow = 0.0, 0.0
     for s in range(S):
@@ -152,14 +159,17 @@ def fill_bed(chem, beds, b, row, out, u, first, bed):
         F_total += out[row + s, 0]
         mass_flow += out[row + s, 0] * chem.real[mass + s]
     for q in range(chem.R):
-        bed[at_factor(chem) + q] = max(u[first + 1], LEAST) * beds.rate_factor[b, q]
+        activity = u[first + 1 if each < 0 else each + q]
+        bed[at_factor(chem) + q] = max(activity, LEAST) * beds.rate_factor[b, q]
+    for i in range(beds.profile.shape[1]):
+        bed[at_profile(chem) + i] = beds.profile[b, i]
     bed[d_.H_IN], bed[d_.T_IN] = out[row + S, 0], out[row + S + 2, 0]
     bed[F_UNIT], bed[P_UNIT], bed[d_.W_BED] = F_total, out[row + S + 1, 0], max(u[first], LEAST)
     bed[d_.FRICTION] = u[first + 2] * GAS_CONSTANT * (beds.viscous[b] + beds.inertial[b] * mass_flow)
 
 
 @compiled
-def active_directions(row, rows, out, du, first, moved):
+def active_directions(row, rows, R, out, du, first, each, moved):
     """Directions that reach a bed through its inlet, its numbers or the chemistry: positions and how many."""
     D = du.shape[1]
     picked, count = np.empty(D, np.int64), 0
@@ -167,6 +177,8 @@ def active_directions(row, rows, out, du, first, moved):
         reaches = moved[d, 0] >= 0 and moved[d, 0] != COMPOSITION
         for i in range(3):
             reaches = reaches or du[first + i, d] != 0.0
+        for q in range(R if each >= 0 else 0):
+            reaches = reaches or du[each + q, d] != 0.0
         for s in range(rows):
             reaches = reaches or out[row + s, d + 1] != 0.0
         if reaches:
@@ -176,7 +188,7 @@ def active_directions(row, rows, out, du, first, moved):
 
 
 @compiled
-def bed_directions(chem, beds, b, row, out, u, du, first, picked, D):
+def bed_directions(chem, beds, b, row, out, u, du, first, each, picked, D):
     """Derivatives of the bed's inlet along the D picked directions, rows as in `tangents`, flat."""
     S, mass = chem.S, at_mass(chem)
     ways = np.empty((S + 4 + chem.R) * D)
@@ -195,7 +207,8 @@ def bed_directions(chem, beds, b, row, out, u, du, first, picked, D):
             + u[first + 2] * beds.inertial[b] * mass_d
         )
         for q in range(chem.R):
-            ways[(S + 4 + q) * D + i] = du[first + 1, d] / max(u[first + 1], LEAST)
+            activity = first + 1 if each < 0 else each + q
+            ways[(S + 4 + q) * D + i] = du[activity, d] / max(u[activity], LEAST)
     return ways
 
 
@@ -260,8 +273,8 @@ def write_places(chem, bed, steps, count, ways, moved, y0_d, Z_d, picked, D, row
 
 @inlined
 def run_bed(
-    chem, beds, b, row, exit_row, extra, u, du, first, moved, tolerance, frozen, places, stages, reference,
-    out, work,
+    chem, beds, b, row, exit_row, extra, u, du, first, each, moved, tolerance, frozen, places, stages,
+    reference, out, work,
 ):  # fmt: skip
     """Integrate bed b between two records; (status, depth reached, evaluations)."""
     S, n = chem.S, chem.R + 1
@@ -273,8 +286,8 @@ def run_bed(
             out[extra + i, 0] = np.nan
         stages.counts[b] = 0
         return DONE, 1.0, 0
-    bed = np.empty(BED_ROWS + S + chem.R)
-    fill_bed(chem, beds, b, row, out, u, first, bed)
+    bed = np.empty(bed_length(chem, beds))
+    fill_bed(chem, beds, b, row, out, u, first, each, bed)
     steps = stages.steps[b]
     status, depth, count, calls = integrate(
         chem, bed, tolerance, frozen, reference.counts[b], steps, reference.steps[b], work
@@ -283,8 +296,8 @@ def run_bed(
         return status, depth, calls
     stages.counts[b] = count
     write_exit(chem, bed, exit_row, out, steps[count - 1], work)
-    picked, D = active_directions(row, S + 3, out, du, first, moved)
-    ways = bed_directions(chem, beds, b, row, out, u, du, first, picked, D)
+    picked, D = active_directions(row, S + 3, chem.R, out, du, first, each, moved)
+    ways = bed_directions(chem, beds, b, row, out, u, du, first, each, picked, D)
     y0_d, Z_d, mine = np.empty((count + 1, n * D)), np.empty((count, 3 * n * D)), np.empty((D, 2), np.int64)
     for i in range(D):
         mine[i, 0], mine[i, 1] = moved[picked[i], 0], moved[picked[i], 1]
@@ -352,7 +365,7 @@ def train_pass(
                 set_row(out, row + S + 2, u[a], du[a])
         elif code == BED:
             status, depth, used = run_bed(
-                chem, beds, a, row - rows, row, K * rows + a * EXTRAS, u, du, b, moved, tolerance, frozen,
+                chem, beds, a, row - rows, row, K * rows + a * EXTRAS, u, du, b, c, moved, tolerance, frozen,
                 places, stages, reference, out, work,
             )  # fmt: skip
             calls += used

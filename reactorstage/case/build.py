@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from pathlib import Path
-from typing import Any, Literal, cast
+from typing import Any, Literal, TypeVar, cast
 
 from reactorstage.case.fields import Number, Raw
 from reactorstage.case.model import Case, Feed, HeatLevels, Limit, Section, Source, Split, Step
@@ -16,7 +16,16 @@ from reactorstage.case.written import (
     SplitWritten,
     StepWritten,
 )
-from reactorstage.case.written_chemistry import FROM_GIBBS, REVERSIBLE, Reaction, ReactionsWritten, Species
+from reactorstage.case.written_chemistry import (
+    FROM_GIBBS,
+    REVERSIBLE,
+    Reaction,
+    ReactionsWritten,
+    Species,
+    SpeciesData,
+)
+
+Data = TypeVar("Data", bound=SpeciesData)
 
 __all__ = ["build", "extras", "free_beds", "rest_of"]
 
@@ -55,10 +64,16 @@ def data_file(gas_data: str) -> tuple[str, str]:
 
 
 def _species(species: Species, folder: Path) -> Species:
-    file, name = data_file(species.gas_data or "")
+    isomers = tuple(_placed(one, folder) for one in species.isomers) if species.isomers else None
+    return _placed(species, folder).model_copy(update={"isomers": isomers})
+
+
+def _placed(data: Data, folder: Path) -> Data:
+    """Data whose file, if they name one, is found from anywhere."""
+    file, name = data_file(data.gas_data or "")
     if not file:
-        return species
-    return species.model_copy(update={"gas_data": f"{(folder / file).resolve()}:{name}"})
+        return data
+    return data.model_copy(update={"gas_data": f"{(folder / file).resolve()}:{name}"})
 
 
 def _reaction(reaction: Reaction) -> Reaction:

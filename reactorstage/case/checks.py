@@ -10,7 +10,8 @@ import re
 from collections.abc import Iterable, Mapping, Sequence
 from pathlib import Path
 
-from reactorstage.case.build import data_file, extras
+from reactorstage.case.build import extras
+from reactorstage.case.checks_chemistry import check_reaction, check_species
 from reactorstage.case.checks_feeds import check_feeds
 from reactorstage.case.checks_train import check_train
 from reactorstage.case.fields import Raw
@@ -19,7 +20,6 @@ from reactorstage.case.units import (
     UnitProblem,
     check_unit,
     price_to_si,
-    rate_constant_to_si,
     shown,
     split_number,
 )
@@ -37,9 +37,8 @@ from reactorstage.case.written import (
     LimitWritten,
     Price,
 )
-from reactorstage.case.written_chemistry import REVERSIBLE, Reaction, Species
+from reactorstage.case.written_chemistry import Reaction
 
-INLINE = ("formula", "enthalpy_of_formation", "entropy", "standard_pressure", "heat_capacity")
 OWN_MONEY = ("total", "heat", "soft limits")
 
 
@@ -133,66 +132,6 @@ def check_names(case: CaseWritten, findings: Findings) -> None:
 def plain_name(name: str) -> str:
     """A name as the command line compares it: lower case, hyphens and runs of spaces as one space."""
     return re.sub(r"[\s-]+", " ", name).strip().lower()
-
-
-def check_species(name: str, species: Species, folder: Path, findings: Findings) -> None:
-    path: TreePath = ("species", name)
-    given = [key for key in INLINE if getattr(species, key) is not None]
-    missing = [key.replace("_", " ") for key in INLINE if key not in given]
-    if species.gas_data is not None and given:
-        key = given[0].replace("_", " ")
-        findings.add((*path, key), f"{name} has both `gas data` and `{key}`", "keep one source of data", True)
-    elif species.gas_data is None and missing:
-        hint = "give `gas data: NAME`" + (", or " + ", ".join(missing) if missing else "")
-        what = f"{', '.join(missing)} missing" if given else "no data"
-        findings.add(path, f"{name} has {what}" if not given else f"{what} in {name}", hint)
-    file = data_file(species.gas_data or "")[0]
-    if file and not (folder / file).is_file():
-        hint = "the file is looked up in the folder of the case"
-        findings.add((*path, "gas data"), f"there is no file {shown(file)}", hint)
-
-
-def check_reaction(name: str, reaction: Reaction, case: CaseWritten, findings: Findings) -> None:
-    path: TreePath = ("reactions", name)
-    for species in reaction.orders or {}:
-        if case.species and species not in case.species:
-            hint = one_of(species, list(case.species))
-            findings.add((*path, "orders", species), f"there is no species {shown(species)}", hint, True)
-    if reaction.backward and reaction.equation and REVERSIBLE not in reaction.equation:
-        message = f"{name} is irreversible, so it has no backward rate"
-        findings.add(
-            (*path, "backward"), message, f"write {REVERSIBLE} in the equation, or leave `backward` out"
-        )
-    if reaction.constant.at is not None and reaction.constant.activation_energy is None:
-        message = "`at` has no meaning without an activation energy"
-        findings.add((*path, "constant", "at"), message, "add `activation energy`, or leave `at` out")
-    check_constant(path, reaction, case, findings)
-
-
-def check_constant(path: TreePath, reaction: Reaction, case: CaseWritten, findings: Findings) -> None:
-    """The unit of the rate constant against basis, driver and orders."""
-    orders = order_sum(reaction, case.species)
-    text = reaction.constant.is_.text
-    if orders is None or not (text and reaction.rate_per and reaction.driven_by):
-        return
-    try:
-        rate_constant_to_si(text, reaction.rate_per, reaction.driven_by, orders)
-    except UnitProblem as found:
-        findings.add((*path, "constant", "is"), found.message, found.hint)
-
-
-def order_sum(reaction: Reaction, species: Iterable[str]) -> float | None:
-    """Sum of the forward orders; None when the equation cannot be read here (chemistry says why)."""
-    if reaction.orders is not None:
-        return sum(reaction.orders.values())
-    left, arrow, _ = re.sub(REVERSIBLE, "=>", reaction.equation).partition("=>")
-    terms = [re.fullmatch(r"(?:([0-9.]+)\s+)?(\S.*)", term.strip()) for term in left.split(" + ")]
-    if not arrow or not all(term and term[2] in species for term in terms):
-        return None
-    try:
-        return sum(float(term[1] or 1.0) for term in terms if term)
-    except ValueError:
-        return None
 
 
 def check_levels(case: CaseWritten, findings: Findings) -> None:

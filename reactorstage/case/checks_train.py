@@ -9,7 +9,7 @@ from dataclasses import dataclass
 from itertools import pairwise
 
 from reactorstage.case.build import extras
-from reactorstage.case.fields import Number
+from reactorstage.case.fields import Activities, Number
 from reactorstage.case.marks import TreePath
 from reactorstage.case.units import shown
 from reactorstage.case.validate import Findings
@@ -302,6 +302,7 @@ def check_beds(beds: Mapping[str, Part], reactions: Mapping[str, Reaction], find
         if not isinstance(bed, Bed):
             continue
         check_pressure(owner, bed, part.path, findings)
+        check_activity(bed, part.path, reactions, findings)
         for reason, keys in needs(bed, reactions).items():
             missing = tuple(key for key in keys if getattr(bed, key.replace(" ", "_")) is None)
             if missing:
@@ -312,6 +313,20 @@ def check_beds(beds: Mapping[str, Part], reactions: Mapping[str, Reaction], find
         advice = f"add {'it' if len(missing) == 1 else 'them'} to `every bed` or to the bed"
         extra = ", or write `pressure drop factor: 0`" if reason == PRESSURE_DROP else ""
         findings.add(beds[owners[0]].path, message, advice + extra, True)
+
+
+def check_activity(bed: Bed, path: TreePath, reactions: Mapping[str, Reaction], findings: Findings) -> None:
+    """Reactions that are there, and points of depth that rise."""
+    activity = bed.catalyst_activity
+    for name in activity.each if isinstance(activity, Activities) else ():
+        if reactions and name not in reactions:
+            where = (*path, "catalyst activity", name)
+            findings.add(where, f"there is no reaction {shown(name)}", one_of(name, list(reactions)), True)
+    for i, (before, point) in enumerate(pairwise(bed.activity_along_depth or ())):
+        if before.at >= point.at:
+            message = f"{100.0 * point.at:g} % of depth does not lie below {100.0 * before.at:g} %"
+            hint = "write the points from the inlet down"
+            findings.add((*path, "activity along depth", i + 1, "at"), message, hint)
 
 
 PRESSURE_DROP = "the pressure drop"

@@ -7,7 +7,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import Any
 
 from pydantic import GetCoreSchemaHandler, GetJsonSchemaHandler, ValidationError
@@ -32,6 +32,13 @@ class Number:
     @property
     def free(self) -> bool:
         return self.low is not None and self.high is not None
+
+
+@dataclass(frozen=True)
+class Activities(Number):
+    """A number that holds for every reaction but those in `each`, which have their own."""
+
+    each: Mapping[str, Number] = field(default_factory=dict)
 
 
 @dataclass(frozen=True)

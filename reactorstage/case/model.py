@@ -14,18 +14,39 @@ from typing import Any, Literal
 
 from pydantic import BaseModel, ConfigDict, PrivateAttr
 
-from reactorstage.case.fields import Number, Raw
+from reactorstage.case.fields import Activities, Number, Raw
 from reactorstage.case.marks import Marked
 from reactorstage.case.word_fields import Aim
-from reactorstage.case.written import Bed, Level, Price
-from reactorstage.case.written_chemistry import Constant, Fluid, HeatCapacity, Reaction, Species, Validity
+from reactorstage.case.written import Bed, DepthPoint, Level, Price
+from reactorstage.case.written_chemistry import (
+    Fluid,
+    HeatCapacity,
+    Reaction,
+    Species,
+    SpeciesData,
+    Validity,
+)
+from reactorstage.case.written_rates import (
+    Constant,
+    Effectiveness,
+    EquilibriumConstant,
+    Factor,
+    OwnEquilibrium,
+    TemperatureForm,
+    TermConstant,
+)
 from reactorstage.errors import Problem
 
 __all__ = [
+    "Activities",
     "Aim",
     "Bed",
     "Case",
     "Constant",
+    "DepthPoint",
+    "Effectiveness",
+    "EquilibriumConstant",
+    "Factor",
     "Feed",
     "Fluid",
     "HeatCapacity",
@@ -33,14 +54,18 @@ __all__ = [
     "Level",
     "Limit",
     "Number",
+    "OwnEquilibrium",
     "Price",
     "Raw",
     "Reaction",
     "Section",
     "Source",
     "Species",
+    "SpeciesData",
     "Split",
     "Step",
+    "TemperatureForm",
+    "TermConstant",
     "Validity",
 ]
 

@@ -13,7 +13,7 @@ from reactorstage.case.checks import plain_name
 from reactorstage.case.marks import Mark, Marked, Place, Text, Tree, TreePath
 from reactorstage.case.resolve import BED, branch, get, put, sections, transplant
 from reactorstage.case.units import shown
-from reactorstage.case.word_fields import REST
+from reactorstage.case.word_fields import EVERY_REACTION, REST
 from reactorstage.case.written import EveryBed
 from reactorstage.errors import CallError
 
@@ -40,6 +40,12 @@ def settable(tree: Tree) -> Targets:
             targets[f"{path[-1]}.{key}"] = [(*path, key)]
         if key != "inlet pressure":
             targets[f"every bed.{key}"] = [(*path, key) for path in beds]
+    for path in beds:
+        targets |= activity_names(tree, path)
+    if beds:
+        targets["every bed.catalyst activity"] = [
+            target for path in beds for target in targets[f"{path[-1]}.catalyst activity"]
+        ]
     for path in sections(tree):
         targets |= device_names(tree, path)
     for name in keys(tree, "feeds"):
@@ -50,9 +56,20 @@ def settable(tree: Tree) -> Targets:
     return targets
 
 
-def keys(tree: Tree, *path: str) -> list[str]:
+def keys(tree: Tree, *path: str | int) -> list[str]:
     found = get(tree, path)
     return list(found) if isinstance(found, dict) else []
+
+
+def activity_names(tree: Tree, path: TreePath) -> Targets:
+    """Catalyst activities of a bed where they are given by reaction."""
+    key: TreePath = (*path, "catalyst activity")
+    names = keys(tree, *key)
+    if not names or "now" in names:
+        return {}
+    others = [name for name in names if name != EVERY_REACTION]
+    each: Targets = {f"{path[-1]}.catalyst activity of {name}": [(*key, name)] for name in others}
+    return each | {f"{path[-1]}.catalyst activity": [(*key, EVERY_REACTION)]}
 
 
 def device_names(tree: Tree, path: TreePath) -> Targets:

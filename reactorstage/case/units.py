@@ -13,6 +13,7 @@ from dataclasses import dataclass
 from reactorstage.case.unit_text import MONEY, ONE, Unit, UnitProblem, parse_unit
 
 __all__ = [
+    "DRIVER_UNIT",
     "KINDS",
     "Kind",
     "UnitProblem",
@@ -274,8 +275,15 @@ def display_unit(kind: str, currency: str = "") -> str:
 
 
 def in_unit(text: str, unit: str) -> float:
-    """The SI value of a number whose unit must measure the same as `unit`, for instance "J/(mol K^2)"."""
+    """The SI value of a number whose unit must measure the same as `unit`, for instance "J/(mol K^2)".
+
+    unit is empty for a plain number.
+    """
     number, found = split_number(text)
+    if not unit:
+        if found and not parse_unit(found).measures_the_same_as(ONE):
+            raise UnitProblem(f"{shown(text)} has a unit: a plain number is expected")
+        return scaled(number, parse_unit(found).factor) if found else number
     if not found:
         raise UnitProblem(f"{shown(text)} has no unit: {unit} is expected")
     parsed = parse_unit(found)
@@ -334,12 +342,18 @@ def _money_per(
 
 
 _RATE_PER = {"catalyst mass": "kg", "bed volume": "m^3", "void volume": "m^3"}
-_DRIVER_UNIT = {"partial pressure": "bar", "concentration": "(kmol/m^3)", "mole fraction": ""}
+DRIVER_UNIT = {
+    "partial pressure": "bar",
+    "concentration": "(kmol/m^3)",
+    "mole fraction": "",
+    "fugacity": "bar",
+}
+"""Unit of what rates are driven by -> as it is written in units; empty for plain numbers."""
 
 
 def rate_constant_unit(per: str, driver: str, order_sum: float) -> str:
     """The unit expected of a rate constant, for instance "kmol/(kg h bar^2)"."""
-    word, exponent = _DRIVER_UNIT[driver], f"^{order_sum:g}" if order_sum != 1.0 else ""
+    word, exponent = DRIVER_UNIT[driver], f"^{order_sum:g}" if order_sum != 1.0 else ""
     return f"kmol/({_RATE_PER[per]} h{f' {word}{exponent}' if word and order_sum else ''})"
 
 

@@ -37,6 +37,7 @@ def validate(tree: Tree, model: type[Model], findings: Findings) -> Model | None
         return model.model_validate(tree)
     except ValidationError as error:
         errors = error.errors(include_url=False, include_input=False)
+    errors = [item for item in errors if not _follows(item, errors)]
     salvaged = deepcopy(tree)
     for item in errors:
         report(item, tree, model, findings)
@@ -49,6 +50,14 @@ def validate(tree: Tree, model: type[Model], findings: Findings) -> Model | None
                 if isinstance(salvaged, dict) and item["loc"]:
                     salvaged[str(item["loc"][0])] = UNREADABLE
     return None
+
+
+def _follows(item: Any, errors: list[Any]) -> bool:
+    """Whether a list is too short only because its entries could not be read."""
+    loc = item["loc"]
+    return item["type"] == "too_short" and any(
+        len(other["loc"]) > len(loc) and other["loc"][: len(loc)] == loc for other in errors
+    )
 
 
 def report(item: Any, tree: Tree, model: type[Words], findings: Findings) -> None:
@@ -64,7 +73,9 @@ def report(item: Any, tree: Tree, model: type[Words], findings: Findings) -> Non
         keys = keys_at(path[:-1], model) + (["variant of"] if len(path) == 1 else [])
         findings.add(path, f"{shown(str(path[-1]))} is not a key here", one_of(str(path[-1]), keys), True)
     elif kind in ("too_short", "too_long"):
-        findings.add(path, f"nothing stands in {path[-1]}", meaning(path, model))
+        least, found = item.get("ctx", {}).get("min_length", 1), get(tree, path)
+        message = f"{path[-1]} has at least {least} entries" if found else f"nothing stands in {path[-1]}"
+        findings.add(path, message, meaning(path, model))
     else:
         wanted = "a list" if kind in ("tuple_type", "list_type") else "a mapping (key: value)"
         found = get(tree, path)

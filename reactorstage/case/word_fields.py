@@ -7,17 +7,22 @@ import re
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from difflib import get_close_matches
-from typing import Any
+from typing import Any, get_args
+
+from pydantic import GetCoreSchemaHandler, GetJsonSchemaHandler
+from pydantic_core import CoreSchema, core_schema
 
 from reactorstage.case import units
 from reactorstage.case.fields import (
     NUMBER_PATTERN,
+    Activities,
     Declared,
     Finding,
     Free,
     In,
     Number,
     Raw,
+    problem,
     quantity_schema,
     raise_all,
     text_of,
@@ -27,6 +32,7 @@ from reactorstage.case.units import UnitProblem, shown
 
 REST = "rest"
 AS_WRITTEN = "as written"
+EVERY_REACTION = "every reaction"
 
 
 @dataclass(frozen=True)
@@ -97,44 +103,105 @@ def each(items: Any, read: Callable[[Any, Any], Any]) -> list[Any]:
     return values
 
 
+class InUnit(In):
+    """A number in SI units whose unit must measure the same as `unit`, within bounds."""
+
+    def __init__(self, unit: str, **bounds: float):
+        super().__init__("number", **bounds)
+        self.unit = unit
+
+    def value(self, raw: Any) -> tuple[float, str]:
+        text = text_of(raw, f"a number in {self.unit}")
+        value = units.in_unit(text, self.unit)
+        self.bounds.check(value, "number", text)
+        return value, "number"
+
+    def schema(self) -> dict[str, Any]:
+        return {"type": "string", "pattern": NUMBER_PATTERN, "examples": [f"1.0 {self.unit}"]}
+
+
 class Powers(Declared):
-    """Coefficients of 1, T, T^2 ... in SI, each written with its own unit."""
+    """Coefficients of 1, x, x^2 ... in SI; `unit_of` gives the unit of the n-th, empty for a plain number."""
+
+    def __init__(self, unit_of: Callable[[int], str], example: str):
+        self.unit_of, self.example = unit_of, example
 
     def read(self, raw: Any) -> tuple[float, ...]:
         if raw is UNREADABLE:
             return ()
         if not isinstance(raw, list) or not raw:
-            raise UnitProblem(
-                "a list of coefficients is expected", 'write ["-37.4 J/(mol K)", "0.87 J/(mol K^2)"]'
-            )
+            raise UnitProblem("a list of coefficients is expected", f"write {self.example}")
         return tuple(each(enumerate(raw), self.coefficient))
 
     def coefficient(self, n: int, raw: Any) -> float:
-        unit = f"J/(mol K^{n + 1})" if n else "J/(mol K)"
-        return math.nan if raw is UNREADABLE else units.in_unit(text_of(raw, f"a number in {unit}"), unit)
+        unit = self.unit_of(n)
+        if raw is UNREADABLE:
+            return math.nan
+        return units.in_unit(text_of(raw, f"a number in {unit}" if unit else "a plain number"), unit)
 
     def schema(self) -> dict[str, Any]:
-        return {"type": "array", "minItems": 1, "items": {"type": "string", "examples": ["-37.4 J/(mol K)"]}}
+        item = {"type": "string" if self.unit_of(0) else ["string", "number"], "pattern": NUMBER_PATTERN}
+        return {"type": "array", "minItems": 1, "items": item, "examples": [self.example]}
 
 
 class Orders(Declared):
-    """Orders by species, or None for `as written`."""
+    """Orders by species, or None for `as written` where that has a meaning."""
 
     number = In("number", least=-9.0, most=9.0)
 
+    def __init__(self, as_written: bool = True):
+        self.as_written = as_written
+
     def read(self, raw: Any) -> dict[str, float] | None:
-        if raw == AS_WRITTEN or raw is UNREADABLE:
+        if raw is UNREADABLE:
+            return None if self.as_written else {}
+        if self.as_written and raw == AS_WRITTEN:
             return None
         if not isinstance(raw, dict) or not raw:
+            words = "`as written` or " if self.as_written else ""
             raise UnitProblem(
-                "orders are `as written` or a number for each species",
-                f"write {AS_WRITTEN}, or {{name: 1, name: 0.5}}",
+                f"orders are {words}a number for each species",
+                f"write {f'{AS_WRITTEN}, or ' if self.as_written else ''}{{name: 1, name: 0.5}}",
             )
         return dict(each(raw.items(), lambda name, order: (name, self.number.read(order))))
 
     def schema(self) -> dict[str, Any]:
         orders = {"type": "object", "minProperties": 1, "additionalProperties": self.number.schema()}
-        return {"oneOf": [{"const": AS_WRITTEN}, orders]}
+        return {"oneOf": [{"const": AS_WRITTEN}, orders]} if self.as_written else orders
+
+
+class TextOr:
+    """What is written as a mapping (a model), or shorter as a text; `read` makes of the text what follows.
+
+    What `read` gives is handed to the model when it is a mapping, and stands for itself otherwise. In a union
+    the model comes first.
+    """
+
+    def __init__(self, read: Callable[[str], Any], text: Declared):
+        self.read, self.text = read, text
+
+    @classmethod
+    def key(cls, key: str, text: Declared) -> TextOr:
+        """The text is the value of one of the model's keys."""
+        return cls(lambda raw: {key: raw}, text)
+
+    def __get_pydantic_core_schema__(self, source: Any, handler: GetCoreSchemaHandler) -> CoreSchema:
+        model = source if isinstance(source, type) else (get_args(source) or (source,))[0]
+        return core_schema.no_info_wrap_validator_function(self._validate, handler.generate_schema(model))
+
+    def _validate(self, raw: Any, handler: Callable[[Any], Any]) -> Any:
+        if not isinstance(raw, str):
+            return handler(raw)
+        try:
+            made = self.read(raw)
+        except UnitProblem as found:
+            raise problem(found.message, found.hint) from None
+        return handler(made) if isinstance(made, dict) else made
+
+    def __get_pydantic_json_schema__(
+        self, schema: CoreSchema, handler: GetJsonSchemaHandler
+    ) -> dict[str, Any]:
+        return {"oneOf": [self.text.schema(), handler(schema)]}
 
 
 class Entry(Free):
@@ -145,6 +212,29 @@ class Entry(Free):
 
     def schema(self) -> dict[str, Any]:
         return {"oneOf": [{"const": REST}, *(s for s in super().schema()["oneOf"])]}
+
+
+class ByReaction(Free):
+    """A `Number`, or `Activities` from a mapping by reaction; `every reaction` stands for the others."""
+
+    def __init__(self, default: float, *kinds: str, **bounds: float):
+        super().__init__(*kinds, **bounds)
+        self.default = default
+
+    def read(self, raw: Any) -> Number:  # type: ignore[override]
+        if not isinstance(raw, dict) or {"now", "from", "to"} & set(raw):
+            return super().read(raw)
+        if not raw:
+            raise UnitProblem("nothing stands here", "write {every reaction: 1.0, NAME: 0.8}")
+        each_one = dict(each(raw.items(), lambda name, one: (name, super(ByReaction, self).read(one))))
+        others = each_one.pop(EVERY_REACTION, Number(self.default, kind=self.kinds[0]))
+        return Activities(others.now, others.low, others.high, others.kind, each_one)
+
+    def schema(self) -> dict[str, Any]:
+        one = super().schema()
+        ranged = {"not": {"anyOf": [{"required": [key]} for key in ("now", "from", "to")]}}
+        listed = {"type": "object", "minProperties": 1, "additionalProperties": one, **ranged}
+        return {"oneOf": [*one["oneOf"], listed]}
 
 
 class RawText(Declared):

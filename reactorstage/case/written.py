@@ -26,6 +26,7 @@ from reactorstage.case.word_fields import (
     Aim,
     AimText,
     Between,
+    ByReaction,
     Choice,
     Entry,
     Names,
@@ -131,6 +132,15 @@ class StepWritten(Words):
         return self
 
 
+class DepthPoint(Words):
+    """A point of an activity along the depth of a bed."""
+
+    at: Annotated[float, In("fraction", least=0.0, most=1.0)] = Field(
+        description="share of the catalyst above it"
+    )
+    is_: Annotated[float, In("fraction", least=0.0)] = Field(description="share of the catalyst activity")
+
+
 class EveryBed(Words):
     """What holds for every bed that does not say otherwise."""
 
@@ -153,8 +163,13 @@ class EveryBed(Words):
     equivalent_size: Annotated[float, In("length", above=0.0)] | None = Field(
         None, description="6 x volume / surface of a particle"
     )
-    catalyst_activity: Annotated[Number, Free("number", least=0.0)] = Field(
-        Number(1.0), description="multiplies every rate, forward and backward; 1 is fresh"
+    catalyst_activity: Annotated[Number, ByReaction(1.0, "number", least=0.0)] = Field(
+        Number(1.0),
+        description="multiplies rates, forward and backward; 1 is fresh; or by reaction, as in "
+        "{every reaction: 1.0, ethylation: 0.8}",
+    )
+    activity_along_depth: Annotated[tuple[DepthPoint, ...], Field(min_length=2)] | None = Field(
+        None, description="multiplies the catalyst activity: straight lines between points, level outside"
     )
     pressure_drop_factor: Annotated[Number, Free("number", least=0.0)] = Field(
         Number(1.0), description="multiplies the calculated pressure drop; 0 switches it off"

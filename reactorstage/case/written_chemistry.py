@@ -2,27 +2,22 @@
 
 from __future__ import annotations
 
-from typing import Annotated, Any, Literal
+from typing import Annotated, Literal
 
-from pydantic import (
-    ConfigDict,
-    Field,
-    GetCoreSchemaHandler,
-    GetJsonSchemaHandler,
-)
-from pydantic_core import CoreSchema, core_schema
+from pydantic import ConfigDict, Field
 
-from reactorstage.case.fields import In, Raw
-from reactorstage.case.word_fields import (
-    Choice,
-    Orders,
-    Powers,
-    RawText,
-    Span,
-)
+from reactorstage.case.fields import In
+from reactorstage.case.word_fields import Choice, Orders, Powers, Span, TextOf, TextOr
 from reactorstage.case.words import Name, Words, mergeable
+from reactorstage.case.written_rates import (
+    FACTOR,
+    RATE_CONSTANT,
+    Constant,
+    Effectiveness,
+    Factor,
+    OwnEquilibrium,
+)
 
-EVERY_REACTION = "every reaction"
 FROM_GIBBS = "from Gibbs energies"
 REVERSIBLE = "<=>"
 RatePer = Annotated[
@@ -30,8 +25,8 @@ RatePer = Annotated[
     Choice("catalyst mass", "bed volume", "void volume"),
 ]
 DrivenBy = Annotated[
-    Literal["partial pressure", "concentration", "mole fraction"],
-    Choice("partial pressure", "concentration", "mole fraction"),
+    Literal["partial pressure", "concentration", "mole fraction", "fugacity"],
+    Choice("partial pressure", "concentration", "mole fraction", "fugacity"),
 ]
 
 
@@ -46,16 +41,24 @@ class Validity(Words):
     )
 
 
+def capacity_unit(n: int) -> str:
+    """Unit of the coefficient of T^n."""
+    return f"J/(mol K^{n + 1})" if n else "J/(mol K)"
+
+
+CAPACITY_EXAMPLE = '["-37.4 J/(mol K)", "0.87 J/(mol K^2)"]'
+
+
 class HeatCapacity(Words):
     """Molar heat capacity of the ideal gas at constant pressure."""
 
-    powers_of_T: Annotated[tuple[float, ...], Powers()] = Field(
+    powers_of_T: Annotated[tuple[float, ...], Powers(capacity_unit, CAPACITY_EXAMPLE)] = Field(
         description="a, b, c ... of a + b T + c T^2 ..., each with its unit: J/(mol K), J/(mol K^2) ..."
     )
 
 
-class Species(Words):
-    """One species: a name in data files, or formula, enthalpy, entropy and heat capacity written out."""
+class SpeciesData(Words):
+    """Data of one molecule: a name in data files, or formula, enthalpy, entropy and heat capacity."""
 
     gas_data: Name | None = Field(None, description="name in Cantera's data files, or file:name")
     formula: Name | None = Field(None, description="chemical formula, as in C10H14")
@@ -73,6 +76,17 @@ class Species(Words):
     source: Name | None = Field(None, description="where the numbers come from")
 
 
+class Species(SpeciesData):
+    """One species: a name in data files, data written out, or a group of isomers."""
+
+    isomers: (
+        Annotated[tuple[Annotated[SpeciesData, TextOr.key("gas data", TextOf())], ...], Field(min_length=2)]
+        | None
+    ) = Field(
+        None, description="isomers in equilibrium among themselves: names in data files, or data of each"
+    )
+
+
 class Fluid(Words):
     """What flows through the beds."""
 
@@ -80,37 +94,7 @@ class Fluid(Words):
     viscosity: Annotated[float, In("viscosity", above=0.0)] = Field(description="dynamic viscosity")
 
 
-RATE_CONSTANT = RawText(positive=True, example="4.2e-3 kmol/(kg h bar^2)")
-
-
-class Constant(Words):
-    """A rate constant, k = is exp(-E/R (1/T - 1/at)); without `at`, k = is exp(-E/(R T))."""
-
-    is_: Annotated[Raw, RATE_CONSTANT] = Field(
-        description="value; its unit must fit `rate per`, `driven by` and the sum of the orders"
-    )
-    at: Annotated[float, In("temperature", above=0.0)] | None = Field(
-        None,
-        description="temperature at which the value holds; without it: pre-exponential factor",
-    )
-    activation_energy: Annotated[float, In("molar energy")] | None = Field(
-        None, description="E; none: no change with T"
-    )
-
-
-class TextOrMapping:
-    """The constant as a mapping, or its value alone as text."""
-
-    def __get_pydantic_core_schema__(self, source: Any, handler: GetCoreSchemaHandler) -> CoreSchema:
-        inner = handler(source)
-        return core_schema.no_info_before_validator_function(
-            lambda raw: {"is": raw} if isinstance(raw, str) else raw, inner
-        )
-
-    def __get_pydantic_json_schema__(
-        self, schema: CoreSchema, handler: GetJsonSchemaHandler
-    ) -> dict[str, Any]:
-        return {"oneOf": [RATE_CONSTANT.schema(), handler(schema)]}
+Backward = Annotated[OwnEquilibrium | str, TextOr(Choice(FROM_GIBBS).read, Choice(FROM_GIBBS))]
 
 
 class EveryReaction(Words):
@@ -121,8 +105,15 @@ class EveryReaction(Words):
     orders: Annotated[dict[str, float] | None, Orders()] = Field(
         None, description="`as written` (the numbers of the equation), or an order for each species"
     )
-    backward: Annotated[Literal["from Gibbs energies"], Choice(FROM_GIBBS)] | None = Field(
-        None, description="where the equilibrium constant of a reversible equation comes from"
+    backward: Backward | None = Field(
+        None,
+        description="`from Gibbs energies`, or a mapping with an equilibrium constant of the law's own",
+    )
+    slowed_by: Annotated[tuple[Factor, ...], Field(min_length=1)] | None = Field(
+        None, description="factors below the line, each a sum of terms to a power"
+    )
+    effectiveness: Annotated[Effectiveness, TextOr.key("factor", FACTOR)] | None = Field(
+        None, description="actual rate over the rate without pore limitation; none: 1"
     )
     valid: Validity | None = Field(None, description="where the rate law holds")
     source: Name | None = Field(None, description="where the numbers come from")
@@ -134,8 +125,14 @@ class Reaction(EveryReaction):
     model_config = ConfigDict(json_schema_extra=mergeable("rate per", "driven by"))
 
     equation: Name = Field(description="as in benzene + ethylene <=> ethylbenzene")
-    constant: Annotated[Constant, TextOrMapping()] = Field(
+    constant: Annotated[Constant, TextOr.key("is", RATE_CONSTANT)] = Field(
         description="rate constant, with its temperature dependence if it has one"
+    )
+    power_of_K: Annotated[float, In("number", above=0.0, most=9.0)] = Field(
+        1.0, description="m: times that the equation turns over in the step that sets the rate"
+    )
+    floor: dict[str, Annotated[float, In("fraction", above=0.0, most=0.1)]] = Field(
+        {}, description="mole fraction by species below which its driver is held up smoothly"
     )
     rate_per: RatePer = Field(description="what the rate is counted per")
     driven_by: DrivenBy = Field(description="what the orders are powers of")

@@ -2,17 +2,18 @@
 
 from reactorstage.chemistry.constants import P_STANDARD, R_GAS, T_STANDARD
 from reactorstage.chemistry.formula import molar_mass, parse_formula
-from reactorstage.chemistry.rate_law import (
+from reactorstage.chemistry.isomers import isomer_group
+from reactorstage.chemistry.law import (
     BASES,
     DRIVERS,
     Constant,
     Denominator,
+    Polynomial,
     RateLaw,
-    RateLaws,
     Term,
-    basis_factors,
-    rate_laws,
+    Thiele,
 )
+from reactorstage.chemistry.rate_law import RateLaws, basis_factors, rate_laws
 from reactorstage.chemistry.rates import rates
 from reactorstage.chemistry.reaction import (
     Equation,
@@ -45,11 +46,13 @@ __all__ = [
     "Constant",
     "Denominator",
     "Equation",
+    "Polynomial",
     "RateLaw",
     "RateLaws",
     "Species",
     "SpeciesTable",
     "Term",
+    "Thiele",
     "balance_message",
     "basis_factors",
     "cp",
@@ -61,6 +64,7 @@ __all__ = [
     "imbalance",
     "independent_count",
     "inline_species",
+    "isomer_group",
     "ln_K",
     "ln_Q",
     "molar_mass",

@@ -1,102 +1,47 @@
-"""Rate laws: one general form, held as the arrays that the compiled kernel reads.
+"""Rate laws as the arrays that the compiled kernel reads; the form of a law stands at the top of `law`.
 
-    rate = factor * k(T) * [ prod a_i^alpha_i - prod a_i^beta_i / Ka(T, p)^m ]
-           / prod_n ( sum_j K_j(T) prod a_i^gamma_ij )^q_n
-
-with beta = alpha + m nu, derived and never given, so that the rate is zero at equilibrium by
-construction (the form of Hougen and Watson, Chemical Process Principles III, 1947, and of Temkin
-and Pyzhev, 1940, in one).
-
-    ln k(T)   = lnk_ref + E/R (1/T_ref - 1/T) + c ln(T/T_ref) + d (T - T_ref)
-    ln K_j(T) = term_lnK_ref + H/R (1/T_ref - 1/T)
-    Ka        = K(T) (p0 a/p)^(sum nu),  a/p = 1/(R T), 1, 1/p  for the three drivers
+    Ka = K(T) (p0 a/p)^(sum nu),  a/p = 1/(R T), 1, 1/p, 1  for the four drivers
 
 Powers near and below zero. Whole orders of zero and above are plain multiplications. For the others,
-with delta = 1e-12 * (p/(R T), p, 1) in the unit of the driver,
+with delta = 1e-12 * (p/(R T), p, 1, p) in the unit of the driver,
 
     n > 0:  a (a^2 + delta^2)^((n-1)/2)        n < 0:  (a^2 + delta^2)^(n/2)
 
-which is smooth for every real a, and a^n to rounding wherever a is above 1e-4 of the total.
+which is smooth for every real a, and a^n to rounding wherever a is above 1e-4 of the total. Floors, where a
+law has them, are wider: see `orders`.
 """
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
-from math import inf, isfinite, isinf, log
+from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from reactorstage.chemistry.forms import Floats
+from reactorstage.chemistry.law import (
+    BASES,
+    DRIVERS,
+    MOST_POWERS_OF_T,
+    MOST_POWERS_OF_Z,
+    SHAPES,
+    Constant,
+    RateLaw,
+    Thiele,
+    backward_orders,
+    check_law,
+)
+from reactorstage.chemistry.orders import Split, backward, below, forward, useless_floors
 
 Ints = NDArray[np.int64]
 
-DRIVERS = {"concentration": 0, "partial pressure": 1, "mole fraction": 2}
-"""What rates are driven by -> code in `RateLaws.driver`; units mol/m3, Pa, -."""
+NO_ETA, POLYNOMIAL = 0, 1
+"""Codes in `RateLaws.eta_kind` besides those of `SHAPES`."""
 
-BASES = {"catalyst mass": 0, "bed volume": 1, "void volume": 2}
-"""What rates are per -> code in `RateLaws.basis`; units mol/(kg s), mol/(m3 s), mol/(m3 s)."""
-
-T_STORED = 500.0
-"""Reference temperature, K, that replaces an infinite one (a pre-exponential factor) in the arrays."""
-
-
-@dataclass(frozen=True)
-class Constant:
-    """ln of a constant at T_ref and its temperature dependence; see the module's formulas.
-
-    With T_ref infinite, ln_ref is the ln of the pre-exponential factor, and the whole reads
-    ln k = ln_ref - E_over_R/T + c ln T + d T (K).
-    """
-
-    ln_ref: float
-    T_ref: float = inf
-    E_over_R: float = 0.0
-    c: float = 0.0
-    d: float = 0.0
-
-    def at_finite_reference(self) -> Constant:
-        if not isinf(self.T_ref):
-            return self
-        ln_ref = self.ln_ref - self.E_over_R / T_STORED + self.c * log(T_STORED) + self.d * T_STORED
-        return Constant(ln_ref, T_STORED, self.E_over_R, self.c, self.d)
-
-
-@dataclass(frozen=True)
-class Term:
-    """One term of a denominator, K_j(T) prod a_i^gamma_i; E_over_R of its constant is heat over R."""
-
-    constant: Constant
-    orders: Mapping[str, float] = field(default_factory=dict)
-
-
-@dataclass(frozen=True)
-class Denominator:
-    """One factor of the denominator: a sum of terms, raised to a power."""
-
-    terms: tuple[Term, ...]
-    power: float = 1.0
-
-
-@dataclass(frozen=True)
-class RateLaw:
-    """The law of one reaction, in words and SI units of its driver and basis.
-
-    stoichiometry: species -> nu; orders: species -> alpha; driver and basis: keys of `DRIVERS` and
-    `BASES`; m: how many times the equation as written turns over in the step that sets the rate.
-    """
-
-    label: str
-    stoichiometry: Mapping[str, float]
-    orders: Mapping[str, float]
-    constant: Constant
-    driver: str
-    reversible: bool
-    basis: str = "catalyst mass"
-    m: float = 1.0
-    denominators: tuple[Denominator, ...] = ()
+ETA = MOST_POWERS_OF_T + MOST_POWERS_OF_Z + 1
+"""Numbers of one effectiveness: powers of T, powers of Z, weight of Z; or the modulus."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -104,7 +49,8 @@ class RateLaws:
     """The laws of R reactions of S species: float64 or int64 arrays in C order.
 
     Denominator factors of reaction r are den_start[r]:den_start[r + 1] (of ND); the terms of factor n
-    are term_start[n]:term_start[n + 1] (of NT).
+    are term_start[n]:term_start[n + 1] (of NT). Powers are given for the drivers of all species and then
+    for their floored drivers (2 S); `alpha`, `beta` and `gamma` are the orders that they make together.
     """
 
     lnk_ref: Floats
@@ -118,19 +64,27 @@ class RateLaws:
     d: Floats
     """(R,) factor of T - T_ref, 1/K."""
     driver: Ints
-    """(R,) 0 concentration mol/m3, 1 partial pressure Pa, 2 mole fraction."""
+    """(R,) 0 concentration mol/m3, 1 partial pressure Pa, 2 mole fraction, 3 fugacity Pa."""
     reversible: Ints
     """(R,) 1 with a backward rate, 0 without."""
+    own_K: Ints
+    """(R,) 1 with an equilibrium constant of its own, 0 with that of the Gibbs energies."""
+    K_form: Floats
+    """(R, 5) ln K at T_ref (standard pressure 1e5 Pa), T_ref K, heat over R K, c, d 1/K; for own_K only."""
     m: Floats
     """(R,) power of the equilibrium constant."""
     basis: Ints
     """(R,) 0 catalyst mass, 1 bed volume, 2 void volume."""
-    alpha: Floats
-    """(R, S) forward orders."""
-    beta: Floats
-    """(R, S) backward orders, alpha + m nu."""
+    forward: Floats
+    """(R, 2 S) powers of the forward rate."""
+    backward: Floats
+    """(R, 2 S) powers of the backward rate."""
+    floor: Floats
+    """(R, S) mole fractions, 0 without a floor."""
     nu: Floats
     """(R, S) stoichiometric matrix."""
+    beta: Floats
+    """(R, S) backward orders, alpha + m nu."""
     den_start: Ints
     """(R + 1,) offsets into the denominator factors."""
     den_power: Floats
@@ -143,23 +97,48 @@ class RateLaws:
     """(NT,) K, finite."""
     term_H_over_R: Floats
     """(NT,) heat of the term over the gas constant, K."""
-    gamma: Floats
-    """(NT, S) orders of each term."""
+    term_c: Floats
+    """(NT,) factor of ln(T/T_ref)."""
+    term_d: Floats
+    """(NT,) factor of T - T_ref, 1/K."""
+    below: Floats
+    """(NT, 2 S) powers of each term."""
+    eta_kind: Ints
+    """(R,) 0 no effectiveness factor, 1 polynomial, 2 slab, 3 sphere."""
+    eta: Floats
+    """(R, ETA) powers of T, of Z, weight of Z; or size^2 |nu_key| density/diffusivity in the first place."""
+    eta_species: Ints
+    """(R, 2) the key species and what it becomes, -1 for none."""
+
+    @property
+    def alpha(self) -> Floats:
+        """(R, S) forward orders."""
+        return _together(self.forward)
+
+    @property
+    def gamma(self) -> Floats:
+        """(NT, S) orders of each term."""
+        return _together(self.below)
+
+
+def _together(powers: Floats) -> Floats:
+    S = powers.shape[1] // 2
+    return powers[:, :S] + powers[:, S:]
 
 
 def rate_laws(laws: Sequence[RateLaw], names: Sequence[str]) -> RateLaws:
     """The arrays of several laws for species in the order of `names`.
 
-    Raises ValueError, which begins with the reaction's label, for an unknown word or species, a
-    constant that is not a finite number above zero, or a backward rate that would be singular where a
-    reactant is absent.
+    Raises ValueError, which begins with the reaction's label, for an unknown word or species, a constant that
+    is not a finite number above zero, or a floor that changes nothing.
     """
     for law in laws:
-        _check(law, names)
+        check_law(law, names)
+        _check_floors(law)
     constants = [law.constant.at_finite_reference() for law in laws]
     factors = [factor for law in laws for factor in law.denominators]
-    terms = [term for factor in factors for term in factor.terms]
-    term_constants = [term.constant.at_finite_reference() for term in terms]
+    terms = [(law, term) for law in laws for factor in law.denominators for term in factor.terms]
+    term_constants = [term.constant.at_finite_reference() for _, term in terms]
     return RateLaws(
         lnk_ref=_floats(one.ln_ref for one in constants),
         T_ref=_floats(one.T_ref for one in constants),
@@ -168,18 +147,27 @@ def rate_laws(laws: Sequence[RateLaw], names: Sequence[str]) -> RateLaws:
         d=_floats(one.d for one in constants),
         driver=_ints(DRIVERS[law.driver] for law in laws),
         reversible=_ints(law.reversible for law in laws),
+        own_K=_ints(law.K is not None for law in laws),
+        K_form=_floats(_form(law.K or Constant(0.0)) for law in laws).reshape(-1, 5),
         m=_floats(law.m for law in laws),
         basis=_ints(BASES[law.basis] for law in laws),
-        alpha=_rows((law.orders for law in laws), names),
-        beta=_rows((_backward_orders(law) for law in laws), names),
+        forward=_powers((forward(law) for law in laws), names),
+        backward=_powers((backward(law) for law in laws), names),
+        floor=_rows((law.floors for law in laws), names),
         nu=_rows((law.stoichiometry for law in laws), names),
+        beta=_rows((backward_orders(law) for law in laws), names),
         den_start=_offsets(len(law.denominators) for law in laws),
         den_power=_floats(factor.power for factor in factors),
         term_start=_offsets(len(factor.terms) for factor in factors),
         term_lnK_ref=_floats(one.ln_ref for one in term_constants),
         term_T_ref=_floats(one.T_ref for one in term_constants),
         term_H_over_R=_floats(one.E_over_R for one in term_constants),
-        gamma=_rows((term.orders for term in terms), names),
+        term_c=_floats(one.c for one in term_constants),
+        term_d=_floats(one.d for one in term_constants),
+        below=_powers((below(law, term.orders) for law, term in terms), names),
+        eta_kind=_ints(_eta_kind(law) for law in laws),
+        eta=_floats(_eta(law) for law in laws).reshape(-1, ETA),
+        eta_species=_ints(_eta_species(law, names) for law in laws).reshape(-1, 2),
     )
 
 
@@ -191,62 +179,43 @@ def basis_factors(laws: RateLaws, bulk_density: float, void_fraction: float) -> 
     return np.array([1.0, 1.0 / bulk_density, void_fraction / bulk_density])[laws.basis]
 
 
-def _backward_orders(law: RateLaw) -> dict[str, float]:
-    """beta = alpha + m nu, whole where it is whole to rounding."""
-    names = {**law.orders, **law.stoichiometry}
-    orders = {name: law.orders.get(name, 0.0) + law.m * law.stoichiometry.get(name, 0.0) for name in names}
-    return {name: round(n) if abs(n - round(n)) < 1e-9 else n for name, n in orders.items()}
-
-
-def _check(law: RateLaw, names: Sequence[str]) -> None:
-    _check_words(law)
-    _check_species(law, names)
-    _check_numbers(law)
-    singular = [name for name, order in _backward_orders(law).items() if order < 0.0]
-    if law.reversible and singular:
+def _check_floors(law: RateLaw) -> None:
+    for name in useless_floors(law):
         raise ValueError(
-            f"{law.label}: the backward rate would be of negative order in {', '.join(singular)}, "
-            "singular where that is absent; raise its forward order to what the equation consumes "
-            "or write '=>'"
+            f"{law.label}: a floor of {name} changes nothing: its orders are whole and not below zero"
         )
 
 
-def _check_words(law: RateLaw) -> None:
-    for what, word, known in (("driven by", law.driver, DRIVERS), ("rate per", law.basis, BASES)):
-        if word not in known:
-            raise ValueError(f"{law.label}: {what} {word!r} is not one of {', '.join(known)}")
+def _form(constant: Constant) -> list[float]:
+    one = constant.at_finite_reference()
+    return [one.ln_ref, one.T_ref, one.E_over_R, one.c, one.d]
 
 
-def _check_species(law: RateLaw, names: Sequence[str]) -> None:
-    terms = [term for factor in law.denominators for term in factor.terms]
-    for orders in (law.stoichiometry, law.orders, *(term.orders for term in terms)):
-        unknown = [name for name in orders if name not in names]
-        if unknown:
-            raise ValueError(
-                f"{law.label}: no species {', '.join(map(repr, unknown))} among {', '.join(names)}"
-            )
+def _eta_kind(law: RateLaw) -> int:
+    eta = law.effectiveness
+    if isinstance(eta, Thiele):
+        return SHAPES[eta.shape]
+    return NO_ETA if eta is None else POLYNOMIAL
 
 
-def _check_numbers(law: RateLaw) -> None:
-    if not any(law.stoichiometry.values()):
-        raise ValueError(f"{law.label}: the reaction changes nothing")
-    if not (isfinite(law.m) and law.m > 0.0):
-        raise ValueError(f"{law.label}: m is {law.m:g}; it must be above zero")
-    _check_constant(law.constant, f"{law.label}: the rate constant")
-    for factor in law.denominators:
-        if not factor.terms or not isfinite(factor.power) or factor.power == 0.0:
-            raise ValueError(f"{law.label}: a denominator needs terms and a power other than zero")
-        for term in factor.terms:
-            _check_constant(term.constant, f"{law.label}: the constant of a denominator's term")
-            if term.constant.c or term.constant.d:
-                raise ValueError(f"{law.label}: the constant of a denominator's term takes no c or d")
+def _eta(law: RateLaw) -> list[float]:
+    eta, nu = law.effectiveness, law.stoichiometry
+    if isinstance(eta, Thiele):
+        modulus = eta.size**2 * abs(nu[eta.key]) * eta.density / eta.diffusivity
+        return [modulus, *[0.0] * (ETA - 1)]
+    by_T, by_Z = ((1.0,), ()) if eta is None else (eta.by_T, eta.by_Z)
+    weight = abs(nu[eta.key] / nu[eta.into]) if eta and eta.by_Z else 1.0
+    padded_T = [*by_T, *[0.0] * (MOST_POWERS_OF_T - len(by_T))]
+    return [*padded_T, *by_Z, *[0.0] * (MOST_POWERS_OF_Z - len(by_Z)), weight]
 
 
-def _check_constant(constant: Constant, what: str) -> None:
-    if not constant.T_ref > 0.0:
-        raise ValueError(f"{what} has the reference temperature {constant.T_ref:g} K; it must be above zero")
-    if not all(map(isfinite, (constant.ln_ref, constant.E_over_R, constant.c, constant.d))):
-        raise ValueError(f"{what} must be above zero and finite")
+def _eta_species(law: RateLaw, names: Sequence[str]) -> list[int]:
+    eta = law.effectiveness
+    if isinstance(eta, Thiele):
+        return [names.index(eta.key), -1]
+    if eta is None or not eta.by_Z:
+        return [-1, -1]
+    return [names.index(eta.key), names.index(eta.into)]
 
 
 def _floats(values: Any) -> Floats:
@@ -261,6 +230,12 @@ def _offsets(lengths: Any) -> Ints:
     return np.concatenate([[0], np.cumsum(_ints(lengths))]).astype(np.int64)
 
 
-def _rows(orders: Any, names: Sequence[str]) -> Floats:
+def _rows(orders: Iterable[Mapping[str, float]], names: Sequence[str]) -> Floats:
     rows = [[one.get(name, 0.0) for name in names] for one in orders]
     return np.array(rows, dtype=np.float64).reshape(len(rows), len(names))
+
+
+def _powers(splits: Iterable[Split], names: Sequence[str]) -> Floats:
+    pairs = list(splits)
+    plain, floored = (_rows((pair[i] for pair in pairs), names) for i in (0, 1))
+    return np.concatenate([plain, floored], axis=1)

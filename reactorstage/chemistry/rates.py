@@ -1,7 +1,7 @@
 """Reaction rates in plain NumPy, the readable twin of the compiled kernel.
 
 Everything takes complex flows, temperature and pressure, so that derivatives can be checked by
-complex step. The formulas stand at the top of `rate_law`.
+complex step. The formulas stand at the top of `law`, `rate_law` and `orders`.
 """
 
 from __future__ import annotations
@@ -9,9 +9,11 @@ from __future__ import annotations
 import numpy as np
 
 from reactorstage.chemistry.constants import P_STANDARD, R_GAS
+from reactorstage.chemistry.effectiveness import effectiveness
 from reactorstage.chemistry.forms import Floats
 from reactorstage.chemistry.rate_law import RateLaws
 from reactorstage.chemistry.reaction import ln_K
+from reactorstage.chemistry.smooth import floored
 from reactorstage.chemistry.species import SpeciesTable
 from reactorstage.chemistry.thermo import Array, Scalar
 
@@ -23,7 +25,8 @@ def rates(laws: RateLaws, table: SpeciesTable, F: Array, T: Scalar, p: Scalar, f
     """Rates of the reactions of an ideal gas (R,), mol/(kg s) with factors that make them so.
 
     F (S,) molar flows, mol/s, only their ratios matter; T K; p Pa; factor (R,) catalyst activity
-    times `basis_factors`. Several compositions at once, F (S, N), give rates (R, N).
+    times `basis_factors`. Several compositions at once, F (S, N), give rates (R, N). A fugacity is that of
+    an ideal gas, the partial pressure.
     """
     y = F / np.sum(F, axis=0)
     k = np.exp(ln_k(laws, T))
@@ -31,11 +34,12 @@ def rates(laws: RateLaws, table: SpeciesTable, F: Array, T: Scalar, p: Scalar, f
     found = []
     for r in range(len(laws.m)):
         total = driver_total(laws.driver[r], T, p)
-        a = y * total
-        drive = product(a, laws.alpha[r], total)
+        a = np.concatenate([y, _floored(y, laws.floor[r])]) * total
+        drive = product(a, laws.forward[r], total)
         if laws.reversible[r]:
-            drive = drive - product(a, laws.beta[r], total) * np.exp(-laws.m[r] * ln_Ka[r])
-        found.append(factor[r] * k[r] * drive / _denominator(laws, r, a, T, total))
+            drive = drive - product(a, laws.backward[r], total) * np.exp(-laws.m[r] * ln_Ka[r])
+        rate = factor[r] * k[r] * drive / _denominator(laws, r, a, T, total)
+        found.append(rate * effectiveness(laws, r, rate, y, T, p))
     return np.array(found)
 
 
@@ -46,15 +50,23 @@ def ln_k(laws: RateLaws, T: Scalar) -> Array:
     return np.asarray(ln_k_T)
 
 
+def ln_K_of_laws(laws: RateLaws, table: SpeciesTable, T: Scalar) -> Array:
+    """ln of the equilibrium constants by which the laws come to rest, (R,), standard pressure 1e5 Pa."""
+    ln_ref, T_ref, H_over_R, c, d = laws.K_form.T
+    own = ln_ref + H_over_R * (1.0 / T_ref - 1.0 / T) + c * np.log(T / T_ref) + d * (T - T_ref)
+    return np.asarray(np.where(laws.own_K == 1, own, ln_K(table, laws.nu, T)))
+
+
 def ln_K_of_driver(laws: RateLaws, table: SpeciesTable, T: Scalar, p: Scalar) -> Array:
     """ln of the equilibrium constants in the unit of each driver, (R,): Ka = K (p0 a/p)^(sum nu)."""
-    ln_p0_a_p = np.log(np.array([P_STANDARD / (R_GAS * T), P_STANDARD, P_STANDARD / p]))[laws.driver]
-    return np.asarray(ln_K(table, laws.nu, T) + laws.nu.sum(axis=1) * ln_p0_a_p)
+    by_driver = [P_STANDARD / (R_GAS * T), P_STANDARD, P_STANDARD / p, P_STANDARD]
+    ln_p0_a_p = np.log(np.array(by_driver))[laws.driver]
+    return np.asarray(ln_K_of_laws(laws, table, T) + laws.nu.sum(axis=1) * ln_p0_a_p)
 
 
 def driver_total(driver: int, T: Scalar, p: Scalar) -> Scalar:
-    """Sum of the driver over all species: p/(R T) in mol/m3, p in Pa, or 1."""
-    return (p / (R_GAS * T), p, 1.0)[driver]
+    """Sum of the driver over all species: p/(R T) in mol/m3, p in Pa, 1, or p in Pa."""
+    return (p / (R_GAS * T), p, 1.0, p)[driver]
 
 
 def product(a: Array, orders: Floats, total: Scalar) -> Scalar:
@@ -73,6 +85,11 @@ def power(a: Scalar, n: float, delta: Scalar) -> Scalar:
     return a * square ** ((n - 1.0) / 2.0) if n > 0.0 else square ** (n / 2.0)
 
 
+def _floored(y: Array, floor: Floats) -> Array:
+    """Floored mole fractions; where there is no floor their power is 0 and they do not matter."""
+    return np.asarray(floored(y, floor.reshape(-1, *[1] * (y.ndim - 1))))
+
+
 def _denominator(laws: RateLaws, r: int, a: Array, T: Scalar, total: Scalar) -> Scalar:
     value: Scalar = 1.0
     for n in range(laws.den_start[r], laws.den_start[r + 1]):
@@ -82,6 +99,8 @@ def _denominator(laws: RateLaws, r: int, a: Array, T: Scalar, total: Scalar) -> 
 
 
 def _term(laws: RateLaws, j: int, a: Array, T: Scalar, total: Scalar) -> Scalar:
-    ln_K_j = laws.term_lnK_ref[j] + laws.term_H_over_R[j] * (1.0 / laws.term_T_ref[j] - 1.0 / T)
+    T_ref = laws.term_T_ref[j]
+    ln_K_j = laws.term_lnK_ref[j] + laws.term_H_over_R[j] * (1.0 / T_ref - 1.0 / T)
+    ln_K_j = ln_K_j + laws.term_c[j] * np.log(T / T_ref) + laws.term_d[j] * (T - T_ref)
     K_j: Scalar = np.exp(ln_K_j)
-    return K_j * product(a, laws.gamma[j], total)
+    return K_j * product(a, laws.below[j], total)

@@ -14,6 +14,7 @@ import numpy as np
 from reactorstage.chemistry import thermo
 from reactorstage.chemistry.constants import P_STANDARD, R_GAS
 from reactorstage.chemistry.forms import Floats
+from reactorstage.chemistry.law import Constant
 from reactorstage.chemistry.species import SpeciesTable
 from reactorstage.chemistry.thermo import Array, Scalar
 
@@ -153,11 +154,13 @@ def ln_Q(nu: Floats, F: Floats, p: float) -> Floats:
         return np.asarray(terms.sum(axis=1), dtype=np.float64)
 
 
-def equilibrium_temperature(table: SpeciesTable, nu_row: Floats, ln_Q: float, T_guess: float) -> float | None:
+def equilibrium_temperature(
+    table: SpeciesTable, nu_row: Floats, ln_Q: float, T_guess: float, K: Constant | None = None
+) -> float | None:
     """Temperature at which ln K(T) = ln_Q, K, within the range of the data of the species taking part.
 
-    nu_row (S,); of several answers the one reached first from T_guess. None when the range holds no
-    answer or ln_Q is not finite.
+    nu_row (S,); of several answers the one reached first from T_guess. K is a constant of the law's own, None
+    for that of the Gibbs energies. None when the range holds no answer or ln_Q is not finite.
     """
     if not isfinite(ln_Q):
         return None
@@ -166,10 +169,13 @@ def equilibrium_temperature(table: SpeciesTable, nu_row: Floats, ln_Q: float, T_
         return None
 
     def gap(T: float) -> float:
-        return float(ln_K(table, nu_row[None, :], T)[0]) - ln_Q
+        return float(ln_K(table, nu_row[None, :], T)[0] if K is None else K.ln(T)) - ln_Q
+
+    def heat(T: float) -> float:
+        return float(heat_of_reaction(table, nu_row[None, :], T)[0] if K is None else K.heat(T))
 
     start = float(np.clip(T_guess, low, high))
-    near = _newton(table, nu_row, gap, start, low, high)
+    near = _newton(heat, gap, start, low, high)
     if near is not None:
         return near
     bracket = _bracket(gap, start, low, high)
@@ -181,13 +187,9 @@ def equilibrium_temperature(table: SpeciesTable, nu_row: Floats, ln_Q: float, T_
 
 
 def _newton(
-    table: SpeciesTable, nu_row: Floats, gap: Callable[[float], float], start: float, low: float, high: float
+    heat: Callable[[float], float], gap: Callable[[float], float], start: float, low: float, high: float
 ) -> float | None:
     """The answer by Newton in 1/T from `start`; None where it leaves the range or the heat changes sign."""
-
-    def heat(T: float) -> float:
-        return float(heat_of_reaction(table, nu_row[None, :], T)[0])
-
     T, first = start, heat(start)
     for _ in range(12):
         slope = heat(T)

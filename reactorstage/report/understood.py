@@ -21,6 +21,7 @@ from reactorstage.report.display import (
 )
 from reactorstage.report.result_json import SCHEMA_VERSION, case_json, versions
 from reactorstage.report.table import Column, Table, table
+from reactorstage.report.understood_laws import law_json, law_tables
 
 if TYPE_CHECKING:
     from reactorstage.case.model import Case
@@ -31,8 +32,13 @@ CLOSED = 1e-9
 
 def understood_tables(seen: Understanding) -> list[Table]:
     """Feeds, reactions, free numbers, what fixes what, limits, prices."""
-    tables = [_feeds(seen.streams), _reactions(seen), _equilibria(seen.reactions), _numbers(seen.numbers)]
-    tables += [_degrees(seen), _limits(seen.limits), _prices(seen)]
+    tables = [
+        _feeds(seen.streams),
+        _reactions(seen),
+        *law_tables(seen.reactions),
+        _equilibria(seen.reactions),
+    ]
+    tables += [_numbers(seen.numbers), _degrees(seen), _limits(seen.limits), _prices(seen)]
     return [made for made in tables if made.rows]
 
 
@@ -247,6 +253,7 @@ def _reaction_json(row: ReactionRow) -> dict[str, Any]:
         "rate per": row.rate_per,
         "driven by": row.driven_by,
         "source": row.source,
+        **law_json(row),
     }
 
 

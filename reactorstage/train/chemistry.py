@@ -2,14 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
-from dataclasses import dataclass
-from math import inf, log
-from typing import TYPE_CHECKING, TypeVar
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from typing import TYPE_CHECKING
 
-from reactorstage.case import units
-from reactorstage.chemistry.constants import R_GAS
-from reactorstage.chemistry.rate_law import Constant, RateLaw, RateLaws, rate_laws
+from reactorstage.chemistry.agreement import Agreement
+from reactorstage.chemistry.isomers import isomer_group
+from reactorstage.chemistry.law import Constant
+from reactorstage.chemistry.rate_law import RateLaws, rate_laws
 from reactorstage.chemistry.reaction import Equation, balance_message, parse_equation
 from reactorstage.chemistry.species import (
     Species,
@@ -19,16 +19,24 @@ from reactorstage.chemistry.species import (
     table_of,
 )
 from reactorstage.errors import CaseProblems, Problem
+from reactorstage.train.law_checks import (
+    agreements,
+    inconsistent_loops,
+    missing_floors,
+    vanishing_effectiveness,
+)
+from reactorstage.train.laws import Path, attempt, law_of
 
 if TYPE_CHECKING:
-    from reactorstage.case.model import Case
-
-T = TypeVar("T")
+    from reactorstage.case.model import Case, SpeciesData
 
 
 @dataclass(frozen=True)
 class CaseChemistry:
-    """Species and reactions of a case, in the order of the file."""
+    """Species and reactions of a case, in the order of the file.
+
+    agreements: by reaction, for equilibrium constants of a law's own.
+    """
 
     table: SpeciesTable
     laws: RateLaws
@@ -36,6 +44,11 @@ class CaseChemistry:
     species: tuple[str, ...]
     reactions: tuple[str, ...]
     sources: tuple[str, ...]
+    agreements: Mapping[str, Agreement] = field(default_factory=dict)
+
+    def own_K(self, reaction: int) -> Constant | None:
+        """The equilibrium constant of a law's own (standard pressure 1e5 Pa); None for the Gibbs energies."""
+        return Constant(*self.laws.K_form[reaction].tolist()) if self.laws.own_K[reaction] else None
 
 
 def read_chemistry(case: Case) -> CaseChemistry:
@@ -46,52 +59,55 @@ def read_chemistry(case: Case) -> CaseChemistry:
         raise CaseProblems(problems)
     table = table_of([one for one in found.values() if one is not None])
     equations = {name: _equation(case, name, table, problems) for name in case.reactions}
-    laws = [_law(case, name, equation, problems) for name, equation in equations.items() if equation]
-    checked = _attempt(
-        case, problems, ("reactions",), lambda: rate_laws([law for law in laws if law], table.names)
-    )
-    if problems or checked is None:
+    read = {name: equation for name, equation in equations.items() if equation}
+    laws = [law for name, equation in read.items() if (law := law_of(case, name, equation, problems))]
+    problems += missing_floors(case, laws, read, table)
+    problems += vanishing_effectiveness(case, laws, table)
+    agreed = agreements(case, laws, table, problems)
+    if not problems:
+        problems += inconsistent_loops(case, laws, table)
+    if problems:
         raise CaseProblems(problems)
     return CaseChemistry(
         table,
-        checked,
-        tuple(one for one in equations.values() if one),
+        rate_laws(laws, table.names),
+        tuple(read.values()),
         tuple(case.species),
         tuple(case.reactions),
         tuple(one.source for one in found.values() if one),
+        agreed,
     )
 
 
-def _attempt(
-    case: Case, problems: list[Problem], path: tuple[str | int, ...], make: Callable[[], T]
-) -> T | None:
-    """What `make` gives, or None with its complaint added to the problems."""
-    try:
-        return make()
-    except units.UnitProblem as error:
-        problems.append(case.problem(path, str(error)))
-    except (ValueError, LookupError, FileNotFoundError) as error:
-        problems.append(case.problem(path, str(error.args[0]) if error.args else str(error)))
-    return None
-
-
 def _species(case: Case, name: str, problems: list[Problem]) -> Species | None:
-    given = case.species[name]
+    given, path = case.species[name], ("species", name)
+    if given.isomers is None:
+        return _data(case, name, given, path, problems)
+    members = [
+        _data(case, f"{name} {i + 1}", one, (*path, "isomers", i), problems)
+        for i, one in enumerate(given.isomers)
+    ]
+    known = [one for one in members if one is not None]
+    if len(known) < len(members):
+        return None
+    return attempt(case, problems, (*path, "isomers"), lambda: isomer_group(name, known))
+
+
+def _data(case: Case, name: str, given: SpeciesData, path: Path, problems: list[Problem]) -> Species | None:
+    """One molecule, from data files or from the numbers of the case."""
     if given.gas_data is not None:
         spec = given.gas_data
-        return _attempt(
-            case, problems, ("species", name, "gas data"), lambda: species_from_cantera(spec, name)
-        )
+        return attempt(case, problems, (*path, "gas data"), lambda: species_from_cantera(spec, name))
     capacity = given.heat_capacity
     assert given.formula is not None and capacity is not None and given.standard_pressure is not None
     assert given.enthalpy_of_formation is not None and given.entropy is not None
     window = given.valid.temperature if given.valid else None
     formula, enthalpy, entropy = given.formula, given.enthalpy_of_formation, given.entropy
     pressure, powers, source = given.standard_pressure, capacity.powers_of_T, given.source
-    return _attempt(
+    return attempt(
         case,
         problems,
-        ("species", name),
+        path,
         lambda: inline_species(
             name, formula, enthalpy, entropy, pressure, powers, window, source or "given in the case"
         ),
@@ -100,7 +116,7 @@ def _species(case: Case, name: str, problems: list[Problem]) -> Species | None:
 
 def _equation(case: Case, name: str, table: SpeciesTable, problems: list[Problem]) -> Equation | None:
     path = ("reactions", name, "equation")
-    equation = _attempt(
+    equation = attempt(
         case, problems, path, lambda: parse_equation(case.reactions[name].equation, table.names)
     )
     if equation is None:
@@ -112,32 +128,3 @@ def _equation(case: Case, name: str, table: SpeciesTable, problems: list[Problem
         )
         return None
     return equation
-
-
-def _law(case: Case, name: str, equation: Equation, problems: list[Problem]) -> RateLaw | None:
-    given = case.reactions[name]
-    orders = dict(equation.reactants) if given.orders is None else dict(given.orders)
-    path = ("reactions", name, "constant")
-    k = _attempt(
-        case,
-        problems,
-        path,
-        lambda: units.rate_constant_to_si(
-            given.constant.is_.text, given.rate_per, given.driven_by, sum(orders.values())
-        ),
-    )
-    if k is None:
-        return None
-    if not k > 0.0:
-        problems.append(case.problem(path, f"the rate constant {given.constant.is_.text} must be above zero"))
-        return None
-    constant = Constant(
-        ln_ref=log(k),
-        T_ref=given.constant.at if given.constant.at is not None else inf,
-        E_over_R=(given.constant.activation_energy or 0.0) / R_GAS,
-    )
-    law = RateLaw(
-        name, equation.stoichiometry, orders, constant, given.driven_by, equation.reversible, given.rate_per
-    )
-    ok = _attempt(case, problems, ("reactions", name), lambda: rate_laws([law], list(case.species)))
-    return law if ok is not None else None

@@ -48,17 +48,20 @@ class Equilibrium:
         if (F[row != 0.0] <= 0.0).any():
             return found
         quotient = float(ln_Q(row[None, :], F, p)[0])
-        T = equilibrium_temperature(chemistry.table, row, quotient, float(record[layout.species + 2, 0]))
+        own, exit_T = chemistry.own_K(self.reaction), float(record[layout.species + 2, 0])
+        T = equilibrium_temperature(chemistry.table, row, quotient, exit_T, own)
         if T is None:
             return found
-        slope = float(heat_of_reaction(chemistry.table, row[None, :], T)[0]) / (R_GAS * T * T)
-        T -= (float(ln_K(chemistry.table, row[None, :], T)[0]) - quotient) / slope
+        heat = heat_of_reaction(chemistry.table, row[None, :], T)[0] if own is None else own.heat(T)
+        slope = float(heat) / (R_GAS * T * T)
+        there = ln_K(chemistry.table, row[None, :], T)[0] if own is None else own.ln(T)
+        T -= (float(there) - quotient) / slope
         used = row != 0.0
         change = row.sum()
         ln_Q_d = (row[used] / F[used]) @ record[: layout.species][used, 1:]
         ln_Q_d = ln_Q_d - change * record[: layout.species, 1:].sum(axis=0) / F.sum()
         ln_Q_d = ln_Q_d + change * record[layout.species + 1, 1:] / p
-        if moved is not None:
+        if moved is not None and own is None:
             ln_Q_d = ln_Q_d - _ln_K_shift(row, T, moved)
         found[0], found[1:] = T, ln_Q_d / slope
         return found

@@ -9,13 +9,15 @@ import numpy as np
 from numpy.typing import NDArray
 
 from reactorstage.bed import train_pass as kernel
+from reactorstage.case.model import Activities
+from reactorstage.train import composition
 from reactorstage.train.chemistry import CaseChemistry
 from reactorstage.train.evaluation import SplitGroup
 from reactorstage.train.forms import Linear, at
 from reactorstage.train.inputs import InputBuilder
 
 if TYPE_CHECKING:
-    from reactorstage.case.model import Case, Feed, Section, Step
+    from reactorstage.case.model import Case, Feed, Number, Section, Step
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -275,18 +277,30 @@ class _Writer:
         )
         self.inputs.number(f"{owner}.catalyst activity", bed.catalyst_activity)
         self.inputs.number(f"{owner}.pressure drop factor", bed.pressure_drop_factor)
+        each = self._activities(owner, bed.catalyst_activity, first + 1)
         inlet = len(self.operations) - 1
         held = self.operations[inlet][1] >= 0
-        self.operations.append((kernel.BED, number, first, -1))
+        self.operations.append((kernel.BED, number, first, each))
         self.beds.append(BedPlace(owner, int(owner.split()[1]), inlet, inlet + 1, first, injections, held))
+
+    def _activities(self, owner: str, activity: Number, common: int) -> int:
+        """First of the activities of all reactions; -1 when one, at the input `common`, holds for all."""
+        if not isinstance(activity, Activities):
+            return -1
+        own = {
+            name: self.inputs.number(f"{owner}.catalyst activity of {name}", number)
+            for name, number in activity.each.items()
+        }
+        listed = [
+            self.inputs.combination(f"{owner}.activity for {name}", self.inputs.form(own.get(name, common)))
+            for name in self.chemistry.reactions
+        ]
+        return listed[0]
 
 
 def mole_fractions(case: Case, chemistry: CaseChemistry, feed: Feed) -> Array:
     """Mole fractions of a feed (S,), from mole or mass shares."""
-    shares = np.array([feed.composition.get(name, 0.0) for name in chemistry.species])
-    if case.percent == "mass":
-        shares = shares / chemistry.table.molar_mass
-    return np.asarray(shares / shares.sum())
+    return composition.mole_fractions(case, chemistry.table, feed)
 
 
 def lay_out(case: Case, chemistry: CaseChemistry, inputs: InputBuilder) -> Layout:

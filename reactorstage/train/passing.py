@@ -184,6 +184,7 @@ class Pass:
                 outcome.out,
                 u,
                 bed.inputs,
+                int(self.layout.operations[bed.exit][3]),
                 outcome.stages,
                 per_step,
                 w,

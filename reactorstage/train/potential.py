@@ -15,7 +15,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from reactorstage.chemistry.equilibrium import adiabatic_equilibrium
-from reactorstage.chemistry.reaction import ln_K, ln_Q
+from reactorstage.chemistry.rates import ln_K_of_laws
+from reactorstage.chemistry.reaction import ln_Q
 from reactorstage.train.result import Profile, Value
 
 if TYPE_CHECKING:
@@ -152,7 +153,9 @@ def _quotients(model: Model, exit_: Array) -> dict[str, float | None]:
     chemistry, S = model.chemistry, model.layout.species
     nu, T = chemistry.laws.nu, float(exit_[-1])
     with np.errstate(over="ignore"):
-        shares = np.exp(ln_Q(nu, exit_[:S], float(exit_[-2])) - ln_K(chemistry.table, nu, T))
+        shares = np.exp(
+            ln_Q(nu, exit_[:S], float(exit_[-2])) - ln_K_of_laws(chemistry.laws, chemistry.table, T)
+        )
     return {
         name: float(share) if np.isfinite(share) else None
         for name, share, equation in zip(chemistry.reactions, shares, chemistry.equations, strict=True)

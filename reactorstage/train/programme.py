@@ -358,6 +358,7 @@ def _beds(case: Case, chemistry: CaseChemistry, layout: Layout) -> Beds:
         [bed.bulk_density or np.nan for bed in given],
         [bed.void_fraction or np.nan for bed in given],
         sizes,
+        [[(point.at, point.is_) for point in bed.activity_along_depth or ()] for bed in given],
     )
 
 

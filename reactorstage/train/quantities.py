@@ -118,6 +118,12 @@ def _exit_of(place: Place) -> int:
     return max(place.last, place.first - 1)
 
 
+def _activity_of(c: Catalogue, bed: BedPlace, reaction: str) -> Form:
+    each = int(c.layout.operations[bed.exit][3])
+    index = bed.inputs + 1 if each < 0 else each + c.chemistry.reactions.index(reaction)
+    return Form("number", c.layout.input(index))
+
+
 def _made(c: Catalogue, bed: BedPlace, name: str) -> Linear:
     s = c.species(name)
     return c.layout.flow(bed.exit, s) - c.layout.flow(bed.inlet, s)
@@ -235,6 +241,7 @@ PATTERNS: tuple[Pattern, ...] = (
     ),
     Pattern("bed", "catalyst", lambda c, b: Form("mass", c.layout.input(b.inputs))),
     Pattern("bed", "catalyst activity", lambda c, b: Form("number", c.layout.input(b.inputs + 1))),
+    Pattern("bed", "catalyst activity of <reaction>", _activity_of, list_them=False),
     Pattern("bed", "pressure drop factor", lambda c, b: Form("number", c.layout.input(b.inputs + 2))),
     Pattern("bed", "inlet temperature", lambda c, b: Form("temperature", c.layout.temperature(b.inlet))),
     Pattern("bed", "exit temperature", lambda c, b: Form("temperature", c.layout.temperature(b.exit))),

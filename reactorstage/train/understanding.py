@@ -10,9 +10,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from reactorstage.case import units
-from reactorstage.chemistry.reaction import data_range, heat_of_reaction, imbalance, ln_K
+from reactorstage.chemistry.rates import ln_K_of_laws
+from reactorstage.chemistry.reaction import data_range, heat_of_reaction, imbalance
 from reactorstage.chemistry.thermo import cp
 from reactorstage.train.evaluation import FreeNumber, LimitRow
+from reactorstage.train.law_words import LawWords, law_words
 from reactorstage.train.limits import names_of
 
 if TYPE_CHECKING:
@@ -40,6 +42,7 @@ class StreamRow:
 class ReactionRow:
     """A reaction: equation, worst atom imbalance, heat [J/mol] and K (standard pressure 1 bar) at two T [K].
 
+    K is that by which the law comes to rest, law what goes beyond a power law.
     orders are those of the forward rate; order_in_split of the split reactant, None where it takes no part.
     """
 
@@ -55,6 +58,7 @@ class ReactionRow:
     orders: dict[str, float]
     order_in_split: float | None
     source: str
+    law: LawWords
 
 
 @dataclass(frozen=True)
@@ -127,9 +131,8 @@ def _streams(model: Model) -> Iterator[StreamRow]:
 
 def _reactions(model: Model, reactant: str) -> Iterator[ReactionRow]:
     chemistry, case = model.chemistry, model.case
-    T_first = next(
-        (s.bed.inlet_temperature.now for s in case.train if s.bed and s.bed.inlet_temperature), 298.15
-    )
+    inlets = [s.bed.inlet_temperature for s in case.train if s.bed and s.bed.inlet_temperature]
+    T_first = (inlets or [feed.temperature for feed in case.feeds.values()])[0].now
     for r, name in enumerate(chemistry.reactions):
         row = chemistry.laws.nu[r : r + 1]
         low, high = data_range(chemistry.table, row[0])
@@ -147,13 +150,14 @@ def _reactions(model: Model, reactant: str) -> Iterator[ReactionRow]:
             ),
             T=(T[0], T[1]),
             heat=tuple(float(heat_of_reaction(chemistry.table, row, one)[0]) for one in T),  # type: ignore[arg-type]
-            K=tuple(float(np.exp(ln_K(chemistry.table, row, one)[0])) for one in T),  # type: ignore[arg-type]
+            K=tuple(float(np.exp(ln_K_of_laws(chemistry.laws, chemistry.table, one)[r])) for one in T),  # type: ignore[arg-type]
             reversible=chemistry.equations[r].reversible,
             rate_per=case.reactions[name].rate_per,
             driven_by=case.reactions[name].driven_by,
             orders=orders,
             order_in_split=orders.get(reactant, 0.0) if takes_part else None,
             source=case.reactions[name].source or "",
+            law=law_words(case.reactions[name], name, chemistry, (T[0], T[1])),
         )
 
 

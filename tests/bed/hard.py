@@ -82,13 +82,21 @@ class Reaction:
     def side(self, sign: int) -> str:
         return " + ".join(f"{abs(n):g} {name}" for name, n in self.nu.items() if sign * n > 0.0)
 
+    @property
+    def bare(self) -> bool:
+        """Whether the case file refuses the law as it is, for want of a floor."""
+        return any(order < 0.0 for order in self.powers.values())
+
     def tree(self) -> Tree:
-        unit = f"mol/(kg s Pa^{sum(self.powers.values()):g})" if self.pressures else "mol/(kg s)"
+        """The reaction in the case file; with orders as written where its own are refused."""
+        orders = {} if self.bare else self.orders
+        powers = {name: -n for name, n in self.nu.items() if n < 0.0} if self.bare else self.powers
+        unit = f"mol/(kg s Pa^{sum(powers.values()):g})" if self.pressures else "mol/(kg s)"
         tree: Tree = {
             "equation": f"{self.side(-1)} {'<=>' if self.reversible else '=>'} {self.side(1)}",
             "rate per": "catalyst mass",
             "driven by": self.driver,
-            "orders": self.orders or "as written",
+            "orders": orders or "as written",
             "constant": {
                 "at": f"{self.T!r} K",
                 "is": f"{self.k!r} {unit}",
@@ -98,7 +106,7 @@ class Reaction:
         return {**tree, "backward": "from Gibbs energies"} if self.reversible else tree
 
     def law(self) -> RateLaw:
-        """With the denominator, which no case file can state yet."""
+        """The same law in numbers, with its denominator."""
         terms = [Term(Constant(float(np.log(K))), {name: 1.0}) for name, K in self.under.items()]
         below = (Denominator((Term(Constant(0.0)), *terms), 2.0),) if terms else ()
         constant = Constant(float(np.log(self.k)), self.T, self.E / R)
@@ -127,8 +135,8 @@ class Hard:
     def train(self) -> TrainProgramme:
         """The program's own; flow and temperature of the feed, catalyst, activity and pressure are free."""
         train = programme(self.tree())
-        slowed = any(one.under for one in self.reactions)
-        return with_laws(train, [one.law() for one in self.reactions]) if slowed else train
+        other = any(one.under or one.bare for one in self.reactions)
+        return with_laws(train, [one.law() for one in self.reactions]) if other else train
 
     @property
     def unit(self) -> float:

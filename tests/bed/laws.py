@@ -1,4 +1,4 @@
-"""Rate laws that no case file can state yet, put into a compiled train."""
+"""Rate laws made in Python, put into a compiled train."""
 
 from __future__ import annotations
 
@@ -15,7 +15,8 @@ def with_laws(train: TrainProgramme, laws: Sequence[RateLaw]) -> TrainProgramme:
     chemistry = train.model.chemistry
     arrays = rate_laws(laws, chemistry.table.names)
     old = train.model.passing.beds
-    beds = pack_beds(arrays, [1.0] * len(old.viscous), [1.0] * len(old.viscous), _ergun(old))
+    profiles = [list(zip(row[::2], row[1::2], strict=True)) for row in old.profile.tolist()]
+    beds = pack_beds(arrays, [1.0] * len(old.viscous), [1.0] * len(old.viscous), _ergun(old), profiles)
     passing = replace(train.model.passing, chemistry=pack_chemistry(chemistry.table, arrays), beds=beds)
     train.model = replace(train.model, chemistry=replace(chemistry, laws=arrays), passing=passing)
     return train

@@ -15,7 +15,7 @@ import numpy as np
 from numpy.polynomial import Polynomial
 from numpy.typing import NDArray
 
-from reactorstage.case.model import Bed, Case, Feed, Number, Section, Step
+from reactorstage.case.model import Activities, Bed, Case, Feed, Number, Section, Step
 from reactorstage.chemistry import P_STANDARD, R_GAS, RateLaws, SpeciesTable, basis_factors
 
 Array = NDArray[np.complex128]
@@ -88,28 +88,51 @@ class Gas:
                 break
         return T
 
-    def rates(self, F: Array, T: Array, p: Array) -> Array:
-        """Rates (..., R) per unit of each law's basis, by the formula of `rate_law`."""
+    def rates(self, F: Array, T: Array, p: Array, factor: Array) -> Array:
+        """Rates (..., R) times factor (..., R), by the formulas of `law`, `orders` and `rate_law`."""
         laws = self.laws
         ln_K = (self.entropy(T) - self.heat(T)[0] / T[..., None]) @ laws.nu.T / R_GAS
         y = F / np.sum(F, axis=-1, keepdims=True)
         found = []
         for r in range(len(laws.m)):
-            total = (p / (R_GAS * T), p, np.ones_like(p))[laws.driver[r]]
-            standard = (P_STANDARD / (R_GAS * T), P_STANDARD, P_STANDARD / p)[laws.driver[r]]
-            k = np.exp(laws.lnk_ref[r] + laws.E_over_R[r] * (1 / laws.T_ref[r] - 1 / T))
-            k = k * (T / laws.T_ref[r]) ** laws.c[r] * np.exp(laws.d[r] * (T - laws.T_ref[r]))
-            force = self._product(y, laws.alpha[r], total)
+            total = (p / (R_GAS * T), p, np.ones_like(p), p)[laws.driver[r]]
+            standard = (P_STANDARD / (R_GAS * T), P_STANDARD + 0 * p, P_STANDARD / p, P_STANDARD + 0 * p)
+            k = constant(laws.lnk_ref[r], laws.T_ref[r], laws.E_over_R[r], laws.c[r], laws.d[r], T)
+            common, ahead, back = self._split(r)
+            force = self._product(y, ahead, total)
             if laws.reversible[r]:
-                K = np.exp(ln_K[..., r]) * standard ** laws.nu[r].sum()
-                force = force - self._product(y, laws.beta[r], total) / K ** laws.m[r]
-            found.append(k * force / self._denominator(r, y, T, total))
+                K = constant(*laws.K_form[r], T) if laws.own_K[r] else np.exp(ln_K[..., r])
+                K = K * standard[laws.driver[r]] ** laws.nu[r].sum()
+                force = force - self._product(y, back, total) / K ** laws.m[r]
+            force = force * self._floored(r, y, common, total)
+            rate = factor[..., r] * k * force / self._denominator(r, y, T, total)
+            found.append(rate * self._effectiveness(r, rate, y, T, p))
         return np.stack(found, axis=-1)
 
-    def _product(self, y: Array, orders: NDArray[np.float64], total: Array) -> Array:
+    def _split(self, r: int) -> tuple[Array, Array, Array]:
+        """Orders of floored drivers, and what is left of the forward and the backward orders."""
+        laws = self.laws
+        alpha, nu = laws.alpha[r], laws.nu[r]
+        beta = alpha + laws.m[r] * nu if laws.reversible[r] else np.zeros_like(alpha)
+        common = np.zeros_like(alpha)
+        for s in np.flatnonzero(laws.floor[r]):
+            if laws.reversible[r]:
+                n = min(alpha[s], beta[s])
+            else:
+                n = alpha[s] - (nu[s] < 0 and not (alpha[s] >= 1 and alpha[s] % 1 == 0))
+            common[s] = 0.0 if n >= 0 and n % 1 == 0 else n
+        return common, alpha - common, beta - common
+
+    def _product(self, y: Array, orders: Array, total: Array) -> Array:
         value = total ** orders.sum()
         for s in np.flatnonzero(orders):
             value = value * _power(y[..., s], orders[s])
+        return value
+
+    def _floored(self, r: int, y: Array, orders: Array, total: Array) -> Array:
+        value = total ** orders.sum()
+        for s in np.flatnonzero(orders):
+            value = value * floored(y[..., s], self.laws.floor[r, s]) ** orders[s]
         return value
 
     def _denominator(self, r: int, y: Array, T: Array, total: Array) -> Array:
@@ -117,10 +140,41 @@ class Gas:
         for n in range(laws.den_start[r], laws.den_start[r + 1]):
             under = np.zeros_like(T)
             for j in range(laws.term_start[n], laws.term_start[n + 1]):
-                away = laws.term_H_over_R[j] * (1 / laws.term_T_ref[j] - 1 / T)
-                under += np.exp(laws.term_lnK_ref[j] + away) * self._product(y, laws.gamma[j], total)
+                form = laws.term_lnK_ref[j], laws.term_T_ref[j], laws.term_H_over_R[j]
+                K = constant(*form, laws.term_c[j], laws.term_d[j], T)
+                broken = (laws.floor[r] > 0) & ((laws.gamma[j] < 0) | (laws.gamma[j] % 1 != 0))
+                plain = self._product(y, np.where(broken, 0.0, laws.gamma[j]), total)
+                under += K * plain * self._floored(r, y, np.where(broken, laws.gamma[j], 0.0), total)
             value = value * under ** laws.den_power[n]
         return value
+
+    def _effectiveness(self, r: int, rate: Array, y: Array, T: Array, p: Array) -> Array:
+        kind, eta, (key, made) = self.laws.eta_kind[r], self.laws.eta[r], self.laws.eta_species[r]
+        if kind == 0:
+            return np.ones_like(T)
+        if kind == 1:
+            Z = 0.0 * T if key < 0 else eta[9] * y[..., made] / (y[..., key] + eta[9] * y[..., made])
+            value = sum(b * T**n for n, b in enumerate(eta[:5]))
+            return floored(value + sum(z * Z ** (n + 1) for n, z in enumerate(eta[5:9])), 1e-4)
+        C_key = floored(y[..., key], 1e-9) * p / (R_GAS * T)
+        square = eta[0] * rate * np.sign(rate.real) / C_key
+        still = np.abs(square) < 1e-8
+        phi = np.sqrt(np.where(still, 1.0, square))
+        if kind == 2:
+            return np.where(still, 1 - square / 3, np.tanh(phi) / phi)
+        return np.where(still, 1 - square / 15, 3 * (phi / np.tanh(phi) - 1) / phi**2)
+
+
+def constant(ln_ref: float, T_ref: float, E_over_R: float, c: float, d: float, T: Array) -> Array:
+    """A constant of the form that all constants have."""
+    away = E_over_R * (1 / T_ref - 1 / T)
+    found: Array = np.exp(ln_ref + away + d * (T - T_ref)) * (T / T_ref) ** c
+    return found
+
+
+def floored(y: Array, floor: float) -> Array:
+    """A number that stays above zero, by its smooth floor."""
+    return (y + np.sqrt(y * y + 4 * floor**2)) / 2
 
 
 def _power(y: Array, n: float) -> Array:
@@ -143,9 +197,10 @@ class Layer:
     activity: Array
     friction: Array
     viscosity: float
+    profile: tuple[list[float], list[float]] | None = None
 
-    def slope(self, y: Array, lead: tuple[int, ...] = ()) -> Array:
-        """dy/d(depth) for y (..., D, R + 1); `lead` picks a direction instead of the axis D."""
+    def slope(self, y: Array, depth: Array, lead: tuple[int, ...] = ()) -> Array:
+        """dy/d(depth) at depth (3,) for y (3, D, R + 1); `lead` picks a direction instead of the axis D."""
         inlet, R = self.inlet, self.gas.laws.nu.shape[0]
         F_in, H, W, activity, friction = (
             (a[lead] if lead else a) for a in (inlet.F, inlet.H, self.W, self.activity, self.friction)
@@ -153,7 +208,8 @@ class Layer:
         F = F_in + y[..., :R] @ self.gas.laws.nu
         T, p = self.gas.temperature(F, np.broadcast_to(H, y.shape[:-1]), self.T), y[..., R]
         per_kg = basis_factors(self.gas.laws, self.bed.bulk_density or 1.0, self.bed.void_fraction or 1.0)
-        r = np.asarray(activity)[..., None] * per_kg * self.gas.rates(F, T, p)
+        here = np.interp(depth, *self.profile) if self.profile else np.ones(len(depth))
+        r = self.gas.rates(F, T, p, activity * per_kg * here[:, None, None])
         drop = friction * self.gradient(F, T, p)
         return np.concatenate([np.asarray(W)[..., None] * r, (W * drop)[..., None]], axis=-1)
 
@@ -170,23 +226,23 @@ class Layer:
         dp_dz = dp_dz - 1.75 * rho * (1 - eps) / (eps**3 * d) * u**2
         return dp_dz / (bed.bulk_density * area)
 
-    def jacobian(self, y: Array) -> NDArray[np.float64]:
-        """(3, n, n) at the real part of direction 0, by complex step; y (3, n)."""
+    def jacobian(self, y: Array, depth: Array) -> NDArray[np.float64]:
+        """(3, n, n) at the real part of direction 0, by complex step; y (3, n), depth (3,)."""
         n = y.shape[-1]
         size = np.append(np.full(n - 1, np.sum(self.inlet.F[0].real)), self.inlet.p[0].real)
         moved = y.real[:, None, :] + 1j * 1e-20 * np.diag(size)
-        found = self.slope(moved, (0,)).imag / 1e-20 / size[:, None]
+        found = self.slope(moved, depth, (0,)).imag / 1e-20 / size[:, None]
         return np.swapaxes(found, -1, -2)
 
-    def step(self, y: Array, h: float) -> Array:
-        """The three stages (3, D, n) of a step of length h from y (D, n): full Newton."""
+    def step(self, y: Array, low: float, h: float) -> Array:
+        """The three stages (3, D, n) of a step of length h from y (D, n) at depth low: full Newton."""
         D, n = y.shape
         size = np.append(np.full(n - 1, np.sum(self.inlet.F[0].real)), self.inlet.p[0].real)
         stages, settled = np.repeat(y[None], 3, axis=0), 0
         for _ in range(40):
-            slopes = self.slope(stages)
+            slopes = self.slope(stages, low + NODES * h)
             miss = y + h * np.einsum("ij,jdk->idk", MATRIX, slopes) - stages
-            J = self.jacobian(stages[:, 0])
+            J = self.jacobian(stages[:, 0], low + NODES * h)
             M = np.eye(3 * n) - h * np.einsum("ij,jkl->ikjl", MATRIX, J).reshape(3 * n, 3 * n)
             change = np.linalg.solve(M, miss.transpose(0, 2, 1).reshape(3 * n, D))
             change = change.reshape(3, n, D).transpose(0, 2, 1)
@@ -200,7 +256,7 @@ class Layer:
         D, R = self.inlet.F.shape[0], self.gas.laws.nu.shape[0]
         y = np.concatenate([np.zeros((D, R), complex), self.inlet.p[:, None]], axis=1)
         for low, high in pairwise(edges):
-            y = self.step(y, high - low)[2]
+            y = self.step(y, low, high - low)[2]
         return Stream(self.inlet.F + y[:, :R] @ self.gas.laws.nu, self.inlet.H, y[:, R])
 
 
@@ -297,6 +353,13 @@ class Twin:
             Q = stream.H - self.gas.enthalpy(stream.F, T)
         return Stream(stream.F, stream.H - Q, p), Q
 
+    def _activities(self, owner: str, bed: Bed) -> Array:
+        """Catalyst activity for each reaction (D, R)."""
+        common = self.number(f"{owner}.catalyst activity", bed.catalyst_activity)
+        each = bed.catalyst_activity.each if isinstance(bed.catalyst_activity, Activities) else {}
+        own = {name: self.number(f"{owner}.catalyst activity of {name}", one) for name, one in each.items()}
+        return np.stack([own.get(name, common) for name in self.case.reactions], axis=-1)
+
     def _T(self, stream: Stream) -> Array:
         return self.gas.temperature(stream.F, stream.H, 600.0)
 
@@ -313,9 +376,10 @@ class Twin:
             stream,
             float(self._T(stream)[0].real),
             W,
-            self.number(f"{owner}.catalyst activity", bed.catalyst_activity),
+            self._activities(owner, bed),
             self.number(f"{owner}.pressure drop factor", bed.pressure_drop_factor),
             self.case.fluid.viscosity,
+            _profile(bed),
         )
         out = layer.exit(self.edges[int(owner.split()[1]) - 1])
         return self._behind(owner, stream, out)
@@ -327,3 +391,9 @@ class Twin:
         for s, name in enumerate(self.gas.table.names):
             self.found[f"{owner}.exit flow of {name}"] = out.F[:, s]
         return out
+
+
+def _profile(bed: Bed) -> tuple[list[float], list[float]] | None:
+    """Depths and shares of an activity along depth."""
+    points = bed.activity_along_depth
+    return ([one.at for one in points], [one.is_ for one in points]) if points else None

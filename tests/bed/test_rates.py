@@ -28,7 +28,12 @@ from tests.bed.laws import with_laws
 from tests.bed.reference import Gas, Twin
 
 T_REF, PRESSURE = 700.0, 3e5
-TOTALS = {"partial pressure": PRESSURE, "concentration": PRESSURE / (R_GAS * T_REF), "mole fraction": 1.0}
+TOTALS = {
+    "partial pressure": PRESSURE,
+    "concentration": PRESSURE / (R_GAS * T_REF),
+    "mole fraction": 1.0,
+    "fugacity": PRESSURE,
+}
 EQUATIONS = {
     "oxidation": {"SO2": -1.0, "O2": -0.5, "SO3": 1.0},
     "nitric": {"N2": -0.5, "O2": -0.5, "NO": 1.0},
@@ -61,8 +66,8 @@ def bed() -> Tree:
         "species": {name: {"gas data": name} for name in shares},
         "fluid": FLUID,
         "reactions": {
-            "oxidation": {"equation": "SO2 + 0.5 O2 => SO3", **constant},
-            "nitric": {"equation": "0.5 N2 + 0.5 O2 => NO", **constant},
+            "oxidation": {"equation": "SO2 + 0.5 O2 => SO3", "orders": {"O2": 1}, **constant},
+            "nitric": {"equation": "0.5 N2 + 0.5 O2 => NO", "orders": {"O2": 1}, **constant},
         },
         "feeds": {"gas": feed},
         "train": [{"entry": [{"take": "gas"}]}, {"bed 1": {**every, **free}}, {"effluent": []}],

@@ -16,10 +16,12 @@ from reactorstage.chemistry import (
     Constant,
     Denominator,
     Equation,
+    Polynomial,
     RateLaw,
     RateLaws,
     SpeciesTable,
     Term,
+    Thiele,
     basis_factors,
     inline_species,
     ln_K,
@@ -193,7 +195,16 @@ def test_offsets_of_several_denominators(isomers: SpeciesTable) -> None:
 
 def test_arrays_are_of_the_kinds_a_kernel_reads(isomers: SpeciesTable) -> None:
     laws = one_law(isomers, "A <=> B", Constant(0.0))
-    integers = {"driver", "reversible", "basis", "den_start", "term_start"}
+    integers = {
+        "driver",
+        "reversible",
+        "own_K",
+        "basis",
+        "den_start",
+        "term_start",
+        "eta_kind",
+        "eta_species",
+    }
     for one in fields(RateLaws):
         array = getattr(laws, one.name)
         assert array.dtype == (np.int64 if one.name in integers else np.float64), one.name
@@ -358,14 +369,30 @@ def test_whole_orders_are_multiplications(n: float) -> None:
         ({"orders": {"A": 1.0, "C": 1.0}}, "one: no species 'C' among A, B"),
         ({"stoichiometry": {"A": -1.0, "D": 1.0}}, "one: no species 'D' among A, B"),
         ({"stoichiometry": {"A": 0.0}}, "one: the reaction changes nothing"),
-        ({"m": 0.0}, "one: m is 0; it must be above zero"),
+        ({"m": 0.0}, "one: the power of K is 0; it must be above zero"),
         ({"constant": Constant(-np.inf)}, "one: the rate constant must be above zero and finite"),
         ({"constant": Constant(0.0, 0.0)}, "one: the rate constant has the reference temperature 0 K"),
-        ({"orders": {"A": 0.5}}, "one: the backward rate would be of negative order in A, singular"),
-        ({"orders": {}}, "negative order in A"),
+        ({"K": Constant(np.nan)}, "one: the equilibrium constant must be above zero and finite"),
+        ({"floors": {"C": 0.01}}, "one: no species 'C' among A, B"),
+        ({"floors": {"A": 0.01}}, "one: a floor of A changes nothing: its orders are whole"),
+        (
+            {"orders": {"A": 0.5}, "floors": {"A": 0.0}},
+            "one: the floor of A must lie above 0 and at most 0.1",
+        ),
+        (
+            {"orders": {"A": 0.5}, "floors": {"A": 0.2}},
+            "one: the floor of A must lie above 0 and at most 0.1",
+        ),
         ({"denominators": (Denominator(()),)}, "one: a denominator needs terms and a power other than zero"),
         ({"denominators": (Denominator((Term(Constant(np.nan)),)),)}, "the constant of a denominator's term"),
-        ({"denominators": (Denominator((Term(Constant(0.0, c=1.0)),)),)}, "takes no c or d"),
+        ({"effectiveness": Thiele(1e-3, 1e-6, "B", "slab", 1e3)}, "one: B is not consumed"),
+        (
+            {"effectiveness": Thiele(1e-3, 1e-6, "A", "cube", 1e3)},
+            "one: shape 'cube' is not one of slab, sphere",
+        ),
+        ({"effectiveness": Thiele(0.0, 1e-6, "A", "slab", 1e3)}, "one: size, diffusivity and density"),
+        ({"effectiveness": Polynomial(())}, "one: an effectiveness takes one to 5 powers of T"),
+        ({"effectiveness": Polynomial((1.0,), (0.1,), "B", "A")}, "not of 'B' into 'A'"),
     ],
 )
 def test_a_wrong_law_says_what_is_wrong(isomers: SpeciesTable, change: dict[str, Any], message: str) -> None:
