@@ -26,7 +26,9 @@ os.environ.setdefault("NUMBA_SLP_VECTORIZE", "0")
 
 import numba
 
-READ = ("rates.py", "cubic.py")
+from reactorstage.bed.linked import Linked
+
+READ = ("rates.py", "rate_law.py", "law.py", "effectiveness.py", "cubic.py")
 """Modules of the chemistry whose constants are frozen into the machine code."""
 
 
@@ -84,7 +86,7 @@ def _compiler(**options: Any) -> Callable[[Any], Any]:
     """A decorator that compiles on first use and keeps the result in `cache_folder`."""
     folder = cache_folder()
     make = numba.njit(
-        cache=folder is not None,
+        cache=folder is not None and "pipeline_class" not in options,
         nogil=True,
         fastmath=False,
         error_model="numpy",
@@ -103,11 +105,11 @@ def _compiler(**options: Any) -> Callable[[Any], Any]:
     return decorate
 
 
-compiled = _compiler(no_cpython_wrapper=True)
+compiled = _compiler(no_cpython_wrapper=True, pipeline_class=Linked)
 """Compile a function of the kernel that only other compiled functions call."""
 
 entry = _compiler()
 """Compile a function of the kernel that Python calls: releases the GIL, divides as NumPy does."""
 
-inlined = _compiler(no_cpython_wrapper=True, inline="always")
+inlined = _compiler(no_cpython_wrapper=True, inline="always", pipeline_class=Linked)
 """For a function with one caller: it becomes part of that caller before compilation."""

@@ -41,7 +41,7 @@ def tell_of_compilation(quiet: bool) -> None:
     if quiet or is_compiled():
         return
     kept = f"kept in {cache_folder()}" if cache_folder() else "no folder for it can be written"
-    tell(f"compiling the bed model, once, about half a minute ({kept})")
+    tell(f"compiling the bed model, once, about twenty seconds ({kept})")
 
 
 def coloured(stream: object) -> bool:
