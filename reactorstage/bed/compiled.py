@@ -10,6 +10,7 @@ for itself.
 
 from __future__ import annotations
 
+import functools
 import gc
 import hashlib
 import os
@@ -25,6 +26,7 @@ os.environ.setdefault("NUMBA_LOOP_VECTORIZE", "0")
 os.environ.setdefault("NUMBA_SLP_VECTORIZE", "0")
 
 import numba
+from numba.extending import overload
 
 from reactorstage.bed.linked import Linked
 
@@ -82,17 +84,14 @@ def first_call(function: Any) -> Iterator[None]:
         gc.enable()
 
 
+OPTIONS = {"nogil": True, "fastmath": False, "error_model": "numpy", "no_cfunc_wrapper": True}
+LINKED = {"no_cpython_wrapper": True, "pipeline_class": Linked}
+
+
 def _compiler(**options: Any) -> Callable[[Any], Any]:
     """A decorator that compiles on first use and keeps the result in `cache_folder`."""
     folder = cache_folder()
-    make = numba.njit(
-        cache=folder is not None and "pipeline_class" not in options,
-        nogil=True,
-        fastmath=False,
-        error_model="numpy",
-        no_cfunc_wrapper=True,
-        **options,
-    )
+    make = numba.njit(cache=folder is not None and "pipeline_class" not in options, **OPTIONS, **options)
 
     def decorate(function: Any) -> Any:
         before = numba.config.CACHE_DIR
@@ -105,11 +104,38 @@ def _compiler(**options: Any) -> Callable[[Any], Any]:
     return decorate
 
 
-compiled = _compiler(no_cpython_wrapper=True, pipeline_class=Linked)
+compiled = _compiler(**LINKED)
 """Compile a function of the kernel that only other compiled functions call."""
+
+small = _compiler(**LINKED, forceinline=True)
+"""For a small function with several callers: LLVM copies it into each."""
 
 entry = _compiler()
 """Compile a function of the kernel that Python calls: releases the GIL, divides as NumPy does."""
 
-inlined = _compiler(no_cpython_wrapper=True, inline="always", pipeline_class=Linked)
+inlined = _compiler(**LINKED, inline="always")
 """For a function with one caller: it becomes part of that caller before compilation."""
+
+
+def for_nonideal(otherwise: int | None) -> Callable[[Any], Any]:
+    """Decorator of a compiled function that does its work for nonideal fluids only.
+
+    Machine code for ideal gases, which have a type of chemistry of their own (see `data.Chemistry`), gets
+    `otherwise` in its place and is made without reading its body.
+    """
+
+    def nothing(*_: Any) -> Any:
+        return otherwise
+
+    def decorate(function: Any) -> Any:
+        @functools.wraps(function)
+        def stub(*_: Any) -> Any:
+            raise NotImplementedError("for compiled code only")
+
+        def choose(chemistry: Any, *_: Any) -> Any:
+            return function if len(chemistry[chemistry.fields.index("nonideal")]) else nothing
+
+        overload(stub, jit_options=OPTIONS | LINKED, strict=False)(choose)
+        return stub
+
+    return decorate

@@ -22,7 +22,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from reactorstage.bed.compiled import compiled, entry, inlined
+from reactorstage.bed.compiled import compiled, inlined
 from reactorstage.bed.data import GAS_CONSTANT, Array
 from reactorstage.chemistry.cubic import DENSE, FOUND, NOT_FINITE, OTHER_PHASE, VAPOUR, CubicFluid, Phase
 
@@ -63,7 +63,7 @@ def at_slopes(S):
     return FIELD + 5 * S
 
 
-@entry
+@compiled
 def cubic(real, start, S, T, p, work, at, extent):
     """Results for the flows in the work array at T [K] and p [Pa], from `at` on; the status is returned.
 

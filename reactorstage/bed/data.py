@@ -18,6 +18,12 @@ STANDARD_PRESSURE = 1e5
 
 CONCENTRATION, PARTIAL_PRESSURE, MOLE_FRACTION, FUGACITY = 0, 1, 2, 3
 
+IDEAL, CUBIC, LIQUID = 0, 1, 2
+"""Fluids: ideal gas, cubic equation of state, liquid of given densities."""
+
+POWERS_OF_DENSITY = 4
+"""Powers of T, from the 0th on, in the density of a species of a liquid."""
+
 LAW = 12
 """Numbers of one law: ln k at T_ref, T_ref, E/R, c, d; m, sum of nu; ln K at T_ref, T_ref, H/R, c, d."""
 
@@ -52,7 +58,11 @@ class Chemistry(NamedTuple):
     and its orders (L,). A species is two members where a law takes powers both of its driver and of its
     floored driver.
     whole holds kind and members (R, KIND + L), then first and last term of each factor. limited counts the
-    laws with an effectiveness.
+    laws with an effectiveness, fugacity those driven by fugacity. state holds the constants of the fluid: of
+    a cubic equation those of the stream's phase, then those of the other phase (`cubic.pack_cubic`); of a
+    liquid the densities in kg/m3 (S, POWERS_OF_DENSITY); nothing of an ideal gas. nonideal is empty for an
+    ideal gas and holds one number else: its length is part of the type, so that machine code for ideal gases
+    has nothing of other fluids in it.
     """
 
     real: Array
@@ -64,6 +74,10 @@ class Chemistry(NamedTuple):
     T_low: float
     T_high: float
     limited: int
+    fugacity: int
+    fluid: int
+    state: Array
+    nonideal: tuple[()] | tuple[float]
 
 
 class Beds(NamedTuple):

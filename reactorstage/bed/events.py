@@ -6,10 +6,14 @@ import numpy as np
 
 from reactorstage.bed.balance import flows
 from reactorstage.bed.compiled import compiled, inlined
-from reactorstage.bed.data import F_UNIT, GAS_CONSTANT, H_IN, T_IN
-from reactorstage.bed.layout import at_nu
-from reactorstage.bed.properties import heat_capacity_flow, temperature_of
+from reactorstage.bed.data import F_UNIT, GAS_CONSTANT, H_IN, P_UNIT, T_IN
+from reactorstage.bed.layout import (
+    at_nu,
+    at_partial,
+    is_cubic,
+)
 from reactorstage.bed.radau import NODES, POLYNOMIAL
+from reactorstage.bed.state import all_properties, heat_capacity_flow, pressure_slope, temperature_of
 from reactorstage.bed.tangents import temperature_forcing
 
 SHARES = np.array([0.1, 0.5, 0.9])
@@ -35,42 +39,60 @@ def temperature_within(chem, bed, step, theta, T_guess, y, work):
     """Temperature at theta of a step; leaves the state in y and the flows and properties in work."""
     state_within(step, chem.R + 1, theta, y)
     flows(chem, bed, y, work)
-    return temperature_of(chem, bed[H_IN] / GAS_CONSTANT, T_guess, work)
+    p = bed[P_UNIT] * y[chem.R]
+    T = temperature_of(chem, bed[H_IN] / GAS_CONSTANT, T_guess, p, work)
+    if is_cubic(chem):
+        all_properties(chem, T, p, 0, work)
+    return T
+
+
+@compiled
+def speed_within(step, n, theta, q):
+    """d y_q / d(theta) of a step there."""
+    speed = 0.0
+    for i in range(3):
+        speed += step[2 + n + i * n + q] * (
+            POLYNOMIAL[i, 0] + theta * (2.0 * POLYNOMIAL[i, 1] + theta * 3.0 * POLYNOMIAL[i, 2])
+        )
+    return speed
+
+
+@compiled
+def moved_within(n, theta, y0_d, Z_d, D, q, d):
+    """Derivative of y_q at theta of a step along direction d."""
+    moved = y0_d[q * D + d]
+    for i in range(3):
+        moved += weight(i, theta) * Z_d[(i * n + q) * D + d]
+    return moved
 
 
 @compiled
 def slope_within(chem, bed, step, theta, T, work):
     """dT/d(theta) of a step there, after `temperature_within`."""
     S, n, nu = chem.S, chem.R + 1, at_nu(chem)
-    total = 0.0
+    total = pressure_slope(chem, work) * bed[P_UNIT] * speed_within(step, n, theta, chem.R)
+    capacity = heat_capacity_flow(chem, work)
     for q in range(chem.R):
-        speed = 0.0
-        for i in range(3):
-            speed += step[2 + n + i * n + q] * (
-                POLYNOMIAL[i, 0] + theta * (2.0 * POLYNOMIAL[i, 1] + theta * 3.0 * POLYNOMIAL[i, 2])
-            )
         heat = 0.0
         for s in range(S):
-            heat += chem.real[nu + q * S + s] * work[2 * S + s]
-        total -= heat * speed
-    return bed[F_UNIT] * total * T / heat_capacity_flow(chem, work)
+            heat += chem.real[nu + q * S + s] * work[at_partial(chem) + s]
+        total -= heat * bed[F_UNIT] * speed_within(step, n, theta, q) * T / capacity
+    return total
 
 
 @compiled
 def temperature_tangent(chem, bed, ways, moved, D, y0_d, Z_d, theta, T, work, out):
     """dT at fixed depth along all directions into out (D,), after `temperature_within` of that step."""
-    S, n, nu = chem.S, chem.R + 1, at_nu(chem)
-    capacity = heat_capacity_flow(chem, work)
+    S, R, n, nu = chem.S, chem.R, chem.R + 1, at_nu(chem)
+    capacity, T_p = heat_capacity_flow(chem, work), pressure_slope(chem, work)
     for d in range(D):
         out[d] = temperature_forcing(chem, ways, D, d, moved[d, 0], moved[d, 1], T, capacity, work)
-        for q in range(chem.R):
-            dxi = y0_d[q * D + d]
-            for i in range(3):
-                dxi += weight(i, theta) * Z_d[(i * n + q) * D + d]
+        for q in range(R):
             heat = 0.0
             for s in range(S):
-                heat += chem.real[nu + q * S + s] * work[2 * S + s]
-            out[d] -= heat * T * bed[F_UNIT] * dxi / capacity
+                heat += chem.real[nu + q * S + s] * work[at_partial(chem) + s]
+            out[d] -= heat * T * bed[F_UNIT] * moved_within(n, theta, y0_d, Z_d, D, q, d) / capacity
+        out[d] += T_p * bed[P_UNIT] * moved_within(n, theta, y0_d, Z_d, D, R, d)
 
 
 @compiled

@@ -7,11 +7,14 @@ import numpy as np
 from reactorstage.bed.balance import evaluate, flows
 from reactorstage.bed.compiled import compiled, inlined
 from reactorstage.bed.damped import damped_newton
-from reactorstage.bed.data import BED, F_UNIT, T_IN
+from reactorstage.bed.data import BED, F_UNIT, P_UNIT, T_IN
 from reactorstage.bed.depth import next_kink
-from reactorstage.bed.layout import at_nu
+from reactorstage.bed.layout import (
+    at_nu,
+    at_partial,
+    is_cubic,
+)
 from reactorstage.bed.linear import factorise, substitute
-from reactorstage.bed.properties import heat_capacity_flow
 from reactorstage.bed.radau import (
     COMPLEX,
     ERROR,
@@ -22,9 +25,10 @@ from reactorstage.bed.radau import (
     TRANSFORM_INVERSE,
 )
 from reactorstage.bed.stages import defects, stage_slopes
+from reactorstage.bed.state import all_properties, heat_capacity_flow
 
 DONE, TOO_MANY_STEPS, STEP_TOO_SMALL, NO_PRESSURE, TOO_HOT, TOO_COLD, FROZEN_FAILED = 0, 1, 2, 3, 4, 5, 6
-NO_FLOW, USED_UP = 7, 8
+NO_FLOW, USED_UP, OTHER_PHASE = 7, 8, 9
 
 NAMED_FACTOR = 10.0
 NAMED_FLOOR = 1e-9
@@ -178,7 +182,7 @@ def error_size(chem, bed, y, T, error, tolerance, work, weight):
         if tolerance.named[s] > 0.0:
             allowed = min(allowed, NAMED_FACTOR * tolerance.flow * max(abs(work[s]), NAMED_FLOOR * unit))
         size = max(size, abs(off) / allowed)
-        heat += off * work[2 * S + s]
+        heat += off * work[at_partial(chem) + s]
     return max(size, abs(heat * T / heat_capacity_flow(chem, work)) / tolerance.temperature)
 
 
@@ -255,6 +259,8 @@ def reason_of(chem, bed, y, T, slope, work):
     if chem.T_high - 50.0 < T:
         return TOO_HOT
     flows(chem, bed, y, work)
+    if is_cubic(chem) and not all_properties(chem, T, bed[P_UNIT] * p_share, 0, work):
+        return OTHER_PHASE
     for s in range(chem.S):
         if abs(work[s]) < OVERDRAFT * bed[F_UNIT] < bed[BED + s]:
             return USED_UP

@@ -6,24 +6,35 @@ from collections.abc import Mapping, Sequence
 
 import numpy as np
 
+from reactorstage.bed.cubic import pack_cubic
 from reactorstage.bed.data import (
+    CUBIC,
     E_OVER_R,
+    FUGACITY,
     H_TERM,
+    IDEAL,
     LAW,
+    LIQUID,
     LN_K,
     LN_K_TERM,
+    POWERS_OF_DENSITY,
     TERM,
     Array,
     Beds,
     Chemistry,
     Index,
 )
+from reactorstage.chemistry.cubic import Phase
+from reactorstage.chemistry.fluid import CubicStream, Fluid
 from reactorstage.chemistry.rate_law import ETA, RateLaws, basis_factors
 from reactorstage.chemistry.species import SpeciesTable
 
 
-def pack_chemistry(table: SpeciesTable, laws: RateLaws) -> Chemistry:
-    """Arrays of the chemistry; the temperature range is the one that all species' data share."""
+def pack_chemistry(table: SpeciesTable, laws: RateLaws, fluid: Fluid | None = None) -> Chemistry:
+    """Arrays of the chemistry; the temperature range is the one that all species' data share.
+
+    Without a fluid the stream is an ideal gas.
+    """
     members = [_members(laws, r) for r in range(laws.nu.shape[0])]
     R, S, L = *laws.nu.shape, max(1, max(len(used) for used in members))
     law = np.column_stack(
@@ -63,7 +74,27 @@ def pack_chemistry(table: SpeciesTable, laws: RateLaws) -> Chemistry:
         T_low=float(table.edges[:, 0].max()),
         T_high=float(table.edges[:, -1].min()),
         limited=int(np.count_nonzero(laws.eta_kind)),
+        fugacity=int(np.count_nonzero(laws.driver == FUGACITY)),
+        fluid=_fluid_kind(fluid),
+        state=_state(fluid),
+        nonideal=() if fluid is None else (1.0,),
     )
+
+
+def _fluid_kind(fluid: Fluid | None) -> int:
+    if fluid is None:
+        return IDEAL
+    return CUBIC if isinstance(fluid, CubicStream) else LIQUID
+
+
+def _state(fluid: Fluid | None) -> Array:
+    if fluid is None:
+        return np.empty(0)
+    if isinstance(fluid, CubicStream):
+        other: Phase = "liquid" if fluid.phase == "vapour" else "vapour"
+        return np.concatenate([pack_cubic(fluid.equation, phase) for phase in (fluid.phase, other)])
+    missing = POWERS_OF_DENSITY - fluid.density.shape[1]
+    return np.pad(fluid.density, ((0, 0), (0, missing))).ravel()
 
 
 def shift_kinetics(chem: Chemistry, shifts: Mapping[tuple[int, int], float]) -> Chemistry:

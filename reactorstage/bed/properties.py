@@ -4,13 +4,13 @@ from __future__ import annotations
 
 import numpy as np
 
-from reactorstage.bed.compiled import compiled
+from reactorstage.bed.compiled import compiled, small
 from reactorstage.bed.layout import at_edges
 
 THIRD = 1.0 / 3.0
 
 
-@compiled
+@small
 def first_coefficient(chem, s, T):
     """Position of the coefficients that hold for species s at T."""
     edges = at_edges(chem) + 2 * s
@@ -54,39 +54,3 @@ def entropy(chem, T, work):
             + T * (c[j + 3] + T * (c[j + 4] * 0.5 + T * (c[j + 5] * THIRD + T * c[j + 6] * 0.25)))
             + c[j + 8]
         )
-
-
-@compiled
-def heat_capacity_flow(chem, work):
-    """sum F cp / R of the flows in the work array, after `heat_and_enthalpy`."""
-    total = 0.0
-    for s in range(chem.S):
-        total += work[s] * work[chem.S + s]
-    return total
-
-
-@compiled
-def temperature_step(chem, H_R, T, work):
-    """Newton correction of T towards H(F, T) = H for the flows in the work array; H_R is H/R.
-
-    Properties at the old T stand in the work array afterwards.
-    """
-    heat_and_enthalpy(chem, T, work)
-    held = 0.0
-    for s in range(chem.S):
-        held += work[s] * work[2 * chem.S + s]
-    return (H_R - held * T) / heat_capacity_flow(chem, work)
-
-
-@compiled
-def temperature_of(chem, H_R, T, work):
-    """T with H(F, T) = H by Newton from the guess T, kept within the data range (then its end is given)."""
-    for _ in range(60):
-        step = temperature_step(chem, H_R, T, work)
-        if not np.isfinite(step):
-            return np.nan
-        new = min(max(T + min(max(step, -200.0), 200.0), chem.T_low), chem.T_high)
-        if abs(new - T) <= 1e-13 * T:
-            return new
-        T = new
-    return T

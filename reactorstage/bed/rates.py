@@ -7,9 +7,11 @@ from __future__ import annotations
 
 import numpy as np
 
-from reactorstage.bed.compiled import compiled, inlined
+from reactorstage.bed.compiled import compiled, for_nonideal, inlined, small
+from reactorstage.bed.cubic import FIELD, VOLUME, VOLUME_P, VOLUME_T, at_slopes
 from reactorstage.bed.data import (
     CONCENTRATION,
+    FUGACITY,
     GAS_CONSTANT,
     KIND,
     LAW,
@@ -18,6 +20,7 @@ from reactorstage.bed.data import (
     TERM,
 )
 from reactorstage.bed.layout import (
+    at_every,
     at_factor,
     at_law,
     at_local,
@@ -26,12 +29,16 @@ from reactorstage.bed.layout import (
     at_order,
     at_power,
     at_rate,
+    at_state,
     at_terms,
+    is_ideal,
+    is_liquid,
 )
+from reactorstage.bed.state import at_swelling
 from reactorstage.chemistry.rates import DELTA
 
 
-@compiled
+@small
 def power(a, n, delta):
     """a^n and its derivative; whole n >= 0 by multiplication, others extended smoothly through zero.
 
@@ -98,11 +105,15 @@ def ln_constant(real, at, T):
 
 @inlined
 def equilibrium(chem, q, driver, T, p, work):
-    """ln Ka of reaction q in the units of its driver, with its derivatives by T and p."""
+    """ln Ka of reaction q in the units of its driver, with its derivatives by T and p.
+
+    Activities are fugacities over the standard pressure in a gas, mole fractions in a liquid.
+    """
+    own_K = chem.whole[q * (KIND + chem.L) + 1]
     S, nu, law = chem.S, at_nu(chem) + q * chem.S, at_law(chem) + q * LAW
     change = chem.real[law + 6]
     lnK, slope_T, slope_p = 0.0, 0.0, 0.0
-    if chem.whole[q * (KIND + chem.L) + 1] == 2:
+    if own_K == 2:
         lnK, slope_T = ln_constant(chem.real, law + 7, T)
     else:
         for s in range(S):
@@ -111,7 +122,14 @@ def equilibrium(chem, q, driver, T, p, work):
             slope_T += n * work[2 * S + s]
         slope_T /= T
     if change != 0.0:
-        if driver == CONCENTRATION:
+        if is_liquid(chem) and (driver == MOLE_FRACTION or own_K == 1):
+            if driver == CONCENTRATION:
+                at, F_total = at_state(chem), 0.0
+                for s in range(S):
+                    F_total += work[s]
+                lnK += change * np.log(F_total / work[at + VOLUME])
+                slope_T -= change * work[at + VOLUME_T] / work[at + VOLUME]
+        elif driver == CONCENTRATION:
             lnK += change * np.log(STANDARD_PRESSURE / (GAS_CONSTANT * T))
             slope_T -= change / T
         elif driver == MOLE_FRACTION:
@@ -122,11 +140,16 @@ def equilibrium(chem, q, driver, T, p, work):
     return lnK, slope_T, slope_p
 
 
-@compiled
-def driver_scale(driver, F_total, T, p):
-    """a_i = scale * F_i; the scale with its logarithmic derivatives by T and p (by F_total: -1/F_total)."""
+@small
+def driver_scale(chem, driver, F_total, p, work):
+    """a_i = scale * F_i; the scale with its logarithmic derivatives by T and p (by F_total: -1/F_total).
+
+    A fugacity is that times its coefficient. The scale of a concentration falls with the volume.
+    """
     if driver == CONCENTRATION:
-        return p / (GAS_CONSTANT * T * F_total), -1.0 / T, 1.0 / p
+        at = at_state(chem)
+        V = work[at + VOLUME]
+        return 1.0 / V, -work[at + VOLUME_T] / V, -work[at + VOLUME_P] / V
     if driver == MOLE_FRACTION:
         return 1.0 / F_total, 0.0, 0.0
     return p / F_total, 0.0, 1.0 / p
@@ -134,10 +157,16 @@ def driver_scale(driver, F_total, T, p):
 
 @inlined
 def fill_drivers(chem, q, scale, F_total, work):
-    """Drivers of the members of law q into the first local row; floored ones are above zero everywhere."""
-    kind, local = q * (KIND + chem.L), at_local(chem)
+    """Drivers of the members of law q into the first local row; floored ones are above zero everywhere.
+
+    The drivers without floors stand in the sixth row.
+    """
+    kind, local, ln_phi = q * (KIND + chem.L), at_local(chem), at_state(chem) + FIELD
     for k in range(chem.whole[kind + 2]):
         work[local + k] = scale * work[chem.whole[kind + KIND + k]]
+        if chem.whole[kind] == FUGACITY and not is_ideal(chem):
+            work[local + k] *= np.exp(work[ln_phi + chem.whole[kind + KIND + k]])
+        work[local + 5 * chem.L + k] = work[local + k]
     if chem.whole[kind + 8] > 0:
         floors = at_order(chem) + (3 * q + 2) * chem.L
         for k in range(chem.whole[kind + 2]):
@@ -192,10 +221,37 @@ def through_floors(chem, q, scale, F_total, work, slope):
     for k in range(chem.whole[kind + 2]):
         floor = chem.real[floors + k]
         if floor > 0.0:
-            root = 2.0 * work[local + k] - scale * work[chem.whole[kind + KIND + k]]
+            root = 2.0 * work[local + k] - work[local + 5 * chem.L + k]
             spread += work[slope + k] * 2.0 * floor * floor * scale * F_total / root
             work[slope + k] *= work[local + k] / root
     return spread
+
+
+@for_nonideal(None)
+def slopes_in_fluid(chem, q, constant, scale, drive, spread, back, F_total, slope, work):
+    """What the fluid adds to the slopes of rate q by all flows (S,), T and p, where drivers depend on all.
+
+    slope is the local row of slopes by the drivers, drive and spread as in `rates`, back that by -ln K.
+    """
+    S, R, L, rate, every = chem.S, chem.R, chem.L, at_rate(chem), at_every(chem) + q * chem.S
+    kind, state, swelling, ln_phi = q * (KIND + L), at_state(chem), at_swelling(chem), at_state(chem) + FIELD
+    driver, change = chem.whole[kind], chem.real[at_law(chem) + q * LAW + 6]
+    for s in range(S):
+        work[every + s] = 0.0
+    if driver == CONCENTRATION:
+        turn = back * change if is_liquid(chem) and chem.whole[kind + 1] == 1 else 0.0
+        work[rate + R + q] = constant * (scale * spread + turn / F_total)
+        for s in range(S):
+            work[every + s] = -constant * (drive + turn) * work[swelling + s] / work[state + VOLUME]
+    elif driver == FUGACITY:
+        for k in range(chem.whole[kind + 2]):
+            i = chem.whole[kind + KIND + k]
+            weight = constant * work[slope + k] * work[at_local(chem) + 5 * L + k]
+            work[at_member(chem) + q * L + k] *= np.exp(work[ln_phi + i])
+            work[rate + 2 * R + q] += weight * work[ln_phi + S + i]
+            work[rate + 3 * R + q] += weight * work[ln_phi + 2 * S + i]
+            for s in range(S):
+                work[every + s] += weight * work[state + at_slopes(S) + i * S + s]
 
 
 @compiled
@@ -216,7 +272,7 @@ def rates(chem, bed, active, T, p, work, with_slopes):
     for q in range(R):
         kind, law, orders = q * (KIND + L), at_law(chem) + q * LAW, at_order(chem) + q * 3 * L
         driver, count = whole[kind], whole[kind + 2]
-        scale, scale_T, scale_p = driver_scale(driver, F_total, T, p)
+        scale, scale_T, scale_p = driver_scale(chem, driver, F_total, p, work)
         delta = DELTA * scale * F_total
         fill_drivers(chem, q, scale, F_total, work)
         lnk, lnk_T = ln_constant(real, law, T)
@@ -254,3 +310,5 @@ def rates(chem, bed, active, T, p, work, with_slopes):
             work[rate + 3 * R + q] = constant * (force_p + drive * scale_p)
             work[rate + 4 * R + q] = constant * back
             work[rate + 5 * R + q] = constant * force
+            if not is_ideal(chem):
+                slopes_in_fluid(chem, q, constant, scale, drive, spread, back, F_total, slope, work)

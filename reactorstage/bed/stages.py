@@ -9,9 +9,9 @@ import numpy as np
 
 from reactorstage.bed.balance import evaluate, flows
 from reactorstage.bed.compiled import compiled, inlined
-from reactorstage.bed.data import GAS_CONSTANT, H_IN
-from reactorstage.bed.properties import temperature_of
+from reactorstage.bed.data import GAS_CONSTANT, H_IN, P_UNIT
 from reactorstage.bed.radau import INVERSE, NODES
+from reactorstage.bed.state import temperature_of
 
 
 @inlined
@@ -28,7 +28,9 @@ def stage_slopes(chem, bed, step, settled, work, f, J, point, G, M):
             point[k] = step[2 + k] + step[Z + i * n + k]
         if not settled:
             flows(chem, bed, point, work)
-            step[T + i] = temperature_of(chem, bed[H_IN] / GAS_CONSTANT, step[T + i], work)
+            step[T + i] = temperature_of(
+                chem, bed[H_IN] / GAS_CONSTANT, step[T + i], bed[P_UNIT] * point[n - 1], work
+            )
         found = evaluate(chem, bed, step[0] + NODES[i] * step[1], point, step[T + i], work, f, J)
         if not np.isfinite(found):
             return i

@@ -14,6 +14,7 @@ import numpy as np
 
 from reactorstage.bed.balance import evaluate
 from reactorstage.bed.compiled import compiled, inlined
+from reactorstage.bed.cubic import VOLUME, VOLUME_T
 from reactorstage.bed.data import (
     E_OVER_R,
     ENTHALPY,
@@ -30,12 +31,24 @@ from reactorstage.bed.data import (
     TERM,
     W_BED,
 )
-from reactorstage.bed.layout import at_law, at_local, at_member, at_nu, at_power, at_rate, at_terms
+from reactorstage.bed.layout import (
+    at_every,
+    at_law,
+    at_local,
+    at_member,
+    at_nu,
+    at_partial,
+    at_power,
+    at_rate,
+    at_state,
+    at_terms,
+    is_ideal,
+)
 from reactorstage.bed.linear import factorise, substitute_many
-from reactorstage.bed.properties import heat_capacity_flow
 from reactorstage.bed.radau import NODES
 from reactorstage.bed.rates import driver_scale, fill_drivers, term_size
 from reactorstage.bed.stages import stage_rows
+from reactorstage.bed.state import at_swelling, heat_capacity_flow
 from reactorstage.chemistry.rates import DELTA
 
 
@@ -45,7 +58,7 @@ def temperature_forcing(chem, ways, D, d, kind, index, T, capacity, work):
     S = chem.S
     heat = ways[S * D + d] / GAS_CONSTANT
     for s in range(S):
-        heat -= work[2 * S + s] * T * ways[s * D + d]
+        heat -= work[at_partial(chem) + s] * T * ways[s * D + d]
     if kind == ENTHALPY:
         heat -= work[index] / GAS_CONSTANT
     return heat / capacity
@@ -57,7 +70,7 @@ def term_share(chem, q, wanted, T, p, F_total, work):
     L, local, real, whole = chem.L, at_local(chem), chem.real, chem.whole
     kind, powers = q * (KIND + L), at_power(chem)
     count = whole[kind + 2]
-    scale, _, _ = driver_scale(whole[kind], F_total, T, p)
+    scale, _, _ = driver_scale(chem, whole[kind], F_total, p, work)
     fill_drivers(chem, q, scale, F_total, work)
     for f in range(whole[kind + 3], whole[kind + 4]):
         first, last = whole[at_terms(chem) + 2 * f], whole[at_terms(chem) + 2 * f + 1]
@@ -99,16 +112,19 @@ def forcing(chem, bed, ways, moved, D, y, T, f, work, out, first):
     """df/dq at one stage for all directions, added up into out from row `first` on; work holds that stage."""
     S, R, L = chem.S, chem.R, chem.L
     rate, member = at_rate(chem), at_member(chem)
+    every, state, swelling = at_every(chem), at_state(chem), at_swelling(chem)
     per_unit, p = bed[W_BED] / bed[F_UNIT], bed[P_UNIT] * y[R]
+    drag = bed[W_BED] / (bed[P_UNIT] * GAS_CONSTANT)
     capacity, F_total = heat_capacity_flow(chem, work), 0.0
     for s in range(S):
         F_total += work[s]
     for d in range(D):
         kind, index = moved[d, 0], moved[d, 1]
         T_q = temperature_forcing(chem, ways, D, d, kind, index, T, capacity, work)
-        F_q = 0.0
+        F_q, V_q = 0.0, work[state + VOLUME_T] * T_q
         for s in range(S):
             F_q += ways[s * D + d]
+            V_q += work[swelling + s] * ways[s * D + d]
         W_q = ways[(S + 2) * D + d]
         for q in range(R):
             whole = q * (KIND + L)
@@ -116,13 +132,14 @@ def forcing(chem, bed, ways, moved, D, y, T, f, work, out, first):
             slope += work[rate + R + q] * F_q
             for k in range(chem.whole[whole + 2]):
                 slope += work[member + q * L + k] * ways[chem.whole[whole + KIND + k] * D + d]
+            for s in range(0 if is_ideal(chem) else S):
+                slope += work[every + q * S + s] * ways[s * D + d]
             if kind >= 0:
                 slope += parameter_slope(chem, q, kind, index, T, p, F_total, work)
             out[first + q * D + d] = per_unit * slope + work[rate + q] * W_q / bed[F_UNIT]
-        drag = bed[W_BED] / (bed[P_UNIT] * p)
         out[first + R * D + d] = -drag * (
-            bed[FRICTION] * (F_q * T + F_total * T_q)
-            + F_total * T * (ways[(S + 3) * D + d] + bed[FRICTION] * W_q / bed[W_BED])
+            bed[FRICTION] * V_q
+            + work[state + VOLUME] * (ways[(S + 3) * D + d] + bed[FRICTION] * W_q / bed[W_BED])
         )
 
 

@@ -10,6 +10,7 @@ import numpy as np
 
 from reactorstage.bed import data as d_
 from reactorstage.bed.compiled import compiled, entry, inlined
+from reactorstage.bed.cubic import H_RES_P
 from reactorstage.bed.data import BED as BED_ROWS
 from reactorstage.bed.data import COMPOSITION, ENTHALPY, F_UNIT, GAS_CONSTANT, P_UNIT
 from reactorstage.bed.events import (
@@ -19,14 +20,16 @@ from reactorstage.bed.events import (
     slope_within,
     temperature_tangent,
 )
-from reactorstage.bed.integrate import DONE, TOO_COLD, TOO_HOT, integrate
-from reactorstage.bed.layout import at_factor, at_mass, at_nu, at_profile, work_length
-from reactorstage.bed.properties import heat_and_enthalpy, heat_capacity_flow, temperature_of
+from reactorstage.bed.integrate import DONE, OTHER_PHASE, TOO_COLD, TOO_HOT, integrate
+from reactorstage.bed.layout import at_factor, at_mass, at_nu, at_partial, at_profile, at_state, work_length
+from reactorstage.bed.state import all_properties, enthalpy_flow, heat_capacity_flow, temperature_of
 from reactorstage.bed.tangents import differentiate
 
-ADD, HOLD, SET_TEMPERATURE, REMOVE_HEAT, ARRIVE, BED = 0, 1, 2, 3, 4, 5
+ADD, HOLD, SET_TEMPERATURE, REMOVE_HEAT, ARRIVE, BED, ADD_OTHER = 0, 1, 2, 3, 4, 5, 6
 """Operations (code, a, b, c); numbers are positions in the input vector u, -1 for none:
-ADD a feed, b flow, c temperature; HOLD nothing (its heat follows at the next ARRIVE);
+ADD a feed, b flow, c temperature with the feed's pressure behind it; ADD_OTHER likewise a feed that comes in
+the other phase of a cubic equation (a liquid into a vapour: it evaporates); HOLD nothing (its heat follows at
+the next ARRIVE);
 SET_TEMPERATURE a; REMOVE_HEAT a; ARRIVE a held temperature, b pressure, c position of the HOLD;
 BED a bed number, b first of its three numbers in u: catalyst, catalyst activity, friction factor; c first of
 its catalyst activities by reaction (-1: that one holds for all)."""
@@ -74,16 +77,16 @@ def record_temperature(chem, row, out, T_guess, moved, work):
     if not total > 0.0:
         out[row + S + 2, 0] = T_guess
         return False
-    T = temperature_of(chem, out[row + S, 0] / GAS_CONSTANT, T_guess, work)
+    p = out[row + S + 1, 0]
+    T = temperature_of(chem, out[row + S, 0] / GAS_CONSTANT, T_guess, p, work)
     out[row + S + 2, 0] = T
-    if not (chem.T_low < T < chem.T_high):
+    if not (chem.T_low < T < chem.T_high and all_properties(chem, T, p, 0, work)):
         return False
-    heat_and_enthalpy(chem, T, work)
-    capacity = heat_capacity_flow(chem, work)
+    capacity, partial, H_p = heat_capacity_flow(chem, work), at_partial(chem), work[at_state(chem) + H_RES_P]
     for d in range(D):
-        heat = out[row + S, d + 1] / GAS_CONSTANT
+        heat = (out[row + S, d + 1] - H_p * out[row + S + 1, d + 1]) / GAS_CONSTANT
         for s in range(S):
-            heat -= work[2 * S + s] * T * out[row + s, d + 1]
+            heat -= work[partial + s] * T * out[row + s, d + 1]
         if moved[d, 0] == ENTHALPY:
             heat -= work[moved[d, 1]] / GAS_CONSTANT
         out[row + S + 2, d + 1] = heat / capacity
@@ -92,45 +95,52 @@ def record_temperature(chem, row, out, T_guess, moved, work):
 
 @compiled
 def enthalpy_at(chem, row, out, T, T_d, moved, work, H_d):
-    """Enthalpy flow of a record's flows at T with derivatives T_d (D,); derivatives into H_d (D,)."""
+    """Enthalpy flow of a record's flows at T with derivatives T_d (D,); derivatives into H_d (D,).
+
+    Not a number where the phase does not exist at T.
+    """
     S = chem.S
     for s in range(S):
         work[s] = out[row + s, 0]
-    heat_and_enthalpy(chem, T, work)
-    H, capacity = 0.0, heat_capacity_flow(chem, work)
-    for s in range(S):
-        H += work[s] * work[2 * S + s]
+    if not all_properties(chem, T, out[row + S + 1, 0], 0, work):
+        return np.nan
+    capacity, partial, H_p = heat_capacity_flow(chem, work), at_partial(chem), work[at_state(chem) + H_RES_P]
     for d in range(H_d.shape[0]):
-        H_d[d] = capacity * GAS_CONSTANT * T_d[d]
+        H_d[d] = capacity * GAS_CONSTANT * T_d[d] + H_p * out[row + S + 1, d + 1]
         for s in range(S):
-            H_d[d] += work[2 * S + s] * GAS_CONSTANT * T * out[row + s, d + 1]
+            H_d[d] += work[partial + s] * GAS_CONSTANT * T * out[row + s, d + 1]
         if moved[d, 0] == ENTHALPY:
             H_d[d] += work[moved[d, 1]]
-    return H * GAS_CONSTANT * T
+    return enthalpy_flow(chem, T, work) * GAS_CONSTANT
 
 
 @compiled
-def add_feed(chem, row, out, feed, composition, flow, T, flow_d, T_d, moved, work):
-    """Add a feed of `flow` mol/s at T to a record: flows and enthalpies add."""
-    S = chem.S
-    heat_and_enthalpy(chem, T, work)
-    h, cp = 0.0, 0.0
+def add_feed(chem, row, out, feed, composition, u, du, b, c, start, moved, work):
+    """Add a feed of u[b] mol/s at u[c] K and u[c + 1] Pa to a record: flows and enthalpies add.
+
+    start tells the feed's phase (see `equation_of_state`); False where that does not exist.
+    """
+    S, flow, T = chem.S, u[b], u[c]
     for s in range(S):
-        h += composition[s] * work[2 * S + s] * GAS_CONSTANT * T
-        cp += composition[s] * work[S + s] * GAS_CONSTANT
+        work[s] = composition[s]
+    if not all_properties(chem, T, u[c + 1], start, work):
+        return False
+    h, cp = enthalpy_flow(chem, T, work) * GAS_CONSTANT, heat_capacity_flow(chem, work) * GAS_CONSTANT
+    H_p, partial = work[at_state(chem) + H_RES_P], at_partial(chem)
     out[row + S, 0] += flow * h
     for s in range(S):
         out[row + s, 0] += flow * composition[s]
-    for d in range(flow_d.shape[0]):
-        out[row + S, d + 1] += flow_d[d] * h + flow * cp * T_d[d]
+    for d in range(du.shape[1]):
+        out[row + S, d + 1] += du[b, d] * h + flow * (cp * du[c, d] + H_p * du[c + 1, d])
         for s in range(S):
-            out[row + s, d + 1] += flow_d[d] * composition[s]
+            out[row + s, d + 1] += du[b, d] * composition[s]
         kind, index = moved[d, 0], moved[d, 1]
         if kind == ENTHALPY:
             out[row + S, d + 1] += flow * composition[index]
         elif kind == COMPOSITION and index // S == feed:
             out[row + index % S, d + 1] += flow
-            out[row + S, d + 1] += flow * work[2 * S + index % S] * GAS_CONSTANT * T
+            out[row + S, d + 1] += flow * work[partial + index % S] * GAS_CONSTANT * T
+    return True
 
 
 @compiled
@@ -315,6 +325,15 @@ def run_bed(
     return DONE, 1.0, calls
 
 
+@inlined
+def first_pressure(operations, u, du, row, out):
+    """Write the first pressure that a bed states, which is that of all that comes before it."""
+    for k in range(operations.shape[0]):
+        if operations[k, 0] == ARRIVE and operations[k, 2] >= 0:
+            set_row(out, row, u[operations[k, 2]], du[operations[k, 2]])
+            break
+
+
 @entry
 def train_pass(
     chem, beds, operations, feeds, u, du, moved, tolerance, frozen, places, stages, reference, out
@@ -339,12 +358,20 @@ def train_pass(
         row = k * rows
         if k > 0:
             copy_record(out, row - rows, row, rows)
-        if code == ADD:
+        else:
+            first_pressure(operations, u, du, S + 1, out)
+        if code in (ADD, ADD_OTHER):
             T_before = out[row + S + 2, 0]
-            add_feed(chem, row, out, a, feeds[a], u[b], u[c], du[b], du[c], moved, work)
-            record_temperature(chem, row, out, u[c] if T_before == 0.0 else T_before, moved, work)
+            start = 0 if code == ADD else chem.state.shape[0] // 2
+            if not add_feed(chem, row, out, a, feeds[a], u, du, b, c, start, moved, work):
+                return OTHER_PHASE, k, 0.0, calls, taken
+            found = record_temperature(chem, row, out, u[c] if T_before == 0.0 else T_before, moved, work)
+            if not found and np.isnan(out[row + S + 2, 0]):
+                return OTHER_PHASE, k, 0.0, calls, taken
         elif code == SET_TEMPERATURE:
             H = enthalpy_at(chem, row, out, u[a], du[a], moved, work, H_d)
+            if np.isnan(H):
+                return OTHER_PHASE, k, 0.0, calls, taken
             set_row(out, row + S, H, H_d)
             set_row(out, row + S + 2, u[a], du[a])
         elif code == REMOVE_HEAT:
@@ -355,6 +382,8 @@ def train_pass(
                 set_row(out, row + S + 1, u[b], du[b])
             if c >= 0:
                 H = enthalpy_at(chem, row, out, u[a], du[a], moved, work, H_d)
+                if np.isnan(H):
+                    return OTHER_PHASE, k, 0.0, calls, taken
                 Q = out[row + S, 0] - H
                 for d in range(D):
                     Q_d[d] = out[row + S, d + 1] - H_d[d]

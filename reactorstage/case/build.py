@@ -84,7 +84,12 @@ def _reaction(reaction: Reaction) -> Reaction:
 def _feed(feed: FeedWritten) -> Feed:
     split = _split(feed.split, feed.flow) if feed.split else None
     return Feed(
-        flow=feed.flow, temperature=feed.temperature, composition=fractions(feed.composition), split=split
+        flow=feed.flow,
+        temperature=feed.temperature,
+        composition=fractions(feed.composition),
+        split=split,
+        pressure=feed.pressure,
+        phase=feed.phase,
     )
 
 

@@ -13,6 +13,7 @@ from pathlib import Path
 from reactorstage.case.build import extras
 from reactorstage.case.checks_chemistry import check_reaction, check_species
 from reactorstage.case.checks_feeds import check_feeds
+from reactorstage.case.checks_fluid import check_fluid
 from reactorstage.case.checks_train import check_train
 from reactorstage.case.fields import Raw
 from reactorstage.case.marks import TreePath
@@ -52,6 +53,7 @@ def check(case: CaseWritten, folder: Path, findings: Findings) -> None:
         findings.add(("reactions",), "no reaction stands here", "give at least one, by name")
     for name, reaction in reactions.items():
         check_reaction(name, reaction, case, findings)
+    check_fluid(case, reactions, findings)
     check_feeds(case, findings)
     check_train(case, reactions, findings)
     check_levels(case, findings)

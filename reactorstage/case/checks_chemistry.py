@@ -57,9 +57,6 @@ def check_reaction(name: str, reaction: Reaction, case: CaseWritten, findings: F
     for where, names in named_species(reaction):
         check_known(names, (*path, *where), case, findings)
     check_backward(name, reaction, path, case.species, findings)
-    if reaction.driven_by == "fugacity" and case.fluid.density == "ideal gas":
-        message = "an ideal gas has no fugacities of its own: they are its partial pressures"
-        findings.add((*path, "driven by"), message, "write driven by: partial pressure")
     if check_form(reaction.constant, (*path, "constant"), findings):
         check_constant(reaction, path, case.species, findings)
     check_slowing(reaction, path, findings)

@@ -19,13 +19,13 @@ from reactorstage.case.marks import Marked
 from reactorstage.case.word_fields import Aim
 from reactorstage.case.written import Bed, DepthPoint, Level, Price
 from reactorstage.case.written_chemistry import (
-    Fluid,
     HeatCapacity,
     Reaction,
     Species,
     SpeciesData,
     Validity,
 )
+from reactorstage.case.written_fluid import CriticalData, Fluid, LiquidDensity
 from reactorstage.case.written_rates import (
     Constant,
     Effectiveness,
@@ -43,6 +43,7 @@ __all__ = [
     "Bed",
     "Case",
     "Constant",
+    "CriticalData",
     "DepthPoint",
     "Effectiveness",
     "EquilibriumConstant",
@@ -53,6 +54,7 @@ __all__ = [
     "HeatLevels",
     "Level",
     "Limit",
+    "LiquidDensity",
     "Number",
     "OwnEquilibrium",
     "Price",
@@ -109,6 +111,8 @@ class Feed(Frozen):
     temperature: Number
     composition: dict[str, float]
     split: Split | None = None
+    pressure: float | None = None
+    phase: str | None = None
 
 
 class Step(Frozen):

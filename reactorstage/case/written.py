@@ -36,7 +36,8 @@ from reactorstage.case.word_fields import (
     Version,
 )
 from reactorstage.case.words import Bound, Name, PriceText, Words, mergeable
-from reactorstage.case.written_chemistry import Fluid, ReactionsWritten, Species
+from reactorstage.case.written_chemistry import ReactionsWritten, Species
+from reactorstage.case.written_fluid import Fluid, PhaseWord
 
 FORMAT = 1
 EVERY_BED, EVERY_GAP = "every bed", "every gap"
@@ -65,6 +66,12 @@ class FeedWritten(Words):
     temperature: Annotated[Number, Free("temperature", above=0.0)] = Field(description="before it is mixed")
     composition: dict[str, Annotated[float | None, Share()]] = Field(
         description="share of each species (see `percent`); `rest` at most once", min_length=1
+    )
+    pressure: Annotated[float, In("pressure", above=0.0)] | None = Field(
+        None, description="before it is mixed; asked for where enthalpy depends on it"
+    )
+    phase: PhaseWord | None = Field(
+        None, description="of a feed that is not in the phase of the fluid, as a liquid that evaporates"
     )
     split: SplitWritten | None = Field(None, description="the only place where a division among beds stands")
 

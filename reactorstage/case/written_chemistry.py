@@ -9,6 +9,7 @@ from pydantic import ConfigDict, Field
 from reactorstage.case.fields import In
 from reactorstage.case.word_fields import Choice, Orders, Powers, Span, TextOf, TextOr
 from reactorstage.case.words import Name, Words, mergeable
+from reactorstage.case.written_fluid import CriticalData, LiquidDensity
 from reactorstage.case.written_rates import (
     FACTOR,
     RATE_CONSTANT,
@@ -50,7 +51,7 @@ CAPACITY_EXAMPLE = '["-37.4 J/(mol K)", "0.87 J/(mol K^2)"]'
 
 
 class HeatCapacity(Words):
-    """Molar heat capacity of the ideal gas at constant pressure."""
+    """Molar heat capacity at constant pressure, of the ideal gas (of the liquid, where the fluid is one)."""
 
     powers_of_T: Annotated[tuple[float, ...], Powers(capacity_unit, CAPACITY_EXAMPLE)] = Field(
         description="a, b, c ... of a + b T + c T^2 ..., each with its unit: J/(mol K), J/(mol K^2) ..."
@@ -63,15 +64,15 @@ class SpeciesData(Words):
     gas_data: Name | None = Field(None, description="name in Cantera's data files, or file:name")
     formula: Name | None = Field(None, description="chemical formula, as in C10H14")
     enthalpy_of_formation: Annotated[float, In("molar energy")] | None = Field(
-        None, description="of the ideal gas at 298.15 K"
+        None, description="at 298.15 K, of the ideal gas (of the liquid, where the fluid is one)"
     )
     entropy: Annotated[float, In("molar entropy", above=0.0)] | None = Field(
-        None, description="absolute, of the ideal gas at 298.15 K and the standard pressure"
+        None, description="absolute, at 298.15 K and the standard pressure"
     )
     standard_pressure: Annotated[float, In("pressure", above=0.0)] | None = Field(
         None, description="pressure to which the entropy belongs"
     )
-    heat_capacity: HeatCapacity | None = Field(None, description="of the ideal gas")
+    heat_capacity: HeatCapacity | None = Field(None, description="at constant pressure")
     valid: Validity | None = Field(None, description="where the data hold")
     source: Name | None = Field(None, description="where the numbers come from")
 
@@ -85,13 +86,10 @@ class Species(SpeciesData):
     ) = Field(
         None, description="isomers in equilibrium among themselves: names in data files, or data of each"
     )
-
-
-class Fluid(Words):
-    """What flows through the beds."""
-
-    density: Annotated[Literal["ideal gas"], Choice("ideal gas")] = Field(description="how density is found")
-    viscosity: Annotated[float, In("viscosity", above=0.0)] = Field(description="dynamic viscosity")
+    critical_data: Annotated[CriticalData, TextOr.key("name", TextOf())] | None = Field(
+        None, description="for a cubic equation of state: a name in Cantera's file, or numbers"
+    )
+    density: LiquidDensity | None = Field(None, description="as a liquid, where the fluid is one")
 
 
 Backward = Annotated[OwnEquilibrium | str, TextOr(Choice(FROM_GIBBS).read, Choice(FROM_GIBBS))]

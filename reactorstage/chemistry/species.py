@@ -103,6 +103,15 @@ def inline_species(
     return _species(name, atoms, ranges, (low, high), standard_pressure, source)
 
 
+IN_FILE = re.compile(r"(.+\.ya?ml)\s*:\s*(\S.*)")
+
+
+def data_name(spec: str) -> str:
+    """NAME of "NAME" or "file.yaml:NAME"."""
+    in_file = IN_FILE.fullmatch(spec.strip())
+    return in_file[2].strip() if in_file else spec.strip()
+
+
 def species_from_cantera(spec: str, name: str) -> Species:
     """A species of Cantera's data, called `name` in our tables.
 
@@ -115,8 +124,7 @@ def species_from_cantera(spec: str, name: str) -> Species:
     Raises LookupError with the nearest names when there is no such species, FileNotFoundError when
     there is no such file, ValueError when a file or its thermochemistry cannot be used.
     """
-    in_file = re.fullmatch(r"(.+\.ya?ml)\s*:\s*(\S.*)", spec.strip())
-    wanted = in_file[2].strip() if in_file else spec.strip()
+    in_file, wanted = IN_FILE.fullmatch(spec.strip()), data_name(spec)
     files = [_data_file(in_file[1])] if in_file else [_shipped(file) for file in GAS_FILES]
     known: list[str] = []
     for file in files:

@@ -7,6 +7,7 @@ from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
 from reactorstage.chemistry.agreement import Agreement
+from reactorstage.chemistry.fluid import Fluid
 from reactorstage.chemistry.isomers import isomer_group
 from reactorstage.chemistry.law import Constant
 from reactorstage.chemistry.rate_law import RateLaws, rate_laws
@@ -19,6 +20,7 @@ from reactorstage.chemistry.species import (
     table_of,
 )
 from reactorstage.errors import CaseProblems, Problem
+from reactorstage.train.fluid import read_fluid
 from reactorstage.train.law_checks import (
     agreements,
     inconsistent_loops,
@@ -35,7 +37,7 @@ if TYPE_CHECKING:
 class CaseChemistry:
     """Species and reactions of a case, in the order of the file.
 
-    agreements: by reaction, for equilibrium constants of a law's own.
+    agreements: by reaction, for equilibrium constants of a law's own. fluid: None for an ideal gas.
     """
 
     table: SpeciesTable
@@ -45,6 +47,7 @@ class CaseChemistry:
     reactions: tuple[str, ...]
     sources: tuple[str, ...]
     agreements: Mapping[str, Agreement] = field(default_factory=dict)
+    fluid: Fluid | None = None
 
     def own_K(self, reaction: int) -> Constant | None:
         """The equilibrium constant of a law's own (standard pressure 1e5 Pa); None for the Gibbs energies."""
@@ -64,6 +67,7 @@ def read_chemistry(case: Case) -> CaseChemistry:
     problems += missing_floors(case, laws, read, table)
     problems += vanishing_effectiveness(case, laws, table)
     agreed = agreements(case, laws, table, problems)
+    fluid = read_fluid(case, problems)
     if not problems:
         problems += inconsistent_loops(case, laws, table)
     if problems:
@@ -76,6 +80,7 @@ def read_chemistry(case: Case) -> CaseChemistry:
         tuple(case.reactions),
         tuple(one.source for one in found.values() if one),
         agreed,
+        fluid,
     )
 
 

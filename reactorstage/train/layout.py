@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from reactorstage.bed import train_pass as kernel
 from reactorstage.case.model import Activities
+from reactorstage.chemistry.constants import P_STANDARD
 from reactorstage.train import composition
 from reactorstage.train.chemistry import CaseChemistry
 from reactorstage.train.evaluation import SplitGroup
@@ -127,10 +128,7 @@ class _Writer:
             name: float(row @ chemistry.table.molar_mass)
             for name, row in zip(self.feeds, self.compositions, strict=True)
         }
-        self.feed_temperature = {
-            name: inputs.number(f"feed {name}.temperature", feed.temperature)
-            for name, feed in case.feeds.items()
-        }
+        self.feed_temperature = {name: self._condition(name, feed) for name, feed in case.feeds.items()}
         self.feed_flow = {
             name: inputs.number(f"feed {name}.flow", feed.flow, self._factor(name, feed.flow.kind))
             for name, feed in case.feeds.items()
@@ -143,6 +141,12 @@ class _Writer:
         self.places: list[Place] = []
         self.beds: list[BedPlace] = []
         self.amounts: dict[int, int] = {}
+
+    def _condition(self, name: str, feed: Feed) -> int:
+        """Inputs for the temperature of a feed and, behind it, its pressure; position of the former."""
+        first = self.inputs.number(f"feed {name}.temperature", feed.temperature)
+        self.inputs.constant(f"feed {name}.pressure", feed.pressure or P_STANDARD)
+        return first
 
     def _factor(self, feed: str, kind: str) -> float:
         return 1.0 / self.molar[feed] if kind == "mass flow" else 1.0
@@ -228,7 +232,9 @@ class _Writer:
     def _inject(self, feed: str, bed: str) -> None:
         amount = self.amount.get((feed, bed), self.feed_flow[feed])
         self.amounts[len(self.operations)] = amount
-        self.operations.append((kernel.ADD, self.feeds.index(feed), amount, self.feed_temperature[feed]))
+        given = self.case.feeds[feed].phase
+        code = kernel.ADD if given in (None, self.case.fluid.phase) else kernel.ADD_OTHER
+        self.operations.append((code, self.feeds.index(feed), amount, self.feed_temperature[feed]))
 
     def _device(self, section: Section, step: Step, path: tuple[str | int, ...]) -> Device:
         operation = len(self.operations)

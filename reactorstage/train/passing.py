@@ -31,6 +31,7 @@ SENTENCES = {
     status.TOO_COLD: "the temperature falls below the range of the species data",
     status.NO_FLOW: "nothing flows into it",
     status.USED_UP: "a reactant is used up but its reaction runs on (an order of zero or below)",
+    status.OTHER_PHASE: "the stream does not exist in the phase that the fluid states",
     status.FROZEN_FAILED: "the step sequence of another setting does not fit here",
 }
 

@@ -275,7 +275,7 @@ class _Draft:
             bounds=tuple(softened),
             aim=self._aim(catalogue),
             passing=Pass(
-                pack_chemistry(self.chemistry.table, self.chemistry.laws),
+                pack_chemistry(self.chemistry.table, self.chemistry.laws, self.chemistry.fluid),
                 _beds(self.case, self.chemistry, self.layout),
                 self.layout,
                 self._named(bounds),
