@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from reactorstage.bed.compiled import compiled, small
+from reactorstage.bed.compiled import small
 from reactorstage.bed.cubic import cubic_length
 from reactorstage.bed.data import BED, CUBIC, KIND, LAW, LIQUID
 from reactorstage.chemistry.rate_law import ETA

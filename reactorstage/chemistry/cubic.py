@@ -120,6 +120,17 @@ class CubicFluid:
     b: Floats = field(repr=False)
     pairs: Floats = field(repr=False)
 
+    def part(self, there: Array) -> CubicFluid:
+        """The mixture of some of its species, (S,) true where wanted."""
+        return CubicFluid(
+            self.equation,
+            tuple(one for one, wanted in zip(self.critical, there, strict=True) if wanted),
+            self.root_0[there],
+            self.root_T[there],
+            self.b[there],
+            self.pairs[np.ix_(there, there)],
+        )
+
 
 def cubic_fluid(equation: str, critical: Sequence[Critical], k: Floats | None = None) -> CubicFluid:
     """A mixture under one of `EQUATIONS`; k (S, S) binary interaction parameters, none: all zero.
@@ -274,3 +285,23 @@ def fugacity_slopes(fluid: CubicFluid, F: Floats, T: float, p: float, Z: float) 
         T=((stiff - swell - heat - swell * heat) / (1.0 + stiff) - beta * x * M * TQ_T / n - TQ_iT * L) / T,
         p=(z + swell + z * swell - stiff) / (p * (1.0 + stiff)),
     )
+
+
+def residual_capacity(fluid: CubicFluid, F: Floats, T: float, p: float, Z: float) -> float:
+    """dH/dT of the residual enthalpy flow at constant pressure, W/K, of the phase with compressibility Z.
+
+    From H = n R T (Z - 1) + R T^2 dQ/dT L(beta) with Q and beta as in `fugacity_slopes`.
+    """
+    (delta_1, delta_2), n, root_T = fluid.equation.delta, float(np.sum(F)), np.sqrt(T)
+    q, fall = fluid.root_0 - fluid.root_T * root_T, 0.5 * fluid.root_T * root_T
+    u, u_fall, BT = fluid.pairs @ (F * q), fluid.pairs @ (F * fall), T * float(fluid.b @ F)
+    Q, TQ_T = F @ (q * u) / BT, -2.0 * F @ (fall * u) / BT - F @ (q * u) / BT
+    curve = F @ (fall * (u + 2.0 * u_fall)) / BT
+    beta = p * BT / (n * R_GAS * T * T * Z)
+    G, M = 1.0 / (1.0 - beta), 1.0 / ((1.0 + delta_1 * beta) * (1.0 + delta_2 * beta))
+    M_beta = -M * M * (delta_1 + delta_2 + 2.0 * delta_1 * delta_2 * beta)
+    L = np.log1p((delta_1 - delta_2) * beta / (1.0 + delta_2 * beta)) / (delta_1 - delta_2)
+    z = beta * (G - M * Q / n)
+    stiff = 2.0 * z + beta**2 * (G * G - M_beta * Q / n)
+    heat = z - beta * M * TQ_T / n
+    return float(R_GAS * (L * curve + n * ((2.0 + heat) * heat - stiff) / (1.0 + stiff)))

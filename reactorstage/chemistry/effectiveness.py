@@ -6,7 +6,6 @@ from typing import Any
 
 import numpy as np
 
-from reactorstage.chemistry.constants import R_GAS
 from reactorstage.chemistry.law import MOST_POWERS_OF_T, SHAPES
 from reactorstage.chemistry.rate_law import NO_ETA, POLYNOMIAL, RateLaws
 from reactorstage.chemistry.smooth import floored
@@ -26,8 +25,11 @@ SPHERE = (1.0, -1 / 15, 2 / 315, -1 / 1575, 2 / 31185, -1382 / 212837625)
 """Series of both forms in the square of the modulus."""
 
 
-def effectiveness(laws: RateLaws, r: int, rate: Any, y: Array, T: Scalar, p: Scalar) -> Any:
-    """Effectiveness of reaction r at its rate without pore limitation, mol/(kg s); y (S,) or (S, N)."""
+def effectiveness(laws: RateLaws, r: int, rate: Any, y: Array, T: Scalar, density: Scalar) -> Any:
+    """Effectiveness of reaction r at its rate without pore limitation, mol/(kg s); y (S,) or (S, N).
+
+    density of the stream, mol/m3.
+    """
     kind, eta = laws.eta_kind[r], laws.eta[r]
     key, into = laws.eta_species[r]
     if kind == NO_ETA:
@@ -40,7 +42,7 @@ def effectiveness(laws: RateLaws, r: int, rate: Any, y: Array, T: Scalar, p: Sca
             value = value + Z * np.polyval(by_Z[::-1], Z)
         return floored(value, LEAST_ETA)
     speed = np.where(np.real(rate) < 0.0, -rate, rate)
-    square = eta[0] * speed * R_GAS * T / (p * floored(y[key], TRACE))
+    square = eta[0] * speed / (density * floored(y[key], TRACE))
     return of_modulus(kind, square)
 
 

@@ -1,4 +1,4 @@
-"""Where a stream of ideal gas comes to rest: equilibrium restricted to given reactions; loops of constants.
+"""Where a stream comes to rest: equilibrium restricted to given reactions; loops of constants.
 
 Irreversible reactions first run until each lacks a reactant (`exhaustion`); then, among the states that the
 reversible reactions can still make, the one sought is that of least Gibbs energy at given temperature and
@@ -12,11 +12,12 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from reactorstage.chemistry import thermo
 from reactorstage.chemistry.exhaustion import Flags, exhausted, reachable
+from reactorstage.chemistry.fluid import Fluid
 from reactorstage.chemistry.forms import Floats
 from reactorstage.chemistry.least_gibbs import BeyondData, Problem, settled
-from reactorstage.chemistry.reaction import heat_of_reaction, ln_K, ln_Q
+from reactorstage.chemistry.mixture import Mixture
+from reactorstage.chemistry.reaction import heat_of_reaction, ln_K, ln_quotient
 from reactorstage.chemistry.species import SpeciesTable
 
 TRACE = 1e-4
@@ -45,36 +46,49 @@ class EquilibriumState:
 
 
 def equilibrium(
-    table: SpeciesTable, nu: Floats, reversible: Sequence[bool] | Flags, F: Floats, T: float, p: float
+    table: SpeciesTable,
+    nu: Floats,
+    reversible: Sequence[bool] | Flags,
+    F: Floats,
+    T: float,
+    p: float,
+    fluid: Fluid | None = None,
 ) -> EquilibriumState:
     """Equilibrium of the reactions at constant temperature and pressure.
 
-    nu (R, S), reversible (R,), F (S,) any measure of amount, T in K, p in Pa. Elements are kept by
-    construction. Raises ValueError when there is nothing in the stream, when irreversible reactions run round
-    in a circle, and when no answer is found.
+    nu (R, S), reversible (R,), F (S,) any measure of amount, T in K, p in Pa, fluid None for an ideal
+    gas. Elements are kept by construction. Raises ValueError when there is nothing in the stream, when
+    irreversible reactions run round in a circle, and when no answer is found.
     """
-    return _rest(table, nu, np.asarray(reversible, dtype=bool), F, T, p, adiabatic=False)
+    return _rest(Mixture(table, fluid), nu, np.asarray(reversible, dtype=bool), F, T, p, adiabatic=False)
 
 
 def adiabatic_equilibrium(
-    table: SpeciesTable, nu: Floats, reversible: Sequence[bool] | Flags, F: Floats, T: float, p: float
+    table: SpeciesTable,
+    nu: Floats,
+    reversible: Sequence[bool] | Flags,
+    F: Floats,
+    T: float,
+    p: float,
+    fluid: Fluid | None = None,
 ) -> EquilibriumState:
     """Equilibrium of the reactions at the enthalpy of the stream F at T, and constant pressure.
 
     As `equilibrium`, T being that of the stream as it comes. Raises ValueError also when the answer lies
     beyond the temperatures at which the species data hold.
     """
-    return _rest(table, nu, np.asarray(reversible, dtype=bool), F, T, p, adiabatic=True)
+    return _rest(Mixture(table, fluid), nu, np.asarray(reversible, dtype=bool), F, T, p, adiabatic=True)
 
 
 def _rest(
-    table: SpeciesTable, nu: Floats, reversible: Flags, F: Floats, T: float, p: float, adiabatic: bool
+    mixture: Mixture, nu: Floats, reversible: Flags, F: Floats, T: float, p: float, adiabatic: bool
 ) -> EquilibriumState:
+    table = mixture.table
     fed = np.maximum(np.asarray(F, dtype=np.float64), 0.0)
     unit = float(fed.sum())
     if not unit > 0.0:
         raise ValueError("there is nothing in the stream")
-    H = float(fed @ thermo.h(table, T)) / unit if adiabatic else None
+    H = float(mixture.enthalpy(fed, T, p)) / unit if adiabatic else None
     _, can_run = reachable(nu, reversible, fed > 0.0)
     xi = np.zeros(len(nu))
     left, xi[can_run] = exhausted(
@@ -83,12 +97,12 @@ def _rest(
     both_ways = np.flatnonzero(can_run & reversible)
     there, at_rest = reachable(nu[both_ways], reversible[both_ways], left > 0.0)
     running = both_ways[at_rest]
-    problem = Problem(_part(table, there), nu[np.ix_(running, np.flatnonzero(there))], p, H)
+    problem = Problem(mixture.part(there), nu[np.ix_(running, np.flatnonzero(there))], p, H)
     F_there, T, iterations = _solved(problem, _started(problem.nu, left[there]), T)
     F_end = np.zeros(len(fed))
     F_end[there] = F_there
     xi[running] += _smallest(nu[running], F_end - left)
-    off = ln_Q(nu[running], F_end, p) - ln_K(table, nu[running], T)
+    off = ln_quotient(nu[running], F_end, mixture.ln_coefficients(F_end, T, p)) - ln_K(table, nu[running], T)
     mask = np.zeros(len(nu), dtype=bool)
     mask[running] = True
     return EquilibriumState(
@@ -118,25 +132,13 @@ def _bracketed(problem: Problem, H: float, F: Floats) -> tuple[Floats, float, in
         nonlocal F, steps
         F, _, more = settled(fixed, F, T)
         steps += more
-        return float(F @ thermo.h(problem.table, T)) - H
+        return float(problem.mixture.enthalpy(F, T, problem.p)) - H
 
     if not low < high or excess(low) > 0.0 or excess(high) < 0.0:
         raise BeyondData
     T = float(brentq(excess, low, high, xtol=1e-10, rtol=1e-14))
     F, _, _ = settled(fixed, F, T)
     return F, T, steps
-
-
-def _part(table: SpeciesTable, there: Flags) -> SpeciesTable:
-    """The table of some of its species."""
-    return SpeciesTable(
-        tuple(name for name, wanted in zip(table.names, there, strict=True) if wanted),
-        table.elements,
-        table.atoms[there],
-        table.molar_mass[there],
-        table.coefficients[there],
-        table.edges[there],
-    )
 
 
 def _started(nu: Floats, F: Floats) -> Floats:

@@ -4,8 +4,11 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+import numpy as np
+
 from reactorstage.chemistry.cubic import CubicFluid, Phase
 from reactorstage.chemistry.forms import Floats
+from reactorstage.chemistry.thermo import Array, Scalar
 
 
 @dataclass(frozen=True, eq=False)
@@ -14,6 +17,10 @@ class CubicStream:
 
     equation: CubicFluid
     phase: Phase
+
+    def part(self, there: Array) -> CubicStream:
+        """The stream of some of its species, (S,) true where wanted."""
+        return CubicStream(self.equation.part(there), self.phase)
 
 
 @dataclass(frozen=True, eq=False)
@@ -25,6 +32,14 @@ class PlainLiquid:
     """
 
     density: Floats
+
+    def densities(self, T: Scalar) -> Array:
+        """Of the species (S,), kg/m3."""
+        return np.asarray(self.density @ T ** np.arange(self.density.shape[1]))
+
+    def part(self, there: Array) -> PlainLiquid:
+        """The liquid of some of its species, (S,) true where wanted."""
+        return PlainLiquid(self.density[there])
 
 
 Fluid = CubicStream | PlainLiquid

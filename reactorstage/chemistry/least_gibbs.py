@@ -1,15 +1,16 @@
-"""Least Gibbs energy (or greatest entropy at given enthalpy) of an ideal gas over extents of reactions.
+"""Least Gibbs energy (or greatest entropy at given enthalpy) of a mixture over extents of reactions.
 
 With mu_i/(R T) = g_i/(R T) + ln(y_i p/p0), extents zeta (r,) of independent reactions N (r, S), dn = N 1 and
 dh = N h, slope and curvature of G/(R T), or of -S/R at constant enthalpy, are
 
     N mu/(R T),      N diag(1/F) N^T - dn dn^T/sum(F)  [+ dh dh^T/(R T^2 sum F cp)  at constant enthalpy]
 
-The curvature is positive definite, so there is one answer. Newton's method in the logarithms of scarce
-species: the reactions are combined anew so that each makes one scarce species out of more abundant ones
-(optimised stoichiometry: W. R. Smith and R. W. Missen, Chemical Reaction Equilibrium Analysis, 1982; from
-memory), which keeps the system well scaled for constants of any size; steps are halved until the function
-falls. Real gases would add ln phi_i(T, p, y) in `_point` and a residual enthalpy in `_temperature` alone.
+In an ideal gas the curvature is positive definite, so there is one answer. Newton's method in the logarithms
+of scarce species: the reactions are combined anew so that each makes one scarce species out of more abundant
+ones (optimised stoichiometry: W. R. Smith and R. W. Missen, Chemical Reaction Equilibrium Analysis, 1982;
+from memory), which keeps the system well scaled for constants of any size; steps are halved until the
+function falls. In a cubic equation of state ln phi_i joins mu, its slopes the curvature, and enthalpies are
+partial molar ones; in a liquid ln y_i stands without the pressure.
 """
 
 from __future__ import annotations
@@ -20,8 +21,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from reactorstage.chemistry import thermo
-from reactorstage.chemistry.constants import P_STANDARD, R_GAS
+from reactorstage.chemistry.constants import R_GAS
+from reactorstage.chemistry.fluid import CubicStream
 from reactorstage.chemistry.forms import Floats
+from reactorstage.chemistry.mixture import Mixture
 from reactorstage.chemistry.species import SpeciesTable
 
 NEAR = 1e-7
@@ -56,10 +59,14 @@ class Problem:
     H is the enthalpy to keep, in J per unit of the amounts F, or None at constant temperature.
     """
 
-    table: SpeciesTable
+    mixture: Mixture
     nu: Floats
     p: float
     H: float | None
+
+    @property
+    def table(self) -> SpeciesTable:
+        return self.mixture.table
 
 
 @dataclass(frozen=True)
@@ -132,6 +139,8 @@ def _newton(problem: Problem, point: _Point, N: Floats, scarce: NDArray[np.intp]
     """Newton's change of ln F of the scarce species (r,)."""
     dn = N.sum(axis=1)
     curvature = (N / point.F) @ N.T - np.outer(dn, dn) / point.F.sum()
+    if isinstance(problem.mixture.fluid, CubicStream):
+        curvature += N @ problem.mixture.coefficient_slopes(point.F, point.T, problem.p)[0] @ N.T
     if problem.H is not None:
         dh = N @ point.h
         curvature += np.outer(dh, dh) / (R_GAS * point.T**2 * point.capacity)
@@ -174,7 +183,7 @@ def _point(problem: Problem, F: Floats, T: float) -> _Point | None:
             return None
         T, h, capacity = found
     g = thermo.gibbs(problem.table, T)
-    mu = g / (R_GAS * T) + np.log(F * (problem.p / (P_STANDARD * F.sum())))
+    mu = g / (R_GAS * T) + np.log(F / F.sum()) + problem.mixture.ln_coefficients(F, T, problem.p)
     value = float(F @ mu) - (0.0 if problem.H is None else problem.H / (R_GAS * T))
     return _Point(F, T, mu, h, capacity, value)
 
@@ -185,9 +194,8 @@ def _temperature(problem: Problem, F: Floats, T: float) -> tuple[float, Floats, 
     edges = problem.table.edges
     low, high = float(edges[:, 0].max()), float(edges[:, 3].min())
     for _ in range(MOST_HALVINGS):
-        h = thermo.h(problem.table, T)
-        capacity = float(F @ thermo.cp(problem.table, T))
-        step = (problem.H - float(F @ h)) / capacity
+        h, capacity = problem.mixture.heats(F, T, problem.p)
+        step = (problem.H - float(problem.mixture.enthalpy(F, T, problem.p))) / capacity
         if abs(step) <= 1e-12 * T:
             return T + step, h, capacity
         T += step

@@ -10,36 +10,59 @@ import numpy as np
 
 from reactorstage.chemistry.constants import P_STANDARD, R_GAS
 from reactorstage.chemistry.effectiveness import effectiveness
+from reactorstage.chemistry.fluid import Fluid, PlainLiquid
 from reactorstage.chemistry.forms import Floats
+from reactorstage.chemistry.law import DRIVERS
+from reactorstage.chemistry.mixture import Mixture
 from reactorstage.chemistry.rate_law import RateLaws
 from reactorstage.chemistry.reaction import ln_K
 from reactorstage.chemistry.smooth import floored
 from reactorstage.chemistry.species import SpeciesTable
 from reactorstage.chemistry.thermo import Array, Scalar
 
+CONCENTRATION, MOLE_FRACTION, FUGACITY = (
+    DRIVERS[word] for word in ("concentration", "mole fraction", "fugacity")
+)
+
 DELTA = 1e-12
 """Width of the smooth extension of powers around zero, as a fraction of the total of the driver."""
 
 
-def rates(laws: RateLaws, table: SpeciesTable, F: Array, T: Scalar, p: Scalar, factor: Floats) -> Array:
-    """Rates of the reactions of an ideal gas (R,), mol/(kg s) with factors that make them so.
+def rates(
+    laws: RateLaws,
+    table: SpeciesTable,
+    F: Array,
+    T: Scalar,
+    p: Scalar,
+    factor: Floats,
+    fluid: Fluid | None = None,
+) -> Array:
+    """Rates of the reactions (R,), mol/(kg s) with factors that make them so.
 
     F (S,) molar flows, mol/s, only their ratios matter; T K; p Pa; factor (R,) catalyst activity
-    times `basis_factors`. Several compositions at once, F (S, N), give rates (R, N). A fugacity is that of
-    an ideal gas, the partial pressure.
+    times `basis_factors`; fluid None for an ideal gas. Several compositions at once, F (S, N), give rates
+    (R, N). Not a number where the fluid has no root.
     """
+    if fluid is not None and F.ndim > 1:
+        columns = [rates(laws, table, column, T, p, factor, fluid) for column in F.T]
+        return np.stack(columns, axis=-1)
     y = F / np.sum(F, axis=0)
     k = np.exp(ln_k(laws, T))
-    ln_Ka = ln_K_of_driver(laws, table, T, p)
+    mixture = Mixture(table, fluid)
+    density = np.sum(F, axis=0) / mixture.volume(F, T, p)
+    phi = np.exp(mixture.ln_coefficients(F, T, p)) * (P_STANDARD / p)
+    ln_Ka = ln_K_of_driver(laws, table, T, p, fluid, density)
     found = []
     for r in range(len(laws.m)):
-        total = driver_total(laws.driver[r], T, p)
-        a = np.concatenate([y, _floored(y, laws.floor[r])]) * total
+        driver = laws.driver[r]
+        total = density if driver == CONCENTRATION else driver_total(driver, T, p)
+        z = y * phi if driver == FUGACITY and fluid is not None else y
+        a = np.concatenate([z, _floored(z, laws.floor[r])]) * total
         drive = product(a, laws.forward[r], total)
         if laws.reversible[r]:
             drive = drive - product(a, laws.backward[r], total) * np.exp(-laws.m[r] * ln_Ka[r])
         rate = factor[r] * k[r] * drive / _denominator(laws, r, a, T, total)
-        found.append(rate * effectiveness(laws, r, rate, y, T, p))
+        found.append(rate * effectiveness(laws, r, rate, y, T, density))
     return np.array(found)
 
 
@@ -57,10 +80,19 @@ def ln_K_of_laws(laws: RateLaws, table: SpeciesTable, T: Scalar) -> Array:
     return np.asarray(np.where(laws.own_K == 1, own, ln_K(table, laws.nu, T)))
 
 
-def ln_K_of_driver(laws: RateLaws, table: SpeciesTable, T: Scalar, p: Scalar) -> Array:
-    """ln of the equilibrium constants in the unit of each driver, (R,): Ka = K (p0 a/p)^(sum nu)."""
+def ln_K_of_driver(
+    laws: RateLaws, table: SpeciesTable, T: Scalar, p: Scalar, fluid: Fluid | None, density: Scalar
+) -> Array:
+    """ln of the equilibrium constants in the unit of each driver, (R,): Ka = K (p0 a/p)^(sum nu).
+
+    In a liquid, whose activities are mole fractions, K (density)^(sum nu) of concentrations; density mol/m3.
+    """
     by_driver = [P_STANDARD / (R_GAS * T), P_STANDARD, P_STANDARD / p, P_STANDARD]
     ln_p0_a_p = np.log(np.array(by_driver))[laws.driver]
+    if isinstance(fluid, PlainLiquid):
+        ln_p0_a_p = np.where(laws.driver == MOLE_FRACTION, 0.0, ln_p0_a_p)
+        by_density = (laws.driver == CONCENTRATION) & (laws.own_K == 0)
+        ln_p0_a_p = np.where(by_density, np.log(density), ln_p0_a_p)
     return np.asarray(ln_K_of_laws(laws, table, T) + laws.nu.sum(axis=1) * ln_p0_a_p)
 
 

@@ -7,7 +7,7 @@ from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from difflib import get_close_matches
 from fractions import Fraction
-from math import isfinite
+from math import isfinite, log
 
 import numpy as np
 
@@ -143,13 +143,19 @@ def ln_K(table: SpeciesTable, nu: Floats, T: Scalar) -> Array:
 
 
 def ln_Q(nu: Floats, F: Floats, p: float) -> Floats:
-    """ln of the reaction quotient of an ideal gas, sum_i nu_i ln(y_i p/1e5), (R,); nu (R, S).
+    """ln of the reaction quotient of an ideal gas, sum_i nu_i ln(y_i p/1e5), (R,); see `ln_quotient`."""
+    return ln_quotient(nu, F, log(p / P_STANDARD))
 
-    F (S,) any measure of amount, p in Pa. -inf where a product is absent, +inf where a reactant is,
+
+def ln_quotient(nu: Floats, F: Floats, ln_coefficients: Floats | float) -> Floats:
+    """ln of the reaction quotient, sum_i nu_i (ln y_i + ln_coefficient_i), (R,); nu (R, S).
+
+    F (S,) any measure of amount; coefficients (S,) turn mole fractions into activities, ln(p/1e5) of an ideal
+    gas. -inf where a product is absent, +inf where a reactant is,
     nan where both are.
     """
     with np.errstate(divide="ignore", invalid="ignore"):
-        ln_a = np.log(np.maximum(F, 0.0) / np.sum(F) * (p / P_STANDARD))
+        ln_a = np.log(np.maximum(F, 0.0) / np.sum(F)) + ln_coefficients
         terms = np.where(nu != 0.0, nu * ln_a, 0.0)
         return np.asarray(terms.sum(axis=1), dtype=np.float64)
 

@@ -12,6 +12,7 @@ from pathlib import Path
 from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from reactorstage.chemistry import forms
 from reactorstage.chemistry.constants import P_STANDARD
@@ -53,6 +54,17 @@ class SpeciesTable:
     molar_mass: Floats = field(repr=False)
     coefficients: Floats = field(repr=False)
     edges: Floats = field(repr=False)
+
+    def part(self, there: NDArray[np.bool_]) -> SpeciesTable:
+        """The table of some of its species, (S,) true where wanted."""
+        return SpeciesTable(
+            tuple(name for name, wanted in zip(self.names, there, strict=True) if wanted),
+            self.elements,
+            self.atoms[there],
+            self.molar_mass[there],
+            self.coefficients[there],
+            self.edges[there],
+        )
 
 
 def table_of(species: Sequence[Species]) -> SpeciesTable:

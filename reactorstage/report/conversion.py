@@ -145,7 +145,7 @@ def _equilibrium(chemistry: CaseChemistry, key: int, feed: Feed, s: int, T: Arra
     nu, F = chemistry.laws.nu[key : key + 1], feed.F
     line = np.empty(len(T))
     for n, t in enumerate(T):
-        F = equilibrium(chemistry.table, nu, [True], F, float(t), feed.p).F
+        F = equilibrium(chemistry.table, nu, [True], F, float(t), feed.p, chemistry.fluid).F
         line[n] = 1.0 - F[s] / feed.main
     return line
 
@@ -154,7 +154,9 @@ def _rates(rating: Rating, chemistry: CaseChemistry, key: int, feed: Feed, s: in
     laws, nu, X = chemistry.laws, chemistry.laws.nu, np.linspace(0.0, 1.0, POINTS_X)
     F = feed.F[:, None] + np.outer(nu[key] / -nu[key, s], X * feed.main)
     factor = basis_factors(laws, *_packing(rating))
-    used = [-(nu[:, s] @ rates(laws, chemistry.table, F, float(t), feed.p, factor)) for t in T]
+    used = [
+        -(nu[:, s] @ rates(laws, chemistry.table, F, float(t), feed.p, factor, chemistry.fluid)) for t in T
+    ]
     there = np.all(-1e-9 * feed.main <= F, axis=0)
     grid = np.where(there, np.array(used), np.nan).T
     return Rates(X, grid, best_temperature(T, grid))

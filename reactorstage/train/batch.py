@@ -114,5 +114,5 @@ def _one(
     outcome = model.passing.adaptive(u, nothing, tolerance, chemistry=packed)
     if outcome.failure:
         return np.nan, outcome.failure
-    base = model.base(outcome.out, u, nothing, x, model.equilibria_in(set(rows.top.used.tolist())))
+    base = model.base(outcome.out, u, nothing, x, model.found_in(set(rows.top.used.tolist())))
     return rows.of_base(base)[:, 0], ""

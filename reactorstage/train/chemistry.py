@@ -10,6 +10,7 @@ from reactorstage.chemistry.agreement import Agreement
 from reactorstage.chemistry.fluid import Fluid
 from reactorstage.chemistry.isomers import isomer_group
 from reactorstage.chemistry.law import Constant
+from reactorstage.chemistry.mixture import Mixture
 from reactorstage.chemistry.rate_law import RateLaws, rate_laws
 from reactorstage.chemistry.reaction import Equation, balance_message, parse_equation
 from reactorstage.chemistry.species import (
@@ -48,6 +49,11 @@ class CaseChemistry:
     sources: tuple[str, ...]
     agreements: Mapping[str, Agreement] = field(default_factory=dict)
     fluid: Fluid | None = None
+
+    @property
+    def mixture(self) -> Mixture:
+        """Species and fluid."""
+        return Mixture(self.table, self.fluid)
 
     def own_K(self, reaction: int) -> Constant | None:
         """The equilibrium constant of a law's own (standard pressure 1e5 Pa); None for the Gibbs energies."""

@@ -9,11 +9,14 @@ from numpy.typing import NDArray
 
 from reactorstage.bed.data import ENTHALPY, ENTROPY
 from reactorstage.chemistry.constants import R_GAS
-from reactorstage.chemistry.reaction import equilibrium_temperature, heat_of_reaction, ln_K, ln_Q
+from reactorstage.chemistry.reaction import data_range, equilibrium_temperature, heat_of_reaction, ln_K
 from reactorstage.train.chemistry import CaseChemistry
 from reactorstage.train.layout import Layout
+from reactorstage.train.quotients import quotient
 
 Array = NDArray[np.float64]
+
+MOST_STEPS = 40
 
 
 @dataclass(frozen=True)
@@ -43,28 +46,50 @@ class Equilibrium:
         """
         record = base[self.operation * layout.width : (self.operation + 1) * layout.width]
         F, p = record[: layout.species, 0], record[layout.species + 1, 0]
-        row = chemistry.laws.nu[self.reaction]
+        row, exit_T = chemistry.laws.nu[self.reaction], float(record[layout.species + 2, 0])
         found = np.full(base.shape[1], np.nan)
         if (F[row != 0.0] <= 0.0).any():
             return found
-        quotient = float(ln_Q(row[None, :], F, p)[0])
-        own, exit_T = chemistry.own_K(self.reaction), float(record[layout.species + 2, 0])
-        T = equilibrium_temperature(chemistry.table, row, quotient, exit_T, own)
+        T = self._stands_still(chemistry, row, F, exit_T, float(p))
         if T is None:
             return found
-        heat = heat_of_reaction(chemistry.table, row[None, :], T)[0] if own is None else own.heat(T)
-        slope = float(heat) / (R_GAS * T * T)
-        there = ln_K(chemistry.table, row[None, :], T)[0] if own is None else own.ln(T)
-        T -= (float(there) - quotient) / slope
-        used = row != 0.0
-        change = row.sum()
-        ln_Q_d = (row[used] / F[used]) @ record[: layout.species][used, 1:]
-        ln_Q_d = ln_Q_d - change * record[: layout.species, 1:].sum(axis=0) / F.sum()
-        ln_Q_d = ln_Q_d + change * record[layout.species + 1, 1:] / p
-        if moved is not None and own is None:
+        Q = quotient(chemistry, self.reaction, F, T, float(p))
+        slope = self._heat(chemistry, row, T) / (R_GAS * T * T) - Q.T
+        T -= (self._ln_K(chemistry, row, T) - Q.ln) / slope
+        ln_Q_d = Q.F @ record[: layout.species, 1:] + Q.p * record[layout.species + 1, 1:]
+        if moved is not None and chemistry.own_K(self.reaction) is None:
             ln_Q_d = ln_Q_d - _ln_K_shift(row, T, moved)
         found[0], found[1:] = T, ln_Q_d / slope
         return found
+
+    def _stands_still(
+        self, chemistry: CaseChemistry, row: Array, F: Array, exit_T: float, p: float
+    ) -> float | None:
+        """T with K(T) = Q, by Newton where Q depends on T; None without one in the range of the data."""
+        Q = quotient(chemistry, self.reaction, F, exit_T, p)
+        own = chemistry.own_K(self.reaction)
+        T = equilibrium_temperature(chemistry.table, row, Q.ln, exit_T, own)
+        if T is None or chemistry.fluid is None:
+            return T
+        low, high = data_range(chemistry.table, row)
+        for _ in range(MOST_STEPS):
+            Q = quotient(chemistry, self.reaction, F, T, p)
+            slope = self._heat(chemistry, row, T) / (R_GAS * T * T) - Q.T
+            step = -(self._ln_K(chemistry, row, T) - Q.ln) / slope
+            T += float(np.clip(step, -0.1 * T, 0.1 * T))
+            if not low <= T <= high:
+                return None
+            if abs(step) <= 1e-12 * T:
+                return T
+        return None
+
+    def _heat(self, chemistry: CaseChemistry, row: Array, T: float) -> float:
+        own = chemistry.own_K(self.reaction)
+        return float(heat_of_reaction(chemistry.table, row[None, :], T)[0] if own is None else own.heat(T))
+
+    def _ln_K(self, chemistry: CaseChemistry, row: Array, T: float) -> float:
+        own = chemistry.own_K(self.reaction)
+        return float(ln_K(chemistry.table, row[None, :], T)[0] if own is None else own.ln(T))
 
 
 def _ln_K_shift(row: Array, T: float, moved: NDArray[np.int64]) -> Array:

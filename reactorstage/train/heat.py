@@ -21,8 +21,10 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from reactorstage.case import units
+from reactorstage.chemistry.fluid import CubicStream, Fluid
 from reactorstage.chemistry.thermo import h
 from reactorstage.errors import CaseProblems, Problem
+from reactorstage.train.boundaries import Residual
 from reactorstage.train.chemistry import CaseChemistry
 from reactorstage.train.forms import Linear, at
 from reactorstage.train.layout import Device, Layout, Place
@@ -114,6 +116,7 @@ def build_ladder(
     outlet_range: dict[int, tuple[float, float]],
     hinge_start: int,
     internal_start: int,
+    residuals: Sequence[Residual] = (),
 ) -> Ladder:
     """The ladder of a case; outlet_range gives lowest and highest of each input that fixes an outlet."""
     problems: list[Problem] = []
@@ -133,13 +136,27 @@ def build_ladder(
                 continue
             wanted = _wanted(device, rungs, cools)
             span = outlet_range.get(device.outlet, (0.0, np.inf))
-            stream = _Stream(chemistry, layout, place, device, span)
+            stream = _Stream(chemistry, layout, place, device, span, residuals)
             (_heat if device.heating else _cool)(ladder, stream, wanted)
     used = {level for _, level in ladder.given}
     ladder.capacities = {
         name: rung.capacity for name, rung in rungs.items() if rung.capacity is not None and name in used
     }
     return ladder
+
+
+def residuals_of(case: Case, fluid: Fluid | None, layout: Layout, first: int) -> tuple[Residual, ...]:
+    """Residual enthalpies that the ladder of a case needs, from position `first` of the base vector on."""
+    rungs = read_rungs(case, [])
+    places = [
+        (device.operation, rung.reach)
+        for place in layout.places
+        for device in place.devices
+        for rung in rungs.values()
+    ]
+    if not isinstance(fluid, CubicStream):
+        return ()
+    return tuple(Residual(first + k, *one) for k, one in enumerate(dict.fromkeys(places)))
 
 
 def _wanted(device: Device, rungs: dict[str, Rung], cools: set[str]) -> list[Rung]:
@@ -160,6 +177,7 @@ class _Stream:
     place: Place
     device: Device
     span: tuple[float, float]
+    residuals: Sequence[Residual]
 
     @property
     def removed(self) -> Linear:
@@ -173,9 +191,15 @@ class _Stream:
         return self.layout.enthalpy(self.device.operation) - self._at(T)
 
     def width(self, T: float) -> Linear:
-        return (self._at(T + HINGE_WIDTH) - self._at(T - HINGE_WIDTH)) * 0.5
+        return (self._ideal(T + HINGE_WIDTH) - self._ideal(T - HINGE_WIDTH)) * 0.5
 
     def _at(self, T: float) -> Linear:
+        own = [
+            at(one.index) for one in self.residuals if one.operation == self.device.operation and one.T == T
+        ]
+        return self._ideal(T) + (own[0] if own else Linear())
+
+    def _ideal(self, T: float) -> Linear:
         molar = h(self.chemistry.table, T)
         start = self.device.operation * self.layout.width
         return Linear({start + s: float(value) for s, value in enumerate(molar)})

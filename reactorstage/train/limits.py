@@ -8,7 +8,9 @@ from math import floor, log10
 from typing import TYPE_CHECKING
 
 from reactorstage.case import units
+from reactorstage.chemistry.fluid import CubicStream
 from reactorstage.errors import CaseProblems, Problem
+from reactorstage.train.boundaries import WORDS
 from reactorstage.train.evaluation import LimitRow
 from reactorstage.train.forms import Form, Linear
 from reactorstage.train.heat import Ladder
@@ -178,6 +180,7 @@ def _implied(catalogue: Catalogue, ladder: Ladder, given: Sequence[Bound]) -> li
             label = "a heater may not cool" if device.heating else "a cooler may not heat"
             form = Form("power", layout.heat_removed(device) * sign)
             bounds.append(Bound(_rule(label, place.owner, f"{place.owner}.heat removed", form.kind), form))
+    bounds += _one_phase(catalogue)
     for device, owner, T, direction, level in ladder.reach:
         form = Form("temperature", layout.temperature(device.operation))
         row = _rule(f"reach of {level}", owner, f"{owner}.temperature after exchanger", "temperature")
@@ -198,6 +201,20 @@ def _implied(catalogue: Catalogue, ladder: Ladder, given: Sequence[Bound]) -> li
     for name, form_ in ladder.rows:
         owner = name.partition(",")[0]
         bounds.append(Bound(_rule("heat ladder", owner, name, "power"), Form("power", form_)))
+    return bounds
+
+
+def _one_phase(catalogue: Catalogue) -> list[Bound]:
+    """A stream under a cubic equation keeps to its phase at the inlet and exit of every bed."""
+    fluid = catalogue.chemistry.fluid
+    if not isinstance(fluid, CubicStream):
+        return []
+    bounds = []
+    for bed in catalogue.layout.beds:
+        for where in ("inlet", "exit"):
+            name = f"{bed.owner}.{where} {WORDS[fluid.phase]} margin"
+            row = _rule(f"stays {fluid.phase}", bed.owner, name, "temperature difference")
+            bounds.append(Bound(row, catalogue.find(name)))
     return bounds
 
 

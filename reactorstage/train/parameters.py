@@ -132,7 +132,7 @@ def quick_forms(model: Model, wanted: Sequence[str] | None = None) -> dict[str, 
     forms = listed_forms(model, wanted)
     if wanted is not None:
         return forms
-    slow = {one.index for one in model.catalogue.equilibria}
+    slow = {one.index for one in model.catalogue.found}
     return {name: form for name, form in forms.items() if slow.isdisjoint(form.top.terms)}
 
 
@@ -188,7 +188,7 @@ def sensitivities(
     outcome = model.passing.adaptive(u, du, tolerance or FINAL, moved=moved)
     if outcome.failure:
         raise ComputationError(outcome.failure)
-    base = model.base(outcome.out, u, du, x, model.catalogue.equilibria, moved=moved)
+    base = model.base(outcome.out, u, du, x, model.catalogue.found, moved=moved)
     found = FormRows.of(forms).of_base(base)
     factors = np.array([one.factor for one in picked])
     return Sensitivities(

@@ -16,7 +16,7 @@ from numpy.typing import NDArray
 
 from reactorstage.chemistry.equilibrium import adiabatic_equilibrium
 from reactorstage.chemistry.rates import ln_K_of_laws
-from reactorstage.chemistry.reaction import ln_Q
+from reactorstage.train.quotients import quotient
 from reactorstage.train.result import Profile, Value
 
 if TYPE_CHECKING:
@@ -127,7 +127,13 @@ def _attainable(model: Model, inlet: Array, exit_: Array) -> float:
     reversible = [equation.reversible for equation in chemistry.equations]
     start = exit_ if all(reversible) else inlet
     found = adiabatic_equilibrium(
-        chemistry.table, chemistry.laws.nu, reversible, start[:S], float(start[-1]), float(inlet[-2])
+        chemistry.table,
+        chemistry.laws.nu,
+        reversible,
+        start[:S],
+        float(start[-1]),
+        float(inlet[-2]),
+        chemistry.fluid,
     )
     return found.T
 
@@ -151,11 +157,10 @@ def idle_share(along: Profile) -> float | None:
 
 def _quotients(model: Model, exit_: Array) -> dict[str, float | None]:
     chemistry, S = model.chemistry, model.layout.species
-    nu, T = chemistry.laws.nu, float(exit_[-1])
+    T, p = float(exit_[-1]), float(exit_[-2])
+    quotients = [quotient(chemistry, r, exit_[:S], T, p).ln for r in range(len(chemistry.reactions))]
     with np.errstate(over="ignore"):
-        shares = np.exp(
-            ln_Q(nu, exit_[:S], float(exit_[-2])) - ln_K_of_laws(chemistry.laws, chemistry.table, T)
-        )
+        shares = np.exp(np.array(quotients) - ln_K_of_laws(chemistry.laws, chemistry.table, T))
     return {
         name: float(share) if np.isfinite(share) else None
         for name, share, equation in zip(chemistry.reactions, shares, chemistry.equations, strict=True)

@@ -16,11 +16,18 @@ from numpy.typing import NDArray
 from reactorstage.bed.data import ENTHALPY, Beds
 from reactorstage.bed.pack import ergun_terms, pack_beds, pack_chemistry
 from reactorstage.errors import CaseProblems, ComputationError
+from reactorstage.train.boundaries import (
+    Boundary,
+    Residual,
+    boundaries_of,
+    fill_boundaries,
+    fill_residuals,
+)
 from reactorstage.train.chemistry import CaseChemistry, read_chemistry
 from reactorstage.train.equilibria import Equilibrium, equilibria_of
 from reactorstage.train.evaluation import Evaluation, FreeNumber, LimitRow, SplitGroup
 from reactorstage.train.forms import Form, Linear, Rows, at, total
-from reactorstage.train.heat import Ladder, build_ladder
+from reactorstage.train.heat import Ladder, build_ladder, residuals_of
 from reactorstage.train.inputs import InputBuilder, InputMap
 from reactorstage.train.layout import Layout, lay_out
 from reactorstage.train.limits import Bound, expand_limits
@@ -39,13 +46,17 @@ Array = NDArray[np.float64]
 
 @dataclass(frozen=True)
 class Model:
-    """Everything compiled from a case; the base vector is records, inputs, equilibria, x, hinges."""
+    """Everything compiled from a case; the base vector is records, inputs, what is found, x, hinges.
+
+    Found from the records are equilibrium temperatures, dew or bubble temperatures, residual enthalpies.
+    """
 
     case: Case
     chemistry: CaseChemistry
     layout: Layout
     inputs: InputMap
     ladder: Ladder
+    residuals: tuple[Residual, ...]
     catalogue: Catalogue
     bounds: tuple[Bound, ...]
     aim: Form
@@ -54,7 +65,7 @@ class Model:
 
     @property
     def x_start(self) -> int:
-        return self.layout.rows + len(self.inputs.names) + len(self.catalogue.equilibria)
+        return self.layout.rows + len(self.inputs.names) + len(self.catalogue.found) + len(self.residuals)
 
     @property
     def size(self) -> int:
@@ -66,14 +77,14 @@ class Model:
         return Rows.of([one.form for one in hinges]), Rows.of([one.width for one in hinges])
 
     @cached_property
-    def wanted_equilibria(self) -> tuple[Equilibrium, ...]:
-        """Equilibrium temperatures that a limit or the aim needs; a rating finds all of them."""
+    def wanted(self) -> tuple[Equilibrium | Boundary, ...]:
+        """Temperatures to be found that a limit or the aim needs; a rating finds all of them."""
         forms = [self.aim.top, *(bound.form.top for bound in self.bounds)]
-        return self.equilibria_in({index for form in forms for index in form.terms})
+        return self.found_in({index for form in forms for index in form.terms})
 
-    def equilibria_in(self, used: Container[int]) -> tuple[Equilibrium, ...]:
-        """Equilibrium temperatures among positions of the base vector."""
-        return tuple(one for one in self.catalogue.equilibria if one.index in used)
+    def found_in(self, used: Container[int]) -> tuple[Equilibrium | Boundary, ...]:
+        """Temperatures to be found among positions of the base vector."""
+        return tuple(one for one in self.catalogue.found if one.index in used)
 
     def base(
         self,
@@ -81,12 +92,12 @@ class Model:
         u: Array,
         du: Array,
         x: Array,
-        equilibria: Sequence[Equilibrium],
+        found: Sequence[Equilibrium | Boundary],
         moved: NDArray[np.int64] | None = None,
     ) -> Array:
         """The base vector and its derivatives (size, 1 + D); D = 0 when out has values only.
 
-        Only the given equilibrium temperatures are found; the others are left at zero. Directions are those
+        Only the given temperatures are found; the others are left at zero. Directions are those
         of x, or with moved (D, 2) those of the parameters and numbers that du and moved state.
         """
         D = out.shape[1] - 1
@@ -100,14 +111,18 @@ class Model:
             base[inputs, 1:] = du
             if moved is None:
                 base[self.x_start : end, 1:] = np.eye(len(x))
+        fill_residuals(self.residuals, self.passing.chemistry, self.layout, base)
         if self.ladder.hinges:
             forms, widths = self.hinge_rows
             above = forms.of_base(base)
             if moved is not None:
                 above[:, 1:] -= self._held(base, moved)
             base[end:] = _hinged(above, widths.of_base(base))
-        for one in equilibria:
-            base[one.index] = one.temperature(self.chemistry, self.layout, base, moved)
+        for one in found:
+            if isinstance(one, Equilibrium):
+                base[one.index] = one.temperature(self.chemistry, self.layout, base, moved)
+        edges = [one for one in found if isinstance(one, Boundary)]
+        fill_boundaries(edges, self.passing.chemistry, self.chemistry.fluid, self.layout, base)
         return base
 
     def _held(self, base: Array, moved: NDArray[np.int64]) -> Array:
@@ -201,7 +216,7 @@ class TrainProgramme:
     def _evaluation(self, outcome: Outcome, u: Array, du: Array, x: Array) -> Evaluation:
         if outcome.failure:
             return Evaluation(outcome.failure, work=outcome.evaluations)
-        base = self.model.base(outcome.out, u, du, x, self.model.wanted_equilibria)
+        base = self.model.base(outcome.out, u, du, x, self.model.wanted)
         M = len(self.limits)
         margin, weight, aim = np.split(self._rows.of_base(base), (M, 2 * M))
         if not (np.isfinite(aim).all() and aim[1, 0] != 0.0):
@@ -242,14 +257,19 @@ class _Draft:
     chemistry: CaseChemistry
     inputs: InputBuilder
     layout: Layout
+    residuals: tuple[Residual, ...] = ()
 
     def finish(self) -> Model:
         users = len(self.inputs.numbers)
         first = self.layout.rows + len(self.inputs.build().names)
         equilibria = equilibria_of(self.layout, self.chemistry, first)
-        x_start = first + len(equilibria)
+        edges = boundaries_of(self.layout, self.chemistry.fluid, first + len(equilibria))
+        self.residuals = residuals_of(
+            self.case, self.chemistry.fluid, self.layout, first + len(equilibria) + len(edges)
+        )
+        x_start = first + len(equilibria) + len(edges) + len(self.residuals)
         counted = self._ladder(x_start, users, 0)
-        draft = Catalogue(self.layout, self.chemistry, {}, self._levels(counted), equilibria)
+        draft = Catalogue(self.layout, self.chemistry, {}, self._levels(counted), equilibria, edges)
         draft = replace(draft, money=money_forms(self.case, draft, counted, Linear()))
         prices = [bound.row.soft_price for bound in expand_limits(self.case, draft, counted)]
         soft = [price for price in prices if price is not None]
@@ -271,6 +291,7 @@ class _Draft:
             layout=self.layout,
             inputs=self.inputs.build(),
             ladder=ladder,
+            residuals=self.residuals,
             catalogue=catalogue,
             bounds=tuple(softened),
             aim=self._aim(catalogue),
@@ -286,7 +307,13 @@ class _Draft:
     def _ladder(self, x_start: int, users: int, internal: int) -> Ladder:
         spans = self._outlet_spans()
         return build_ladder(
-            self.case, self.chemistry, self.layout, spans, x_start + users + internal, x_start + users
+            self.case,
+            self.chemistry,
+            self.layout,
+            spans,
+            x_start + users + internal,
+            x_start + users,
+            self.residuals,
         )
 
     def _outlet_spans(self) -> dict[int, tuple[float, float]]:

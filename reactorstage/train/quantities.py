@@ -12,6 +12,8 @@ from dataclasses import dataclass
 from difflib import get_close_matches
 from functools import lru_cache
 
+from reactorstage.chemistry.fluid import CubicStream
+from reactorstage.train.boundaries import WORDS, Boundary
 from reactorstage.train.chemistry import CaseChemistry
 from reactorstage.train.equilibria import Equilibrium
 from reactorstage.train.forms import Form, Linear, at, total
@@ -27,6 +29,12 @@ class Catalogue:
     money: dict[str, Form]
     levels: dict[str, Form]
     equilibria: tuple[Equilibrium, ...] = ()
+    boundaries: tuple[Boundary, ...] = ()
+
+    @property
+    def found(self) -> tuple[Equilibrium | Boundary, ...]:
+        """Temperatures that are found from records."""
+        return (*self.equilibria, *self.boundaries)
 
     def find(self, name: str) -> Form:
         """The form; LookupError says what is unknown and what is near."""
@@ -203,6 +211,9 @@ class Pattern:
     def _known(self, slot: str, catalogue: Catalogue) -> tuple[str, ...]:
         if slot == "reaction":
             return catalogue.chemistry.reactions
+        if slot == "boundary":
+            fluid = catalogue.chemistry.fluid
+            return (WORDS[fluid.phase],) if isinstance(fluid, CubicStream) else ()
         if slot == "feed":
             return catalogue.layout.feeds
         return tuple(catalogue.money) if slot == "term" else catalogue.chemistry.species
@@ -294,6 +305,10 @@ PATTERNS: tuple[Pattern, ...] = (
     Pattern("bed", "depth at 50 % of rise", lambda c, b: _depth(c, b, 3)),
     Pattern("bed", "depth at 90 % of rise", lambda c, b: _depth(c, b, 4)),
     Pattern("bed", "approach to equilibrium of <reaction>", lambda c, b, r: _approach(c, b, r)),
+    Pattern("bed", "inlet <boundary> margin", lambda c, b, _: _margin(c, b.inlet)),
+    Pattern("bed", "exit <boundary> margin", lambda c, b, _: _margin(c, b.exit)),
+    *_places("<boundary> margin after injection", lambda c, p, _: _margin(c, _last_injection(p))),
+    *_places("<boundary> margin", lambda c, p, _: _margin(c, _exit_of(p))),
     Pattern(
         "train",
         "conversion of <species>",
@@ -349,6 +364,21 @@ REPORTED: tuple[Pattern, ...] = (
 
 def _depth(c: Catalogue, bed: BedPlace, which: int) -> Form:
     return Form("fraction", c.layout.extra(bed.number - 1, which), reason="no rise")
+
+
+def _last_injection(place: Place) -> int | None:
+    return place.injections[-1][0] if place.injections else None
+
+
+def _margin(c: Catalogue, operation: int | None) -> Form:
+    """Kelvin between a record and its dew or bubble point, above zero on the side of the stream's phase."""
+    kind, fluid = "temperature difference", c.chemistry.fluid
+    assert isinstance(fluid, CubicStream)
+    if operation is None or operation < 0:
+        return Form(kind, Linear(), reason="no injection", absent=True)
+    apart = c.layout.temperature(operation) - at(c.boundaries[operation].index)
+    apart = apart if fluid.phase == "vapour" else apart * -1.0
+    return Form(kind, apart, reason=f"no {WORDS[fluid.phase]} at any temperature")
 
 
 def _approach(c: Catalogue, bed: BedPlace, reaction: str) -> Form:

@@ -33,7 +33,7 @@ def rate(programme: TrainProgramme, x: Array, dense: bool, tolerance: float) -> 
     model = programme.model
     u, du = model.inputs.values(x)
     outcome = model.passing.adaptive(u, du[:, :0], tolerance)
-    wanted = () if outcome.failure else model.catalogue.equilibria
+    wanted = () if outcome.failure else model.catalogue.found
     base = model.base(outcome.out, u, du, x, wanted)[:, 0]
     profiles = _profiles(model, outcome, u, dense)
     quantities = _quantities(model, outcome, base)
@@ -201,15 +201,17 @@ def closure(model: Model, base: Array) -> tuple[float, float]:
     removed less the effluent's enthalpy found anew from its flows and temperature, by the enthalpy that the
     train turns over (sum of absolute changes along beds and heat removed).
     """
-    layout, table = model.layout, model.chemistry.table
+    layout, table, mixture = model.layout, model.chemistry.table, model.chemistry.mixture
     S, width, end = layout.species, layout.width, len(layout.operations) - 1
     fed, enthalpy, turned = np.zeros(S), 0.0, 0.0
     for operation, amount in layout.amounts.items():
         feed = int(layout.operations[operation][1])
         flow = base[layout.rows + amount] * layout.compositions[feed]
-        T = base[layout.rows + layout.feed_temperature[layout.feeds[feed]]]
+        state = layout.rows + layout.feed_temperature[layout.feeds[feed]]
         fed += flow
-        enthalpy += float(flow @ h(table, float(T)))
+        given = model.case.feeds[layout.feeds[feed]]
+        if flow.any():
+            enthalpy += float(mixture.enthalpy(flow, float(base[state]), float(base[state + 1]), given.phase))
     record = base[end * width : (end + 1) * width]
     elements = np.abs(fed @ table.atoms)
     atoms = float((np.abs((fed - record[:S]) @ table.atoms) / np.where(elements > 0.0, elements, 1.0)).max())
@@ -221,7 +223,7 @@ def closure(model: Model, base: Array) -> tuple[float, float]:
     for bed in layout.beds:
         inlet, out = base[bed.inlet * width :][:width], base[bed.exit * width :][:width]
         turned += abs(float(out[:S] @ (h(table, float(out[S + 2])) - h(table, float(inlet[S + 2])))))
-    left = float(record[:S] @ h(table, float(record[S + 2])))
+    left = float(mixture.enthalpy(record[:S], float(record[S + 2]), float(record[S + 1])))
     return atoms, abs(enthalpy - left) / max(turned, 1e-300)
 
 

@@ -10,6 +10,7 @@ from typing import Any
 import numpy as np
 import pytest
 
+from reactorstage.bed.compiled import entry
 from reactorstage.bed.cubic import (
     BULK,
     FIELD,
@@ -52,6 +53,12 @@ from tests.chemistry.fluids import (
 length, first_slope = cubic_length.py_func, at_slopes.py_func
 
 
+@entry
+def cubic_alone(real, start, S, T, p, work, at, extent):
+    """`cubic` as Python can call it."""
+    return cubic(real, start, S, T, p, work, at, extent)
+
+
 def run(
     fluid: CubicFluid, F: Floats, T: float, p: float, phase: str, extent: int = PAIRS, start: int = 0
 ) -> tuple[int, Floats]:
@@ -59,7 +66,7 @@ def run(
     S, gap = len(F), start
     real = np.concatenate([np.full(start, np.nan), pack_cubic(fluid, phase)])
     work = np.concatenate([F, np.full(gap, -7.0), np.full(length(S), np.nan), np.full(5, -7.0)])
-    status = cubic(real, start, S, T, p, work, S + gap, extent)
+    status = cubic_alone(real, start, S, T, p, work, S + gap, extent)
     assert np.array_equal(work[:S], F, equal_nan=True)
     assert np.all(work[S : S + gap] == -7.0) and np.all(work[-5:] == -7.0)
     return status, work[S + gap : -5]

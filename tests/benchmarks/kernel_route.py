@@ -54,5 +54,5 @@ class KernelRoute:
     def _found(self, outcome: Outcome, u: Array, x: Array) -> Array:
         model = self.programme.model
         assert not outcome.failure, outcome.failure
-        base = model.base(outcome.out, u, np.zeros((len(u), 0)), x, model.wanted_equilibria)
+        base = model.base(outcome.out, u, np.zeros((len(u), 0)), x, model.wanted)
         return np.asarray(self.rows.of_base(base)[:, 0])

@@ -262,7 +262,7 @@ def _moved(train: TrainProgramme, one: Parameter, by: float, wanted: list[str]) 
         model = compile_model(model.case, shifted(model.chemistry, {one: by}))
     u, _ = model.inputs.of_numbers(v)
     outcome = model.passing.adaptive(u, np.zeros((len(u), 0)), 1e-10)
-    base = model.base(outcome.out, u, np.zeros((len(u), 0)), train.now, model.catalogue.equilibria)
+    base = model.base(outcome.out, u, np.zeros((len(u), 0)), train.now, model.catalogue.found)
     return FormRows.of({name: model.catalogue.find(name) for name in wanted}).of_base(base)[:, 0]
 
 

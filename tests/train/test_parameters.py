@@ -42,7 +42,7 @@ def frozen_values(model: Model, v: Array, mesh: Stages, x: Array) -> Array:
     nothing = np.zeros((len(u), 0))
     outcome = model.passing.frozen(u, nothing, mesh)
     assert not outcome.failure
-    base = model.base(outcome.out, u, nothing, x, model.catalogue.equilibria)
+    base = model.base(outcome.out, u, nothing, x, model.catalogue.found)
     return FormRows.of(listed_forms(model)).of_base(base)[:, 0]
 
 
