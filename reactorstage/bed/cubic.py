@@ -32,6 +32,9 @@ HEAD = 5
 Those of the species follow: root_0 (S,), root_T (S,), b (S,), 1 - k_ij (S, S).
 """
 
+VAPOUR_MARK = 4
+"""Position among the constants of what tells a vapour from a liquid."""
+
 FIELD = 19
 Z, VOLUME, VOLUME_T, VOLUME_P, H_RES, H_RES_T, H_RES_P = 0, 1, 2, 3, 4, 5, 6
 TOTAL, B_T, Q, Q_T, Q_TT, BETA, G, M, L, Z_1, CURVE, STIFF = 7, 8, 9, 10, 11, 12, 13, 14, 15, 16, 17, 18
@@ -83,7 +86,7 @@ def cubic(real, start, S, T, p, work, at, extent):
         of_species(real, start, S, T, p, B, work, at)
     if extent >= PAIRS:
         of_pairs(real, start, S, T, work, at)
-    if (root * real[start + 3] > B) == (real[start + 4] == 1.0):
+    if (root * real[start + 3] > B) == (real[start + VAPOUR_MARK] == 1.0):
         return FOUND
     return OTHER_PHASE if ratio > real[start + 2] else DENSE
 
@@ -123,7 +126,7 @@ def compressibility(real, start, ratio, B):
     Newton from beyond the outermost root of a side, hence monotone. At Z = B the cubic is below zero.
     """
     total, product = real[start] + real[start + 1], real[start] * real[start + 1]
-    A, vapour = ratio * B, real[start + 4] == 1.0
+    A, vapour = ratio * B, real[start + VAPOUR_MARK] == 1.0
     c2 = (total - 1.0) * B - 1.0
     c1 = A + (product - total) * B * B - total * B
     c0 = -(A + product * (1.0 + B) * B) * B

@@ -15,6 +15,8 @@ from reactorstage.case.written_rates import OwnEquilibrium
 
 def check_fluid(case: CaseWritten, reactions: Mapping[str, Reaction], findings: Findings) -> None:
     """Everything that hangs on `fluid: density`."""
+    if case.fluid.density not in (IDEAL_GAS, LIQUID, *CUBIC):
+        return
     if case.fluid.density in CUBIC:
         check_cubic(case, findings)
     else:

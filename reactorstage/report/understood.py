@@ -34,6 +34,7 @@ def understood_tables(seen: Understanding) -> list[Table]:
     """Feeds, reactions, free numbers, what fixes what, limits, prices."""
     tables = [
         _feeds(seen.streams),
+        _fluid(seen),
         _reactions(seen),
         *law_tables(seen.reactions),
         _equilibria(seen.reactions),
@@ -54,6 +55,26 @@ def _feeds(rows: Sequence[StreamRow]) -> Table:
         Column(("mol %",), tuple(_shares(row) for row in rows), left=True),
         Column((f"enters, {unit('molar flow')}",), tuple(_entries(row) for row in rows), rank=2, left=True),
     ])  # fmt: skip
+
+
+def _fluid(seen: Understanding) -> Table:
+    """Critical constants or densities behind the equation of state; empty for an ideal gas."""
+    rows = seen.fluid
+    columns = [Column(("",), tuple(row.name for row in rows), left=True)]
+    known = [row.critical for row in rows if row.critical]
+    if known:
+        kinds = (("critical", "temperature"), ("critical", "pressure"))
+        values = ([one.temperature for one in known], [one.pressure for one in known])
+        for (word, kind), numbers in zip(kinds, values, strict=True):
+            cells = same_decimals([shown(one, kind) for one in numbers], 2)
+            columns.append(Column((word, unit(kind)), tuple(cells)))
+        factors = same_decimals([one.acentric_factor for one in known], 4)
+        columns.append(Column(("acentric", "factor"), tuple(factors)))
+        columns.append(Column(("source",), tuple(one.source for one in known), rank=2, left=True))
+    else:
+        densities = [shown(row.density or 0.0, "density") for row in rows]
+        columns.append(Column(("density", unit("density")), tuple(same_decimals(densities, 1))))
+    return table(f"FLUID {seen.fluid_words}", columns)
 
 
 def _shares(row: StreamRow) -> str:

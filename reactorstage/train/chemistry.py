@@ -21,7 +21,8 @@ from reactorstage.chemistry.species import (
     table_of,
 )
 from reactorstage.errors import CaseProblems, Problem
-from reactorstage.train.fluid import read_fluid
+from reactorstage.train.composition import mole_fractions
+from reactorstage.train.fluid import feeds_in_phase, read_fluid
 from reactorstage.train.law_checks import (
     agreements,
     inconsistent_loops,
@@ -76,6 +77,8 @@ def read_chemistry(case: Case) -> CaseChemistry:
     fluid = read_fluid(case, problems)
     if not problems:
         problems += inconsistent_loops(case, laws, table)
+        shares = {name: mole_fractions(case, table, feed) for name, feed in case.feeds.items()}
+        problems += feeds_in_phase(case, fluid, shares)
     if problems:
         raise CaseProblems(problems)
     return CaseChemistry(

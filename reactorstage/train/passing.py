@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from reactorstage.bed import integrate as status
 from reactorstage.bed.compiled import first_call
+from reactorstage.bed.cubic import VAPOUR_MARK
 from reactorstage.bed.data import KIND, LAW, Beds, Chemistry, Index, Stages, Tolerance
 from reactorstage.bed.sample import sample_bed
 from reactorstage.bed.train_pass import train_pass
@@ -31,7 +32,7 @@ SENTENCES = {
     status.TOO_COLD: "the temperature falls below the range of the species data",
     status.NO_FLOW: "nothing flows into it",
     status.USED_UP: "a reactant is used up but its reaction runs on (an order of zero or below)",
-    status.OTHER_PHASE: "the stream does not exist in the phase that the fluid states",
+    status.OTHER_PHASE: "the stream cannot be a {phase} there",
     status.FROZEN_FAILED: "the step sequence of another setting does not fit here",
 }
 
@@ -150,8 +151,12 @@ class Pass:
                 mesh,
                 out,
             )
-        failure = "" if code == status.DONE else f"{self._place(reached, depth)}: {SENTENCES[code]}"
+        failure = "" if code == status.DONE else f"{self._place(reached, depth)}: {self._sentence(code)}"
         return Outcome(out, stages, code, failure, reached, evaluations, steps)
+
+    def _sentence(self, code: int) -> str:
+        of_vapour = len(self.chemistry.state) > VAPOUR_MARK and self.chemistry.state[VAPOUR_MARK] == 1.0
+        return SENTENCES[code].format(phase="vapour" if of_vapour else "liquid")
 
     def _place(self, operation: int, depth: float) -> str:
         bed = next((bed for bed in self.layout.beds if bed.exit == operation), None)

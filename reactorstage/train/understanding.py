@@ -10,6 +10,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from reactorstage.case import units
+from reactorstage.chemistry.critical import Critical
+from reactorstage.chemistry.fluid import CubicStream, PlainLiquid
 from reactorstage.chemistry.rates import ln_K_of_laws
 from reactorstage.chemistry.reaction import data_range, heat_of_reaction, imbalance
 from reactorstage.chemistry.thermo import cp
@@ -62,6 +64,18 @@ class ReactionRow:
 
 
 @dataclass(frozen=True)
+class FluidRow:
+    """A species under the equation of state: critical T in K, p in Pa, acentric factor, source; or density.
+
+    Where the fluid is a liquid of given densities, density [kg/m3] at the temperature of the first feed.
+    """
+
+    name: str
+    critical: Critical | None
+    density: float | None
+
+
+@dataclass(frozen=True)
 class PriceRow:
     """A price: label, quantity, "costs" or "earns", the text of the amount."""
 
@@ -76,6 +90,8 @@ class Understanding:
     """Everything that `check` prints; degrees holds (what, what fixes it); split_reactant may be empty."""
 
     streams: tuple[StreamRow, ...]
+    fluid: tuple[FluidRow, ...]
+    fluid_words: str
     reactions: tuple[ReactionRow, ...]
     limits: tuple[LimitRow, ...]
     prices: tuple[PriceRow, ...]
@@ -91,6 +107,8 @@ def understand(programme: TrainProgramme) -> Understanding:
     reactant = split_reactant(model)
     return Understanding(
         streams=tuple(_streams(model)),
+        fluid=tuple(_fluid(model)),
+        fluid_words=fluid_words(model),
         reactions=tuple(_reactions(model, reactant)),
         limits=tuple(row for row in programme.limits if row.label != "heat ladder"),
         prices=tuple(_prices(model)),
@@ -127,6 +145,23 @@ def _streams(model: Model) -> Iterator[StreamRow]:
         shares = {name: float(y) for name, y in zip(names, row, strict=True) if y > 0.0}
         mass = flow * float(row @ model.chemistry.table.molar_mass)
         yield StreamRow(feed, flow, mass, float(u[layout.feed_temperature[feed]]), shares, enters)
+
+
+def fluid_words(model: Model) -> str:
+    """The fluid in words: "ideal gas", "Soave 1972, liquid", ..."""
+    fluid = model.case.fluid
+    return fluid.density + (f", {fluid.phase}" if fluid.phase else "")
+
+
+def _fluid(model: Model) -> Iterator[FluidRow]:
+    fluid, names = model.chemistry.fluid, model.chemistry.species
+    if isinstance(fluid, CubicStream):
+        for name, critical in zip(names, fluid.equation.critical, strict=True):
+            yield FluidRow(name, critical, None)
+    elif isinstance(fluid, PlainLiquid):
+        T = next(iter(model.case.feeds.values())).temperature.now
+        for name, density in zip(names, fluid.densities(T), strict=True):
+            yield FluidRow(name, None, float(density))
 
 
 def _reactions(model: Model, reactant: str) -> Iterator[ReactionRow]:
