@@ -76,12 +76,12 @@ def test_ME_4_the_law_rests_at_its_own_constants() -> None:
 
 
 def test_ME_5_against_the_figure_of_the_paper() -> None:
-    """Exit of Fig. 5 550.4 K (from memory), 3 K: with argon 2.8 K hotter, as one atom takes up little heat."""
+    """Exit of Fig. 5 550.4 K (from memory), 3 K: with argon, which takes up little heat, 2.8 K hotter."""
     assert bench().profiles[0].T[-1] == pytest.approx(550.4, abs=3.0)
 
 
 def test_ME_5_the_inert_makes_the_difference() -> None:
-    """With nitrogen 0.8 K, with methane 2.3 K colder than with argon (frozen): then 0.5 K above the figure."""
+    """With nitrogen 0.8 K, with methane 2.3 K colder than with argon (frozen), 0.5 K above the figure."""
     species, reactions, composition = LAWS["methanol"]
     others = {name: data for name, data in species.items() if name != "Ar"}
     shares = {name: share for name, share in composition.items() if name != "Ar"}
