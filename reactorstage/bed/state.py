@@ -34,6 +34,10 @@ from reactorstage.bed.properties import heat_and_enthalpy
 from reactorstage.chemistry.cubic import DENSE, FOUND, NOT_FINITE
 
 
+BELOW, ABOVE = 0.5, 1.1
+"""How far beyond the data that all species share a temperature may lie: a stream need not hold every one."""
+
+
 @small
 def at_swelling(chem):
     """dV/dF (S,) in the work array, m3/mol."""
@@ -144,12 +148,12 @@ def temperature_step(chem, H_R, T, p, work):
 
 @compiled
 def temperature_of(chem, H_R, T, p, work):
-    """T with H(F, T, p) = H by Newton from the guess T; beyond the data range the end of that is given."""
+    """T with H(F, T, p) = H by Newton from the guess T, kept within reach of the species' data."""
     for _ in range(60):
         step = temperature_step(chem, H_R, T, p, work)
         if not np.isfinite(step):
             return np.nan
-        new = min(max(T + min(max(step, -200.0), 200.0), chem.T_low), chem.T_high)
+        new = min(max(T + min(max(step, -200.0), 200.0), BELOW * chem.T_low), ABOVE * chem.T_high)
         if abs(new - T) <= 1e-13 * T:
             return new
         T = new

@@ -68,7 +68,7 @@ def set_row(out, row, value, slopes):
 
 @compiled
 def record_temperature(chem, row, out, T_guess, moved, work):
-    """Temperature of a record from its flows and enthalpy, with derivatives; False when there is none."""
+    """Temperature of a record from its flows and enthalpy, with derivatives; False without or beyond the data."""
     S, D = chem.S, out.shape[1] - 1
     total = 0.0
     for s in range(S):
@@ -80,7 +80,7 @@ def record_temperature(chem, row, out, T_guess, moved, work):
     p = out[row + S + 1, 0]
     T = temperature_of(chem, out[row + S, 0] / GAS_CONSTANT, T_guess, p, work)
     out[row + S + 2, 0] = T
-    if not (chem.T_low < T < chem.T_high and all_properties(chem, T, p, 0, work)):
+    if np.isnan(T) or not all_properties(chem, T, p, 0, work):
         return False
     capacity, partial, H_p = heat_capacity_flow(chem, work), at_partial(chem), work[at_state(chem) + H_RES_P]
     for d in range(D):
@@ -90,7 +90,7 @@ def record_temperature(chem, row, out, T_guess, moved, work):
         if moved[d, 0] == ENTHALPY:
             heat -= work[moved[d, 1]] / GAS_CONSTANT
         out[row + S + 2, d + 1] = heat / capacity
-    return True
+    return chem.T_low < T < chem.T_high
 
 
 @compiled

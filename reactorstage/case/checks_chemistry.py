@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Mapping
 from functools import partial
+from math import isfinite
 from pathlib import Path
 
 from reactorstage.case import law_units
@@ -56,10 +57,14 @@ def check_reaction(name: str, reaction: Reaction, case: CaseWritten, findings: F
     path: TreePath = ("reactions", name)
     for where, names in named_species(reaction):
         check_known(names, (*path, *where), case, findings)
+    for where, species in species_of_effectiveness(reaction.effectiveness):
+        if case.species and species not in case.species:
+            hint = one_of(species, list(case.species))
+            findings.add((*path, *where), f"there is no species {shown(species)}", hint)
     check_backward(name, reaction, path, case.species, findings)
     if check_form(reaction.constant, (*path, "constant"), findings):
         check_constant(reaction, path, case.species, findings)
-    check_slowing(reaction, path, findings)
+    check_slowing(reaction, path, case.species, findings)
     if reaction.effectiveness is not None:
         check_effectiveness(reaction.effectiveness, (*path, "effectiveness"), findings)
 
@@ -73,6 +78,17 @@ def named_species(reaction: Reaction) -> list[tuple[TreePath, Iterable[str]]]:
     for f, factor in enumerate(reaction.slowed_by or ()):
         for t, term in enumerate(factor.terms):
             found.append((("slowed by", f, "terms", t, "orders"), term.orders))
+    return found
+
+
+def species_of_effectiveness(given: Effectiveness | None) -> list[tuple[TreePath, str]]:
+    """Every species that an effectiveness names as a value: its place and its name."""
+    found: list[tuple[TreePath, str]] = []
+    if given is not None and given.Thiele is not None:
+        found.append((("effectiveness", "Thiele", "key species"), given.Thiele.key_species))
+    if given is not None and given.conversion is not None:
+        where: TreePath = ("effectiveness", "conversion")
+        found += [((*where, "of"), given.conversion.of), ((*where, "into"), given.conversion.into)]
     return found
 
 
@@ -139,7 +155,7 @@ def check_constant(reaction: Reaction, path: TreePath, species: Iterable[str], f
         with_unit(given, where, findings, lambda: law_units.rate_constant(given, per, driver, orders))
 
 
-def check_slowing(reaction: Reaction, path: TreePath, findings: Findings) -> None:
+def check_slowing(reaction: Reaction, path: TreePath, species: Iterable[str], findings: Findings) -> None:
     """Powers, forms and units of what stands below the line."""
     driver = reaction.driven_by
     for f, factor in enumerate(reaction.slowed_by or ()):
@@ -150,8 +166,8 @@ def check_slowing(reaction: Reaction, path: TreePath, findings: Findings) -> Non
             )
         for t, term in enumerate(factor.terms):
             at = (*where, "terms", t, "constant")
-            given, total = term.constant, sum(term.orders.values())
-            if check_form(given, at, findings) and driver:
+            given, total = term.constant, total_order(term.orders, species)
+            if check_form(given, at, findings) and driver and total is not None:
                 with_unit(given, at, findings, partial(law_units.term_constant, given, driver, total))
 
 
@@ -184,11 +200,17 @@ def check_effectiveness(given: Effectiveness, path: TreePath, findings: Findings
 
 
 def order_sum(reaction: Reaction, species: Iterable[str]) -> float | None:
-    """Sum of the forward orders; None when the equation cannot be read here (chemistry says why)."""
+    """Sum of the forward orders; None when they or the equation cannot be read here (others say why)."""
     if reaction.orders is not None:
-        return sum(reaction.orders.values())
+        return total_order(reaction.orders, species)
     counts = sides(reaction.equation, species)
     return None if counts is None else counts[0]
+
+
+def total_order(orders: Mapping[str, float], species: Iterable[str]) -> float | None:
+    """Sum of orders; None where one is unreadable or that of an unknown species, which is said elsewhere."""
+    total = sum(orders.values())
+    return total if isfinite(total) and all(name in species for name in orders) else None
 
 
 def sides(equation: str, species: Iterable[str]) -> tuple[float, float] | None:

@@ -12,7 +12,8 @@ front of the driving force,
 
 so that the rate is still zero exactly where Q = K. What an irreversible law consumes with an order n that is
 not a whole number above zero is taken as a a_floored^(n - 1), zero where nothing is left; anything else, and
-orders below the line, as a_floored^n. Whole orders of zero and above keep the driver itself.
+orders below the line, as a_floored^n. Whole orders of zero and above keep the driver itself, except in a sum
+below the line of which no term stays when species are absent: there every floored species counts as floored.
 
 A reactant that an irreversible law consumes with a broken order above zero may have a floor but needs none:
 its rate is nowhere infinite, and comes to rest at zero by the smooth powers of `rate_law`.
@@ -20,9 +21,9 @@ its rate is nowhere infinite, and comes to rest at zero by the smooth powers of 
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Container, Mapping
 
-from reactorstage.chemistry.law import RateLaw, backward_orders
+from reactorstage.chemistry.law import Denominator, RateLaw, Term, backward_orders
 
 
 def is_plain(n: float) -> bool:
@@ -57,9 +58,35 @@ def backward(law: RateLaw) -> Split:
     return _split(backward_orders(law), law.floors, lambda name, n: floored_part(law, name))
 
 
-def below(law: RateLaw, orders: Mapping[str, float]) -> Split:
-    """Powers of a term of a denominator."""
-    return _split(orders, law.floors, lambda name, n: 0.0 if is_plain(n) else n)
+def below(law: RateLaw, factor: Denominator, orders: Mapping[str, float]) -> Split:
+    """Powers of a term of a factor of the denominator."""
+    empties = not stays(factor)
+    return _split(orders, law.floors, lambda name, n: n if empties or not is_plain(n) else 0.0)
+
+
+def stays(factor: Denominator) -> bool:
+    """Whether a sum below the line is above zero whatever is absent."""
+    return any(_needs(term) == [] for term in factor.terms)
+
+
+def empty_sums(law: RateLaw, absent: Container[str]) -> dict[str, str]:
+    """Species of `absent` without which a sum below the line is zero, those of one term: why, in words."""
+    found: dict[str, str] = {}
+    for factor in law.denominators:
+        gone = [
+            [name for name in _needs(term) if name in absent and name not in law.floors]
+            for term in factor.terms
+        ]
+        if all(gone):
+            fewest = min(len(names) for names in gone)
+            first = next(names for names in gone if len(names) == fewest)
+            found |= dict.fromkeys(first, "a sum below the line is zero without it")
+    return found
+
+
+def _needs(term: Term) -> list[str]:
+    """Species without which a term is zero."""
+    return [name for name, n in term.orders.items() if n > 0.0]
 
 
 def _split(
@@ -91,7 +118,11 @@ def _named(law: RateLaw) -> dict[str, None]:
 
 
 def _acts(law: RateLaw, name: str) -> bool:
-    return floored_part(law, name) != 0.0 or any(not is_plain(n) for n in _orders_below(law, name))
+    return (
+        floored_part(law, name) != 0.0
+        or any(not is_plain(n) for n in _orders_below(law, name))
+        or any(name in _needs(term) for one in law.denominators if not stays(one) for term in one.terms)
+    )
 
 
 def _orders_below(law: RateLaw, name: str) -> list[float]:

@@ -137,8 +137,8 @@ def rate_laws(laws: Sequence[RateLaw], names: Sequence[str]) -> RateLaws:
         _check_floors(law)
     constants = [law.constant.at_finite_reference() for law in laws]
     factors = [factor for law in laws for factor in law.denominators]
-    terms = [(law, term) for law in laws for factor in law.denominators for term in factor.terms]
-    term_constants = [term.constant.at_finite_reference() for _, term in terms]
+    terms = [(law, factor, term) for law in laws for factor in law.denominators for term in factor.terms]
+    term_constants = [term.constant.at_finite_reference() for _, _, term in terms]
     return RateLaws(
         lnk_ref=_floats(one.ln_ref for one in constants),
         T_ref=_floats(one.T_ref for one in constants),
@@ -164,7 +164,7 @@ def rate_laws(laws: Sequence[RateLaw], names: Sequence[str]) -> RateLaws:
         term_H_over_R=_floats(one.E_over_R for one in term_constants),
         term_c=_floats(one.c for one in term_constants),
         term_d=_floats(one.d for one in term_constants),
-        below=_powers((below(law, term.orders) for law, term in terms), names),
+        below=_powers((below(law, factor, term.orders) for law, factor, term in terms), names),
         eta_kind=_ints(_eta_kind(law) for law in laws),
         eta=_floats(_eta(law) for law in laws).reshape(-1, ETA),
         eta_species=_ints(_eta_species(law, names) for law in laws).reshape(-1, 2),

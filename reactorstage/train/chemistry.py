@@ -30,6 +30,7 @@ from reactorstage.train.law_checks import (
     vanishing_effectiveness,
 )
 from reactorstage.train.laws import Path, attempt, law_of
+from reactorstage.train.temperatures import beyond_data
 
 if TYPE_CHECKING:
     from reactorstage.case.model import Case, SpeciesData
@@ -70,10 +71,12 @@ def read_chemistry(case: Case) -> CaseChemistry:
     table = table_of([one for one in found.values() if one is not None])
     equations = {name: _equation(case, name, table, problems) for name in case.reactions}
     read = {name: equation for name, equation in equations.items() if equation}
+    beyond = list(beyond_data(case, table, read.values()))
+    problems += beyond
     laws = [law for name, equation in read.items() if (law := law_of(case, name, equation, problems))]
     problems += missing_floors(case, laws, read, table)
     problems += vanishing_effectiveness(case, laws, table)
-    agreed = agreements(case, laws, table, problems)
+    agreed = {} if beyond else agreements(case, laws, table, problems)
     fluid = read_fluid(case, problems)
     if not problems:
         problems += inconsistent_loops(case, laws, table)

@@ -12,10 +12,11 @@ from reactorstage.case import units
 from reactorstage.case.model import OwnEquilibrium
 from reactorstage.chemistry.agreement import SAMPLES, Agreement, compare, loop_products
 from reactorstage.chemistry.law import Polynomial, RateLaw
-from reactorstage.chemistry.orders import singular
+from reactorstage.chemistry.orders import empty_sums, singular
 from reactorstage.chemistry.reaction import Equation, data_range, stoichiometric_matrix
 from reactorstage.chemistry.species import SpeciesTable
 from reactorstage.train.composition import feed_moles
+from reactorstage.train.temperatures import at_inlets
 
 if TYPE_CHECKING:
     from reactorstage.case.model import Case, Reaction
@@ -34,7 +35,7 @@ def missing_floors(
     """One problem for each species that may be absent, without a floor in a law that is singular then."""
     absent = may_be_absent(case, equations, table)
     for law in laws:
-        for name, why in singular(law).items():
+        for name, why in {**singular(law), **empty_sums(law, absent)}.items():
             if name in absent and name not in law.floors:
                 message = f"a floor for {name} is missing: {name} may be absent ({absent[name]}), and {why}"
                 yield case.problem(
@@ -94,16 +95,15 @@ def window_of(
     if given is not None and given.valid and given.valid.temperature:
         low, high = given.valid.temperature
     else:
-        T = list(_inlet_temperatures(case))
+        T = list(_inlet_temperatures(case, table))
         low, high = min(T) - MARGIN, max(T) + RISE
     bottom, top = data_range(table, nu_row)
     low, high = min(max(low, bottom), top), max(min(high, top), bottom)
     return (low, high) if low < high else (bottom, top)
 
 
-def _inlet_temperatures(case: Case) -> Iterator[float]:
-    inlets = [s.bed.inlet_temperature for s in case.train if s.bed and s.bed.inlet_temperature]
-    for number in inlets or [feed.temperature for feed in case.feeds.values()]:
+def _inlet_temperatures(case: Case, table: SpeciesTable) -> Iterator[float]:
+    for number in at_inlets(case, table):
         yield from (number.now if end is None else end for end in (number.low, number.high))
 
 

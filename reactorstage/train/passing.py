@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -36,6 +37,11 @@ SENTENCES = {
     status.FROZEN_FAILED: "the step sequence of another setting does not fit here",
 }
 
+WITHIN_DATA = {
+    status.TOO_HOT: "a stream kept colder, or data that hold there, would pass",
+    status.TOO_COLD: "a stream kept warmer, or data that hold there, would pass",
+}
+
 
 @dataclass(frozen=True)
 class Outcome:
@@ -55,12 +61,13 @@ class Outcome:
 
 @dataclass(frozen=True)
 class Pass:
-    """The compiled train of one case."""
+    """The compiled train of one case; data_ends says by status whose data end where."""
 
     chemistry: Chemistry
     beds: Beds
     layout: Layout
     named: Array
+    data_ends: Mapping[int, str]
 
     def stages(self, most: int) -> Stages:
         """Empty step sequences of up to `most` steps."""
@@ -155,8 +162,10 @@ class Pass:
         return Outcome(out, stages, code, failure, reached, evaluations, steps)
 
     def _sentence(self, code: int) -> str:
+        ends = self.data_ends.get(code)
         of_vapour = len(self.chemistry.state) > VAPOUR_MARK and self.chemistry.state[VAPOUR_MARK] == 1.0
-        return SENTENCES[code].format(phase="vapour" if of_vapour else "liquid")
+        said = SENTENCES[code].format(phase="vapour" if of_vapour else "liquid")
+        return f"{said} ({ends}); {WITHIN_DATA[code]}" if ends else said
 
     def _place(self, operation: int, depth: float) -> str:
         bed = next((bed for bed in self.layout.beds if bed.exit == operation), None)

@@ -14,6 +14,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from reactorstage.bed.data import ENTHALPY, Beds
+from reactorstage.bed.integrate import TOO_COLD, TOO_HOT
 from reactorstage.bed.pack import ergun_terms, pack_beds, pack_chemistry
 from reactorstage.errors import CaseProblems, ComputationError
 from reactorstage.train.boundaries import (
@@ -34,10 +35,12 @@ from reactorstage.train.limits import Bound, expand_limits
 from reactorstage.train.money import money_forms
 from reactorstage.train.passing import FINAL, SEARCH, Outcome, Pass
 from reactorstage.train.quantities import Catalogue
+from reactorstage.train.temperatures import highest_data, lowest_data
 
 if TYPE_CHECKING:
     from reactorstage.bed.data import Stages
     from reactorstage.case.model import Case
+    from reactorstage.chemistry.species import SpeciesTable
     from reactorstage.train.result import Rating
     from reactorstage.train.understanding import Understanding
 
@@ -300,6 +303,7 @@ class _Draft:
                 _beds(self.case, self.chemistry, self.layout),
                 self.layout,
                 self._named(bounds),
+                _data_ends(self.chemistry.table),
             ),
             numbers=numbers,
         )
@@ -353,6 +357,11 @@ class _Draft:
                 if words.endswith((f" of {name}", f"/{name}", f"from {name}")):
                     named[s] = 1.0
         return named
+
+
+def _data_ends(table: SpeciesTable) -> dict[int, str]:
+    every = range(len(table.names))
+    return {TOO_HOT: highest_data(table, every), TOO_COLD: lowest_data(table, every)}
 
 
 def _soften(bounds: list[Bound], first: int) -> tuple[list[Bound], list[FreeNumber]]:

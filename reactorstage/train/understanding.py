@@ -18,6 +18,7 @@ from reactorstage.chemistry.thermo import cp
 from reactorstage.train.evaluation import FreeNumber, LimitRow
 from reactorstage.train.law_words import LawWords, law_words
 from reactorstage.train.limits import names_of
+from reactorstage.train.temperatures import at_inlets
 
 if TYPE_CHECKING:
     from reactorstage.train.programme import Model, TrainProgramme
@@ -166,8 +167,7 @@ def _fluid(model: Model) -> Iterator[FluidRow]:
 
 def _reactions(model: Model, reactant: str) -> Iterator[ReactionRow]:
     chemistry, case = model.chemistry, model.case
-    inlets = [s.bed.inlet_temperature for s in case.train if s.bed and s.bed.inlet_temperature]
-    T_first = (inlets or [feed.temperature for feed in case.feeds.values()])[0].now
+    T_first = at_inlets(case, chemistry.table)[0].now
     for r, name in enumerate(chemistry.reactions):
         row = chemistry.laws.nu[r : r + 1]
         low, high = data_range(chemistry.table, row[0])

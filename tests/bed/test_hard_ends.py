@@ -70,11 +70,14 @@ def test_pressure_ends_where_ergun_says(tolerance: float) -> None:
     assert place(STILL, tolerance, NO_PRESSURE) == pytest.approx(100.0 * W / STILL.W, abs=0.6)
 
 
-@pytest.mark.parametrize(
-    ("data_range", "reason"), [((250.0, 590.0), HOT), ((650.0, 1500.0), COLD), ((610.0, 640.0), COLD)]
-)
-def test_an_inlet_outside_the_data(data_range: tuple[float, float], reason: str) -> None:
-    assert place(replace(RUNAWAY, data_range=data_range), SEARCH, reason) == 0.0
+@pytest.mark.parametrize(("T", "reason"), [(700.0, HOT), (621.0, HOT), (579.0, COLD), (400.0, COLD)])
+def test_an_inlet_outside_the_data(T: float, reason: str) -> None:
+    """A free temperature beyond its range and that of the data, 580 to 620 K."""
+    train = replace(RUNAWAY, data_range=(580.0, 620.0)).train
+    names = [number.name for number in train.numbers]
+    x = np.where([name.endswith(".temperature") for name in names], T, train.now)
+    rating = train.rate(x)
+    assert rating.failure.startswith(f"bed 1 at 0 % of its depth: {reason}"), rating.failure
 
 
 @pytest.mark.parametrize("order", [-0.5, -1.0, -2.0])

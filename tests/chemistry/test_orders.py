@@ -19,7 +19,7 @@ from reactorstage.chemistry import (
     rate_laws,
     rates,
 )
-from reactorstage.chemistry.orders import singular
+from reactorstage.chemistry.orders import empty_sums, singular
 from reactorstage.chemistry.smooth import floored
 
 T, P = 700.0, 2e5
@@ -165,3 +165,36 @@ def test_what_is_singular_below_the_line() -> None:
         "SO3": "its order below the line is 0.5, with an infinite slope there",
         "N2": "its order below the line is -1",
     }
+
+
+SUM = (Term(Constant(np.log(2.0)), {"SO3": 1.0}), Term(Constant(np.log(3.0)), {"SO2": 1.0, "N2": -1.0}))
+
+
+@pytest.mark.parametrize(
+    ("terms", "absent", "floors", "expected"),
+    [
+        (SUM, {"SO3"}, (), set()),
+        (SUM, {"SO3", "SO2"}, (), {"SO3"}),
+        (SUM, {"SO3", "SO2"}, ("SO2",), set()),
+        (SUM[:1], {"SO3"}, (), {"SO3"}),
+        (SUM[:1], {"SO3"}, ("SO3",), set()),
+        ((*SUM, Term(Constant(0.0))), {"SO3", "SO2"}, (), set()),
+        ((*SUM, Term(Constant(0.0), {"N2": -1.0})), {"SO3", "SO2"}, (), set()),
+    ],
+)
+def test_sums_below_the_line_that_nothing_is_left_of(
+    terms: tuple[Term, ...], absent: set[str], floors: tuple[str, ...], expected: set[str]
+) -> None:
+    one = law({"SO2": 1.0}, denominators=(Denominator(terms),), floors=dict.fromkeys(floors, 1e-3))
+    assert set(empty_sums(one, absent)) == expected
+
+
+def test_a_floor_holds_a_sum_that_would_be_zero(oxidation: SpeciesTable) -> None:
+    """Closed form: SO2/(2 SO3)^2, SO3 held at its floor where there is none; a term of 1 needs no floor."""
+    denominators = (Denominator(SUM[:1], 2.0),)
+    one = law({"SO2": 1.0}, False, denominators=denominators, floors={"SO3": 1e-3})
+    assert rate(oxidation, one, np.array([0.1, 0.1, 0.0, 0.8])) == pytest.approx(0.1 / (2e-3) ** 2, rel=1e-12)
+    assert rate(oxidation, one, np.array([0.1, 0.1, 0.2, 0.6])) == pytest.approx(0.1 / 0.16, rel=1e-4)
+    stays = (Denominator((*SUM[:1], Term(Constant(0.0)))),)
+    with pytest.raises(ValueError, match="a floor of SO3 changes nothing"):
+        rate(oxidation, law({"SO2": 1.0}, False, denominators=stays, floors={"SO3": 1e-3}), FLOW)

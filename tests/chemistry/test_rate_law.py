@@ -75,7 +75,7 @@ def isomers() -> SpeciesTable:
         (2.32e9, 35_080.0, 623.15, 1.15156e-3),
     ],
 )
-def test_eb_1_and_cu_2_rate_constants(
+def test_EB_1_and_CU_2_rate_constants(
     isomers: SpeciesTable, k0: float, energy: float, T: float, expected: float
 ) -> None:
     laws = one_law(isomers, "A => B", Constant(np.log(k0), E_over_R=energy / 1.987))
@@ -90,7 +90,7 @@ def test_eb_1_and_cu_2_rate_constants(
     ("per_kg", "kcal", "per_m3", "joule"),
     [(3.5e4, 24.90, 2.8e7, 104_174.0), (2.9e6, 35.08, 2.32e9, 146_742.0)],
 )
-def test_cu_1_per_catalyst_mass_and_per_bed_volume(
+def test_CU_1_per_catalyst_mass_and_per_bed_volume(
     isomers: SpeciesTable, per_kg: float, kcal: float, per_m3: float, joule: float
 ) -> None:
     by_mass = one_law(isomers, "A => B", Constant(np.log(per_kg), E_over_R=kcal * 1e3 / 1.987))
@@ -126,7 +126,7 @@ def test_a_constant_at_a_reference_temperature(isomers: SpeciesTable) -> None:
 @pytest.mark.parametrize(
     ("T", "expected"), [(700.0, 2.553e-6), (750.0, 1.421e-5), (800.0, 4.031e-5), (850.0, 6.748e-5)]
 )
-def test_so2_5_a_constant_with_a_logarithm(isomers: SpeciesTable, T: float, expected: float) -> None:
+def test_SO2_5_a_constant_with_a_logarithm(isomers: SpeciesTable, T: float, expected: float) -> None:
     constant = Constant(912.8 - 110.1 * np.log(1.8), E_over_R=176_008.0 / 1.8, c=-110.1)
     laws = one_law(isomers, "A => B", constant)
     assert np.exp(ln_k(laws, T)[0]) == pytest.approx(expected, rel=2e-4)
@@ -149,7 +149,7 @@ def test_a_constant_with_all_four_terms(isomers: SpeciesTable) -> None:
 @pytest.mark.parametrize(
     ("T", "expected"), [(693.0, 7.011e-4), (723.0, 7.939e-3), (753.0, 1.457e-2), (783.0, 2.091e-2)]
 )
-def test_so2_6_a_law_with_a_denominator(T: float, expected: float) -> None:
+def test_SO2_6_a_law_with_a_denominator(T: float, expected: float) -> None:
     so2, o2, n2 = (inline_species(name, name, 0.0, 0.0, ATM, [30.0]) for name in ("SO2", "O2", "N2"))
     so3 = inline_species("SO3", "SO3", -11_300.0 * R_GAS, -10.68 * R_GAS, ATM, [45.0])
     table = table_of([so2, o2, so3, n2])

@@ -168,7 +168,7 @@ REFERENCE = {
         ("C2H2 + H2 <=> C2H4", -175.76, 57.39, 0.01),
     ],
 )
-def test_th_2_heats_and_equilibrium_constants(
+def test_TH_2_heats_and_equilibrium_constants(
     equation: str, heat: float, ln_K_25: float, digit: float
 ) -> None:
     table = table_of([from_chemicals(name, *data) for name, data in REFERENCE.items()])
@@ -195,7 +195,7 @@ def test_th_2_heats_and_equilibrium_constants(
         ("CH3OH", -200.939, 0.002),
     ],
 )
-def test_th_3_formation_enthalpies(spec: str, enthalpy: float, digit: float) -> None:
+def test_TH_3_formation_enthalpies(spec: str, enthalpy: float, digit: float) -> None:
     table = table_of([species_from_cantera(spec, "x")])
     assert h(table, 298.15)[0] == pytest.approx(enthalpy * 1e3, abs=digit * 1e3)
 
@@ -209,7 +209,7 @@ def K_at_1_atm(table: SpeciesTable, nu: np.ndarray, T: float) -> float:
     ("T", "heat", "K"),
     [(298.0, -105.46, 6.269e11), (600.0, -103.99, 349.6), (700.0, -103.28, 17.96), (800.0, -102.48, 1.970)],
 )
-def test_th_3_ethylation(alkylation: SpeciesTable, T: float, heat: float, K: float) -> None:
+def test_TH_3_ethylation(alkylation: SpeciesTable, T: float, heat: float, K: float) -> None:
     """TH-3 as above; at "298" 298.15 K makes K 2 % smaller than 298 K does."""
     nu = matrix(alkylation, ALKYLATION[0])
     T = 298.15 if T == 298.0 else T
@@ -217,7 +217,7 @@ def test_th_3_ethylation(alkylation: SpeciesTable, T: float, heat: float, K: flo
     assert K_at_1_atm(alkylation, nu, T) == pytest.approx(K, rel=6e-4)
 
 
-def test_th_3_sulfur_dioxide_oxidation(oxidation: SpeciesTable) -> None:
+def test_TH_3_sulfur_dioxide_oxidation(oxidation: SpeciesTable) -> None:
     """TH-3 and the NASA column of SO2-4 (1 atm): K 286.2, 34.45, 6.678 at 700, 800, 900 K."""
     nu = matrix(oxidation, "SO2 + 1/2 O2 <=> SO3")
     assert heat_of_reaction(oxidation, nu, 700.0)[0] == pytest.approx(-98.72e3, abs=10.0)
@@ -231,7 +231,7 @@ def test_th_3_sulfur_dioxide_oxidation(oxidation: SpeciesTable) -> None:
     ("ratio", "rise", "T_equilibrium", "conversion"),
     [(5.0, 104.56, 775.77, 0.98055), (8.0, 68.53, 741.11, 0.99146)],
 )
-def test_th_4_adiabatic_alkylation(
+def test_TH_4_adiabatic_alkylation(
     alkylation: SpeciesTable, ratio: float, rise: float, T_equilibrium: float, conversion: float
 ) -> None:
     nu = matrix(alkylation, ALKYLATION[0])
@@ -253,7 +253,7 @@ def test_th_4_adiabatic_alkylation(
 @pytest.mark.parametrize(
     ("T", "K"), [(350, 661.62), (400, 18.17), (425, 4.14), (450, 1.11), (475, 0.34), (500, 0.12)]
 )
-def test_fo_1_equilibrium_constants(T: float, K: float) -> None:
+def test_FO_1_equilibrium_constants(T: float, K: float) -> None:
     heat = -20_000.0 / 1.987 * R_GAS
     entropy = R_GAS * np.log(1e5) + heat / 298.0
     table = table_of(

@@ -9,7 +9,7 @@ from typing import Any
 import numpy as np
 import pytest
 
-from reactorstage.chemistry.rates import ln_K_of_laws
+from reactorstage.chemistry.rates import ln_K_of_laws, rates
 from reactorstage.chemistry.reaction import ln_Q
 from reactorstage.errors import CaseProblems, Problem
 from reactorstage.train.parameters import FormRows, Parameter, parameters_of, sensitivities, shifted
@@ -19,6 +19,7 @@ from tests.chemistry.published_laws import EKLUND, LAWS, SO2
 
 FEED = {"flow": "1000 kmol/h", "temperature": "700 K", "composition": LAWS["Eklund"][2]}
 NO_SO3 = {**FEED, "composition": {"SO2": "10 %", "O2": "11 %", "N2": "rest"}}
+RANGE = {"now": "700 K", "from": "690 K", "to": "710 K"}
 PLAIN = {
     "equation": "SO2 + 0.5 O2 <=> SO3",
     "rate per": "catalyst mass",
@@ -61,6 +62,23 @@ def test_a_reactant_of_negative_order_that_can_be_used_up_needs_a_floor() -> Non
         "SO2 may be absent (oxidation can use it up), and its order in the forward rate is -0.5"
         in found.message
     )
+
+
+def test_a_floor_holds_a_sum_below_the_line_that_the_feed_leaves_empty() -> None:
+    """The bed against the rates of the chemistry floor along it, and its slopes against differences."""
+    term = {"constant": {"at": "700 K", "is": 3, "heat": "-20 kJ/mol"}, "orders": {"SO3": 1}}
+    law = {**PLAIN, "slowed by": [{"power": 2, "terms": [term]}]}
+    (found,) = problems(case(law, NO_SO3))
+    assert found.message.endswith("and a sum below the line is zero without it")
+    train = programme(case({**law, "floor": {"SO3": "5 %"}}, {**NO_SO3, "temperature": RANGE}, "3 kg"))
+    along, chemistry = train.rate().profiles[0], train.model.chemistry
+    for k in (0, len(along.w) // 2, -1):
+        r = rates(chemistry.laws, chemistry.table, along.F[k], along.T[k], along.p[k], np.ones(1))
+        assert along.r[k] == pytest.approx(r, rel=1e-9)
+    x, exit_ = train.now, "bed 1.exit temperature"
+    ends = [train.rate(x + step).number(exit_) for step in (-0.05, 0.05)]
+    slope = sensitivities(train, parameters=["feed fresh.temperature"], quantities=[exit_]).derivatives[0, 0]
+    assert slope == pytest.approx((ends[1] - ends[0]) / 0.1, rel=1e-4)  # type: ignore[operator]
 
 
 @pytest.mark.parametrize("order", [-0.5, 0.0, 0.5])
