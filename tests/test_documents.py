@@ -12,7 +12,13 @@ from reactorstage.commands.main import main
 from reactorstage.commands.screens import optimum_lines
 from reactorstage.train.quantities import PATTERNS, Pattern
 
-WORDS_OF_README = {"<reaction>": "<R>", "at 50 %": "at 10 %", "at 90 %": "at 10 %", "<term>": "total"}
+WORDS_OF_README = {
+    "<reaction>": "<R>",
+    "<boundary>": "dew point",
+    "at 50 %": "at 10 %",
+    "at 90 %": "at 10 %",
+    "<term>": "total",
+}
 
 
 def shipped_cases() -> list[Path]:

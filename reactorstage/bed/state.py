@@ -33,7 +33,6 @@ from reactorstage.bed.layout import (
 from reactorstage.bed.properties import heat_and_enthalpy
 from reactorstage.chemistry.cubic import DENSE, FOUND, NOT_FINITE
 
-
 BELOW, ABOVE = 0.5, 1.1
 """How far beyond the data that all species share a temperature may lie: a stream need not hold every one."""
 

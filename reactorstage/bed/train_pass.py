@@ -68,7 +68,7 @@ def set_row(out, row, value, slopes):
 
 @compiled
 def record_temperature(chem, row, out, T_guess, moved, work):
-    """Temperature of a record from its flows and enthalpy, with derivatives; False without or beyond the data."""
+    """Temperature of a record from its flows and enthalpy, with derivatives; False beyond the data."""
     S, D = chem.S, out.shape[1] - 1
     total = 0.0
     for s in range(S):
