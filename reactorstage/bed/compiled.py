@@ -16,7 +16,7 @@ import hashlib
 import os
 import tempfile
 from collections.abc import Callable, Iterator
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from functools import lru_cache
 from pathlib import Path
 from typing import Any
@@ -65,16 +65,28 @@ def _fingerprint() -> str:
     return digest.hexdigest()[:16]
 
 
-def is_compiled() -> bool:
-    """Whether an earlier process left the machine code of the whole kernel for this one."""
+def is_compiled(ideal: bool) -> bool:
+    """Whether an earlier process left the machine code of the kernel, for ideal gases or other fluids."""
     folder = cache_folder()
-    return folder is not None and any(folder.rglob("train_pass.train_pass*.nbc"))
+    return folder is not None and (folder / _mark("train_pass", ideal)).exists()
+
+
+def _mark(name: str, ideal: bool) -> str:
+    return f"{name} for {'ideal gases' if ideal else 'other fluids'}"
+
+
+_called: set[str] = set()
+"""Marks of what this process has called."""
 
 
 @contextmanager
-def first_call(function: Any) -> Iterator[None]:
-    """Around a call of an entry: while it compiles no garbage is collected, which saves a tenth of time."""
-    if function.signatures or not gc.isenabled():
+def first_call(function: Any, ideal: bool) -> Iterator[None]:
+    """Around a call of an entry: while it compiles no garbage is collected, which saves a tenth of time.
+
+    A file in the cache folder tells later processes that the code is there.
+    """
+    mark = _mark(function.__name__, ideal)
+    if mark in _called or not gc.isenabled():
         yield
         return
     gc.disable()
@@ -82,6 +94,11 @@ def first_call(function: Any) -> Iterator[None]:
         yield
     finally:
         gc.enable()
+    _called.add(mark)
+    folder = cache_folder()
+    if folder is not None:
+        with suppress(OSError):
+            (folder / mark).touch()
 
 
 OPTIONS = {"nogil": True, "fastmath": False, "error_model": "numpy", "no_cfunc_wrapper": True}

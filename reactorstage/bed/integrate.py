@@ -25,7 +25,7 @@ from reactorstage.bed.radau import (
     TRANSFORM_INVERSE,
 )
 from reactorstage.bed.stages import defects, stage_slopes
-from reactorstage.bed.state import all_properties, heat_capacity_flow
+from reactorstage.bed.state import heat_capacity_flow, loses_phase
 
 DONE, TOO_MANY_STEPS, STEP_TOO_SMALL, NO_PRESSURE, TOO_HOT, TOO_COLD, FROZEN_FAILED = 0, 1, 2, 3, 4, 5, 6
 NO_FLOW, USED_UP, OTHER_PHASE = 7, 8, 9
@@ -259,7 +259,7 @@ def reason_of(chem, bed, y, T, slope, work):
     if chem.T_high - 50.0 < T:
         return TOO_HOT
     flows(chem, bed, y, work)
-    if is_cubic(chem) and not all_properties(chem, T, bed[P_UNIT] * p_share, 0, work):
+    if is_cubic(chem) and loses_phase(chem, T, bed[P_UNIT] * p_share, work):
         return OTHER_PHASE
     for s in range(chem.S):
         if abs(work[s]) < OVERDRAFT * bed[F_UNIT] < bed[BED + s]:
@@ -298,7 +298,9 @@ def integrate(chem, bed, tolerance, frozen, count, steps, reference, work):
         return FROZEN_FAILED, 0.0, 0, 0
     while depth < 1.0:
         if k >= steps.shape[0]:
-            return TOO_MANY_STEPS, depth, k, calls
+            flows(chem, bed, y, work)
+            lost = is_cubic(chem) and loses_phase(chem, T_now, bed[P_UNIT] * y[n - 1], work)
+            return OTHER_PHASE if lost else TOO_MANY_STEPS, depth, k, calls
         if not rejected:
             T_new = evaluate(chem, bed, depth, y, T_now, work, slope, J)
             calls += 1

@@ -17,6 +17,7 @@ from reactorstage.bed.cubic import (
     H_RES_T,
     PAIRS,
     SPECIES,
+    STIFF,
     VOLUME,
     VOLUME_P,
     VOLUME_T,
@@ -32,6 +33,9 @@ from reactorstage.bed.layout import (
 )
 from reactorstage.bed.properties import heat_and_enthalpy
 from reactorstage.chemistry.cubic import DENSE, FOUND, NOT_FINITE
+
+END_OF_PHASE = 0.3
+"""-V^2/(n R T) dp/dV below which a phase is about to end: 1 in an ideal gas, 0 at the end."""
 
 BELOW, ABOVE = 0.5, 1.1
 """How far beyond the data that all species share a temperature may lie: a stream need not hold every one."""
@@ -105,6 +109,13 @@ def all_properties(chem, T, p, start, work):
     """Properties of the species and of the mixture at T and p; False where the phase does not exist."""
     heat_and_enthalpy(chem, T, work)
     return exists(equation_of_state(chem, T, p, start, SPECIES, work))
+
+
+@compiled
+def loses_phase(chem, T, p, work):
+    """Whether the phase of the flows in the work array ends here or next to here, where slopes grow."""
+    known = all_properties(chem, T, p, 0, work)
+    return not known or 1.0 + work[at_state(chem) + STIFF] < END_OF_PHASE
 
 
 @small

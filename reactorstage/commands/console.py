@@ -6,9 +6,12 @@ import os
 import re
 import sys
 import time
-from typing import TextIO
+from typing import TYPE_CHECKING, TextIO
 
 import click
+
+if TYPE_CHECKING:
+    from reactorstage.case.model import Case
 
 BOLD_HEADS = re.compile(r"^([A-Z][A-Z ]{3,}[A-Z])(?= |$)")
 GOOD = re.compile(r"\bINSIDE ALL LIMITS\b")
@@ -34,11 +37,12 @@ def _write(text: str, stream: TextIO) -> None:
         os.dup2(os.open(os.devnull, os.O_WRONLY), stream.fileno())
 
 
-def tell_of_compilation(quiet: bool) -> None:
+def tell_of_compilation(case: Case, quiet: bool) -> None:
     """Say that the first use takes longer, unless an earlier process left the bed model's machine code."""
     from reactorstage.bed.compiled import cache_folder, is_compiled
+    from reactorstage.case.written_fluid import IDEAL_GAS
 
-    if quiet or is_compiled():
+    if quiet or is_compiled(ideal=case.fluid.density == IDEAL_GAS):
         return
     kept = f"kept in {cache_folder()}" if cache_folder() else "no folder for it can be written"
     tell(f"compiling the bed model, once, about twenty seconds ({kept})")

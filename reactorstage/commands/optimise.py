@@ -55,7 +55,7 @@ def optimise(
 
     output = output_of(case_file, overrides=overrides, **options)
     case = load(case_file, overrides)
-    tell_of_compilation(output.quiet)
+    tell_of_compilation(case, output.quiet)
     progress = ProgressLine(output.quiet, case.currency if case.aim.quantity.startswith("money.") else "")
     try:
         outcome = face.optimise(case, starts=starts, seed=seed, jobs=jobs, progress=progress)

@@ -29,7 +29,7 @@ def rate(case_file: Path, overrides: tuple[str, ...], **options: Any) -> int:
 
     output = output_of(case_file, overrides=overrides, **options)
     case = load(case_file, overrides)
-    tell_of_compilation(output.quiet)
+    tell_of_compilation(case, output.quiet)
     started = time.perf_counter()
     rating = face.rate(case)
     seconds = time.perf_counter() - started

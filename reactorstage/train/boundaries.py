@@ -55,7 +55,7 @@ def fill_boundaries(
     )
     rows = np.array([one.operation * layout.width for one in wanted], dtype=np.int64)
     found = np.zeros((len(wanted), base.shape[1]))
-    with first_call(boundaries):
+    with first_call(boundaries, ideal=False):
         boundaries(chem, critical, 1.0 if fluid.phase == "liquid" else -1.0, rows, base, found)
     base[[one.index for one in wanted]] = found
 
@@ -66,6 +66,6 @@ def fill_residuals(wanted: Sequence[Residual], chem: Chemistry, layout: Layout, 
         return
     rows = np.array([one.operation * layout.width for one in wanted], dtype=np.int64)
     found = np.zeros((len(wanted), base.shape[1]))
-    with first_call(residual_enthalpies):
+    with first_call(residual_enthalpies, ideal=False):
         residual_enthalpies(chem, np.array([one.T for one in wanted]), rows, base, found)
     base[[one.index for one in wanted]] = found

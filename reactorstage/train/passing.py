@@ -142,7 +142,7 @@ class Pass:
         out = np.empty((layout.rows, 1 + du.shape[1]))
         if moved is None:
             moved = np.full((du.shape[1], 2), -1, dtype=np.int64)
-        with first_call(train_pass):
+        with first_call(train_pass, not self.chemistry.nonideal):
             code, reached, depth, evaluations, steps = train_pass(
                 chemistry or self.chemistry,
                 self.beds,
@@ -190,7 +190,7 @@ class Pass:
             record = outcome.out[row : row + self.layout.width, 0]
             F[0], p[0], T[0] = record[:S], record[S + 1], record[S + 2]
             return w, T, p, F, r
-        with first_call(sample_bed):
+        with first_call(sample_bed, not self.chemistry.nonideal):
             sample_bed(
                 self.chemistry,
                 self.beds,

@@ -265,6 +265,10 @@ def _level_prices(model: Model) -> dict[str, float]:
     return {name: rung.price for name, rung in read_rungs(model.case, []).items()}
 
 
+EVEN = 6
+"""Decimals to which conversions are compared when the main reactant is told by them; a tie is the first's."""
+
+
 def _roles(model: Model, base: Array) -> tuple[str, str, str, tuple[str, ...]]:
     """Main (split) reactant, excess reactant, product and by-products, read from feeds and results."""
     from reactorstage.train.quantities import fed
@@ -283,7 +287,7 @@ def _roles(model: Model, base: Array) -> tuple[str, str, str, tuple[str, ...]]:
         if main:
             break
     if not main:
-        main = max(consumed, key=lambda name: -made[name] / given[name], default="")
+        main = max(consumed, key=lambda name: round(-made[name] / given[name], EVEN), default="")
     partners = {
         n
         for r in range(len(nu))

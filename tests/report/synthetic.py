@@ -92,6 +92,7 @@ def case(options: Options, number_of_beds: int) -> Any:
         hash="0" * 64,
         heat_levels=levels,
         aim=SimpleNamespace(direction="least", quantity="money.total"),
+        fluid=SimpleNamespace(density="ideal gas", phase=None),
     )
 
 
