@@ -29,12 +29,14 @@ class Result:
 def deliver(result: Result, output: Output) -> None:
     """Show the result, then write its files and say where they are."""
     from reactorstage.commands.layout import screen_width
+    from reactorstage.report.display import in_units
     from reactorstage.report.result_json import as_text
 
     text = as_text(result.content, result.seconds)
-    say(text.rstrip("\n") if output.as_json else "\n".join(result.lines(screen_width())))
-    if output.folder is not None:
-        _write(result, text, output)
+    with in_units(output.units):
+        say(text.rstrip("\n") if output.as_json else "\n".join(result.lines(screen_width())))
+        if output.folder is not None:
+            _write(result, text, output)
 
 
 def _write(result: Result, text: str, output: Output) -> None:

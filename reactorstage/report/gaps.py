@@ -60,7 +60,7 @@ def _destinations(rating: Rating, places: Sequence[str]) -> Column | None:
     if not rating.heat:
         return None
     cells = tuple(_destination_cell(rating, place) for place in places)
-    return Column(("levels, MW",), cells, rank=10, left=True)
+    return Column((f"levels, {unit('power')}",), cells, rank=10, left=True)
 
 
 def _destination_cell(rating: Rating, place: str) -> str:

@@ -20,6 +20,7 @@ from matplotlib.figure import Figure
 from matplotlib.lines import Line2D
 from matplotlib.ticker import FuncFormatter, LogLocator, NullLocator
 
+from reactorstage.report.display import brief, unit
 from reactorstage.report.profiles import BedProfile
 from reactorstage.report.table import folded
 from reactorstage.train.result import Array
@@ -115,7 +116,8 @@ def bed_bands(axes: Axes, beds: Sequence[BedProfile], names: bool) -> None:
             axes.axvspan(first, last, color=BAND, linewidth=0, zorder=0)
         if names:
             wide = (last - first) / end > 0.07
-            label = f"{bed.owner}\n{last - first:.3g} t" if wide else bed.owner.removeprefix("bed ")
+            size = f"{brief(last - first, 3)} {unit('mass')}"
+            label = f"{bed.owner}\n{size}" if wide else bed.owner.removeprefix("bed ")
             axes.annotate(
                 label,
                 ((first + last) / 2, 1.0),
@@ -168,7 +170,7 @@ def catalyst_axis(axes: Axes, shown: bool) -> None:
     """The common x axis: catalyst counted from the train inlet."""
     axes.tick_params(labelbottom=shown, labelsize=TEXT - 0.5)
     if shown:
-        axes.set_xlabel("catalyst from the train inlet, t")
+        axes.set_xlabel(f"catalyst from the train inlet, {unit('mass')}")
 
 
 def spaced(wanted: Sequence[float], apart: float) -> list[float]:

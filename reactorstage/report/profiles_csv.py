@@ -11,6 +11,7 @@ import numpy as np
 from reactorstage.report.cautions import SHORT
 from reactorstage.report.display import unit
 from reactorstage.report.profiles import BedProfile, train_profiles
+from reactorstage.report.unit_sets import RATE
 from reactorstage.train.result import Rating
 
 SIGNIFICANT = 10
@@ -40,12 +41,12 @@ def headings(rating: Rating) -> list[str]:
     return [
         "bed",
         "depth, %",
-        "catalyst in bed, kg",
+        f"catalyst in bed, {mass}",
         f"catalyst from train inlet, {mass}",
         f"temperature, {unit('temperature')}",
         f"pressure, {unit('pressure')}",
         *(f"flow of {species}, {flow}" for species in rating.species),
-        *(f"rate of {reaction}, kmol/(kg h)" for reaction in rating.reactions),
+        *(f"rate of {reaction}, {unit(RATE)}" for reaction in rating.reactions),
         *selectivity,
         "note",
     ]

@@ -83,12 +83,19 @@ def second_answer(programme: Programme, optimum: Optimum, best: Rating, others: 
     if not others:
         return f"All {ended} starts that ended agree on this answer." if ended > 1 else ""
     other = others[0]
-    apart = told_apart(programme, best.x, other.x)[:PHRASES]
+    apart = told_apart(programme, best.x, other.x, number_shown, unit)[:PHRASES]
     more = cost_difference(other, best)
     where = f" ({'; '.join(apart)})" if apart else ""
     cost = "has no value" if more is None else aim_of(best).worse(more)
     rest = f"; {len(others) - 1} more in result.json" if len(others) > 1 else ""
     return f"A second answer{where} {cost}{rest}."
+
+
+def number_shown(value: float, kind: str) -> float:
+    """A number that is there in its display unit."""
+    number = shown(value, kind)
+    assert number is not None
+    return number
 
 
 def today_text(was: Rating) -> str:

@@ -12,7 +12,7 @@ from matplotlib.figure import Figure
 
 from reactorstage.report import look
 from reactorstage.report.cautions import SHORT
-from reactorstage.report.display import allowed, fixed, owners_text, shown, unit
+from reactorstage.report.display import allowed, fixed, owners_text, places, shown, unit, with_unit
 from reactorstage.report.profiles import BedProfile, displayed, train_profiles
 from reactorstage.train.result import LimitState, Rating, StepState
 
@@ -21,6 +21,7 @@ WORDS = ("inlet temperature", "exit temperature", "peak temperature")
 REACH = 0.5
 PEAK_SHOWN_K = 0.5
 LABEL_PART = 0.13
+NO_HEAT = 500.0
 Side = Literal["left", "center", "right"]
 HEAT_SIDES: dict[str, tuple[Side, float]] = {"entry": ("left", 0.0), "effluent": ("right", LABEL_PART)}
 
@@ -188,7 +189,7 @@ def heat_labels(rating: Rating, beds: Sequence[BedProfile]) -> list[HeatLabel]:
         start = x / total - before
         row = next((i for i, end in enumerate(ends) if start > end), len(ends))
         ends[row : row + 1] = [start + LABEL_PART]
-        found.append(HeatLabel(x, _heat_text(shown(heat.value, heat.kind) or 0.0), side, row))
+        found.append(HeatLabel(x, heat_text(heat.value), side, row))
     return found
 
 
@@ -207,11 +208,14 @@ def _heats(axes: Axes, labels: Sequence[HeatLabel]) -> None:
         )
 
 
-def _heat_text(megawatt: float) -> str:
-    size = f"{abs(megawatt):.{2 if abs(megawatt) < 10 else 1}f} MW"
-    if abs(megawatt) < 0.0005:
-        return "0 MW"
-    return f"{size} out" if megawatt > 0 else f"{size} in"
+def heat_text(watt: float) -> str:
+    """`1.80 MW out`, `5.17 MW in`: the sign of heat in words."""
+    heat = shown(watt, "power") or 0.0
+    if abs(watt) < NO_HEAT:
+        return with_unit("0", unit("power"))
+    decimals = places("power", 2 if abs(heat) < 10 else 1)
+    size = with_unit(fixed(abs(heat), decimals), unit("power"))
+    return f"{size} out" if heat > 0 else f"{size} in"
 
 
 def _key(figure: Figure, rating: Rating, with_today: bool) -> None:
