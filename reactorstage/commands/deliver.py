@@ -11,6 +11,7 @@ from reactorstage.commands.console import say, tell
 from reactorstage.commands.options import Output
 
 if TYPE_CHECKING:
+    from reactorstage.optimiser.result import Optimum
     from reactorstage.train.result import Rating
 
 
@@ -24,6 +25,7 @@ class Result:
     status: str
     drawn: Rating | None
     behind: Rating | None = None
+    optimum: Optimum | None = None
 
 
 def deliver(result: Result, output: Output) -> None:
@@ -48,7 +50,9 @@ def _write(result: Result, text: str, output: Output) -> None:
     if output.figures and result.drawn is not None:
         from reactorstage.report.figures import figure_files
 
-        paths += write_all(output.folder, figure_files(result.drawn, result.behind, result.status))
+        paths += write_all(
+            output.folder, figure_files(result.drawn, result.behind, result.status, result.optimum)
+        )
     if not output.quiet:
         tell(_written_text(output.folder, paths))
 
@@ -62,6 +66,7 @@ def _profiles(rating: Rating | None) -> dict[str, bytes]:
 
 
 def _written_text(folder: Path, paths: Sequence[Path]) -> str:
-    names = [path.name for path in paths if path.suffix != ".svg"]
-    also = " (and .svg)" if len(names) < len(paths) else ""
+    pictures = {path.stem for path in paths if path.suffix == ".png"}
+    names = [path.name for path in paths if path.suffix == ".png" or path.stem not in pictures]
+    also = " (pictures also as .svg, their numbers as .csv)" if pictures else ""
     return f"written to {folder}/: {', '.join(names)}{also}"

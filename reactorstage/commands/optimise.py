@@ -88,6 +88,7 @@ def _deliver(outcome: Optimisation, output: Output) -> None:
             status,
             outcome.best,
             outcome.today,
+            outcome.optimum,
         ),
         output,
     )

@@ -33,7 +33,6 @@ TOP_PERCENT = 103.0
 MOST_LEVELS = 7
 RATE_GREY = "#a9b0b8"
 RATE_WEIGHT, LINE_WEIGHT, GAP_PART = 0.7, 1.4, 0.5
-BEST: look.LineStyle = (0, (7.0, 2.0, 1.5, 2.0))
 LABEL_ROWS, LABEL_APART = (0.03, 0.13, 0.23, 0.33), 0.07
 HEAD_APART = 62.0
 NAME_ROOM, NAME_WIDTH = 7.0, 0.08
@@ -102,7 +101,9 @@ def _lines(axes: Axes, behind: Background | None) -> list[tuple[float, str, str]
     labels = [(100.0 * float(behind.equilibrium[-1]), "equilibrium", look.INK)]
     if behind.rates is not None:
         best = displayed(behind.rates.best, "temperature")
-        axes.plot(best, 100.0 * behind.rates.X, color=look.INK, linewidth=1.0, linestyle=BEST, zorder=2.4)
+        axes.plot(
+            best, 100.0 * behind.rates.X, color=look.INK, linewidth=1.0, linestyle=look.CHAIN, zorder=2.4
+        )
     return labels
 
 
@@ -269,7 +270,7 @@ def _key_rows(
         look.KeyRow("today", look.TODAY_WEIGHT) if with_today else None,
         look.KeyRow("injection", look.THIS_WEIGHT * GAP_PART, look.DOTTED) if injects else None,
         look.KeyRow("limit", look.LIMIT_WEIGHT, look.DASHED, look.LIMIT) if _limits(rating) else None,
-        look.KeyRow("best rate", 1.0, BEST, look.INK) if best else None,
+        look.KeyRow("best rate", 1.0, look.CHAIN, look.INK) if best else None,
         look.KeyRow(f"equal rate, {unit(RATE)}", RATE_WEIGHT, look.SOLID, RATE_GREY) if single else None,
     ]
     return [row for row in rows if row is not None]

@@ -31,6 +31,9 @@ EXCESS_REACTANT = "#5f6f52"
 PRODUCT = "#20242b"
 BY_PRODUCT = "#c27d0e"
 LIMIT = "#6b7079"
+HEAT = "#6d4a96"
+MONEY = "#14736b"
+MONEY_LIGHT = "#9fcdc6"
 INK = "#20242b"
 BAND = "#eef0f2"
 PAPER = "#ffffff"
@@ -38,6 +41,7 @@ PAPER = "#ffffff"
 SOLID: Literal["-"] = "-"
 DASHED = (0, (5.0, 3.0))
 DOTTED = (0, (1.2, 1.8))
+CHAIN = (0, (7.0, 2.0, 1.5, 2.0))
 LineStyle = Literal["-"] | tuple[int, tuple[float, ...]]
 BY_PRODUCT_LINES: tuple[LineStyle, ...] = (SOLID, (0, (7.0, 2.0, 1.5, 2.0)), (0, (3.0, 1.5)), (0, (1.5, 1.5)))
 
@@ -49,7 +53,7 @@ LABEL_LEFT = -0.083
 TEXT, SMALL = 9.0, 7.6
 LINE_POINTS = 9.6
 
-CLEARED = {"facecolor": PAPER, "edgecolor": "none", "alpha": 0.65, "pad": 0.2}
+CLEARED = {"facecolor": PAPER, "edgecolor": "none", "alpha": 0.85, "pad": 0.2}
 
 SETTINGS: Any = {
     "svg.hashsalt": "reactorstage",

@@ -39,10 +39,13 @@ def temperature_figure(rating: Rating, today: Rating | None, title: str, status:
     _set_range(axes, rating, beds, today, 1 + max((heat.row for heat in heats), default=-1))
     _values(axes, beds)
     _limits(axes, rating, beds)
+    _equilibria(axes, rating, beds)
     _heats(axes, heats)
     look.catalyst_axis(axes, shown=True)
     look.value_axis(axes, f"temperature, {unit('temperature')}")
-    _key(figure, rating, today is not None)
+    low, high = axes.get_ylim()
+    levels = any(low < T < high for T in equilibria(rating, beds).values())
+    _key(figure, rating, today is not None, levels)
     figure.text(look.LEFT, 0.1 / HEIGHT, SHORT, ha="left", va="bottom", fontsize=look.SMALL - 0.4)
     return figure
 
@@ -50,7 +53,7 @@ def temperature_figure(rating: Rating, today: Rating | None, title: str, status:
 def _curve(axes: Axes, rating: Rating, beds: Sequence[BedProfile], weight: float) -> None:
     for bed in beds:
         axes.plot(bed.catalyst, bed.T, color=look.TEMPERATURE, linewidth=weight, zorder=3 + weight)
-    for place, x in _places(beds):
+    for place, x in places_of_gaps(beds):
         for step in rating.steps:
             if step.owner == place and place.startswith("gap"):
                 _upright(axes, step, x, weight)
@@ -67,7 +70,7 @@ def _upright(axes: Axes, step: StepState, x: float, weight: float) -> None:
     )
 
 
-def _places(beds: Sequence[BedProfile]) -> list[tuple[str, float]]:
+def places_of_gaps(beds: Sequence[BedProfile]) -> list[tuple[str, float]]:
     """Entry, gaps and effluent with the catalyst that lies before them."""
     gaps = [(f"gap {bed.owner.removeprefix('bed ')}", float(bed.catalyst[-1])) for bed in beds[:-1]]
     return [("entry", 0.0), *gaps, ("effluent", float(beds[-1].catalyst[-1]))]
@@ -81,9 +84,28 @@ def _set_range(
     high = max(max(float(bed.T.max()), bed.T_peak) for bed in shown_beds)
     span = max(high - low, 2.0)
     bounds = [_bound(state) for state in _temperature_limits(rating)]
+    bounds += [T for T in equilibria(rating, beds).values() if low < T]
     near = [bound for bound in bounds if low - REACH * span < bound < high + REACH * span]
     low, high = min([low, *near]), max([high, *near])
     axes.set_ylim(low - (0.11 + 0.08 * rows) * (high - low), high + 0.07 * (high - low))
+
+
+def equilibria(rating: Rating, beds: Sequence[BedProfile]) -> dict[str, float]:
+    """The adiabatic equilibrium temperature of what enters each bed, display units, where there is one."""
+    values = {bed.owner: rating.quantities.get(f"{bed.owner}.equilibrium temperature") for bed in beds}
+    known = {owner: shown(value.value, value.kind) for owner, value in values.items() if value is not None}
+    return {owner: T for owner, T in known.items() if T is not None}
+
+
+def _equilibria(axes: Axes, rating: Rating, beds: Sequence[BedProfile]) -> None:
+    """A level over each bed: as hot as it could become."""
+    low, high = axes.get_ylim()
+    known = equilibria(rating, beds)
+    for bed in beds:
+        T = known.get(bed.owner, low)
+        if low < T < high and bed.catalyst[-1] > bed.catalyst[0]:
+            ends = (float(bed.catalyst[0]), float(bed.catalyst[-1]))
+            axes.plot(ends, (T, T), color=look.INK, linewidth=1.0, linestyle=look.CHAIN, zorder=2.5)
 
 
 def _temperature_limits(rating: Rating) -> list[LimitState]:
@@ -181,7 +203,7 @@ def heat_labels(rating: Rating, beds: Sequence[BedProfile]) -> list[HeatLabel]:
     exchanging = {step.owner for step in rating.steps if step.kind in ("heat", "cool")}
     ends: list[float] = []
     found = []
-    for place, x in _places(beds):
+    for place, x in places_of_gaps(beds):
         heat = rating.quantities.get(f"{place}.heat removed")
         if place not in exchanging or heat is None or heat.value is None:
             continue
@@ -218,7 +240,7 @@ def heat_text(watt: float) -> str:
     return f"{size} out" if heat > 0 else f"{size} in"
 
 
-def _key(figure: Figure, rating: Rating, with_today: bool) -> None:
+def _key(figure: Figure, rating: Rating, with_today: bool, levels: bool) -> None:
     """What the line kinds mean, as far as they are there."""
     weight = look.THIS_WEIGHT
     rows = [
@@ -228,6 +250,7 @@ def _key(figure: Figure, rating: Rating, with_today: bool) -> None:
         look.KeyRow("limit", look.LIMIT_WEIGHT, look.DASHED, look.LIMIT)
         if _temperature_limits(rating)
         else None,
+        look.KeyRow("equilibrium", 1.0, look.CHAIN, look.INK) if levels else None,
     ]
     look.key(figure, [row for row in rows if row is not None], look.TEMPERATURE)
 
