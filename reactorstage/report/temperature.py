@@ -83,7 +83,7 @@ def _set_range(
     low = min(float(bed.T.min()) for bed in shown_beds)
     high = max(max(float(bed.T.max()), bed.T_peak) for bed in shown_beds)
     span = max(high - low, 2.0)
-    bounds = [_bound(state) for state in _temperature_limits(rating)]
+    bounds = [_bound(state) for state in temperature_limits(rating)]
     bounds += [T for T in equilibria(rating, beds).values() if low < T]
     near = [bound for bound in bounds if low - REACH * span < bound < high + REACH * span]
     low, high = min([low, *near]), max([high, *near])
@@ -108,7 +108,7 @@ def _equilibria(axes: Axes, rating: Rating, beds: Sequence[BedProfile]) -> None:
             axes.plot(ends, (T, T), color=look.INK, linewidth=1.0, linestyle=look.CHAIN, zorder=2.5)
 
 
-def _temperature_limits(rating: Rating) -> list[LimitState]:
+def temperature_limits(rating: Rating) -> list[LimitState]:
     return [
         state
         for state in rating.limits
@@ -127,7 +127,7 @@ def _limits(axes: Axes, rating: Rating, beds: Sequence[BedProfile]) -> None:
     """Dashed grey over the beds that a limit speaks of; one label per limit and bound at the right."""
     spans = {bed.owner: (float(bed.catalyst[0]), float(bed.catalyst[-1])) for bed in beds}
     groups: dict[tuple[str, str], list[LimitState]] = {}
-    for state in _temperature_limits(rating):
+    for state in temperature_limits(rating):
         if state.owner in spans:
             groups.setdefault((state.label, allowed(state.bound, state.kind)), []).append(state)
     low, high = axes.get_ylim()
@@ -248,7 +248,7 @@ def _key(figure: Figure, rating: Rating, with_today: bool, levels: bool) -> None
         look.KeyRow("today", look.TODAY_WEIGHT) if with_today else None,
         look.KeyRow("injection", weight * 0.7, look.DOTTED) if _injects(rating) else None,
         look.KeyRow("limit", look.LIMIT_WEIGHT, look.DASHED, look.LIMIT)
-        if _temperature_limits(rating)
+        if temperature_limits(rating)
         else None,
         look.KeyRow("equilibrium", 1.0, look.CHAIN, look.INK) if levels else None,
     ]
