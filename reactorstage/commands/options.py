@@ -90,9 +90,17 @@ def output_of(
     units: str = TRADE,
 ) -> Output:
     """What the shared options ask for. Raises CallError when the folder cannot be one."""
+    chosen = None if no_files else folder_of(case_file, folder)
+    return Output(chosen, as_json, quiet, not no_figures, overrides, units)
+
+
+def folder_of(case_file: Path, folder: Path | None) -> Path:
+    """The folder asked for, else `figures/` and the name of the case file.
+
+    Raises CallError when it cannot be a folder.
+    """
     from reactorstage.report.files import check_folder
 
-    chosen = None if no_files else folder or FIGURES / case_file.stem
-    if chosen is not None:
-        check_folder(chosen)
-    return Output(chosen, as_json, quiet, not no_figures, overrides, units)
+    chosen = folder or FIGURES / case_file.stem
+    check_folder(chosen)
+    return chosen

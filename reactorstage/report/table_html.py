@@ -8,6 +8,7 @@ from itertools import groupby
 
 from reactorstage.report.table import AT_WORK, BROKEN, Column, Table
 
+LONGEST = 48
 MARKS = {AT_WORK: "a limit holds this", BROKEN: "this breaks a limit"}
 
 
@@ -59,7 +60,10 @@ def _row(cells: Sequence[str], columns: Sequence[Column]) -> str:
 
 
 def _side(column: Column) -> str:
-    return ' class="left"' if column.left else ""
+    """The class of cells: words stand left, long ones may wrap."""
+    long = column.left and max(map(len, column.cells), default=0) > LONGEST
+    names = [*(["left"] if column.left else []), *(["long"] if long else [])]
+    return f' class="{" ".join(names)}"' if names else ""
 
 
 def _cell(cell: str) -> str:

@@ -128,7 +128,7 @@ def _curves(what: Along, line: Line) -> list[Curve]:
     pairs = [(what.rating, what.beds, False)]
     if what.today is not None:
         pairs.insert(0, (what.today, what.before, True))
-    for rating, beds, today in pairs:
+    for rating, beds, today in pairs if line.kind != "dot" else pairs[-1:]:
         for bed in beds:
             points = kept(bed)
             kind = line.kind if not today else "today" if line.kind == "this" else f"{line.kind} thin"

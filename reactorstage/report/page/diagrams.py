@@ -195,10 +195,14 @@ def heat_chart(sides: Sequence[Cascade], side: Cascade) -> Chart:
         level, bound = (shown(T, "temperature") or 0.0 for T in (rung.T, bound_of(side, rung)))
         curves.append(Curve(ends, np.array([level, level]), look.HEAT, "this"))
         curves.append(Curve(ends, np.array([bound, bound]), look.LIMIT, "limit"))
-        labels.append(_rung_label(side, ends, level, f"{rung.name} {brief(shown(rung.heat, 'power'), 3)}"))
+        labels.append(
+            _rung_label(
+                side, ends, level, f"{rung.name}, {brief(shown(rung.heat, 'power'), 3)} {unit('power')}"
+            )
+        )
     legend = [("this", look.TEMPERATURE, "streams")]
     if side.rungs:
-        legend += [("this", look.HEAT, f"level, {unit('power')}"), ("limit", look.LIMIT, "minimum approach")]
+        legend += [("this", look.HEAT, "level"), ("limit", look.LIMIT, "minimum approach")]
     words = ", ".join(f"{brief(shown(r.heat, 'power'), 3)} {unit('power')} with {r.name}" for r in side.rungs)
     name = "added" if side.heating else "removed"
     return Chart(

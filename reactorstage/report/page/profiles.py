@@ -14,7 +14,7 @@ from reactorstage.report.page.along import Along, Line, Value, chart, values_ran
 from reactorstage.report.page.chart import Area, Chart, Curve, Label, spread_labels
 from reactorstage.report.profiles import BedProfile, displayed, train_profiles
 from reactorstage.report.rates import lighting, used
-from reactorstage.report.selectivity import says_something
+from reactorstage.report.selectivity import least_loss, point_value, says_something
 from reactorstage.report.temperature import PEAK_SHOWN_K, equilibria, places_of_gaps, temperature_limits
 from reactorstage.report.unit_sets import RATE
 from reactorstage.train.result import Array, LimitState, Rating
@@ -50,22 +50,25 @@ def temperature(what: Along) -> Chart:
     legend += [("chain", look.INK, "adiabatic equilibrium of what enters")] if levels else []
     made = chart(
         what, "temperature", "Temperature", [line], f"temperature, {unit('temperature')}",
-        y_range=y_range, more=[*limits, *levels, *gaps], legend=legend, labels=end_values(what.beds),
+        y_range=y_range, more=[*limits, *levels, *gaps], legend=legend, labels=end_values(what, y_range),
     )  # fmt: skip
     names = spread_labels(limit_names(what.rating, what.end, y_range), made.y)
     return replace(made, labels=(*made.labels, *names))
 
 
-def end_values(beds: Sequence[BedProfile]) -> list[Label]:
-    """Exit temperatures, and peaks that are hotter."""
+def end_values(what: Along, y_range: tuple[float, float]) -> list[Label]:
+    """Exit temperatures, over the equilibrium where that lies close above them, and peaks that are hotter."""
     found = []
-    for bed in beds:
+    close = 0.08 * (y_range[1] - y_range[0])
+    levels = equilibria(what.rating, what.beds)
+    for bed in what.beds:
         if bed.catalyst[-1] <= bed.catalyst[0]:
             continue
         exit_ = float(bed.T[-1])
-        below = 15.0 if exit_ > float(bed.T[0]) else -6.0
+        level = levels.get(bed.owner, exit_)
+        height = level if exit_ <= level < exit_ + close else exit_
         found.append(
-            Label(float(bed.catalyst[-1]), exit_, _degrees(exit_), "end", (-3.0, below), bed=bed.owner)
+            Label(float(bed.catalyst[-1]), height, _degrees(exit_), "end", (-3.0, -4.0), bed=bed.owner)
         )
         if bed.T_peak > max(exit_, float(bed.T[0])) + PEAK_SHOWN_K:
             found.append(
@@ -197,8 +200,20 @@ def _selectivity(what: Along, species: Sequence[str], colour: str) -> list[Line]
             Line(f"{name}, summed", "mol %", colour, of_species("cumulative", name), _style(k, colour), 1)
         )
     if len(species) == 1:
-        lines.append(Line("at this point", "mol %", colour, of_species("point", species[0]), "dot", 1))
+        lines.append(Line("at this point", "mol %", colour, _point(what, species[0]), "dot", 1))
     return lines
+
+
+def _point(what: Along, name: str) -> Value:
+    """The selectivity at each point, nan where the main reactant hardly reacts any more."""
+    least = least_loss(what.rating, (*what.beds, *what.before))
+
+    def value(rating: Rating, bed: BedProfile) -> Array:
+        if name not in rating.species:
+            return np.full(len(bed.catalyst), np.nan)
+        return point_value(rating, rating.species.index(name), least)(bed)
+
+    return value
 
 
 def _readable(what: Along, lines: Sequence[Line]) -> list[Array]:

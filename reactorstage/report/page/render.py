@@ -13,6 +13,7 @@ from typing import Any
 from jinja2 import Environment, PackageLoader, StrictUndefined
 from markupsafe import Markup
 
+from reactorstage.optimiser.result import INSIDE
 from reactorstage.report.display import counted, in_units, unit
 from reactorstage.report.page.along import Along, along, kept
 from reactorstage.report.page.chart import Chart, pixels, svg
@@ -35,8 +36,8 @@ def page_html(subject: Subject, units: str = TRADE) -> bytes:
         what = along(subject)
         text = _environment().get_template("page.html.j2").render(
             name=subject.now.case.name,
-            status=subject.now.status,
-            good=subject.now.status == "inside all limits",
+            status=subject.status,
+            good=subject.status == INSIDE,
             about=about(subject),
             sections=sections,
             beds=[] if what is None else [bed.owner for bed in what.beds],

@@ -51,6 +51,11 @@ class Subject:
     overrides: tuple[str, ...] = ()
 
     @property
+    def status(self) -> str:
+        """The status word: that of the search, else that of the rating."""
+        return self.now.status if self.search is None else self.search.optimum.status
+
+    @property
     def currency(self) -> str:
         return self.now.case.currency
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from reactorstage.report.display import fixed
-from reactorstage.report.inputs import given, text_of
+from reactorstage.report.inputs import Given, given, text_of
 from reactorstage.report.page.parts import Block, Grid, Section, Words
 from reactorstage.report.page.subject import Subject
 from reactorstage.report.table import Column, Table, table
@@ -20,19 +20,29 @@ AS_GIVEN = (
 def inputs(subject: Subject) -> Section:
     """Every input with its unit as it was given and the place where it stands, then what was understood."""
     rows = given(subject.now.case)
+    file = main_file(rows)
     made = table("INPUTS", [
         Column(("group",), tuple(row.group for row in rows), left=True),
         Column(("name",), tuple(row.name for row in rows), left=True),
         Column(("as given",), tuple(row.text for row in rows), left=True),
-        Column(("where",), tuple(row.place for row in rows), left=True),
+        Column(("where",), tuple(row.place.replace(f"{file}:", "line ") for row in rows), left=True),
     ])  # fmt: skip
-    blocks: list[Block] = [Words(AS_GIVEN), Grid(made, "Every input as given")]
+    blocks: list[Block] = [
+        Words(f"{AS_GIVEN} Lines without a file are those of {file}."),
+        Grid(made, "Every input as given"),
+    ]
     blocks += [
         Grid(one, f"As understood: {one.title.lower()}")
         for one in understood_tables(subject.seen)
         if one.title not in (*KINETIC, "LIMITS", "PRICES")
     ]
     return Section("inputs", "What went in", tuple(blocks))
+
+
+def main_file(rows: list[Given]) -> str:
+    """The file in which most inputs stand."""
+    files = [row.place.partition(":")[0] for row in rows]
+    return max(files, key=files.count)
 
 
 def kinetics(subject: Subject) -> Section:

@@ -34,6 +34,7 @@ def flatness(subject: Subject) -> Section | None:
     return Section("flatness", "How flat the answer is", tuple(blocks))
 
 
+STEP = 0.1
 NOTE = "Answers are local ends of a gradient search from many starts; no proof is given that none is better."
 
 
@@ -43,10 +44,10 @@ def curvature_text(best: Answer, aim: Aim) -> str:
         return (
             "The answer is a corner: limits and ends of ranges hold every number, so there is no curvature."
         )
-    size = f"{brief(aim.size(best.curvature), 2)} {aim.unit}".rstrip()
+    size = f"{aim.number(0.5 * STEP**2 * best.curvature)} {aim.unit}".rstrip()
     return (
-        f"In its flattest direction along the limits the cost bends by {size} for one search range squared: "
-        "near zero means that settings in this direction are worth little."
+        "In the flattest direction that the limits leave open, moving by a tenth of a search range costs "
+        f"{size} (from the curvature there)."
     )
 
 

@@ -20,6 +20,11 @@ MOST_WORTHS = 3
 
 def summary(subject: Subject) -> Section:
     """The answers to what a reader asks first."""
+    return Section("summary", "Summary", (Facts(tuple(summary_facts(subject)), loud=True),))
+
+
+def summary_facts(subject: Subject) -> list[tuple[str, tuple[str, ...]]]:
+    """Questions with their answers, those without one left out."""
     facts = (
         ("Inside its limits?", tuple(inside(subject))),
         ("What does it cost?", tuple(cost(subject))),
@@ -27,7 +32,7 @@ def summary(subject: Subject) -> Section:
         ("What to change first?", tuple(first(subject))),
         ("What to worry about?", tuple(worries(subject))),
     )
-    return Section("summary", "Summary", (Facts(tuple(fact for fact in facts if fact[1]), loud=True),))
+    return [fact for fact in facts if fact[1]]
 
 
 def plain(text: str) -> str:
@@ -39,7 +44,9 @@ def plain(text: str) -> str:
 def keep_away(text: str) -> str:
     """The line about margins as a sentence."""
     bare = text.removeprefix("KEEP AWAY").strip()
-    return bare.replace("none on", "No margin is kept on", 1) if bare.startswith("none on") else bare
+    if bare.startswith("none on"):
+        return bare.replace("none on", "No margin is kept on", 1)
+    return f"Margins are kept: {bare}" if bare else ""
 
 
 def inside(subject: Subject) -> list[str]:
