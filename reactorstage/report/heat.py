@@ -19,7 +19,8 @@ HEIGHT, BOTTOM, TOP = 4.1, 0.95, 0.72
 BETWEEN = 0.06
 LEAST_WIDTH = 0.28
 ROOM = 0.2
-ORDER = "Streams are summed from the cold end; levels lie in the order in which the heat reaches them."
+SUMMED = "Streams are summed from the cold end"
+ORDER = "levels lie in the order in which the heat reaches them"
 
 
 def heat_figure(rating: Rating, title: str, status: str) -> Figure:
@@ -51,7 +52,8 @@ def notes(rating: Rating, sides: Sequence[Cascade]) -> list[str]:
     absent = left_out(rating)
     missing = [f"Not drawn, since its heat is unpriced: {and_list(absent)}."] if absent else []
     said = " ".join([*approach, *missing])
-    return [ORDER, *([said] if said else []), SHORT]
+    first = f"{SUMMED}; {ORDER}." if any(side.rungs for side in sides) else f"{SUMMED}."
+    return [first, *([said] if said else []), SHORT]
 
 
 def heading(side: Cascade) -> str:

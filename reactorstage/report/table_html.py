@@ -18,13 +18,15 @@ def table_html(table: Table, caption: str = "") -> str:
     rows = zip(*(column.cells for column in columns), strict=True)
     body = "".join(f"<tr>{_row(cells, columns)}</tr>" for cells in rows)
     words = escape(caption or table.title.capitalize())
-    return f"<table><caption>{words}</caption><thead>{_heads(columns)}</thead><tbody>{body}</tbody></table>"
+    return f"<table><caption>{words}</caption>{_heads(columns)}<tbody>{body}</tbody></table>"
 
 
 def _heads(columns: Sequence[Column]) -> str:
-    """One row of headings; two where neighbours stand under a common one."""
+    """One row of headings; two where neighbours stand under a common one; none where no column has one."""
+    if not any(heading_text(column) or column.group for column in columns):
+        return ""
     if not any(column.group for column in columns):
-        return f"<tr>{''.join(_head(column) for column in columns)}</tr>"
+        return f"<thead><tr>{''.join(_head(column) for column in columns)}</tr></thead>"
     upper, lower = [], []
     for group, run in groupby(enumerate(columns), key=lambda pair: pair[1].group or (f"\0{pair[0]}",)):
         members = [column for _, column in run]
@@ -34,7 +36,7 @@ def _heads(columns: Sequence[Column]) -> str:
             lower += [_head(column) for column in members]
         else:
             upper.append(_head(members[0], ' rowspan="2"'))
-    return f"<tr>{''.join(upper)}</tr><tr>{''.join(lower)}</tr>"
+    return f"<thead><tr>{''.join(upper)}</tr><tr>{''.join(lower)}</tr></thead>"
 
 
 def _head(column: Column, more: str = "") -> str:
@@ -48,7 +50,10 @@ def heading_text(column: Column) -> str:
     """The heading in one line; a word that was folded over two lines is put together again."""
     text = ""
     for line in column.heading:
-        text = text[:-1] + line if text.endswith("-") and line[:1].islower() else f"{text} {line}".strip()
+        if text.endswith("-") and line[:1].islower():
+            text = text[:-1] + line
+        else:
+            text = f"{text}{'' if text.endswith('/') else ' '}{line}".strip()
     return text
 
 
