@@ -20,6 +20,7 @@ HEIGHT = 4.5
 WORDS = ("inlet temperature", "exit temperature", "peak temperature")
 REACH = 0.5
 PEAK_SHOWN_K = 0.5
+CLOSE = 0.08
 LABEL_PART = 0.13
 NO_HEAT = 500.0
 Side = Literal["left", "center", "right"]
@@ -37,7 +38,7 @@ def temperature_figure(rating: Rating, today: Rating | None, title: str, status:
     _curve(axes, rating, beds, look.THIS_WEIGHT)
     heats = heat_labels(rating, beds)
     _set_range(axes, rating, beds, today, 1 + max((heat.row for heat in heats), default=-1))
-    _values(axes, beds)
+    _values(axes, rating, beds)
     _limits(axes, rating, beds)
     _equilibria(axes, rating, beds)
     _heats(axes, heats)
@@ -157,15 +158,18 @@ def _limit_label(
     return f"{label}{where}\n{bound}{off}"
 
 
-def _values(axes: Axes, beds: Sequence[BedProfile]) -> None:
+def _values(axes: Axes, rating: Rating, beds: Sequence[BedProfile]) -> None:
     """Inlet, exit and, where it is hotter than the exit, peak in numbers."""
+    levels = equilibria(rating, beds)
     total = float(beds[-1].catalyst[-1])
     for bed in beds:
         if (bed.catalyst[-1] - bed.catalyst[0]) / total < 0.07:
             continue
         _value(axes, bed.catalyst[0], bed.T[0], (4, -9), "left")
         rising = bed.T[-1] >= bed.T[0]
-        _value(axes, bed.catalyst[-1], bed.T[-1], (-4, 5 if rising else -9), "right")
+        lift = lifted(float(bed.T[-1]), levels.get(bed.owner), axes.get_ylim()) if rising else 0.0
+        text = _degrees(float(bed.T[-1]))
+        _value(axes, bed.catalyst[-1], bed.T[-1] + lift, (-4, 5 if rising else -9), "right", text)
         if bed.T_peak > max(bed.T[-1], bed.T[0]) + PEAK_SHOWN_K:
             axes.plot(
                 [bed.peak_catalyst], [bed.T_peak], marker="^", markersize=5, color=look.TEMPERATURE, zorder=6
@@ -173,9 +177,19 @@ def _values(axes: Axes, beds: Sequence[BedProfile]) -> None:
             _value(axes, bed.peak_catalyst, bed.T_peak, (0, 6), "center")
 
 
-def _value(axes: Axes, x: float, y: float, offset: tuple[float, float], side: str) -> None:
+def lifted(exit_: float, level: float | None, span: tuple[float, float]) -> float:
+    """How much higher the number of an exit must stand to clear an equilibrium that lies close above it."""
+    close = level is not None and 0.0 <= level - exit_ < CLOSE * (span[1] - span[0])
+    return level - exit_ if close and level is not None else 0.0
+
+
+def _degrees(T: float) -> str:
+    return fixed(T, 0 if abs(T) >= 1000 else 1)
+
+
+def _value(axes: Axes, x: float, y: float, offset: tuple[float, float], side: str, text: str = "") -> None:
     axes.annotate(
-        fixed(float(y), 0 if abs(y) >= 1000 else 1),
+        text or _degrees(float(y)),
         (float(x), float(y)),
         offset,
         textcoords="offset points",

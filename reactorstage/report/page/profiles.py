@@ -15,11 +15,18 @@ from reactorstage.report.page.chart import Area, Chart, Curve, Label, spread_lab
 from reactorstage.report.profiles import BedProfile, displayed, train_profiles
 from reactorstage.report.rates import lighting, used
 from reactorstage.report.selectivity import least_loss, point_value, says_something
-from reactorstage.report.temperature import PEAK_SHOWN_K, equilibria, places_of_gaps, temperature_limits
+from reactorstage.report.temperature import (
+    PEAK_SHOWN_K,
+    equilibria,
+    lifted,
+    places_of_gaps,
+    temperature_limits,
+)
 from reactorstage.report.unit_sets import RATE
-from reactorstage.train.result import Array, LimitState, Rating
+from reactorstage.train.result import Array, Rating
 
 GREY_TEXT = "#565b63"
+EXIT_WIDTH = 44.0
 SHARES_MADE = "Numbers: the share of the rise of a bed that is made. A bed that reacts late is barely lit."
 STYLES = ("this", "chain", "dash", "dot")
 
@@ -52,21 +59,19 @@ def temperature(what: Along) -> Chart:
         what, "temperature", "Temperature", [line], f"temperature, {unit('temperature')}",
         y_range=y_range, more=[*limits, *levels, *gaps], legend=legend, labels=end_values(what, y_range),
     )  # fmt: skip
-    names = spread_labels(limit_names(what.rating, what.end, y_range), made.y)
+    names = spread_labels(limit_names(what, y_range), made.y)
     return replace(made, labels=(*made.labels, *names))
 
 
 def end_values(what: Along, y_range: tuple[float, float]) -> list[Label]:
     """Exit temperatures, over the equilibrium where that lies close above them, and peaks that are hotter."""
     found = []
-    close = 0.08 * (y_range[1] - y_range[0])
     levels = equilibria(what.rating, what.beds)
     for bed in what.beds:
         if bed.catalyst[-1] <= bed.catalyst[0]:
             continue
         exit_ = float(bed.T[-1])
-        level = levels.get(bed.owner, exit_)
-        height = level if exit_ <= level < exit_ + close else exit_
+        height = exit_ + lifted(exit_, levels.get(bed.owner), y_range)
         found.append(
             Label(float(bed.catalyst[-1]), height, _degrees(exit_), "end", (-3.0, -4.0), bed=bed.owner)
         )
@@ -105,17 +110,20 @@ def _level(bed: BedProfile, value: float, colour: str, kind: str) -> Curve:
     return Curve(bed.catalyst[[0, -1]], np.array([value, value]), colour, kind, bed.owner)
 
 
-def limit_names(rating: Rating, end: float, y_range: tuple[float, float]) -> list[Label]:
-    """Each label and bound once, at the right, over its line."""
-    names: dict[str, LimitState] = {}
-    for state in temperature_limits(rating):
-        names.setdefault(f"{state.label} {allowed(state.bound, state.kind)}", state)
+def limit_names(what: Along, y_range: tuple[float, float]) -> list[Label]:
+    """Each label and bound once, at the right over its line, beside the last exit where that stands there."""
+    names = {
+        f"{state.label} {allowed(state.bound, state.kind)}": shown(state.bound, state.kind) or 0.0
+        for state in temperature_limits(what.rating)
+    }
+    span = y_range[1] - y_range[0]
+    last = float(what.beds[-1].T[-1])
     found = []
-    for text, state in names.items():
-        bound = shown(state.bound, state.kind) or 0.0
+    for text, bound in names.items():
         if y_range[0] < bound < y_range[1]:
-            near_top = bound > y_range[1] - 0.06 * (y_range[1] - y_range[0])
-            found.append(Label(end, bound, text, "end", (0.0, 12.0 if near_top else -4.0), GREY_TEXT))
+            aside = EXIT_WIDTH if abs(bound - last) < 0.1 * span else 0.0
+            below = 12.0 if bound > y_range[1] - 0.06 * span else -4.0
+            found.append(Label(what.end, bound, text, "end", (-aside, below), GREY_TEXT))
     return found
 
 

@@ -29,8 +29,8 @@ def reference(subject: Subject) -> Section | None:
     blocks.append(Words(limits_sentence(subject.now, other.rating)))
     if subject.currency == other.rating.case.currency:
         rows = accounts(subject.now, other.rating)
-        named = money_table(rows, subject.currency)
-        blocks.append(Grid(named, "Money against the reference (today: the reference)"))
+        named = money_table(rows, subject.currency, "reference")
+        blocks.append(Grid(named, "Money against the reference"))
     else:
         blocks.append(Words(f"Money is not compared: the reference counts in {other.rating.case.currency}."))
     if [p.owner for p in subject.now.profiles] == [p.owner for p in other.rating.profiles]:
@@ -54,9 +54,17 @@ def changed_inputs(new: list[Given], old: list[Given]) -> Table:
     names = [name for name in names if name[:2] != ("the case", "case")]
     return table("INPUTS", [
         Column(("",), tuple(f"{group}: {name}" for group, name, _ in names), left=True),
-        Column(("here",), tuple(now.get(name, "not there") for name in names), left=True),
-        Column(("reference",), tuple(was.get(name, "not there") for name in names), left=True),
+        Column(("here",), tuple(_only(now.get(name), was.get(name)) for name in names), left=True),
+        Column(("reference",), tuple(_only(was.get(name), now.get(name)) for name in names), left=True),
     ])  # fmt: skip
+
+
+def _only(text: str | None, other: str | None) -> str:
+    """What a text says that the other does not."""
+    if text is None:
+        return "not there"
+    known = (other or "").split("; ")
+    return "; ".join(part for part in text.split("; ") if part not in known) or "-"
 
 
 def key(rows: list[Given], k: int) -> tuple[str, str, int]:

@@ -72,7 +72,8 @@ def inside(subject: Subject) -> list[str]:
     softly = [state for state in now.limits if state.soft and not state.met]
     if softly:
         texts.append(f"Beyond a soft limit, at its price: {and_list(bounds.together(softly))}.")
-    return [*texts, *([bounds.next_text(now)] if bounds.next_text(now) else [])]
+    near = [bounds.sentence(state, subject.currency) for state in bounds.next_ones(now)]
+    return [*texts, *([f"Nearest of the others: {'; '.join(near)}."] if near else [])]
 
 
 def cost(subject: Subject) -> list[str]:

@@ -35,8 +35,8 @@ def train(subject: Subject) -> Section | None:
     return Section("train", "Train and gaps", tuple(blocks))
 
 
-def money_table(rows: list[Account], currency: str) -> Table:
-    """Accounts with today's and the difference where there is one."""
+def money_table(rows: list[Account], currency: str, other: str = "today") -> Table:
+    """Accounts with those of another setting and the difference where there is one."""
     money = unit("money rate", currency)
     compared = any(row.was is not None for row in rows)
     old = tuple(fixed(row.was, 1) for row in rows)
@@ -44,6 +44,6 @@ def money_table(rows: list[Account], currency: str) -> Table:
     return table("MONEY", [
         Column(("",), tuple(row.label for row in rows), left=True),
         Column((f"now, {money}",), tuple(fixed(row.now, 1) for row in rows)),
-        Column((f"today, {money}",), old) if compared else None,
+        Column((f"{other}, {money}",), old) if compared else None,
         Column(("change",), change) if compared else None,
     ])  # fmt: skip
