@@ -37,7 +37,7 @@ def test_every_shipped_case_gives_a_small_page(path: Path) -> None:
 def test_the_setting_of_the_case_ends_with_5_when_it_breaks_limits(lead: Path) -> None:
     done = run("report", lead, "--as-set", "--quiet")
     assert done.exit_code == 5 and done.stderr == ""
-    assert "It breaks coking, bed 4" in done.stdout
+    assert "Broken: 1 limit." in done.stdout and "coking, bed 4: 11.44" in done.stdout
     assert Path("figures", lead.stem, "report.html").is_file()
 
 

@@ -6,6 +6,7 @@ Factors are held against Pint, an independent program, whose Btu differs by 1.4e
 from __future__ import annotations
 
 import re
+from dataclasses import replace
 
 import pint
 import pytest
@@ -18,6 +19,7 @@ from reactorstage.report.display import in_units, places, shown, told, unit
 from reactorstage.report.gaps import gap_table
 from reactorstage.report.profiles_csv import headings
 from reactorstage.report.result_json import as_text, rating_json
+from reactorstage.report.sentences import notes
 from reactorstage.report.unit_sets import RATE, RATE_SCALE, UNIT_SETS, Scale
 from tests.report import synthetic
 
@@ -97,3 +99,14 @@ def test_json_does_not_change_with_the_set() -> None:
     trade = as_text(rating_json(rating))
     with in_units("US"):
         assert as_text(rating_json(rating)) == trade
+
+
+def test_a_note_about_an_unlit_bed_follows_the_set() -> None:
+    """Closed form: 31 K are 55.8 R, 0.3 K are 0.54 R."""
+    note = "Bed 2 is practically unlit: it rises 0.3 K of a possible 31 K."
+    rating = replace(synthetic.rating(), notes=(note, "4 % of bed 1 lies outside."))
+    assert notes(rating)[0] == note
+    with in_units("US"):
+        assert notes(rating) == [
+            "Bed 2 is practically unlit: it rises 0.5 R of a possible 55.8 R.", "4 % of bed 1 lies outside.",
+        ]  # fmt: skip

@@ -16,7 +16,7 @@ from reactorstage.report.heat import bound_of, heading, steps
 from reactorstage.report.heat import temperature_range as heat_range
 from reactorstage.report.page.along import Along, kept
 from reactorstage.report.page.chart import TOP, Bar, Chart, Curve, Label, Reading, spread_labels
-from reactorstage.report.page.profiles import GREY_TEXT
+from reactorstage.report.page.profiles import GREY_TEXT, bed_behind
 from reactorstage.report.profiles import displayed
 from reactorstage.report.temperature import temperature_limits
 from reactorstage.report.unit_sets import RATE
@@ -62,7 +62,7 @@ def _leg(leg: Leg, today: bool) -> Curve:
     kind = KINDS[leg.kind]
     if today:
         kind = "today" if kind == "this" else f"{kind} thin"
-    bed = leg.owner if leg.kind == "bed" else ""
+    bed = leg.owner if leg.kind == "bed" else bed_behind(leg.owner)
     return Curve(displayed(leg.T, "temperature"), 100.0 * leg.X, look.SPLIT_REACTANT, kind, bed, today)
 
 

@@ -148,8 +148,13 @@ def gap_curves(rating: Rating, beds: Sequence[BedProfile], today: bool) -> list[
                 T = displayed(np.array([step.T_before, step.T_after]), "temperature")
                 kind = "gap" if step.kind == "inject" else "exchanger"
                 kind = f"{kind} thin" if today else kind
-                found.append(Curve(np.array([x, x]), T, look.TEMPERATURE, kind, "", today))
+                found.append(Curve(np.array([x, x]), T, look.TEMPERATURE, kind, bed_behind(place), today))
     return found
+
+
+def bed_behind(gap: str) -> str:
+    """The bed that a gap leads to: both are switched together."""
+    return f"bed {int(gap.removeprefix('gap ')) + 1}"
 
 
 def flows(what: Along) -> list[Chart]:

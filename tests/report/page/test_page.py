@@ -226,7 +226,10 @@ def test_results_are_in_one_set_of_units(name: str, found: Optimisation) -> None
 
 def test_a_rating_has_a_page_that_promises_no_worths(hostile: Made) -> None:
     facts = dict(summary_facts(hostile.subject))
-    assert facts["Inside its limits?"][0].startswith("No. It breaks coking, bed 4")
+    assert facts["Inside its limits?"][:2] == (
+        "No. Broken: 1 limit.",
+        "coking, bed 4: 11.44 mol/mol, at least 11.6 mol/mol.",
+    )
     assert "cannot tell" in facts["Which limits cost money?"][0]
     assert 'id="flatness"' not in hostile.text and "limits broken" in hostile.text
 
@@ -248,6 +251,27 @@ def test_a_train_without_an_answer_still_has_a_page(page: Made, lead: Path) -> N
     text = page_html(subject).decode()
     assert "There is no answer: bed 1 has no inlet." in text and 'id="profiles"' not in text
     Reader(text)
+
+
+@pytest.mark.parametrize(
+    "setting", ["bed 2.state=bypassed", "every bed.catalyst activity=0", "bed 1.diameter=0.3 m"]
+)
+def test_odd_trains_have_whole_pages(setting: str, lead: Path) -> None:
+    programme = reactorstage.compile(reactorstage.load(lead, [setting]))
+    text = page_html(of_rating(programme, programme.rate(), overrides=[setting])).decode()
+    assert setting in Reader(text).words and "nan" not in text.partition("<nav")[2].partition("<script")[0]
+
+
+def test_an_aim_that_is_no_money_is_told_in_its_own_unit(lead: Path, folder: Path) -> None:
+    text = lead.read_text(encoding="utf-8").replace(
+        "aim: least money.total", "aim: most train.selectivity to ethylbenzene from ethylene"
+    )
+    path = folder / "selectivity.yaml"
+    path.write_text(text, encoding="utf-8")
+    subject = of_optimum(reactorstage.optimise(reactorstage.load(path), starts=3))
+    facts = dict(summary_facts(subject))
+    assert "the aim: most" in facts["What does it cost?"][0] and "%" in facts["What does it cost?"][0]
+    Reader(page_html(subject).decode())
 
 
 def test_a_reference_case_is_compared(page: Made, cases: Path) -> None:

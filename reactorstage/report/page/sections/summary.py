@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from collections.abc import Sequence
 
 from reactorstage.optimiser.result import CANNOT, INSIDE, NO_ANSWER
 from reactorstage.report import bounds, sentences
@@ -13,9 +14,10 @@ from reactorstage.report.display import and_list, counted, difference_kind, fixe
 from reactorstage.report.page.parts import Facts, Section
 from reactorstage.report.page.subject import Search, Subject
 from reactorstage.report.worths import WorthBar, worth_bars
-from reactorstage.train.result import Rating
+from reactorstage.train.result import LimitState, Rating
 
 MOST_WORTHS = 3
+MOST_BROKEN = 6
 
 
 def summary(subject: Subject) -> Section:
@@ -57,13 +59,7 @@ def inside(subject: Subject) -> list[str]:
     broken, held = bounds.broken(now), bounds.at_work(now)
     texts = []
     if broken:
-        cannot = subject.search is not None and subject.search.optimum.status == CANNOT
-        head = (
-            "No, and no setting found meets them all. This one, which breaks least, breaks"
-            if cannot
-            else "No. It breaks"
-        )
-        texts.append(f"{head} {and_list([bounds.sentence(s, subject.currency) for s in broken])}.")
+        texts += broken_limits(subject, broken)
     else:
         count = sum(not state.implied for state in now.limits)
         texts.append(f"Yes, all {counted(count, 'limit')} hold." if count else "The case states no limits.")
@@ -74,6 +70,19 @@ def inside(subject: Subject) -> list[str]:
         texts.append(f"Beyond a soft limit, at its price: {and_list(bounds.together(softly))}.")
     near = [bounds.sentence(state, subject.currency) for state in bounds.next_ones(now)]
     return [*texts, *([f"Nearest of the others: {'; '.join(near)}."] if near else [])]
+
+
+def broken_limits(subject: Subject, broken: Sequence[LimitState]) -> list[str]:
+    """How many limits are broken, then each in a line of its own."""
+    cannot = subject.search is not None and subject.search.optimum.status == CANNOT
+    head = "No, and no setting found meets them all. This one breaks least" if cannot else "No. Broken"
+    lines = [f"{bounds.sentence(state, subject.currency)}." for state in broken[:MOST_BROKEN]]
+    rest = len(broken) - MOST_BROKEN
+    return [
+        f"{head}: {counted(len(broken), 'limit')}.",
+        *lines,
+        *([f"And {rest} more below."] if rest > 0 else []),
+    ]
 
 
 def cost(subject: Subject) -> list[str]:
@@ -142,7 +151,7 @@ def worries(subject: Subject) -> list[str]:
     texts = list(subject.seen.warnings)
     if subject.search is not None:
         texts += search_worries(subject, subject.search)
-    texts += [hottest(subject.now), *subject.now.notes, SHORT]
+    texts += [hottest(subject.now), *sentences.notes(subject.now), SHORT]
     return [text for text in texts if text]
 
 
