@@ -11,7 +11,7 @@ from matplotlib.figure import Figure
 from reactorstage.report import look
 from reactorstage.report.cascade import Cascade, Rung, cascades, left_out
 from reactorstage.report.cautions import SHORT
-from reactorstage.report.display import and_list, brief, shown, told, unit
+from reactorstage.report.display import allowed, and_list, brief, shown, unit
 from reactorstage.report.profiles import displayed
 from reactorstage.train.result import Array, Rating
 
@@ -47,7 +47,7 @@ def heat_figure(rating: Rating, title: str, status: str) -> Figure:
 def notes(rating: Rating, sides: Sequence[Cascade]) -> list[str]:
     """How the lines are made, the approach, what is not drawn."""
     approach = (
-        [f"Minimum approach {told(sides[0].approach, 'temperature difference')}."] if rating.heat else []
+        [f"Minimum approach {allowed(sides[0].approach, 'temperature difference')}."] if rating.heat else []
     )
     absent = left_out(rating)
     missing = [f"Not drawn, since its heat is unpriced: {and_list(absent)}."] if absent else []

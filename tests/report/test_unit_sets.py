@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import re
 from dataclasses import replace
+from functools import cache
 
 import pint
 import pytest
@@ -28,6 +29,11 @@ SI_OF = {kind.name: kind.si_unit for kind in units.KINDS.values()} | {RATE: "mol
 ROWS = [(one.name, kind, scale) for one in UNIT_SETS.values() for kind, scale in one.scales.items()]
 
 
+@cache
+def registry() -> pint.UnitRegistry:
+    return pint.UnitRegistry()
+
+
 def pint_text(text: str) -> str:
     """A unit of ours as Pint reads it."""
     plain = re.sub(r"\((?:a|g)\)", "", text).replace("10^6 Btu", "1e6 Btu").replace("1000 lb", "1000 * lb")
@@ -45,12 +51,11 @@ def pint_text(text: str) -> str:
 
 @pytest.mark.parametrize(("name", "kind", "scale"), [*ROWS, ("trade", RATE, RATE_SCALE)])
 def test_scale_is_that_of_its_unit(name: str, kind: str, scale: Scale) -> None:
-    registry = pint.UnitRegistry()
     if kind == "temperature":
         assert -scale.offset == pytest.approx(ABSOLUTE_ZERO[scale.unit])
         assert 180.0 * scale.scale == pytest.approx(100.0 if scale.unit == "degF" else 180.0)
         return
-    factor = registry.parse_expression(f"1 * {pint_text(scale.unit)}")
+    factor = registry().parse_expression(f"1 * {pint_text(scale.unit)}")
     assert factor.to(pint_text(SI_OF[kind])).magnitude == pytest.approx(scale.scale, rel=1e-6)
 
 
