@@ -44,6 +44,12 @@ class Optimisation:
     def status(self) -> str:
         return self.optimum.status
 
+    def _repr_html_(self) -> str:
+        """What notebooks show: the tables of the package's face."""
+        from reactorstage import tables
+
+        return tables(self)._repr_html_()
+
 
 def compile(case: Case) -> TrainProgramme:
     """Compile a case into one function of its numbers; raises CaseProblems."""

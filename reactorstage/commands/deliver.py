@@ -11,6 +11,7 @@ from reactorstage.commands.console import say, tell
 from reactorstage.commands.options import Output
 
 if TYPE_CHECKING:
+    from reactorstage.optimiser.result import Optimum
     from reactorstage.train.result import Rating
 
 
@@ -24,17 +25,20 @@ class Result:
     status: str
     drawn: Rating | None
     behind: Rating | None = None
+    optimum: Optimum | None = None
 
 
 def deliver(result: Result, output: Output) -> None:
     """Show the result, then write its files and say where they are."""
     from reactorstage.commands.layout import screen_width
+    from reactorstage.report.display import in_units
     from reactorstage.report.result_json import as_text
 
     text = as_text(result.content, result.seconds)
-    say(text.rstrip("\n") if output.as_json else "\n".join(result.lines(screen_width())))
-    if output.folder is not None:
-        _write(result, text, output)
+    with in_units(output.units):
+        say(text.rstrip("\n") if output.as_json else "\n".join(result.lines(screen_width())))
+        if output.folder is not None:
+            _write(result, text, output)
 
 
 def _write(result: Result, text: str, output: Output) -> None:
@@ -46,7 +50,9 @@ def _write(result: Result, text: str, output: Output) -> None:
     if output.figures and result.drawn is not None:
         from reactorstage.report.figures import figure_files
 
-        paths += write_all(output.folder, figure_files(result.drawn, result.behind, result.status))
+        paths += write_all(
+            output.folder, figure_files(result.drawn, result.behind, result.status, result.optimum)
+        )
     if not output.quiet:
         tell(_written_text(output.folder, paths))
 
@@ -60,6 +66,7 @@ def _profiles(rating: Rating | None) -> dict[str, bytes]:
 
 
 def _written_text(folder: Path, paths: Sequence[Path]) -> str:
-    names = [path.name for path in paths if path.suffix != ".svg"]
-    also = " (and .svg)" if len(names) < len(paths) else ""
+    pictures = {path.stem for path in paths if path.suffix == ".png"}
+    names = [path.name for path in paths if path.suffix == ".png" or path.stem not in pictures]
+    also = " (pictures also as .svg, their numbers as .csv)" if pictures else ""
     return f"written to {folder}/: {', '.join(names)}{also}"

@@ -16,10 +16,7 @@ if TYPE_CHECKING:
 EXAMPLE = "reactorstage optimise plant.yaml --starts 40 --out results"
 
 
-@click.command(cls=Verb, example=EXAMPLE)
-@case_file
-@output_options
-@click.option(
+starts_option = click.option(
     "--starts",
     metavar="N",
     type=click.IntRange(min=1),
@@ -27,7 +24,7 @@ EXAMPLE = "reactorstage optimise plant.yaml --starts 40 --out results"
     show_default=True,
     help="How many starting points are tried.",
 )
-@click.option(
+seed_option = click.option(
     "--seed",
     metavar="N",
     type=click.IntRange(min=0),
@@ -35,12 +32,20 @@ EXAMPLE = "reactorstage optimise plant.yaml --starts 40 --out results"
     show_default=True,
     help="Seed of the random starting points.",
 )
-@click.option(
+jobs_option = click.option(
     "--jobs",
     metavar="N",
     type=click.IntRange(min=1),
     help="Threads; by default one per processor. The result does not depend on it.",
 )
+
+
+@click.command(cls=Verb, example=EXAMPLE)
+@case_file
+@output_options
+@starts_option
+@seed_option
+@jobs_option
 def optimise(
     case_file: Path, overrides: tuple[str, ...], starts: int, seed: int, jobs: int | None, **options: Any
 ) -> int:
@@ -88,6 +93,7 @@ def _deliver(outcome: Optimisation, output: Output) -> None:
             status,
             outcome.best,
             outcome.today,
+            outcome.optimum,
         ),
         output,
     )

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from reactorstage.report.display import difference_kind, shown, unit
+from reactorstage.report.display import difference_kind, places, shown, unit
 from reactorstage.report.table import Column, Table, folded, marked, marks, plain, table
 from reactorstage.train.result import Rating
 
@@ -57,6 +57,7 @@ class Before:
         if self.rating is None:
             return None
         values = values_of(self.rating, self.owners, word)
+        decimals = decimals_of(self.rating, self.owners, word, decimals)
         return Column(heading, plain(values, decimals), rank, group)
 
 
@@ -99,7 +100,13 @@ def _quantity(
     if only_unlike is not None and all(value == only_unlike for value in values):
         return None
     signs = signs_of(rating, beds, word)
-    return Column(heading, marked(values, decimals, signs), rank, group)
+    return Column(heading, marked(values, decimals_of(rating, beds, word, decimals), signs), rank, group)
+
+
+def decimals_of(rating: Rating, owners: Sequence[str], word: str, wanted: int) -> int:
+    """Decimals for `owner.word` in the unit that is shown, as fine as `wanted` in the trade unit."""
+    known = (rating.quantities.get(f"{owner}.{word}") for owner in owners)
+    return next((places(value.kind, wanted) for value in known if value is not None), wanted)
 
 
 def _units_of(rating: Rating, owners: Sequence[str], word: str) -> tuple[str, ...]:
@@ -121,7 +128,8 @@ def injected_feeds(rating: Rating) -> list[str]:
 
 
 def _catalyst(now: Rating, beds: Sequence[str]) -> Column:
-    return Column(_units_of(now, beds, "catalyst"), plain(values_of(now, beds, "catalyst"), 2), rank=3)
+    cells = plain(values_of(now, beds, "catalyst"), decimals_of(now, beds, "catalyst", 2))
+    return Column(_units_of(now, beds, "catalyst"), cells, rank=3)
 
 
 def _injections(now: Rating, before: Before, beds: Sequence[str]) -> list[Column | None]:

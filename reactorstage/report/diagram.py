@@ -22,6 +22,7 @@ from reactorstage.report.conversion import (
 from reactorstage.report.display import allowed, brief, owners_text, shown, told, unit
 from reactorstage.report.profiles import displayed
 from reactorstage.report.temperature import WORDS
+from reactorstage.report.unit_sets import RATE
 from reactorstage.train.result import Array, LimitState, Rating
 
 HEIGHT = 5.2
@@ -30,9 +31,8 @@ RIGHT_ROOM, LEFT_ROOM = 0.14, 0.2
 REACH = 0.3
 TOP_PERCENT = 103.0
 MOST_LEVELS = 7
-RATE = "#a9b0b8"
+RATE_GREY = "#8a9199"
 RATE_WEIGHT, LINE_WEIGHT, GAP_PART = 0.7, 1.4, 0.5
-BEST: look.LineStyle = (0, (7.0, 2.0, 1.5, 2.0))
 LABEL_ROWS, LABEL_APART = (0.03, 0.13, 0.23, 0.33), 0.07
 HEAD_APART = 62.0
 NAME_ROOM, NAME_WIDTH = 7.0, 0.08
@@ -101,7 +101,9 @@ def _lines(axes: Axes, behind: Background | None) -> list[tuple[float, str, str]
     labels = [(100.0 * float(behind.equilibrium[-1]), "equilibrium", look.INK)]
     if behind.rates is not None:
         best = displayed(behind.rates.best, "temperature")
-        axes.plot(best, 100.0 * behind.rates.X, color=look.INK, linewidth=1.0, linestyle=BEST, zorder=2.4)
+        axes.plot(
+            best, 100.0 * behind.rates.X, color=look.INK, linewidth=1.0, linestyle=look.CHAIN, zorder=2.4
+        )
     return labels
 
 
@@ -110,11 +112,11 @@ def _rates(axes: Axes, behind: Background | None, legs: Sequence[Leg]) -> None:
     if behind is None or behind.rates is None:
         return
     T, X = displayed(behind.T, "temperature"), 100.0 * behind.rates.X
-    rate = 1e3 * displayed(behind.rates.rate, "molar flow")
+    rate = displayed(behind.rates.rate, RATE)
     values = round_rates(rate, MOST_LEVELS)
     if not values:
         return
-    axes.contour(T, X, rate, levels=values, colors=RATE, linewidths=RATE_WEIGHT, zorder=1.5)
+    axes.contour(T, X, rate, levels=values, colors=RATE_GREY, linewidths=RATE_WEIGHT, zorder=1.5)
     for value, x, y in _placed(axes, behind, rate, values, legs):
         axes.annotate(
             brief(value),
@@ -268,8 +270,8 @@ def _key_rows(
         look.KeyRow("today", look.TODAY_WEIGHT) if with_today else None,
         look.KeyRow("injection", look.THIS_WEIGHT * GAP_PART, look.DOTTED) if injects else None,
         look.KeyRow("limit", look.LIMIT_WEIGHT, look.DASHED, look.LIMIT) if _limits(rating) else None,
-        look.KeyRow("best rate", 1.0, BEST, look.INK) if best else None,
-        look.KeyRow("equal rate, kmol/(t h)", RATE_WEIGHT, look.SOLID, RATE) if single else None,
+        look.KeyRow("best rate", 1.0, look.CHAIN, look.INK) if best else None,
+        look.KeyRow(f"equal rate, {unit(RATE)}", RATE_WEIGHT, look.SOLID, RATE_GREY) if single else None,
     ]
     return [row for row in rows if row is not None]
 

@@ -2,23 +2,62 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Iterator, Sequence
+from contextlib import contextmanager
+from contextvars import ContextVar
 
 from reactorstage.case import units
+from reactorstage.errors import CallError
+from reactorstage.report.unit_sets import RATE, RATE_SCALE, TRADE, UNIT_SETS, Scale, UnitSet
 
 DIFFERENCE = {"temperature": "temperature difference", "pressure": "pressure difference"}
 DECIMALS = {"temperature": 1, "temperature difference": 1}
 ABSENT = "-"
 
 
+_chosen: ContextVar[UnitSet] = ContextVar("unit set", default=UNIT_SETS[TRADE])
+
+
+@contextmanager
+def in_units(name: str) -> Iterator[UnitSet]:
+    """Everything that is shown inside is shown in this set of units. Raises CallError for an unknown one."""
+    if name not in UNIT_SETS:
+        raise CallError(f"there is no set of units called {name!r}; there are {', '.join(UNIT_SETS)}")
+    token = _chosen.set(UNIT_SETS[name])
+    try:
+        yield UNIT_SETS[name]
+    finally:
+        _chosen.reset(token)
+
+
+def unit_set() -> UnitSet:
+    """The set of units in which things are shown now."""
+    return _chosen.get()
+
+
+def _scale(kind: str) -> Scale | None:
+    """How the chosen set shows a kind; None where it is shown as `reactorstage.case.units` says."""
+    return _chosen.get().scales.get(kind, RATE_SCALE if kind == RATE else None)
+
+
 def shown(value: float | None, kind: str) -> float | None:
     """An SI value in its display unit; None stays None."""
-    return None if value is None else float(units.to_display(value, kind))
+    if value is None:
+        return None
+    scale = _scale(kind)
+    return float(units.to_display(value, kind) if scale is None else value / scale.scale - scale.offset)
 
 
 def unit(kind: str, currency: str = "") -> str:
     """The display unit of a kind; a difference of temperature or pressure has a kind of its own."""
-    return units.display_unit(kind, currency)
+    scale = _scale(kind)
+    return units.display_unit(kind, currency) if scale is None else scale.unit
+
+
+def places(kind: str, wanted: int) -> int:
+    """Decimals in the chosen unit that are as fine as `wanted` decimals in the trade unit."""
+    scale = _scale(kind)
+    return wanted if scale is None else max(wanted + scale.digits, 0)
 
 
 def difference_kind(kind: str) -> str:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from reactorstage.report.beds import Before, paired, signs_of, values_of
-from reactorstage.report.display import fixed, money, readable, shown, unit
+from reactorstage.report.display import fixed, money, places, readable, shown, unit
 from reactorstage.report.table import Column, Table, marked, table
 from reactorstage.train.result import Rating
 
@@ -60,9 +60,13 @@ def _destinations(rating: Rating, places: Sequence[str]) -> Column | None:
     if not rating.heat:
         return None
     cells = tuple(_destination_cell(rating, place) for place in places)
-    return Column(("levels, MW",), cells, rank=10, left=True)
+    return Column((f"levels, {unit('power')}",), cells, rank=10, left=True)
 
 
 def _destination_cell(rating: Rating, place: str) -> str:
     sales = [sale for sale in rating.heat if sale.owner == place and abs(sale.heat) > 1.0]
-    return ", ".join(f"{sale.level} {readable(shown(sale.heat, 'power'))}" for sale in sales) or "-"
+    return ", ".join(f"{sale.level} {_heat_text(shown(sale.heat, 'power') or 0.0)}" for sale in sales) or "-"
+
+
+def _heat_text(heat: float) -> str:
+    return readable(heat) if heat < 100.0 else fixed(heat, places("power", 2))

@@ -20,6 +20,7 @@ from matplotlib.figure import Figure
 from matplotlib.lines import Line2D
 from matplotlib.ticker import FuncFormatter, LogLocator, NullLocator
 
+from reactorstage.report.display import brief, unit
 from reactorstage.report.profiles import BedProfile
 from reactorstage.report.table import folded
 from reactorstage.train.result import Array
@@ -30,6 +31,10 @@ EXCESS_REACTANT = "#5f6f52"
 PRODUCT = "#20242b"
 BY_PRODUCT = "#c27d0e"
 LIMIT = "#6b7079"
+HEAT = "#6d4a96"
+PRESSURE = "#3f7d20"
+MONEY = "#14736b"
+MONEY_LIGHT = "#9fcdc6"
 INK = "#20242b"
 BAND = "#eef0f2"
 PAPER = "#ffffff"
@@ -37,6 +42,7 @@ PAPER = "#ffffff"
 SOLID: Literal["-"] = "-"
 DASHED = (0, (5.0, 3.0))
 DOTTED = (0, (1.2, 1.8))
+CHAIN = (0, (7.0, 2.0, 1.5, 2.0))
 LineStyle = Literal["-"] | tuple[int, tuple[float, ...]]
 BY_PRODUCT_LINES: tuple[LineStyle, ...] = (SOLID, (0, (7.0, 2.0, 1.5, 2.0)), (0, (3.0, 1.5)), (0, (1.5, 1.5)))
 
@@ -48,7 +54,7 @@ LABEL_LEFT = -0.083
 TEXT, SMALL = 9.0, 7.6
 LINE_POINTS = 9.6
 
-CLEARED = {"facecolor": PAPER, "edgecolor": "none", "alpha": 0.65, "pad": 0.2}
+CLEARED = {"facecolor": PAPER, "edgecolor": "none", "alpha": 0.85, "pad": 0.2}
 
 SETTINGS: Any = {
     "svg.hashsalt": "reactorstage",
@@ -115,7 +121,8 @@ def bed_bands(axes: Axes, beds: Sequence[BedProfile], names: bool) -> None:
             axes.axvspan(first, last, color=BAND, linewidth=0, zorder=0)
         if names:
             wide = (last - first) / end > 0.07
-            label = f"{bed.owner}\n{last - first:.3g} t" if wide else bed.owner.removeprefix("bed ")
+            size = f"{brief(last - first, 3)} {unit('mass')}"
+            label = f"{bed.owner}\n{size}" if wide else bed.owner.removeprefix("bed ")
             axes.annotate(
                 label,
                 ((first + last) / 2, 1.0),
@@ -168,7 +175,7 @@ def catalyst_axis(axes: Axes, shown: bool) -> None:
     """The common x axis: catalyst counted from the train inlet."""
     axes.tick_params(labelbottom=shown, labelsize=TEXT - 0.5)
     if shown:
-        axes.set_xlabel("catalyst from the train inlet, t")
+        axes.set_xlabel(f"catalyst from the train inlet, {unit('mass')}")
 
 
 def spaced(wanted: Sequence[float], apart: float) -> list[float]:

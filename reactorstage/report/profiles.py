@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from reactorstage.report.display import shown
+from reactorstage.report.unit_sets import RATE
 from reactorstage.train.result import Array, Profile, Rating
 
 SMALLEST_PART = 1e-9
@@ -16,10 +17,9 @@ SMALLEST_PART = 1e-9
 class BedProfile:
     """One bed with N points in display units.
 
-    catalyst (N,) t counted from the train inlet, bed_catalyst (N,) kg in this bed, depth (N,) %,
-    T (N,) degC, p (N,) bar(a), F (N, S) kmol/h, r (N, R) kmol/(kg h); point and cumulative (N, S) mol made
-    of each species per 100 mol of the main reactant converted, nan where nothing is converted.
-    T_peak degC at peak_catalyst t.
+    catalyst (N,) counted from the train inlet, bed_catalyst (N,) in this bed, depth (N,) %, T (N,), p (N,),
+    F (N, S) flows, r (N, R) rates per catalyst; point and cumulative (N, S) mol made of each species per
+    100 mol of the main reactant converted, nan where nothing is converted. T_peak at peak_catalyst.
     """
 
     owner: str
@@ -52,12 +52,12 @@ def _bed(rating: Rating, profile: Profile, loaded: float, made_before: Array) ->
     return BedProfile(
         owner=profile.owner,
         catalyst=displayed(loaded + profile.w, "mass"),
-        bed_catalyst=profile.w,
+        bed_catalyst=displayed(profile.w, "mass"),
         depth=100.0 * profile.w / size if size > 0.0 else np.zeros_like(profile.w),
         T=displayed(profile.T, "temperature"),
         p=displayed(profile.p, "pressure"),
         F=displayed(profile.F, "molar flow"),
-        r=displayed(profile.r, "molar flow"),
+        r=displayed(profile.r, RATE),
         point=_per_converted(rating, profile.r @ rating.nu),
         cumulative=_per_converted(rating, made_before + profile.F - profile.F[0]),
         T_peak=shown(profile.T_peak, "temperature") or 0.0,

@@ -2,18 +2,13 @@
 
 from __future__ import annotations
 
-import csv
-import io
-from collections.abc import Sequence
-
 import numpy as np
 
-from reactorstage.report.cautions import SHORT
 from reactorstage.report.display import unit
 from reactorstage.report.profiles import BedProfile, train_profiles
+from reactorstage.report.sheet import Cell, sheet
+from reactorstage.report.unit_sets import RATE
 from reactorstage.train.result import Rating
-
-SIGNIFICANT = 10
 
 
 def profiles_csv(rating: Rating) -> bytes:
@@ -21,12 +16,9 @@ def profiles_csv(rating: Rating) -> bytes:
 
     The last column, `note`, holds the caution in the first row and nothing below.
     """
-    stream = io.StringIO(newline="")
-    writer = csv.writer(stream, lineterminator="\n")
-    writer.writerow(headings(rating))
-    rows = [row for bed in train_profiles(rating) for row in _rows(rating, bed)]
-    writer.writerows([*row, SHORT if k == 0 else ""] for k, row in enumerate(rows))
-    return stream.getvalue().encode()
+    return sheet(
+        headings(rating), [row for bed in train_profiles(rating) for row in _rows(rating, bed)]
+    ).csv()
 
 
 def headings(rating: Rating) -> list[str]:
@@ -40,14 +32,13 @@ def headings(rating: Rating) -> list[str]:
     return [
         "bed",
         "depth, %",
-        "catalyst in bed, kg",
+        f"catalyst in bed, {mass}",
         f"catalyst from train inlet, {mass}",
         f"temperature, {unit('temperature')}",
         f"pressure, {unit('pressure')}",
         *(f"flow of {species}, {flow}" for species in rating.species),
-        *(f"rate of {reaction}, kmol/(kg h)" for reaction in rating.reactions),
+        *(f"rate of {reaction}, {unit(RATE)}" for reaction in rating.reactions),
         *selectivity,
-        "note",
     ]
 
 
@@ -56,14 +47,10 @@ def has_selectivity(rating: Rating) -> bool:
     return rating.product in rating.species and rating.main_reactant in rating.species
 
 
-def _rows(rating: Rating, bed: BedProfile) -> list[list[str]]:
+def _rows(rating: Rating, bed: BedProfile) -> list[list[Cell]]:
     columns = [bed.depth, bed.bed_catalyst, bed.catalyst, bed.T, bed.p, *bed.F.T, *bed.r.T]
     if has_selectivity(rating):
         product = rating.species.index(rating.product)
         columns += [bed.point[:, product], bed.cumulative[:, product]]
     name = bed.owner.removeprefix("bed ")
-    return [[name, *_cells(row)] for row in np.column_stack(columns)]
-
-
-def _cells(row: Sequence[float]) -> list[str]:
-    return [f"{value + 0.0:.{SIGNIFICANT}g}" if np.isfinite(value) else "" for value in row]
+    return [[name, *map(float, row)] for row in np.column_stack(columns)]

@@ -17,7 +17,8 @@ from reactorstage.optimiser.programme import FreeNumber, Programme
 from reactorstage.optimiser.result import Answer, EqualSplit, Optimum, StartRecord, Worth
 from reactorstage.report.aim import Aim, aim_of
 from reactorstage.report.cautions import FULL
-from reactorstage.report.display import difference, difference_kind, money, shown, unit
+from reactorstage.report.display import difference, difference_kind, in_units, money, shown, unit
+from reactorstage.report.unit_sets import TRADE
 from reactorstage.train.result import HeatSale, LimitState, Rating, Value
 
 if TYPE_CHECKING:
@@ -31,6 +32,7 @@ LINE = 120
 Json = dict[str, Any]
 
 
+@in_units(TRADE)
 def rating_json(rating: Rating, overrides: Sequence[str] = ()) -> Json:
     """The content of result.json for `rate`."""
     return {
@@ -44,6 +46,7 @@ def rating_json(rating: Rating, overrides: Sequence[str] = ()) -> Json:
     }
 
 
+@in_units(TRADE)
 def optimum_json(
     programme: Programme,
     optimum: Optimum,

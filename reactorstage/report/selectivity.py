@@ -58,11 +58,11 @@ def _draw(
     colour: str,
     styles: Sequence[look.LineStyle],
 ) -> None:
-    least = _least_loss(rating, (*beds, *before))
+    least = least_loss(rating, (*beds, *before))
     points, sums, labels = [], [], []
     for name, style in zip(species, styles, strict=False):
         index = rating.species.index(name)
-        point, summed = _point(rating, index, least), _summed(index)
+        point, summed = point_value(rating, index, least), _summed(index)
         look.along(axes, before, summed, colour, style, look.TODAY_WEIGHT)
         look.along(axes, beds, summed, colour, style, look.THIS_WEIGHT)
         look.along(axes, beds, point, colour, look.DOTTED, look.POINT_WEIGHT)
@@ -73,7 +73,7 @@ def _draw(
     look.end_labels(axes, [label for label in labels if np.isfinite(label[0])])
 
 
-def _least_loss(rating: Rating, beds: Sequence[BedProfile]) -> float:
+def least_loss(rating: Rating, beds: Sequence[BedProfile]) -> float:
     """The rate of loss of the main reactant below which the point value says nothing, kmol/(kg h)."""
     fastest = max((float(np.max(_loss(rating, bed), initial=0.0)) for bed in beds), default=0.0)
     return STILL_REACTING * fastest
@@ -83,7 +83,7 @@ def _loss(rating: Rating, bed: BedProfile) -> Array:
     return -(bed.r @ rating.nu)[:, rating.species.index(rating.main_reactant)]
 
 
-def _point(rating: Rating, index: int, least: float) -> Callable[[BedProfile], Array]:
+def point_value(rating: Rating, index: int, least: float) -> Callable[[BedProfile], Array]:
     return lambda bed: np.where(_loss(rating, bed) > least, bed.point[:, index], np.nan)
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 
 from reactorstage.optimiser.programme import Programme
@@ -20,12 +21,15 @@ from reactorstage.report.display import (
     fixed,
     readable,
     shown,
+    told,
     unit,
     with_unit,
 )
 from reactorstage.train.result import LimitState, Rating
 
 PHRASES = 2
+UNLIT = "is practically unlit"
+KELVINS = re.compile(r"([0-9.]+) K\b")
 
 
 def out_line(now: Rating, was: Rating | None = None) -> str:
@@ -83,12 +87,19 @@ def second_answer(programme: Programme, optimum: Optimum, best: Rating, others: 
     if not others:
         return f"All {ended} starts that ended agree on this answer." if ended > 1 else ""
     other = others[0]
-    apart = told_apart(programme, best.x, other.x)[:PHRASES]
+    apart = told_apart(programme, best.x, other.x, number_shown, unit)[:PHRASES]
     more = cost_difference(other, best)
     where = f" ({'; '.join(apart)})" if apart else ""
     cost = "has no value" if more is None else aim_of(best).worse(more)
     rest = f"; {len(others) - 1} more in result.json" if len(others) > 1 else ""
     return f"A second answer{where} {cost}{rest}."
+
+
+def number_shown(value: float, kind: str) -> float:
+    """A number that is there in its display unit."""
+    number = shown(value, kind)
+    assert number is not None
+    return number
 
 
 def today_text(was: Rating) -> str:
@@ -150,7 +161,21 @@ def _relaxed(best: Rating, index: int, amount: float) -> str:
 
 def warnings(rating: Rating) -> list[str]:
     """The notes of the rating, but for unpriced heat: the first line and GAPS say that."""
-    return [note for note in rating.notes if "carries no price" not in note]
+    return [note for note in notes(rating) if "carries no price" not in note]
+
+
+def notes(rating: Rating) -> list[str]:
+    """The notes of the rating, temperatures in the unit that is shown."""
+    return [_in_shown_unit(rating, note) for note in rating.notes]
+
+
+def _in_shown_unit(rating: Rating, note: str) -> str:
+    """A note about an unlit bed tells its rise; the train floor writes it in K."""
+    head, found, tail = note.partition(UNLIT)
+    kind = "temperature difference"
+    if not found or unit(kind) == "K":
+        return note
+    return head + found + KELVINS.sub(lambda size: told(float(size[1]), kind), tail)
 
 
 def _number(rating: Rating, name: str) -> float | None:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import Any
 
 from reactorstage.report.display import fixed, same_decimals
 from reactorstage.train.result import Rating
@@ -42,6 +43,20 @@ class Table:
     @property
     def rows(self) -> int:
         return len(self.columns[0].cells) if self.columns else 0
+
+    def to_pandas(self) -> Any:
+        """A pandas data frame: numbers as numbers, their units in the headings.
+
+        Raises CallError where pandas is not installed.
+        """
+        from reactorstage.report.notebook import frame
+
+        return frame(self)
+
+    def _repr_html_(self) -> str:
+        from reactorstage.report.table_html import table_html
+
+        return table_html(self)
 
 
 def table(title: str, columns: Sequence[Column | None]) -> Table:

@@ -12,7 +12,7 @@ from matplotlib.figure import Figure
 
 from reactorstage.report import look
 from reactorstage.report.cautions import SHORT
-from reactorstage.report.display import allowed, fixed, owners_text, shown, unit
+from reactorstage.report.display import allowed, fixed, owners_text, places, shown, unit, with_unit
 from reactorstage.report.profiles import BedProfile, displayed, train_profiles
 from reactorstage.train.result import LimitState, Rating, StepState
 
@@ -20,7 +20,9 @@ HEIGHT = 4.5
 WORDS = ("inlet temperature", "exit temperature", "peak temperature")
 REACH = 0.5
 PEAK_SHOWN_K = 0.5
+CLOSE = 0.08
 LABEL_PART = 0.13
+NO_HEAT = 500.0
 Side = Literal["left", "center", "right"]
 HEAT_SIDES: dict[str, tuple[Side, float]] = {"entry": ("left", 0.0), "effluent": ("right", LABEL_PART)}
 
@@ -36,12 +38,15 @@ def temperature_figure(rating: Rating, today: Rating | None, title: str, status:
     _curve(axes, rating, beds, look.THIS_WEIGHT)
     heats = heat_labels(rating, beds)
     _set_range(axes, rating, beds, today, 1 + max((heat.row for heat in heats), default=-1))
-    _values(axes, beds)
+    _values(axes, rating, beds)
     _limits(axes, rating, beds)
+    _equilibria(axes, rating, beds)
     _heats(axes, heats)
     look.catalyst_axis(axes, shown=True)
     look.value_axis(axes, f"temperature, {unit('temperature')}")
-    _key(figure, rating, today is not None)
+    low, high = axes.get_ylim()
+    levels = any(low < T < high for T in equilibria(rating, beds).values())
+    _key(figure, rating, today is not None, levels)
     figure.text(look.LEFT, 0.1 / HEIGHT, SHORT, ha="left", va="bottom", fontsize=look.SMALL - 0.4)
     return figure
 
@@ -49,7 +54,7 @@ def temperature_figure(rating: Rating, today: Rating | None, title: str, status:
 def _curve(axes: Axes, rating: Rating, beds: Sequence[BedProfile], weight: float) -> None:
     for bed in beds:
         axes.plot(bed.catalyst, bed.T, color=look.TEMPERATURE, linewidth=weight, zorder=3 + weight)
-    for place, x in _places(beds):
+    for place, x in places_of_gaps(beds):
         for step in rating.steps:
             if step.owner == place and place.startswith("gap"):
                 _upright(axes, step, x, weight)
@@ -66,7 +71,7 @@ def _upright(axes: Axes, step: StepState, x: float, weight: float) -> None:
     )
 
 
-def _places(beds: Sequence[BedProfile]) -> list[tuple[str, float]]:
+def places_of_gaps(beds: Sequence[BedProfile]) -> list[tuple[str, float]]:
     """Entry, gaps and effluent with the catalyst that lies before them."""
     gaps = [(f"gap {bed.owner.removeprefix('bed ')}", float(bed.catalyst[-1])) for bed in beds[:-1]]
     return [("entry", 0.0), *gaps, ("effluent", float(beds[-1].catalyst[-1]))]
@@ -79,13 +84,32 @@ def _set_range(
     low = min(float(bed.T.min()) for bed in shown_beds)
     high = max(max(float(bed.T.max()), bed.T_peak) for bed in shown_beds)
     span = max(high - low, 2.0)
-    bounds = [_bound(state) for state in _temperature_limits(rating)]
+    bounds = [_bound(state) for state in temperature_limits(rating)]
+    bounds += [T for T in equilibria(rating, beds).values() if low < T]
     near = [bound for bound in bounds if low - REACH * span < bound < high + REACH * span]
     low, high = min([low, *near]), max([high, *near])
     axes.set_ylim(low - (0.11 + 0.08 * rows) * (high - low), high + 0.07 * (high - low))
 
 
-def _temperature_limits(rating: Rating) -> list[LimitState]:
+def equilibria(rating: Rating, beds: Sequence[BedProfile]) -> dict[str, float]:
+    """The adiabatic equilibrium temperature of what enters each bed, display units, where there is one."""
+    values = {bed.owner: rating.quantities.get(f"{bed.owner}.equilibrium temperature") for bed in beds}
+    known = {owner: shown(value.value, value.kind) for owner, value in values.items() if value is not None}
+    return {owner: T for owner, T in known.items() if T is not None}
+
+
+def _equilibria(axes: Axes, rating: Rating, beds: Sequence[BedProfile]) -> None:
+    """A level over each bed: as hot as it could become."""
+    low, high = axes.get_ylim()
+    known = equilibria(rating, beds)
+    for bed in beds:
+        T = known.get(bed.owner, low)
+        if low < T < high and bed.catalyst[-1] > bed.catalyst[0]:
+            ends = (float(bed.catalyst[0]), float(bed.catalyst[-1]))
+            axes.plot(ends, (T, T), color=look.INK, linewidth=1.0, linestyle=look.CHAIN, zorder=2.5)
+
+
+def temperature_limits(rating: Rating) -> list[LimitState]:
     return [
         state
         for state in rating.limits
@@ -104,7 +128,7 @@ def _limits(axes: Axes, rating: Rating, beds: Sequence[BedProfile]) -> None:
     """Dashed grey over the beds that a limit speaks of; one label per limit and bound at the right."""
     spans = {bed.owner: (float(bed.catalyst[0]), float(bed.catalyst[-1])) for bed in beds}
     groups: dict[tuple[str, str], list[LimitState]] = {}
-    for state in _temperature_limits(rating):
+    for state in temperature_limits(rating):
         if state.owner in spans:
             groups.setdefault((state.label, allowed(state.bound, state.kind)), []).append(state)
     low, high = axes.get_ylim()
@@ -134,15 +158,18 @@ def _limit_label(
     return f"{label}{where}\n{bound}{off}"
 
 
-def _values(axes: Axes, beds: Sequence[BedProfile]) -> None:
+def _values(axes: Axes, rating: Rating, beds: Sequence[BedProfile]) -> None:
     """Inlet, exit and, where it is hotter than the exit, peak in numbers."""
+    levels = equilibria(rating, beds)
     total = float(beds[-1].catalyst[-1])
     for bed in beds:
         if (bed.catalyst[-1] - bed.catalyst[0]) / total < 0.07:
             continue
         _value(axes, bed.catalyst[0], bed.T[0], (4, -9), "left")
         rising = bed.T[-1] >= bed.T[0]
-        _value(axes, bed.catalyst[-1], bed.T[-1], (-4, 5 if rising else -9), "right")
+        lift = lifted(float(bed.T[-1]), levels.get(bed.owner), axes.get_ylim()) if rising else 0.0
+        text = _degrees(float(bed.T[-1]))
+        _value(axes, bed.catalyst[-1], bed.T[-1] + lift, (-4, 5 if rising else -9), "right", text)
         if bed.T_peak > max(bed.T[-1], bed.T[0]) + PEAK_SHOWN_K:
             axes.plot(
                 [bed.peak_catalyst], [bed.T_peak], marker="^", markersize=5, color=look.TEMPERATURE, zorder=6
@@ -150,9 +177,19 @@ def _values(axes: Axes, beds: Sequence[BedProfile]) -> None:
             _value(axes, bed.peak_catalyst, bed.T_peak, (0, 6), "center")
 
 
-def _value(axes: Axes, x: float, y: float, offset: tuple[float, float], side: str) -> None:
+def lifted(exit_: float, level: float | None, span: tuple[float, float]) -> float:
+    """How much higher the number of an exit must stand to clear an equilibrium that lies close above it."""
+    close = level is not None and 0.0 <= level - exit_ < CLOSE * (span[1] - span[0])
+    return level - exit_ if close and level is not None else 0.0
+
+
+def _degrees(T: float) -> str:
+    return fixed(T, 0 if abs(T) >= 1000 else 1)
+
+
+def _value(axes: Axes, x: float, y: float, offset: tuple[float, float], side: str, text: str = "") -> None:
     axes.annotate(
-        fixed(float(y), 0 if abs(y) >= 1000 else 1),
+        text or _degrees(float(y)),
         (float(x), float(y)),
         offset,
         textcoords="offset points",
@@ -180,7 +217,7 @@ def heat_labels(rating: Rating, beds: Sequence[BedProfile]) -> list[HeatLabel]:
     exchanging = {step.owner for step in rating.steps if step.kind in ("heat", "cool")}
     ends: list[float] = []
     found = []
-    for place, x in _places(beds):
+    for place, x in places_of_gaps(beds):
         heat = rating.quantities.get(f"{place}.heat removed")
         if place not in exchanging or heat is None or heat.value is None:
             continue
@@ -188,7 +225,7 @@ def heat_labels(rating: Rating, beds: Sequence[BedProfile]) -> list[HeatLabel]:
         start = x / total - before
         row = next((i for i, end in enumerate(ends) if start > end), len(ends))
         ends[row : row + 1] = [start + LABEL_PART]
-        found.append(HeatLabel(x, _heat_text(shown(heat.value, heat.kind) or 0.0), side, row))
+        found.append(HeatLabel(x, heat_text(heat.value), side, row))
     return found
 
 
@@ -207,14 +244,17 @@ def _heats(axes: Axes, labels: Sequence[HeatLabel]) -> None:
         )
 
 
-def _heat_text(megawatt: float) -> str:
-    size = f"{abs(megawatt):.{2 if abs(megawatt) < 10 else 1}f} MW"
-    if abs(megawatt) < 0.0005:
-        return "0 MW"
-    return f"{size} out" if megawatt > 0 else f"{size} in"
+def heat_text(watt: float) -> str:
+    """`1.80 MW out`, `5.17 MW in`: the sign of heat in words."""
+    heat = shown(watt, "power") or 0.0
+    if abs(watt) < NO_HEAT:
+        return with_unit("0", unit("power"))
+    decimals = places("power", 2 if abs(heat) < 10 else 1)
+    size = with_unit(fixed(abs(heat), decimals), unit("power"))
+    return f"{size} out" if heat > 0 else f"{size} in"
 
 
-def _key(figure: Figure, rating: Rating, with_today: bool) -> None:
+def _key(figure: Figure, rating: Rating, with_today: bool, levels: bool) -> None:
     """What the line kinds mean, as far as they are there."""
     weight = look.THIS_WEIGHT
     rows = [
@@ -222,8 +262,9 @@ def _key(figure: Figure, rating: Rating, with_today: bool) -> None:
         look.KeyRow("today", look.TODAY_WEIGHT) if with_today else None,
         look.KeyRow("injection", weight * 0.7, look.DOTTED) if _injects(rating) else None,
         look.KeyRow("limit", look.LIMIT_WEIGHT, look.DASHED, look.LIMIT)
-        if _temperature_limits(rating)
+        if temperature_limits(rating)
         else None,
+        look.KeyRow("equilibrium", 1.0, look.CHAIN, look.INK) if levels else None,
     ]
     look.key(figure, [row for row in rows if row is not None], look.TEMPERATURE)
 

@@ -13,6 +13,7 @@ from reactorstage.report.display import (
     difference,
     difference_kind,
     fixed,
+    in_units,
     owners_text,
     same_decimals,
     shown,
@@ -22,6 +23,7 @@ from reactorstage.report.display import (
 from reactorstage.report.result_json import SCHEMA_VERSION, case_json, versions
 from reactorstage.report.table import Column, Table, table
 from reactorstage.report.understood_laws import law_json, law_tables
+from reactorstage.report.unit_sets import TRADE
 
 if TYPE_CHECKING:
     from reactorstage.case.model import Case
@@ -222,6 +224,7 @@ def summary(case: Case, seen: Understanding) -> str:
     ])  # fmt: skip
 
 
+@in_units(TRADE)
 def understood_json(case: Case, seen: Understanding, overrides: Sequence[str] = ()) -> dict[str, Any]:
     """The same for programs, in display units, limits one by one."""
     return {

@@ -5,7 +5,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Container, Sequence
+from collections.abc import Callable, Container, Sequence
 from dataclasses import dataclass, replace
 from functools import cached_property
 from typing import TYPE_CHECKING, Any
@@ -210,11 +210,14 @@ class TrainProgramme:
 
         return rate(self, self.now if x is None else x, dense, tolerance)
 
-    def understanding(self) -> Understanding:
-        """What was understood of the case, and what arithmetic can see to be in conflict."""
+    def understanding(self, tell: Callable[[float, str], str] | None = None) -> Understanding:
+        """What was understood of the case, and what arithmetic can see to be in conflict.
+
+        tell(value, kind) writes a number with its unit; by default in trade units.
+        """
         from reactorstage.train.understanding import understand
 
-        return understand(self)
+        return understand(self, tell)
 
     def _evaluation(self, outcome: Outcome, u: Array, du: Array, x: Array) -> Evaluation:
         if outcome.failure:

@@ -137,3 +137,9 @@ class Rating:
     def number(self, name: str) -> float | None:
         """SI value of a quantity by its name; None where it does not exist."""
         return self.quantities[name].value
+
+    def _repr_html_(self) -> str:
+        """What notebooks show: the tables of the package's face."""
+        from reactorstage import tables
+
+        return tables(self)._repr_html_()

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -24,6 +24,7 @@ if TYPE_CHECKING:
     from reactorstage.train.programme import Model, TrainProgramme
 
 Array = NDArray[np.float64]
+Tell = Callable[[float, str], str]
 
 SPAN = 100.0
 """Kelvin between the two temperatures at which heats and equilibrium constants are shown."""
@@ -102,8 +103,12 @@ class Understanding:
     warnings: tuple[str, ...]
 
 
-def understand(programme: TrainProgramme) -> Understanding:
-    """Streams, reactions, limits, prices, numbers and degrees of freedom of a compiled case."""
+def understand(programme: TrainProgramme, tell: Tell | None = None) -> Understanding:
+    """Streams, reactions, limits, prices, numbers and degrees of freedom of a compiled case.
+
+    tell(value, kind) writes a number with its unit into the warnings; by default in trade units.
+    """
+    tell = tell or _shown
     model = programme.model
     reactant = split_reactant(model)
     return Understanding(
@@ -116,7 +121,7 @@ def understand(programme: TrainProgramme) -> Understanding:
         numbers=tuple(number for number in programme.numbers if not number.internal),
         degrees=tuple(_degrees(model)),
         split_reactant=reactant,
-        warnings=tuple(_warnings(programme, reactant)),
+        warnings=tuple(_warnings(programme, reactant, tell)),
     )
 
 
@@ -233,12 +238,12 @@ def _degrees(model: Model) -> Iterator[tuple[str, str]]:
     yield "free numbers in all", str(len(users))
 
 
-def _warnings(programme: TrainProgramme, reactant: str) -> Iterator[str]:
+def _warnings(programme: TrainProgramme, reactant: str, tell: Tell) -> Iterator[str]:
     model = programme.model
     yield from _empty_limits(model)
     yield from _unused_species(model)
-    yield from _injection_sums(model)
-    yield from _rise_against_exit(programme, reactant)
+    yield from _injection_sums(model, tell)
+    yield from _rise_against_exit(programme, reactant, tell)
     for owner in dict.fromkeys(model.ladder.unpriced):
         yield f"Heat of {owner} carries no price: the answer may move heat there because it is free."
 
@@ -260,7 +265,7 @@ def _unused_species(model: Model) -> Iterator[str]:
             yield f"Species {name!r} is in no feed and in no reaction."
 
 
-def _injection_sums(model: Model) -> Iterator[str]:
+def _injection_sums(model: Model, tell: Tell) -> Iterator[str]:
     """The least and the most that limits on injections allow in all, against the flow of the feed."""
     u, _ = model.inputs.values(np.array([number.now for number in model.numbers]))
     for feed in model.layout.feeds:
@@ -275,14 +280,14 @@ def _injection_sums(model: Model) -> Iterator[str]:
         }
         least = sum(ends.get((bed, "at least"), 0.0) for bed in beds)
         most = sum(ends.get((bed, "at most"), np.inf) for bed in beds)
-        flows = f"there are {_shown(total, 'molar flow')} of {feed}"
+        flows = f"there are {tell(total, 'molar flow')} of {feed}"
         if least > total * (1.0 + 1e-9):
-            yield f"Limits on injections ask for at least {_shown(least, 'molar flow')} in all; {flows}."
+            yield f"Limits on injections ask for at least {tell(least, 'molar flow')} in all; {flows}."
         if most < total * (1.0 - 1e-9):
-            yield f"Limits on injections let at most {_shown(most, 'molar flow')} in; {flows}."
+            yield f"Limits on injections let at most {tell(most, 'molar flow')} in; {flows}."
 
 
-def _rise_against_exit(programme: TrainProgramme, reactant: str) -> Iterator[str]:
+def _rise_against_exit(programme: TrainProgramme, reactant: str, tell: Tell) -> Iterator[str]:
     """Lowest allowed inlet plus the rise of the smallest injection, against the highest allowed exit."""
     model = programme.model
     if not reactant:
@@ -301,9 +306,9 @@ def _rise_against_exit(programme: TrainProgramme, reactant: str) -> Iterator[str
         rise = _rise_of(model, reactant, bed.injections[0][1], least, inlet)
         if inlet + rise > exit_:
             yield (
-                f"{bed.owner}: lowest inlet {_shown(inlet, 'temperature')} plus the rise of its smallest "
-                f"injection ({_shown(least, 'molar flow')}, about {rise:.0f} K) is "
-                f"{_shown(inlet + rise, 'temperature')}, above the limit of {_shown(exit_, 'temperature')} "
+                f"{bed.owner}: lowest inlet {tell(inlet, 'temperature')} plus the rise of its smallest "
+                f"injection ({tell(least, 'molar flow')}, about {tell(rise, 'temperature difference')}) is "
+                f"{tell(inlet + rise, 'temperature')}, above the limit of {tell(exit_, 'temperature')} "
                 "at its exit."
             )
 

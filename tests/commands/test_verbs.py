@@ -65,7 +65,8 @@ def test_rate_ends_with_0_inside_all_limits_and_writes_its_files(run: Run, calle
     done = run("rate", "plant.yaml")
     assert done.exit_code == 0
     assert "INSIDE ALL LIMITS" in done.stdout
-    figures = [f"{n}.{k}" for n in ("composition", "selectivity", "temperature") for k in ("png", "svg")]
+    names = ("composition", "heat", "rates", "selectivity", "temperature")
+    figures = [f"{name}.{kind}" for name in names for kind in ("png", "svg", "csv")]
     assert written(Path("figures/plant")) == sorted([*figures, "profiles.csv", "result.json"])
     assert str(Path("figures/plant")) in done.stderr
 

@@ -83,7 +83,11 @@ def case(options: Options, number_of_beds: int) -> Any:
         heats_up_to=None, cools_down_to=450.0, costs=None, earns="19 EUR/MWh", capacity=None
     )
     air = SimpleNamespace(heats_up_to=None, cools_down_to=330.0, costs="4 EUR/MWh", earns=None, capacity=None)
-    levels = SimpleNamespace(levels={"steam 9 bar": steam, "air": air}) if options.priced else None
+    fire = SimpleNamespace(
+        heats_up_to=753.0, cools_down_to=None, costs="34 EUR/MWh", earns=None, capacity=None
+    )
+    ladder = {"steam 9 bar": steam, "air": air, "fired heater": fire}
+    levels = SimpleNamespace(levels=ladder, minimum_approach=15.0) if options.priced else None
     return SimpleNamespace(
         name="Selkemouth Works, four-bed ethylation"
         if number_of_beds == 4

@@ -19,12 +19,13 @@ from matplotlib.transforms import Bbox
 from reactorstage.report import cautions, look
 from reactorstage.report.composition import composition_figure, panels_of
 from reactorstage.report.figures import figure_files
+from reactorstage.report.rates import rates_figure
 from reactorstage.report.selectivity import selectivity_figure
 from reactorstage.report.temperature import temperature_figure
 from reactorstage.train.result import Rating
 from tests.report import synthetic
 
-DRAW = (temperature_figure, composition_figure, selectivity_figure)
+DRAW = (temperature_figure, composition_figure, rates_figure)
 OTHER = synthetic.Names("oxygen", "sulfur dioxide", "sulfur trioxide", "", "oxidation", "none")
 
 
@@ -86,7 +87,7 @@ def ratings() -> dict[str, tuple[Rating, Rating | None]]:
 
 
 @pytest.mark.parametrize("name", ratings())
-@pytest.mark.parametrize("draw", DRAW[:2], ids=lambda function: function.__name__)
+@pytest.mark.parametrize("draw", DRAW, ids=lambda function: function.__name__)
 def test_no_label_overlaps_another_or_leaves_the_page(draw: object, name: str) -> None:
     rating, today = ratings()[name]
     figure = draw(rating, today, "Selkemouth Works, four-bed ethylation", "best found, inside all limits")  # type: ignore[operator]
@@ -105,7 +106,9 @@ def test_files_are_byte_identical_on_repeat() -> None:
     first, second = (figure_files(rating, today, "rating") for _ in range(2))
     assert first == second
     assert sorted(first) == sorted(
-        f"{name}.{kind}" for name in ("temperature", "composition", "selectivity") for kind in ("png", "svg")
+        f"{name}.{kind}"
+        for name in ("temperature", "composition", "selectivity", "rates", "heat")
+        for kind in ("png", "svg", "csv")
     )
 
 

@@ -1,0 +1,188 @@
+"""Half a page: inside the limits or not, what costs money, what to change first, what to worry about."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Sequence
+
+from reactorstage.optimiser.result import CANNOT, INSIDE, NO_ANSWER
+from reactorstage.report import bounds, sentences
+from reactorstage.report.accounts import accounts
+from reactorstage.report.aim import MONEY, aim_of, cost_difference
+from reactorstage.report.cautions import SHORT
+from reactorstage.report.display import and_list, counted, difference_kind, fixed, shown, told, unit
+from reactorstage.report.page.parts import Facts, Section
+from reactorstage.report.page.subject import Search, Subject
+from reactorstage.report.worths import WorthBar, worth_bars
+from reactorstage.train.result import LimitState, Rating
+
+MOST_WORTHS = 3
+MOST_BROKEN = 6
+
+
+def summary(subject: Subject) -> Section:
+    """The answers to what a reader asks first."""
+    return Section("summary", "Summary", (Facts(tuple(summary_facts(subject)), loud=True),))
+
+
+def summary_facts(subject: Subject) -> list[tuple[str, tuple[str, ...]]]:
+    """Questions with their answers, those without one left out."""
+    facts = (
+        ("Inside its limits?", tuple(inside(subject))),
+        ("What does it cost?", tuple(cost(subject))),
+        ("Which limits cost money?", tuple(dear_limits(subject))),
+        ("What to change first?", tuple(first(subject))),
+        ("What to worry about?", tuple(worries(subject))),
+    )
+    return [fact for fact in facts if fact[1]]
+
+
+def plain(text: str) -> str:
+    """A line of the terminal without its title in capitals, as a sentence of its own."""
+    bare = re.sub(r"^[A-Z][A-Z ]{2,}[A-Z] {2,}", "", text)
+    return bare[:1].upper() + bare[1:]
+
+
+def keep_away(text: str) -> str:
+    """The line about margins as a sentence."""
+    bare = text.removeprefix("KEEP AWAY").strip()
+    if bare.startswith("none on"):
+        return bare.replace("none on", "No margin is kept on", 1)
+    return f"Margins are kept: {bare}" if bare else ""
+
+
+def inside(subject: Subject) -> list[str]:
+    """Yes or no, and by which limits."""
+    now = subject.now
+    if now.failure:
+        return [f"There is no answer: {now.failure}."]
+    broken, held = bounds.broken(now), bounds.at_work(now)
+    texts = []
+    if broken:
+        texts += broken_limits(subject, broken)
+    else:
+        count = sum(not state.implied for state in now.limits)
+        texts.append(f"Yes, all {counted(count, 'limit')} hold." if count else "The case states no limits.")
+    if held:
+        texts.append(f"It stands right on {and_list(bounds.together(held))}.")
+    softly = [state for state in now.limits if state.soft and not state.met]
+    if softly:
+        texts.append(f"Beyond a soft limit, at its price: {and_list(bounds.together(softly))}.")
+    near = [bounds.sentence(state, subject.currency) for state in bounds.next_ones(now)]
+    return [*texts, *([f"Nearest of the others: {'; '.join(near)}."] if near else [])]
+
+
+def broken_limits(subject: Subject, broken: Sequence[LimitState]) -> list[str]:
+    """How many limits are broken, then each in a line of its own."""
+    cannot = subject.search is not None and subject.search.optimum.status == CANNOT
+    head = "No, and no setting found meets them all. This one breaks least" if cannot else "No. Broken"
+    lines = [f"{bounds.sentence(state, subject.currency)}." for state in broken[:MOST_BROKEN]]
+    rest = len(broken) - MOST_BROKEN
+    return [
+        f"{head}: {counted(len(broken), 'limit')}.",
+        *lines,
+        *([f"And {rest} more below."] if rest > 0 else []),
+    ]
+
+
+def cost(subject: Subject) -> list[str]:
+    """The aim in money or in its own unit, against today."""
+    now, aim = subject.now, aim_of(subject.now)
+    value = now.quantities.get(aim.quantity)
+    if value is None or value.value is None:
+        return []
+    direction = now.case.aim.direction
+    if aim.kind == MONEY:
+        size = f"{fixed(shown(value.value, value.kind), 1)} {unit(value.kind, subject.currency)}"
+        text = f"{size} in all (cost positive)"
+    else:
+        text = f"{aim.quantity} is {told(value.value, value.kind, subject.currency)} (the aim: {direction})"
+    more = None if subject.behind is None else cost_difference(now, subject.behind)
+    if more is not None and not aim.same(more):
+        size = f"{aim.number(abs(more))} {aim.unit}".rstrip()
+        better, worse = ("less", "more") if aim.kind == MONEY else ("better", "worse")
+        text += f": {size} {better if more < 0 else worse} than today"
+    parts = [row.text for row in accounts(now, subject.behind)][:-1]
+    brackets = " (in brackets: change against today)" if subject.behind is not None else ""
+    return [f"{text}.", *([f"Made of: {', '.join(parts)}{brackets}."] if len(parts) > 1 else [])]
+
+
+def dear_limits(subject: Subject) -> list[str]:
+    """The limits at work that matter most, with their worth in words."""
+    if subject.search is None:
+        return ["A rating cannot tell; optimising the case finds what each limit is worth."]
+    aim = aim_of(subject.now)
+    bars = worth_bars(subject.search.optimum, subject.now)
+    if not bars:
+        return ["None that could be found."] if subject.search.optimum.status == INSIDE else []
+    return [worth_sentence(bar, aim.unit, aim.kind == MONEY) for bar in bars[:MOST_WORTHS]]
+
+
+def worth_sentence(bar: WorthBar, money: str, in_money: bool) -> str:
+    """`light-off, beds 1-4: 1 K more freedom saves 3.7 EUR/h, 1 K less costs 4.7 EUR/h.`"""
+    decimals = 1 if in_money else 3
+    saves = "could not be solved" if bar.saves is None else f"saves {fixed(bar.saves, decimals)} {money}"
+    costs = (
+        "leaves no setting inside the limits"
+        if bar.costs is None
+        else f"costs {fixed(bar.costs, decimals)} {money}"
+    )
+    return f"{bar.name}: {bar.step} more freedom {saves}, {bar.step} less {costs}."
+
+
+def first(subject: Subject) -> list[str]:
+    """The biggest move from today, or what a rating breaks."""
+    search = subject.search
+    if search is None:
+        broken = bounds.broken(subject.now)
+        return [f"Bring back inside: {and_list(bounds.together(broken))}."] if broken else []
+    if search.optimum.conflict is not None:
+        return [sentences.give_way(search.optimum.conflict, subject.now)]
+    if subject.today is None:
+        return (
+            ["No setting was found; see how the starts ended."] if search.optimum.status == NO_ANSWER else []
+        )
+    text = sentences.first_change(search.programme, subject.now, subject.today)
+    return [plain(text.removeprefix("Change first: ")), sentences.today_text(subject.today)]
+
+
+def worries(subject: Subject) -> list[str]:
+    """Margins, hot places, unpriced heat, what the rating noted, other answers, the caution."""
+    texts = list(subject.seen.warnings)
+    if subject.search is not None:
+        texts += search_worries(subject, subject.search)
+    texts += [hottest(subject.now), *sentences.notes(subject.now), SHORT]
+    return [text for text in texts if text]
+
+
+def search_worries(subject: Subject, search: Search) -> list[str]:
+    """What the search leaves open."""
+    texts = [*search.optimum.notes]
+    if search.optimum.conflict is None and search.optimum.answers:
+        texts.append(keep_away(sentences.margin_text(search.optimum, subject.now)))
+    if search.others:
+        texts.append(
+            sentences.second_answer(search.programme, search.optimum, subject.now, search.others).replace(
+                "more in result.json", "more below"
+            )
+        )
+    ended = sum(start.answer >= 0 for start in search.optimum.starts)
+    if ended < len(search.optimum.starts) and ended:
+        texts.append(f"{ended} of {counted(len(search.optimum.starts), 'start')} ended at an answer.")
+    return texts
+
+
+def hottest(rating: Rating) -> str:
+    """The hottest place against the design temperature, where the case gives one."""
+    design = {s.owner: s.bed.design_temperature for s in rating.case.train if s.bed is not None}
+    rated = [profile for profile in rating.profiles if design.get(profile.owner) is not None]
+    if not rated:
+        return ""
+    hot = min(rated, key=lambda profile: (design[profile.owner] or 0.0) - profile.T_peak)
+    limit = design[hot.owner] or 0.0
+    kind = difference_kind("temperature")
+    room = f"{fixed(shown(limit - hot.T_peak, kind), 0)} {unit(kind)}"
+    return (
+        f"Nearest to its design temperature in steady state: {hot.owner}, {told(hot.T_peak, 'temperature')}, "
+        f"{room} below {told(limit, 'temperature')}; upsets are not in this."
+    )

@@ -1,0 +1,49 @@
+"""The train and its gaps in tables, and the money."""
+
+from __future__ import annotations
+
+from reactorstage.report import sentences
+from reactorstage.report.accounts import Account, accounts, heat_words, signed
+from reactorstage.report.beds import bed_table
+from reactorstage.report.display import fixed, unit
+from reactorstage.report.gaps import gap_table
+from reactorstage.report.page.parts import Block, Grid, Section, Words
+from reactorstage.report.page.subject import Subject
+from reactorstage.report.table import Column, Table, table
+
+SIGNS = "* a limit holds this value; ! this value breaks a limit."
+
+
+def train(subject: Subject) -> Section | None:
+    """Beds, gaps and money; nothing where no bed was rated."""
+    now, was = subject.now, subject.behind
+    if not now.profiles:
+        return None
+    compared = " `Now` is this setting, `was` today's." if was is not None else ""
+    blocks: list[Block] = [
+        Grid(bed_table(now, was), "Beds in flow direction", f"{SIGNS}{compared}".replace("`", "")),
+    ]
+    if text := sentences.out_line(now, was):
+        blocks.append(Words(f"O{text[1:]}."))
+    note = f"Heat removed is positive, heat added negative. Priced: {heat_words(now)}."
+    gaps = gap_table(now, was)
+    if gaps.rows:
+        blocks.append(Grid(gaps, "Entry, gaps and effluent", note))
+    rows = accounts(now, was)
+    if len(rows) > 1 or any(row.now for row in rows):
+        blocks.append(Grid(money_table(rows, subject.currency), "Money, cost positive"))
+    return Section("train", "Train and gaps", tuple(blocks))
+
+
+def money_table(rows: list[Account], currency: str, other: str = "today") -> Table:
+    """Accounts with those of another setting and the difference where there is one."""
+    money = unit("money rate", currency)
+    compared = any(row.was is not None for row in rows)
+    old = tuple(fixed(row.was, 1) for row in rows)
+    change = tuple("" if row.was is None else signed(row.now - row.was) for row in rows)
+    return table("MONEY", [
+        Column(("",), tuple(row.label for row in rows), left=True),
+        Column((f"now, {money}",), tuple(fixed(row.now, 1) for row in rows)),
+        Column((f"{other}, {money}",), old) if compared else None,
+        Column(("change",), change) if compared else None,
+    ])  # fmt: skip
