@@ -10,7 +10,6 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from reactorstage.chemistry.thermo import h
 from reactorstage.train.layout import mole_fractions
 from reactorstage.train.result import Array, Rating, StepState
 
@@ -94,7 +93,8 @@ def _curve(rating: Rating, step: StepState) -> tuple[Array, Array]:
         return np.array([low, high]), np.array([0.0, abs(step.heat_removed)])
     assert rating.chemistry is not None
     T = np.linspace(low, high, POINTS)
-    H = np.array([float(F @ h(rating.chemistry.table, float(t))) for t in T])
+    mixture, p = rating.chemistry.mixture, pressure_at(rating, step)
+    H = np.array([float(mixture.enthalpy(F, float(t), p)) for t in T])
     return T, abs(step.heat_removed) * (H - H[0]) / (H[-1] - H[0])
 
 
@@ -102,6 +102,12 @@ def _number(owner: str) -> int:
     """The number of a gap; 0 for other places."""
     last = owner.rpartition(" ")[2]
     return int(last) if last.isdigit() else 0
+
+
+def pressure_at(rating: Rating, step: StepState) -> float:
+    """Pressure of a step, Pa: that of the exit of the bed before, in the entry that of the first inlet."""
+    before = len(rating.profiles) if step.owner == "effluent" else _number(step.owner)
+    return float(rating.profiles[before - 1].p[-1] if before > 0 else rating.profiles[0].p[0])
 
 
 def flow_at(rating: Rating, step: StepState) -> Array | None:
