@@ -89,7 +89,7 @@ def _curve(rating: Rating, step: StepState) -> tuple[Array, Array]:
     """Heat of one exchanger from its cold end over temperature; straight where the stream is not known."""
     low, high = sorted((step.T_before or step.T_after, step.T_after))
     F = flow_at(rating, step)
-    if F is None or high <= low:
+    if F is None or high <= low or not rating.profiles:
         return np.array([low, high]), np.array([0.0, abs(step.heat_removed)])
     assert rating.chemistry is not None
     T = np.linspace(low, high, POINTS)
