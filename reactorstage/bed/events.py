@@ -105,7 +105,7 @@ def hottest(chem, bed, steps, count, y, work):
             if steps[j, at_T + i] > T_best:
                 k, which, T_best = j, i, steps[j, at_T + i]
     if k < 0:
-        return 0, 0.0, bed[T_IN]
+        return 0, 0.0, temperature_within(chem, bed, steps[0], 0.0, bed[T_IN], y, work)
     if which == 2:
         T = temperature_within(chem, bed, steps[k], 1.0, T_best, y, work)
         if slope_within(chem, bed, steps[k], 1.0, T, work) >= 0.0:

@@ -88,7 +88,7 @@ def test_derivatives_by_every_parameter_are_central_differences(name: str) -> No
         if one.kind not in STEPS:
             continue
         slope, step = difference(model, one, v, mesh, x)
-        size = np.abs(found.derivatives[:, d]) + 3e-6 * (np.abs(found.values) + 1e-2) / step
+        size = np.abs(found.derivatives[:, d]) + 3e-6 * (np.abs(found.values) + 3e-2) / step
         off = np.abs(slope - found.derivatives[:, d]) / size
         there = np.isfinite(slope) & np.isfinite(found.derivatives[:, d])
         worst = int(np.argmax(np.where(there, off, 0.0)))
