@@ -179,13 +179,13 @@ def liquid_species(H: float, S: float, cp: float, rho: float, formula: str) -> T
 def liquid(driver: str = "concentration") -> Tree:
     """A reversible addition in a liquid of given densities; all numbers invented."""
     unit = "m^6/(kmol kg h)" if driver == "concentration" else "kmol/(kg h)"
-    size = 1.5e-3 if driver == "concentration" else 1.2e-1
+    size = 1.5e-4 if driver == "concentration" else 1.2e-2
     return {
         **HEAD,
         "species": {
             "A": liquid_species(-50.0, 250.0, 120.0, 1150.0, "C6H6"),
             "B": liquid_species(20.0, 180.0, 80.0, 850.0, "C2H4"),
-            "C": liquid_species(-75.0, 310.0, 170.0, 1100.0, "C8H10"),
+            "C": liquid_species(-75.0, 345.0, 170.0, 1100.0, "C8H10"),
         },
         "fluid": {"density": "liquid", "viscosity": "3e-4 Pa s"},
         "reactions": {
@@ -226,9 +226,9 @@ def liquid(driver: str = "concentration") -> Tree:
         },
         "train": [
             {"entry": [{"take": "mix"}]},
-            {"bed 1": {"catalyst": free(4, 2, 6, "t"), "inlet pressure": free(30, 25, 35, "bar(a)")}},
+            {"bed 1": {"catalyst": free(1.5, 1, 3, "t"), "inlet pressure": free(30, 25, 35, "bar(a)")}},
             {"gap 1": [{"cool": {"heat removed": free(0.4, 0.1, 0.8, "MW"), "heat to": "unpriced"}}]},
-            {"bed 2": {"catalyst": "6 t"}},
+            {"bed 2": {"catalyst": "2 t"}},
             {"effluent": []},
         ],
         "every bed": {**GEOMETRY, "equivalent size": "1 mm"},
