@@ -14,6 +14,7 @@ if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
 
     from reactorstage.case.model import Case
+    from reactorstage.optimiser.asked import Asked
     from reactorstage.optimiser.result import Optimum
     from reactorstage.train.batch import Batch
     from reactorstage.train.parameters import Sensitivities
@@ -84,7 +85,14 @@ def optimise(
     programme = compile(case)
     today = programme.rate()
     optimum = search(
-        programme, starts=starts, seed=seed, jobs=jobs, progress=progress, stop=stop, explain=explain
+        programme,
+        starts=starts,
+        seed=seed,
+        jobs=jobs,
+        progress=progress,
+        stop=stop,
+        explain=explain,
+        asked=_asked(programme),
     )
     cannot = optimum.status == CANNOT
     rated = [programme.rate(programme.complete(a.x) if cannot else a.x) for a in optimum.answers]
@@ -130,3 +138,16 @@ def _programme(case: Case | TrainProgramme) -> TrainProgramme:
     from reactorstage.train.programme import TrainProgramme
 
     return case if isinstance(case, TrainProgramme) else compile(case)
+
+
+def _asked(programme: TrainProgramme) -> Asked:
+    """How settings of this case are entered, and which money says nothing."""
+    from reactorstage.optimiser.asked import Asked, Sizes
+
+    panel, money = programme.panel, programme.case.aim.quantity == "money.total"
+
+    def sizes(x: NDArray[np.float64], cost: float) -> Sizes:
+        size = programme.turnover(x) if money else abs(cost)
+        return Sizes(panel.band(size), panel.least_gain(size))
+
+    return Asked(panel.steps, panel.origins, sizes)
