@@ -17,6 +17,7 @@ if TYPE_CHECKING:
     from reactorstage.optimiser.asked import Asked
     from reactorstage.optimiser.result import Optimum
     from reactorstage.train.batch import Batch
+    from reactorstage.train.influence import Influence
     from reactorstage.train.parameters import Sensitivities
     from reactorstage.train.programme import TrainProgramme
     from reactorstage.train.result import Rating
@@ -29,7 +30,7 @@ class Optimisation:
     """What `optimise` gives: the search, today's rating, the best answer rated, other distinct answers rated.
 
     best is None when nothing could be evaluated; with status "cannot meet all limits" it is the
-    least-violating answer. seconds is wall time.
+    least-violating answer. influences say what moves the best cost, largest first. seconds is wall time.
     """
 
     case: Case
@@ -40,6 +41,7 @@ class Optimisation:
     others: tuple[Rating, ...]
     seconds: float
     seed: int
+    influences: tuple[Influence, ...] = ()
 
     @property
     def status(self) -> str:
@@ -105,6 +107,7 @@ def optimise(
         others=tuple(rated[1:]),
         seconds=time.perf_counter() - begun,
         seed=seed,
+        influences=_influences(programme, optimum) if explain else (),
     )
 
 
@@ -138,6 +141,16 @@ def _programme(case: Case | TrainProgramme) -> TrainProgramme:
     from reactorstage.train.programme import TrainProgramme
 
     return case if isinstance(case, TrainProgramme) else compile(case)
+
+
+def _influences(programme: TrainProgramme, optimum: Optimum) -> tuple[Influence, ...]:
+    """What moves the best answer; nothing where no answer is inside all limits."""
+    from reactorstage.optimiser.result import INSIDE
+    from reactorstage.train.influence import influences
+
+    if optimum.status != INSIDE:
+        return ()
+    return influences(programme, optimum.best.x, optimum.best.multipliers)
 
 
 def _asked(programme: TrainProgramme) -> Asked:

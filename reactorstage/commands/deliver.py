@@ -11,6 +11,7 @@ from reactorstage.commands.console import say, tell
 from reactorstage.commands.options import Output
 
 if TYPE_CHECKING:
+    from reactorstage.train.influence import Influence
     from reactorstage.train.result import Rating
 
 
@@ -24,6 +25,7 @@ class Result:
     status: str
     drawn: Rating | None
     behind: Rating | None = None
+    influences: Sequence[Influence] = ()
 
 
 def deliver(result: Result, output: Output) -> None:
@@ -46,7 +48,7 @@ def _write(result: Result, text: str, output: Output) -> None:
     if output.figures and result.drawn is not None:
         from reactorstage.report.figures import figure_files
 
-        paths += write_all(output.folder, figure_files(result.drawn, result.behind, result.status))
+        paths += write_all(output.folder, figure_files(result.drawn, result.behind, result.status, result.influences))
     if not output.quiet:
         tell(_written_text(output.folder, paths))
 

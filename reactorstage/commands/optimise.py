@@ -41,8 +41,15 @@ EXAMPLE = "reactorstage optimise plant.yaml --starts 40 --out results"
     type=click.IntRange(min=1),
     help="Threads; by default one per processor. The result does not depend on it.",
 )
+@click.option("--explain", is_flag=True, help="Tables behind every line of the explanation as well.")
 def optimise(
-    case_file: Path, overrides: tuple[str, ...], starts: int, seed: int, jobs: int | None, **options: Any
+    case_file: Path,
+    overrides: tuple[str, ...],
+    starts: int,
+    seed: int,
+    jobs: int | None,
+    explain: bool,
+    **options: Any,
 ) -> int:
     """Find the cheapest setting of CASE inside all limits and say what each limit costs.
 
@@ -61,12 +68,13 @@ def optimise(
         outcome = face.optimise(case, starts=starts, seed=seed, jobs=jobs, progress=progress)
     finally:
         progress.end()
-    _deliver(outcome, output)
+    _deliver(outcome, output, explain)
     return status_of(outcome.optimum.status)
 
 
-def _deliver(outcome: Optimisation, output: Output) -> None:
+def _deliver(outcome: Optimisation, output: Output, explain: bool) -> None:
     from reactorstage.commands.deliver import Result, deliver
+    from reactorstage.commands.explained import explained_lines
     from reactorstage.commands.screens import optimum_lines
     from reactorstage.report.result_json import optimum_json
 
@@ -78,16 +86,21 @@ def _deliver(outcome: Optimisation, output: Output) -> None:
         outcome.others,
         outcome.seed,
         output.overrides,
+        outcome.influences,
     )
     status = f"best found, {outcome.optimum.status}"
     deliver(
         Result(
             content,
-            lambda width: optimum_lines(outcome, width),
+            lambda width: [
+                *optimum_lines(outcome, width),
+                *(explained_lines(outcome, width) if explain else []),
+            ],
             outcome.seconds,
             status,
             outcome.best,
             outcome.today,
+            outcome.influences,
         ),
         output,
     )

@@ -18,7 +18,7 @@ from reactorstage.optimiser.scaling import needed
 from reactorstage.optimiser.solve import descend
 from reactorstage.optimiser.wrappers import Pinned
 
-MOST_NODES, MOST_WIDE_NODES = 60, 160
+MOST_NODES, MOST_WIDE_NODES = 60, 110
 MET = 1e-6
 
 

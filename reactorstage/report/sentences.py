@@ -117,7 +117,17 @@ def margin_text(optimum: Optimum, best: Rating) -> str:
     bare = list(dict.fromkeys(s.label for s in bounds.at_work(best) if not s.implied and s.keep_away == 0.0))
     if not bare:
         return ""
-    return f"KEEP AWAY    none on {and_list(bare)}: instrument error can cross {_it(bare)}."
+    return f"KEEP AWAY    none on {and_list(bare)}: instrument error can cross {_it(bare)}{_step_away(optimum, best)}."
+
+
+def _step_away(optimum: Optimum, best: Rating) -> str:
+    """What it costs to stay one step further inside every limit; empty where that is not known."""
+    aim = aim_of(best)
+    if optimum.step_away_cost is None:
+        return ""
+    steps = list(dict.fromkeys(bounds.step_text(worth) for worth in optimum.worths))
+    size = with_unit(aim.number(optimum.step_away_cost), aim.unit)
+    return f"; one step ({', '.join(steps)}) away from every limit costs {size}"
 
 
 def _it(words: Sequence[str]) -> str:

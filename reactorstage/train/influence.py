@@ -65,8 +65,7 @@ def influences(programme: TrainProgramme, x: Array, multipliers: Array) -> tuple
 def _by_parameters(programme: TrainProgramme, x: Array, multipliers: Array) -> Iterator[Influence]:
     """Numbers of the case that are not free, kinetics, thermochemistry and compositions."""
     model = programme.model
-    free = {int(index) for index in model.inputs.free}
-    picked = [one for one in parameters_of(model) if not (one.kind < 0 and one.index in free)]
+    picked = [one for one in parameters_of(model) if _asked_for(model, one)]
     v = model.inputs.all_numbers(x)
     u, du_dv = model.inputs.of_numbers(v)
     du, moved = directions(picked, du_dv)
@@ -79,6 +78,15 @@ def _by_parameters(programme: TrainProgramme, x: Array, multipliers: Array) -> I
         step, kind, relative = _step(model, one, v)
         if step > 0.0:
             yield Influence(one.name, step, kind, relative, slope, slope * step, _group(one.name))
+
+
+def _asked_for(model: Model, one: Parameter) -> bool:
+    """Left out are free numbers and the one species of a pure feed, which is its flow under another name."""
+    if one.kind < 0:
+        return one.index not in model.inputs.free
+    if one.kind == kernel.COMPOSITION:
+        return bool(model.layout.compositions.flat[one.index] < 1.0)
+    return True
 
 
 def _step(model: Model, one: Parameter, v: Array) -> tuple[float, str, bool]:
