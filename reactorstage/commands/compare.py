@@ -88,7 +88,9 @@ def _content(path: Path, overrides: tuple[str, ...], best: bool, quiet: bool) ->
     case = load(path, overrides)
     if not best:
         return content_of(face.rate(case))
-    return _watched(case, quiet, lambda progress: content_of(face.optimise(case, progress=progress, explain=False)))
+    return _watched(
+        case, quiet, lambda progress: content_of(face.optimise(case, progress=progress, explain=False))
+    )
 
 
 def _watched(case: Case, quiet: bool, work: Callable[[ProgressLine], Result]) -> Result:
@@ -140,8 +142,15 @@ def comparison_lines(found: Comparison, by_products: Sequence[str], width: int) 
 
     said = [f"first:  {found.names[0]}", f"second: {found.names[1]}", *found.notes]
     said += [verdict(found), " ".join(limits_sentences(found))]
-    blocks = [line for table in comparison_tables(found, by_products) for line in ["", *table_lines(table, width)]]
-    return [*(line for text in said for line in paragraph(text, width)), *blocks, "", *paragraph(SHORT, width)]
+    blocks = [
+        line for table in comparison_tables(found, by_products) for line in ["", *table_lines(table, width)]
+    ]
+    return [
+        *(line for text in said for line in paragraph(text, width)),
+        *blocks,
+        "",
+        *paragraph(SHORT, width),
+    ]
 
 
 def _moves_lines(outcome: Optimisation | None, width: int) -> list[str]:

@@ -48,7 +48,9 @@ def _write(result: Result, text: str, output: Output) -> None:
     if output.figures and result.drawn is not None:
         from reactorstage.report.figures import figure_files
 
-        paths += write_all(output.folder, figure_files(result.drawn, result.behind, result.status, result.influences))
+        paths += write_all(
+            output.folder, figure_files(result.drawn, result.behind, result.status, result.influences)
+        )
     if not output.quiet:
         tell(_written_text(output.folder, paths))
 

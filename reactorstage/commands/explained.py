@@ -40,7 +40,10 @@ def explained_lines(outcome: Optimisation, width: int) -> list[str]:
         return []
     aim, numbers = aim_of(best), outcome.programme.numbers
     blocks: list[tuple[Table | None, str]] = [
-        (answers_table(outcome.programme, optimum, (best, *outcome.others), aim), certificate_text(certificate(optimum), aim)),
+        (
+            answers_table(outcome.programme, optimum, (best, *outcome.others), aim),
+            certificate_text(certificate(optimum), aim),
+        ),
         (reach_table(optimum, best, aim), pairs_text(optimum.pairs, best, aim, len(optimum.pairs))),
     ]
     if optimum.flatness is not None:
@@ -55,5 +58,8 @@ def explained_lines(outcome: Optimisation, width: int) -> list[str]:
 
 
 def _block(table: Table | None, text: str, width: int) -> Sequence[str]:
-    lines = [*(table_lines(table, width) if table is not None else []), *(paragraph(text, width) if text else [])]
+    lines = [
+        *(table_lines(table, width) if table is not None else []),
+        *(paragraph(text, width) if text else []),
+    ]
     return ["", *lines] if lines else []

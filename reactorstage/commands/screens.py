@@ -182,9 +182,7 @@ def _range_ends(outcome: Optimisation) -> str:
 
 def _three(outcome: Optimisation, best: Rating) -> list[str]:
     today, optimum = outcome.today, outcome.optimum
-    first = (
-        _first(outcome, best) if optimum.conflict is None else sentences.give_way(optimum.conflict, best)
-    )
+    first = _first(outcome, best) if optimum.conflict is None else sentences.give_way(optimum.conflict, best)
     return [
         first,
         sentences.second_answer(outcome.programme, optimum, best, outcome.others),

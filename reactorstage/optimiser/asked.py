@@ -29,7 +29,7 @@ def shares_of_cost(x: Array, cost: float) -> Sizes:
 class Asked:
     """steps and origins (D,) of what can be entered: origin + n * step; a number with the step 0 cannot be.
 
-    Without steps no moves are made. sizes(x, cost) gives the differences of cost that say little at an answer.
+    Without steps no moves are made. sizes(x, cost) gives the differences of cost that say little there.
     """
 
     steps: Array | None = None

@@ -16,7 +16,7 @@ from reactorstage.optimiser.polish import polished
 from reactorstage.optimiser.pool import run
 from reactorstage.optimiser.programme import Array
 from reactorstage.optimiser.reach import pair_tasks, reach
-from reactorstage.optimiser.reasons import FlatNumber, Flatness, Moves, Pair, Reach
+from reactorstage.optimiser.reasons import Flatness, FlatNumber, Moves, Pair, Reach
 from reactorstage.optimiser.resolve import INSIDE_ENOUGH, Base
 from reactorstage.optimiser.result import Answer, EqualSplit, Optimum, Worth
 from reactorstage.optimiser.split import equal_split
@@ -68,9 +68,7 @@ def taken_up(job: Job, found: Optimum, better: Sequence[Answer]) -> Optimum:
 
 def base_of(job: Job, answers: Sequence[Answer]) -> Base:
     """The base of every re-solve of these answers."""
-    return Base(
-        job.programme, tuple(answer.x for answer in answers), answers[0].cost, job.size, job.stop
-    )
+    return Base(job.programme, tuple(answer.x for answer in answers), answers[0].cost, job.size, job.stop)
 
 
 def explanation(job: Job, answers: Sequence[Answer], today: Array) -> Explanation:
@@ -124,7 +122,9 @@ def deepened(job: Job, found: Optimum, today: Array, asked: Asked) -> Optimum:
     if asked.steps is not None:
         tasks.append(("moves from today", partial(moves_to, base, asked, sizes.noise, today)))
     tasks += [(f"reach of {one.label}", partial(reach, base, one)) for one in found.worths]
-    tasks += [(f"flatness of {h.name}", partial(flat_number, base, h, band, today)) for h in handles(base.programme)]
+    tasks += [
+        (f"flatness of {h.name}", partial(flat_number, base, h, band, today)) for h in handles(base.programme)
+    ]
     tasks += [("pairs of limits", task) for task in pair_tasks(base, found.worths)]
     tasks.append(("one step further away", partial(step_away_cost, base)))
     results = done(job, base.cost, tasks)

@@ -94,7 +94,9 @@ def reached(base: Base, handle: Handle, x: Array, sign: float, budget: float, ba
     good, bad = 0.0, 0.5
     for _ in range(BISECTIONS):
         middle = 0.5 * (good + bad)
-        good, bad = (middle, bad) if holds_between(base, handle, x, found.x, middle, budget) else (good, middle)
+        good, bad = (
+            (middle, bad) if holds_between(base, handle, x, found.x, middle, budget) else (good, middle)
+        )
     return start + good * (handle.value(found.x) - start)
 
 
@@ -115,7 +117,9 @@ def joined(spans: Sequence[tuple[float, float]], width: float) -> list[tuple[flo
     """Spans that touch drawn together, the one of the first span first."""
     first, merged = spans[0], [spans[0]]
     for low, high in spans[1:]:
-        touching = [one for one in merged if low <= one[1] + AT_REST * width and high >= one[0] - AT_REST * width]
+        touching = [
+            one for one in merged if low <= one[1] + AT_REST * width and high >= one[0] - AT_REST * width
+        ]
         merged = [one for one in merged if one not in touching]
         lows, highs = zip((low, high), *touching, strict=True)
         merged.append((min(lows), max(highs)))

@@ -7,7 +7,7 @@ broken further, and once a setting is inside all limits every later one is.
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from itertools import combinations
 
 import numpy as np
@@ -30,7 +30,7 @@ Moved = frozenset[int]
 
 @dataclass(frozen=True)
 class Stand:
-    """A setting on the way: which numbers have moved, x, cost and the amounts (M,) by which limits are broken."""
+    """A setting on the way: which numbers have moved, x, cost and by how much (M,) limits are broken."""
 
     moved: Moved
     x: Array
@@ -87,7 +87,15 @@ def moves_to(base: Base, asked: Asked, noise: float, today: Array) -> Moves:
     wanted = changed(base.programme, today, found[0])
     kept = worth_moving(way, wanted, noise)
     steps = ordered(way, start, kept) or [kept]
-    return told(way, start, steps, tuple(sorted(wanted - kept)))
+    made = told(way, start, steps, tuple(sorted(wanted - kept)))
+    return replace(made, held=not_entered(base, asked, today))
+
+
+def not_entered(base: Base, asked: Asked, today: Array) -> tuple[int, ...]:
+    """Numbers that would move but cannot be entered."""
+    assert asked.steps is not None
+    moved = changed(base.programme, today, base.known[0])
+    return tuple(k for k in sorted(moved) if asked.steps[k] <= 0.0)
 
 
 def changed(programme: Programme, today: Array, target: Array) -> Moved:
@@ -100,7 +108,7 @@ def changed(programme: Programme, today: Array, target: Array) -> Moved:
 
 
 def worth_moving(way: Way, wanted: Moved, noise: float) -> Moved:
-    """The numbers without those that may stay as today: the end stays inside and loses less than noise each."""
+    """The numbers without those that may stay as today: the end stays inside, each loses less than noise."""
     kept = wanted
     while kept:
         here = way.at(kept)
@@ -151,9 +159,7 @@ def _next(way: Way, here: Stand, today: Stand, left: Moved) -> Iterable[Moved]:
     yield left
 
 
-def _allowed(
-    way: Way, here: Stand, today: Stand, left: Moved, size: int, mending: bool
-) -> Sequence[Moved]:
+def _allowed(way: Way, here: Stand, today: Stand, left: Moved, size: int, mending: bool) -> Sequence[Moved]:
     """Allowed groups of one size, by the cost behind them; only those that end inside when mending."""
     found = []
     for group in combinations(sorted(left), size):

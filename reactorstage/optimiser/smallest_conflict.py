@@ -1,7 +1,7 @@
 """A smallest set of limits that cannot be met together, and what one limit alone would have to give.
 
 Deletion filter (Chinneck and Dravnieks 1991, from memory): limits are left out one after another as long as
-the others still cannot be met. "Cannot be met" is the verdict of local searches from many starts, not a proof.
+the others still cannot be met. "Cannot be met" is the verdict of local searches from many starts, no proof.
 What the tool adds by itself (a cooler may not heat) and the search ranges always hold.
 """
 
@@ -62,8 +62,8 @@ class Prober:
         tasks = [partial(self._try, freed, x) for x in (*nearest, *self.points)]
         for first in range(0, len(tasks), 2):
             for x in run(tasks[first : first + 2], self.job.jobs, self.job.stop):
-                margin = None if x is None else self.note(x)
-                if x is not None and margin is not None and np.all(margin[wanted] >= -INSIDE_ENOUGH):
+                found = None if x is None else self.note(x)
+                if x is not None and found is not None and np.all(found[wanted] >= -INSIDE_ENOUGH):
                     return x
         return None
 
@@ -73,7 +73,7 @@ class Prober:
             return None
         elastic, start = elastic_at(freed, evaluation, x)
         found = descend(elastic, start, 1.0, stop=self.job.stop)
-        return None if found.x is None else found.x[: elastic.count]
+        return None if found.x is None else np.asarray(found.x[: elastic.count])
 
     def note(self, x: Array) -> Array | None:
         """(M,) margins at x, at the final tolerance and in scales; remembered."""
@@ -91,7 +91,7 @@ def _short(margin: Array) -> float:
 
 
 def fixed_rows(limits: Sequence[LimitRow]) -> set[int]:
-    """Limits that nobody can give up: those that the tool adds; and soft ones, which never stand in the way."""
+    """Limits that nobody can give up (the tool adds them), and soft ones, which never stand in the way."""
     return {k for k, limit in enumerate(limits) if limit.implied or limit.soft_price is not None}
 
 

@@ -55,8 +55,13 @@ def certificate_text(found: Certificate, aim: Aim) -> str:
     share = f"{found.reached} of {counted(found.starts, 'start')} reached this answer"
     others = found.answers - 1
     rivals = f"{counted(others, 'other answer')} found" if others else "no other was found"
-    error = f"; solving the beds more finely moves it by {small(found.error, aim)}" if found.error is not None else ""
-    return f"{share}, {rivals}; optimality residual {found.residual:.0e}; {curvature_text(found.curvature, aim)}{error}."
+    error = (
+        f"; solving the beds more finely moves it by {small(found.error, aim)}"
+        if found.error is not None
+        else ""
+    )
+    residual = f"optimality residual {found.residual:.0e}"
+    return f"{share}, {rivals}; {residual}; {curvature_text(found.curvature, aim)}{error}."
 
 
 def curvature_text(value: float | None, aim: Aim) -> str:
@@ -90,7 +95,11 @@ def loads(programme: Programme, x: Array) -> list[str]:
     for group in programme.splits:
         entries = [programme.numbers[k] for k in group.indices]
         word = loading(shares(entries, group, x))
-        found += [f"{word} {group.feed}" if word != "evenly split" else f"{group.feed} evenly split"] if word else []
+        found += (
+            [f"{word} {group.feed}" if word != "evenly split" else f"{group.feed} evenly split"]
+            if word
+            else []
+        )
     return found
 
 
@@ -122,7 +131,9 @@ def inlets(programme: Programme, x: Array) -> list[str]:
         if count > 1 and len(beds) == count:
             return [f"all inlets {word}"]
     return [
-        f"inlet{'s' if len(beds) > 1 else ''} of {owners_text(beds)} {word}" for word, beds in places.items() if beds
+        f"inlet{'s' if len(beds) > 1 else ''} of {owners_text(beds)} {word}"
+        for word, beds in places.items()
+        if beds
     ]
 
 
@@ -131,7 +142,8 @@ def answers_table(programme: Programme, optimum: Optimum, rated: Sequence[Rating
     answers = optimum.answers
     more = [answer.cost - optimum.best.cost for answer in answers]
     looks = [
-        character(programme, answer.x, rated[k] if k < len(rated) else None) for k, answer in enumerate(answers)
+        character(programme, answer.x, rated[k] if k < len(rated) else None)
+        for k, answer in enumerate(answers)
     ]
     return table(f"ANSWERS, {aim.heading}", [
         Column(("",), tuple(str(k + 1) for k in range(len(answers)))),
@@ -145,5 +157,3 @@ def answers_table(programme: Programme, optimum: Optimum, rated: Sequence[Rating
 
 def _curvature(answer: Answer, aim: Aim) -> str:
     return "corner" if answer.curvature is None else fixed(aim.size(answer.curvature), 0)
-
-

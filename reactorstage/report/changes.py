@@ -35,7 +35,7 @@ def named(word: str, owners: Sequence[str]) -> str:
 
 
 def spoken(name: str) -> str:
-    """A quantity by its full name in words: `ethylene to bed 1`, `inlet of bed 2`, `flow of feed hydrogen`."""
+    """A quantity by its full name in words: `ethylene to bed 1`, `inlet of bed 2`."""
     owner, _, word = name.rpartition(".")
     return named("inlet" if word == "inlet temperature" else word, [owner]) if owner else word
 

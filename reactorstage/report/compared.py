@@ -25,7 +25,11 @@ def verdict(found: Comparison) -> str:
         return f"{found.aim.name} has no value in one of them."
     if found.aim.name != "money.total":
         size = with_unit(brief(abs(worse)), found.aim.unit)
-        word = "the same in both" if worse == 0.0 else f"{'worse' if worse > 0.0 else 'better'} by {size} in {second}"
+        word = (
+            "the same in both"
+            if worse == 0.0
+            else f"{'worse' if worse > 0.0 else 'better'} by {size} in {second}"
+        )
         return f"{found.aim.name} is {word}."
     if abs(worse) < MONEY_SHOWN:
         return _capital(f"{second} costs the same as {first}{_terms(found)}.")
@@ -37,7 +41,10 @@ def verdict(found: Comparison) -> str:
 def _terms(found: Comparison) -> str:
     """`: by-product +53.3, entry heat -29.7`, largest first."""
     moved = [row for row in found.money if row.name != TOTAL and abs(row.change or 0.0) >= MONEY_SHOWN]
-    parts = [f"{row.name} {signed(row.change or 0.0)}" for row in sorted(moved, key=lambda row: -abs(row.change or 0.0))]
+    parts = [
+        f"{row.name} {signed(row.change or 0.0)}"
+        for row in sorted(moved, key=lambda row: -abs(row.change or 0.0))
+    ]
     return f": {', '.join(parts)}" if parts else ""
 
 
@@ -123,14 +130,24 @@ def _per_owner(title: str, found: Comparison, owners: str | tuple[str, ...], wor
     """One row for each owner that differs, first and second of each quantity beside each other."""
     rows = {row.name: row for row in found.quantities if of_owner(row).startswith(owners)}
     places = list(dict.fromkeys(of_owner(row) for row in rows.values()))
-    columns: list[Column | None] = [Column(("",), tuple(place.removeprefix("bed ") for place in places), left=True)]
+    columns: list[Column | None] = [
+        Column(("",), tuple(place.removeprefix("bed ") for place in places), left=True)
+    ]
     for word in words:
         cells = [rows.get(f"{place}.{word}") for place in places]
         unit = next((one.unit for one in cells if one), "")
         head = (f"{word.removesuffix(' temperature')}, {unit}",)
         for which in ("first", "second"):
-            columns.append(Column((which,), tuple("-" if one is None else _number(getattr(one, which)) for one in cells), group=head))
-    return table(title, columns) if any(len(column.cells) for column in columns if column) else Table(title, ())
+            columns.append(
+                Column(
+                    (which,),
+                    tuple("-" if one is None else _number(getattr(one, which)) for one in cells),
+                    group=head,
+                )
+            )
+    return (
+        table(title, columns) if any(len(column.cells) for column in columns if column) else Table(title, ())
+    )
 
 
 def _money(found: Comparison) -> Table:
@@ -150,7 +167,12 @@ def comparison_json(found: Comparison) -> dict[str, Any]:
         "result": "comparison",
         "first": {"name": found.names[0], "status": found.statuses[0], "limits broken": found.broken[0]},
         "second": {"name": found.names[1], "status": found.statuses[1], "limits broken": found.broken[1]},
-        "aim": {"direction": found.direction, "of": found.aim.name, **_row(found.aim), "worse by": found.worse},
+        "aim": {
+            "direction": found.direction,
+            "of": found.aim.name,
+            **_row(found.aim),
+            "worse by": found.worse,
+        },
         "settings": {row.name: _row(row) for row in found.decisions},
         "money": {row.name: _row(row) for row in found.money},
         "limits": [

@@ -1,4 +1,4 @@
-"""Comparing ratings, optima and result files: the one way to a Comparison, for Python and the command line."""
+"""Comparing ratings, optima and result files: the one way to a Comparison."""
 
 from __future__ import annotations
 

@@ -1,4 +1,4 @@
-"""Two settings of like trains side by side: limits broken, the cost in its terms, what changed per bed and gap.
+"""Two settings of like trains side by side: limits broken, the cost in its terms, what changed where.
 
 Works on the content of result files, so that a rating made now and one read from a file are the same.
 """
@@ -101,7 +101,9 @@ def refuse_unlike(first: Json, second: Json, names: tuple[str, str]) -> None:
     """Raise CallError when the trains cannot be compared."""
     unlike = [text for key in MUST_AGREE if (text := unlike_text(first["train"], second["train"], key))]
     if unlike:
-        raise CallError(f"{names[0]} and {names[1]} cannot be compared, for these are unlike trains: {'; '.join(unlike)}")
+        raise CallError(
+            f"{names[0]} and {names[1]} cannot be compared, for these are unlike trains: {'; '.join(unlike)}"
+        )
 
 
 def unlike_text(first: Json, second: Json, key: str) -> str:
@@ -130,7 +132,10 @@ def unlike_notes(first: Json, second: Json) -> list[str]:
     ones, others = first["train"].get("steps", {}), second["train"].get("steps", {})
     for place in dict.fromkeys([*ones, *others]):
         if ones.get(place) != others.get(place):
-            notes.append(f"{place.capitalize()} is {_steps(ones.get(place))} in the first, {_steps(others.get(place))} in the second.")
+            notes.append(
+                f"{place.capitalize()} is {_steps(ones.get(place))} in the first, "
+                f"{_steps(others.get(place))} in the second."
+            )
     return notes
 
 
@@ -167,7 +172,8 @@ def money_differences(first: Json, second: Json) -> tuple[Difference, ...]:
     ones, others = first["per label"], second["per label"]
     labels = [label for label in dict.fromkeys([*ones, *others]) if label not in SUBTOTALS]
     rows = [
-        Difference(_account(label), first["unit"], ones.get(label, 0.0), others.get(label, 0.0)) for label in labels
+        Difference(_account(label), first["unit"], ones.get(label, 0.0), others.get(label, 0.0))
+        for label in labels
     ]
     return tuple(sorted(rows, key=lambda row: row.name == TOTAL))
 

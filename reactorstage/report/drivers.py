@@ -8,7 +8,15 @@ from dataclasses import dataclass
 from reactorstage.report.accounts import signed
 from reactorstage.report.aim import MONEY, Aim
 from reactorstage.report.changes import named
-from reactorstage.report.display import brief, difference, difference_kind, owners_text, readable, unit, with_unit
+from reactorstage.report.display import (
+    brief,
+    difference,
+    difference_kind,
+    owners_text,
+    readable,
+    unit,
+    with_unit,
+)
 from reactorstage.report.table import Column, Table, table
 from reactorstage.train.influence import Influence
 
@@ -20,6 +28,11 @@ class Driver:
     what: str
     step: str
     change: float
+
+    @property
+    def words(self) -> str:
+        """`flow of ethylene (+1 %)`; a limit is relaxed by its step."""
+        return f"{self.what} ({'' if ' relaxed, ' in self.what else '+'}{self.step})"
 
 
 def drivers(found: Sequence[Influence]) -> list[Driver]:
@@ -38,7 +51,11 @@ def _what(rows: Sequence[Influence]) -> str:
     word, _ = rows[0].group
     if word:
         owners = sorted(row.group[1] for row in rows)
-        return f"{word.partition(' ')[2]}, {owners_text(owners)}" if word.startswith("limit ") else named(word, owners)
+        return (
+            f"{word.partition(' ')[2]}, {owners_text(owners)}"
+            if word.startswith("limit ")
+            else named(word, owners)
+        )
     owner, _, quantity = rows[0].name.rpartition(".")
     subject = owner.partition(" ")[2]
     return f"{quantity.removeprefix('ln ')} of {subject}" if owner else rows[0].name
@@ -55,12 +72,16 @@ def step_text(one: Influence) -> str:
 def change_text(change: float, aim: Aim) -> str:
     """A change of cost with its sign, in display units."""
     size = aim.size(change) or 0.0
-    return signed(size, 1) if aim.kind == MONEY else f"{'+' if size > 0 else '-' if size < 0 else ''}{readable(abs(size))}"
+    return (
+        signed(size, 1)
+        if aim.kind == MONEY
+        else f"{'+' if size > 0 else '-' if size < 0 else ''}{readable(abs(size))}"
+    )
 
 
 def drivers_text(found: Sequence[Influence], aim: Aim, count: int = 4) -> str:
     """The largest ones in one line."""
-    texts = [f"{one.what} (+{one.step}) {change_text(one.change, aim)}" for one in drivers(found)[:count]]
+    texts = [f"{one.words} {change_text(one.change, aim)}" for one in drivers(found)[:count]]
     return f"DRIVERS      {'; '.join(texts)}." if texts else ""
 
 

@@ -6,7 +6,7 @@ from collections.abc import Sequence
 from typing import Any
 
 from reactorstage.optimiser.programme import FreeNumber, Programme
-from reactorstage.optimiser.reasons import ConflictSet, FlatNumber, Flatness, Moves, Pair, Reach, Suffices
+from reactorstage.optimiser.reasons import ConflictSet, Flatness, FlatNumber, Moves, Pair, Reach, Suffices
 from reactorstage.optimiser.result import Optimum
 from reactorstage.report.aim import Aim
 from reactorstage.report.certificate import certificate
@@ -130,14 +130,20 @@ def _suffices(programme: Programme, one: Suffices) -> Json:
         "limits": [programme.limits[k].name for k in one.limits],
         "by": shown(one.amount, kind),
         "unit": unit(kind),
-        **({} if one.amount is not None else {"reason": "no relaxation of this alone was found to be enough"}),
+        **(
+            {} if one.amount is not None else {"reason": "no relaxation of this alone was found to be enough"}
+        ),
     }
 
 
 def _influence(one: Influence, aim: Aim, currency: str) -> Json:
     kind = difference_kind(one.kind)
-    step = {"part": one.step if one.kind == "fraction" else 0.01} if one.relative else {
-        "step": shown(one.step, kind),
-        "unit": unit(kind, currency),
-    }
+    step = (
+        {"part": one.step if one.kind == "fraction" else 0.01}
+        if one.relative
+        else {
+            "step": shown(one.step, kind),
+            "unit": unit(kind, currency),
+        }
+    )
     return {"parameter": one.name, **step, "best changes by": aim.size(one.change)}

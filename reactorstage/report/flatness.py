@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from math import ceil, floor
 
-from reactorstage.optimiser.reasons import FlatNumber, Flatness
+from reactorstage.optimiser.reasons import Flatness, FlatNumber
 from reactorstage.report.aim import Aim
 from reactorstage.report.changes import named, spoken
 from reactorstage.report.display import and_list, brief, fixed, shown, unit, with_unit
@@ -13,7 +13,7 @@ from reactorstage.report.table import Column, Table, table
 
 
 def flat_text(flat: Flatness, aim: Aim) -> str:
-    """Spans by quantity: `ethylene to bed 1: 55 to 78, 2: 53 to 77 kmol/h; inlet of bed 1: 364 to 377 degC`."""
+    """Spans by quantity: `ethylene to bed 1 55-78, 2 53-77 kmol/h; inlet of bed 1 364-377 degC`."""
     groups: dict[tuple[str, str], list[FlatNumber]] = {}
     for one in flat.numbers:
         groups.setdefault((one.name.rpartition(".")[2], one.kind), []).append(one)

@@ -1,4 +1,4 @@
-"""What moves the answer, as a picture: change of the best cost with a small step of each parameter, ranked."""
+"""What moves the answer, as a picture: change of the best cost with a small step of each parameter."""
 
 from __future__ import annotations
 
@@ -9,15 +9,15 @@ from matplotlib.figure import Figure
 
 from reactorstage.report import look
 from reactorstage.report.aim import MONEY, Aim
-from reactorstage.report.drivers import Driver, change_text, drivers
+from reactorstage.report.drivers import change_text, drivers
 from reactorstage.train.influence import Influence
 
 ROWS = 16
 ROW_INCHES = 0.235
-ABOVE, BELOW = 0.72, 0.62
+ABOVE, BELOW = 0.6, 0.74
 NAMES = 0.42
 FAINTEST = 1e-3
-WORSE, BETTER = look.BY_PRODUCT, look.SPLIT_REACTANT
+WORSE, BETTER = look.INK, look.LIMIT
 NOTE = (
     "Each parameter alone, to first order, everything else re-optimised; the limits at work stay at work. "
     "Steps are not equally likely."
@@ -42,10 +42,12 @@ def influence_figure(found: Sequence[Influence], aim: Aim, title: str, status: s
     axes.barh(range(len(rows)), sizes, height=0.62, color=colours, linewidth=0, zorder=3)
     axes.axvline(0.0, color=look.INK, linewidth=0.8, zorder=4)
     most = max(abs(size) for size in sizes)
-    axes.set_xlim(1.22 * min(0.0, *sizes) - 0.02 * most, 1.22 * max(0.0, *sizes) + 0.02 * most)
+    room = 0.02 * most, 0.2 * most
+    low, high = min(0.0, *sizes), max(0.0, *sizes)
+    axes.set_xlim(low - room[low < 0.0], high + room[high > 0.0])
     for place, (row, size) in enumerate(zip(rows, sizes, strict=True)):
         _value(axes, place, size, change_text(row.change, aim))
-    axes.set_yticks(range(len(rows)), [_name(row) for row in rows], fontsize=look.SMALL)
+    axes.set_yticks(range(len(rows)), [row.words for row in rows], fontsize=look.SMALL)
     axes.set_ylim(len(rows) - 0.4, -0.6)
     axes.tick_params(axis="y", length=0)
     axes.tick_params(axis="x", labelsize=look.TEXT - 0.5)
@@ -55,10 +57,6 @@ def influence_figure(found: Sequence[Influence], aim: Aim, title: str, status: s
     axes.set_xlabel(_label(aim))
     figure.text(look.LEFT - 0.09, 0.1 / height, NOTE, ha="left", va="bottom", fontsize=look.SMALL - 0.4)
     return figure
-
-
-def _name(row: Driver) -> str:
-    return f"{row.what}, +{row.step}" if " relaxed" not in row.what else f"{row.what}, by {row.step}"
 
 
 def _label(aim: Aim) -> str:

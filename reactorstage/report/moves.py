@@ -19,11 +19,12 @@ def first_move_text(moves: Moves, numbers: Sequence[FreeNumber], today: Rating, 
     if not moves.moves:
         return ""
     first, others = moves.moves[0], len(moves.moves) - 1
-    text = f"First set {settings_text(first, numbers, today.x)}: {gain_text(first.gain, aim)}{_why(first, today)}"
+    what = settings_text(first, numbers, today.x)
+    text = f"First set {what}: {gain_text(first.gain, aim)}{_why(first, today)}"
     if not others:
         return f"{text}; there is no other move that is worth it."
     rest = gain_text(moves.gain - first.gain, aim)
-    return f"{text}. {counted(others, 'more move')}, each inside all limits: {rest} (--explain lists them)."
+    return f"{text}. Then {counted(others, 'more move')}, each inside all limits: {rest} (see --explain)."
 
 
 def gain_text(gain: float, aim: Aim) -> str:
@@ -53,17 +54,19 @@ def _why(move: Move, today: Rating) -> str:
     """What a move is for, where its gain does not say it."""
     if move.mends:
         mended = and_list(bounds.together(today.limits[k] for k in move.mends))
-        return f", brings today's setting inside {mended}" if move.gain >= 0.0 else (
-            f", the price of bringing today's setting inside {mended}"
+        return (
+            f", brings today's setting inside {mended}"
+            if move.gain >= 0.0
+            else (f", the price of bringing today's setting inside {mended}")
         )
     return ", makes room for what follows" if move.gain < 0.0 else ""
 
 
 def dropped_text(moves: Moves, numbers: Sequence[FreeNumber]) -> str:
-    """Numbers that stay as today because moving them is not worth it."""
-    if not moves.dropped:
-        return ""
-    return f"Not worth moving: {and_list([spoken(numbers[k].name) for k in moves.dropped])}."
+    """Numbers that stay as today because moving them is not worth it, or because nobody can enter them."""
+    groups = (("Not worth moving", moves.dropped), ("Not set on a panel, stays as today", moves.held))
+    texts = [f"{head}: {and_list([spoken(numbers[k].name) for k in rows])}." for head, rows in groups if rows]
+    return " ".join(texts)
 
 
 def moves_table(moves: Moves, numbers: Sequence[FreeNumber], today: Rating, aim: Aim) -> Table:

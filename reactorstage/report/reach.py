@@ -47,7 +47,9 @@ def _label_text(worth: Worth, found: Reach, rating: Rating, aim: Aim) -> str:
         *(["the search range"] if found.takes_over_range else []),
     ]
     then = f", then {and_list(names)} hold{'s' if len(names) == 1 else ''}" if names else ""
-    return f"on {worth.label} for {size_text(found.holds, worth.kind)} ({aim.number(found.saved)} in all){then}"
+    return (
+        f"on {worth.label} for {size_text(found.holds, worth.kind)} ({aim.number(found.saved)} in all){then}"
+    )
 
 
 def takes_over_text(found: Reach, rating: Rating) -> str:
@@ -72,12 +74,14 @@ def size_text(amount: float, kind: str) -> str:
 def pairs_text(pairs: Sequence[Pair], rating: Rating, aim: Aim, count: int = 2) -> str:
     """The pairs that gain most by being relaxed together."""
     ranked = sorted(pairs, key=lambda pair: sum(pair.alone) - pair.together)
-    texts = [
-        f"{and_list(bounds.together(rating.limits[k] for k in pair.limits))} save {aim.number(pair.together)} "
-        f"together, {aim.number(pair.alone[0])} and {aim.number(pair.alone[1])} alone"
-        for pair in ranked[:count]
-    ]
+    texts = [_pair_text(pair, rating, aim) for pair in ranked[:count]]
     return f"TOGETHER     {'; '.join(texts)}." if texts else ""
+
+
+def _pair_text(pair: Pair, rating: Rating, aim: Aim) -> str:
+    names = and_list(bounds.together(rating.limits[k] for k in pair.limits))
+    alone = " and ".join(aim.number(cost) for cost in pair.alone)
+    return f"{names} save {aim.number(pair.together)} together, {alone} alone"
 
 
 def reach_table(optimum: Optimum, rating: Rating, aim: Aim) -> Table:
@@ -114,8 +118,8 @@ def conflict_text(optimum: Optimum, rating: Rating) -> list[str]:
         f"CONFLICT     {names} cannot be met together within the search ranges; with any one left out the "
         f"others can (by {held.starts} local searches, no proof)."
         if len(held.limits) > 1
-        else f"CONFLICT     {names} cannot be met even alone within the search ranges (by {held.starts} local "
-        "searches, no proof)."
+        else f"CONFLICT     {names} cannot be met even alone within the search ranges (by {held.starts} "
+        "local searches, no proof)."
     )
     enough = [
         f"{_rows_text(one.limits, rating)} by {_amount_text(one.amount, one.limits, rating)}"

@@ -31,7 +31,9 @@ def read_result(path: Path) -> Json:
         content = json.loads(text)
     except json.JSONDecodeError as error:
         place = f"{path}:{error.lineno}:{error.colno}"
-        raise CallError(f"{place}: this is not JSON: {error.msg}; write the result anew with `rate` or `optimise`") from None
+        raise CallError(
+            f"{place}: this is not JSON: {error.msg}; write the result anew with `rate` or `optimise`"
+        ) from None
     except RecursionError:
         raise CallError(f"{path}:1:1: this is no result file: it is nested too deeply") from None
     return checked(content, path)
@@ -55,7 +57,9 @@ def checked(content: Any, path: Path) -> Json:
     missing = [key for key in NEEDED if key not in content]
     if missing or not _sound(content):
         what = f"{', '.join(missing)} missing" if missing else "a part of it has another form"
-        raise CallError(f"{path}:1:1: this result file is not whole: {what}; write it anew with `rate` or `optimise`")
+        raise CallError(
+            f"{path}:1:1: this result file is not whole: {what}; write it anew with `rate` or `optimise`"
+        )
     return content
 
 
@@ -65,7 +69,9 @@ def _sound(content: Json) -> bool:
     if not all(isinstance(part, dict) for part in mappings) or not isinstance(content["limits"], list):
         return False
     values = all(
-        isinstance(one, dict) and {"value", "unit"} <= one.keys() and isinstance(one["value"], int | float | None)
+        isinstance(one, dict)
+        and {"value", "unit"} <= one.keys()
+        and isinstance(one["value"], int | float | None)
         for one in content["quantities"].values()
     )
     keys = {"limit", "of", "direction", "allowed", "value", "unit", "margin", "margin unit", "state"}

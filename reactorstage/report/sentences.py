@@ -117,7 +117,8 @@ def margin_text(optimum: Optimum, best: Rating) -> str:
     bare = list(dict.fromkeys(s.label for s in bounds.at_work(best) if not s.implied and s.keep_away == 0.0))
     if not bare:
         return ""
-    return f"KEEP AWAY    none on {and_list(bare)}: instrument error can cross {_it(bare)}{_step_away(optimum, best)}."
+    further = _step_away(optimum, best)
+    return f"KEEP AWAY    none on {and_list(bare)}: instrument error can cross {_it(bare)}{further}."
 
 
 def _step_away(optimum: Optimum, best: Rating) -> str:

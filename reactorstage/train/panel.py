@@ -98,9 +98,7 @@ def _round_below(size: float, kind: str) -> float:
     return max(one for one in (1.0, 2.0, 5.0) if one * power <= shown * 1.0000001) * power * scale
 
 
-def _given_steps(
-    case: Case, numbers: tuple[FreeNumber, ...], problems: list[Problem]
-) -> dict[int, float]:
+def _given_steps(case: Case, numbers: tuple[FreeNumber, ...], problems: list[Problem]) -> dict[int, float]:
     """Steps by number; a number's own name counts before `every bed.`, and that before its kind."""
     found: dict[int, float] = {}
     ranked = sorted(case.panel.steps.items(), key=lambda item: _rank(item[0])) if case.panel else []
@@ -118,7 +116,9 @@ def _given_steps(
                 problems.append(case.problem(path, error.message, error.hint))
                 break
             if step <= 0.0:
-                problems.append(case.problem(path, "a step is above zero", "leave the key out for the usual step"))
+                problems.append(
+                    case.problem(path, "a step is above zero", "leave the key out for the usual step")
+                )
                 break
             found[k] = step
     return found
@@ -131,7 +131,9 @@ def _rank(name: str) -> int:
 def _called(name: str, number: FreeNumber) -> bool:
     owner, _, quantity = name.partition(".")
     if owner in ("every bed", "every gap"):
-        return number.name.startswith(owner.removeprefix("every ")) and number.name.partition(".")[2] == quantity
+        return (
+            number.name.startswith(owner.removeprefix("every ")) and number.name.partition(".")[2] == quantity
+        )
     return name in (number.name, number.kind)
 
 
