@@ -94,8 +94,8 @@ class Moves:
     """Settings that can be entered, in an order in which each is allowed by itself.
 
     start is the cost today, moves lead to x at cost; dropped are numbers that stay as today because moving
-    them is not worth the noise, held those that the best answer moves but nobody can enter. broken are the limits
-    that today breaks. note says why there are none.
+    them is not worth the noise, held those that the best answer moves but nobody can enter. broken are the
+    limits that today breaks. note says why there are none.
     """
 
     start: float

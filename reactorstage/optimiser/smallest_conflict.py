@@ -61,10 +61,10 @@ class Prober:
         nearest = [x for x, _ in sorted(self.seen, key=lambda pair: _short(pair[1][wanted]))[:NEAREST]]
         tasks = [partial(self._try, freed, x) for x in (*nearest, *self.points)]
         for first in range(0, len(tasks), 2):
-            for x in run(tasks[first : first + 2], self.job.jobs, self.job.stop):
-                found = None if x is None else self.note(x)
-                if x is not None and found is not None and np.all(found[wanted] >= -INSIDE_ENOUGH):
-                    return x
+            for end in run(tasks[first : first + 2], self.job.jobs, self.job.stop):
+                found = None if end is None else self.note(end)
+                if end is not None and found is not None and np.all(found[wanted] >= -INSIDE_ENOUGH):
+                    return end
         return None
 
     def _try(self, freed: Programme, x: Array) -> Array | None:
@@ -81,7 +81,8 @@ class Prober:
         if not there.ok:
             return None
         scales = np.array([limit.scale for limit in self.programme.limits])
-        margin = needed(there.margin) / np.maximum(np.abs(needed(there.weight)) * scales, 1e-300)
+        sizes = np.maximum(np.abs(needed(there.weight)) * scales, 1e-300)
+        margin: Array = needed(there.margin) / sizes
         self.seen.append((x, margin))
         return margin
 

@@ -143,7 +143,7 @@ def _head(what: str, rating: Rating, overrides: Sequence[str]) -> Json:
 
 
 def train_json(rating: Rating) -> Json:
-    """What a train is: beds, steps, species, reactions, feeds, aim and currency; like ones can be compared."""
+    """What a train is: beds, steps, species, reactions, feeds, aim, currency; like ones can be compared."""
     steps: dict[str, list[str]] = {}
     for section in rating.case.train:
         if section.bed is None:

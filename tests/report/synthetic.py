@@ -91,6 +91,8 @@ def case(options: Options, number_of_beds: int) -> Any:
         currency="EUR",
         hash="0" * 64,
         heat_levels=levels,
+        train=[SimpleNamespace(owner=f"bed {n + 1}", bed=True, steps=()) for n in range(number_of_beds)],
+        feeds={"benzene": None, "ethylene": None},
         aim=SimpleNamespace(direction="least", quantity="money.total"),
     )
 
