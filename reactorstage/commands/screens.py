@@ -94,9 +94,6 @@ def _search(outcome: Optimisation) -> list[str]:
     free = sum(not number.internal for number in outcome.programme.numbers)
     tried = len(optimum.starts)
     starts = f"{ended if ended == tried else f'{ended} of {tried}'} starts ended"
-    reached = sum(start.answer == 0 for start in optimum.starts)
-    if len(optimum.answers) > 1:
-        starts += f", {reached} at the best"
     if not ended:
         starts = f"{counted(tried, 'start')}, none ended inside all limits"
     return [

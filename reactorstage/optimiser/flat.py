@@ -14,7 +14,7 @@ from reactorstage.optimiser.resolve import Base, resolve
 from reactorstage.optimiser.scaling import needed
 from reactorstage.optimiser.wrappers import Pinned
 
-BISECTIONS = 5
+BISECTIONS = 8
 AT_REST = 1e-3
 MET = 1e-6
 

@@ -185,4 +185,4 @@ def told(way: Way, start: Stand, steps: Sequence[Moved], dropped: tuple[int, ...
         listed.append(Move(places, values, after.x, after.cost, here.cost - after.cost, mends))
         here = after
     broken = tuple(int(k) for k in np.flatnonzero(start.broken))
-    return Moves(start.cost, tuple(listed), here.x, here.cost, dropped, broken)
+    return Moves(start.cost, tuple(listed), here.x, here.cost, dropped, broken=broken)

@@ -61,9 +61,9 @@ def reach(base: Base, moved: Worth) -> Reach | None:
 
 def kept(base: Base, moved: Worth, free: Relaxed) -> tuple[Relaxed, Relaxed | None]:
     """The last relaxation at which the worth holds and, unless the limit lets go there, the next one."""
-    first = relaxed(base, moved, 1.0, (free.x,)) if free.steps > 1.0 else free
-    if first.x is None or first.saves <= base.noise:
-        return Relaxed(0.0, 0.0, base.known[0]), first if first.x is not None else None
+    first = Relaxed(1.0, moved.saves or 0.0, None) if free.steps > 1.0 else free
+    if first.saves <= base.noise:
+        return Relaxed(0.0, 0.0, base.known[0]), relaxed(base, moved, min(1.0, free.steps), (free.x,))
     least = HALF * first.saves / first.steps
     last = first
     for _ in range(DOUBLINGS):

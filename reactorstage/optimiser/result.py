@@ -122,15 +122,15 @@ class Optimum:
     worths: tuple[Worth, ...] = ()
     equal_splits: tuple[EqualSplit, ...] = ()
     keep_away_cost: float | None = None
+    conflict: Conflict | None = None
+    discretisation_error: float | None = None
+    evaluations: int = 0
+    notes: tuple[str, ...] = field(default=())
     step_away_cost: float | None = None
     pairs: tuple[Pair, ...] = ()
     flatness: Flatness | None = None
     moves: Moves | None = None
-    conflict: Conflict | None = None
     conflict_set: ConflictSet | None = None
-    discretisation_error: float | None = None
-    evaluations: int = 0
-    notes: tuple[str, ...] = field(default=())
 
     @property
     def best(self) -> Answer:

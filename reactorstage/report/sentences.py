@@ -88,7 +88,9 @@ def second_answer(programme: Programme, optimum: Optimum, best: Rating, others: 
     where = f" ({'; '.join(apart)})" if apart else ""
     cost = "has no value" if more is None else aim_of(best).worse(more)
     rest = f"; {len(others) - 1} more in result.json" if len(others) > 1 else ""
-    return f"A second answer{where} {cost}{rest}."
+    reached = sum(start.answer == 0 for start in optimum.starts)
+    share = f"; {reached} of {len(optimum.starts)} starts reached the best" if optimum.starts else ""
+    return f"A second answer{where} {cost}{rest}{share}."
 
 
 def today_text(was: Rating) -> str:

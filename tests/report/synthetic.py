@@ -395,6 +395,7 @@ def optimisation(others: int = 1, status: str = optimise_result.INSIDE) -> Any:
         others=(second,) * others,
         seconds=1.1,
         seed=1,
+        influences=(),
     )
 
 
