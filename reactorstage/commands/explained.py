@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
-from reactorstage.commands.layout import paragraph, table_lines
+from reactorstage.commands.layout import INDENT, paragraph, table_lines
 from reactorstage.report.aim import aim_of
 from reactorstage.report.certificate import answers_table, certificate, certificate_text
 from reactorstage.report.drivers import drivers_table, drivers_text
@@ -60,6 +60,6 @@ def explained_lines(outcome: Optimisation, width: int) -> list[str]:
 def _block(table: Table | None, text: str, width: int) -> Sequence[str]:
     lines = [
         *(table_lines(table, width) if table is not None else []),
-        *(paragraph(text, width) if text else []),
+        *(paragraph(text, width, INDENT if text.startswith("TOGETHER") else 2) if text else []),
     ]
     return ["", *lines] if lines else []

@@ -88,15 +88,16 @@ def reach_table(optimum: Optimum, rating: Rating, aim: Aim) -> Table:
     """Every worth with how far it holds, what takes over, and where the limit lets go."""
     rows = [one for one in told(optimum.worths, rating) if one.reach is not None]
     reaches = [one.reach for one in rows if one.reach is not None]
+    goes = tuple(_goes(one, row) for one, row in zip(reaches, rows, strict=True))
     return table(f"HOW FAR RELAXING PAYS, {aim.heading}", [
         Column(("",), tuple(f"{one.label}, {owners_text(one.owners)}" for one in rows), left=True),
-        Column(("by",), tuple(bounds.step_text(one) for one in rows), left=True),
+        Column(("by",), tuple(bounds.step_text(one) for one in rows), rank=3, left=True),
         Column(("first", "step"), tuple(aim.number(one.saves) for one in rows)),
         Column(("pays", "for"), tuple(_for(one.holds, row) for one, row in zip(reaches, rows, strict=True))),
         Column(("saving", "so far"), tuple(aim.number(one.saved) for one in reaches)),
         Column(("then", ""), tuple(takes_over_text(one, rating) or "lets go" for one in reaches), left=True),
-        Column(("lets go", "after"), tuple(_goes(one, row) for one, row in zip(reaches, rows, strict=True))),
-        Column(("saving", "in all"), tuple(aim.number(one.saved_in_all) for one in reaches)),
+        Column(("lets go", "after"), goes, rank=2),
+        Column(("saving", "in all"), tuple(aim.number(one.saved_in_all) for one in reaches), rank=1),
     ])  # fmt: skip
 
 
