@@ -6,7 +6,7 @@ broken further, and once a setting is inside all limits every later one is.
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, field, replace
 from itertools import combinations
 
@@ -150,25 +150,27 @@ def _onwards(way: Way, here: Stand, today: Stand, kept: Moved) -> list[Moved] | 
 
 
 def _next(way: Way, here: Stand, today: Stand, left: Moved) -> Iterable[Moved]:
-    """Groups that may move next: what brings a broken setting inside, then single numbers, then several."""
+    """Groups that may move next: what brings a broken setting inside, what gains, then what makes room."""
     if not here.inside:
-        for size in range(1, AT_ONCE + 1):
-            yield from _allowed(way, here, today, left, size, mending=True)
-    for size in range(1, AT_ONCE + 1):
-        yield from _allowed(way, here, today, left, size, mending=False)
+        yield from _allowed(way, here, today, left, lambda after: after.inside)
+    yield from _allowed(way, here, today, left, lambda after: after.cost <= here.cost)
+    yield from _allowed(way, here, today, left, lambda after: True)
     yield left
 
 
-def _allowed(way: Way, here: Stand, today: Stand, left: Moved, size: int, mending: bool) -> Sequence[Moved]:
-    """Allowed groups of one size, by the cost behind them; only those that end inside when mending."""
-    found = []
-    for group in combinations(sorted(left), size):
-        if len(way.stands) >= MOST_STATES:
-            break
-        after = way.at(here.moved | frozenset(group))
-        if after is not None and allowed(here, after, today) and (after.inside or not mending):
-            found.append((after.cost, group))
-    return [frozenset(group) for _, group in sorted(found)]
+def _allowed(
+    way: Way, here: Stand, today: Stand, left: Moved, wanted: Callable[[Stand], bool]
+) -> Iterable[Moved]:
+    """Allowed groups that end as wanted, single numbers first, by the cost behind them."""
+    for size in range(1, AT_ONCE + 1):
+        found = []
+        for group in combinations(sorted(left), size):
+            if len(way.stands) >= MOST_STATES:
+                break
+            after = way.at(here.moved | frozenset(group))
+            if after is not None and allowed(here, after, today) and wanted(after):
+                found.append((after.cost, group))
+        yield from (frozenset(group) for _, group in sorted(found))
 
 
 def told(way: Way, start: Stand, steps: Sequence[Moved], dropped: tuple[int, ...]) -> Moves:

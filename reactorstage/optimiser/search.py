@@ -25,6 +25,7 @@ from reactorstage.optimiser.result import (
     NO_ANSWER,
     STOPPED,
     Answer,
+    Conflict,
     Optimum,
     StartRecord,
 )
@@ -67,8 +68,7 @@ def optimise(
     if not answers:
         found = without_answer(job, endings, records)
         if explain and found.conflict is not None and not job.stop.is_set():
-            held = smallest_conflict(job, found.best.x, found.conflict, seed)
-            found = replace(found, conflict_set=held, status=STOPPED if job.stop.is_set() else found.status)
+            found = with_conflict_set(job, found, found.conflict, seed)
         return replace(found, evaluations=counted.evaluations)
     found = Optimum(INSIDE, tuple(answers), tuple(records), notes=remarks(answers[0]))
     if explain and not job.stop.is_set():
@@ -85,6 +85,16 @@ def explained_or_stopped(job: Job, found: Optimum, today: Start, asked: Asked) -
     except KeyboardInterrupt:
         job.stop.set()
         return found
+
+
+def with_conflict_set(job: Job, found: Optimum, conflict: Conflict, seed: int) -> Optimum:
+    """The optimum with its smallest conflict, or as it is when the user stops on the way."""
+    held = None
+    try:
+        held = smallest_conflict(job, found.best.x, conflict, seed)
+    except KeyboardInterrupt:
+        job.stop.set()
+    return replace(found, conflict_set=held, status=STOPPED if job.stop.is_set() else found.status)
 
 
 def remarks(best: Answer) -> tuple[str, ...]:

@@ -9,7 +9,7 @@ from reactorstage.optimiser.programme import Array, Programme
 from reactorstage.optimiser.result import Answer, Optimum
 from reactorstage.optimiser.starts import allowed_range
 from reactorstage.optimiser.words import loading, shares
-from reactorstage.report.aim import Aim
+from reactorstage.report.aim import MONEY, Aim
 from reactorstage.report.display import counted, fixed, owners_text, with_unit
 from reactorstage.report.table import Column, Table, table
 from reactorstage.train.result import Rating
@@ -148,7 +148,7 @@ def answers_table(programme: Programme, optimum: Optimum, rated: Sequence[Rating
     return table(f"ANSWERS, {aim.heading}", [
         Column(("",), tuple(str(k + 1) for k in range(len(answers)))),
         Column(("starts",), tuple(str(answer.starts) for answer in answers)),
-        Column(("costs", "more"), tuple(aim.number(value) for value in more)),
+        Column(("costs", "more") if aim.kind == MONEY else ("worse", "by"), tuple(aim.number(value) for value in more)),
         Column(("in words",), tuple(looks), left=True),
         Column(("residual",), tuple(f"{answer.residual:.0e}" for answer in answers), rank=2),
         Column(("curvature",), tuple(_curvature(answer, aim) for answer in answers), rank=1),

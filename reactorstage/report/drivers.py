@@ -56,6 +56,8 @@ def _what(rows: Sequence[Influence]) -> str:
             if word.startswith("limit ")
             else named(word, owners)
         )
+    if rows[0].name.startswith("price "):
+        return rows[0].name
     owner, _, quantity = rows[0].name.rpartition(".")
     subject = owner.partition(" ")[2]
     return f"{quantity.removeprefix('ln ')} of {subject}" if owner else rows[0].name
@@ -69,9 +71,14 @@ def step_text(one: Influence) -> str:
     return with_unit(brief(difference(one.step, one.kind), 3), unit(kind))
 
 
+def aim_change(change: float, aim: Aim) -> float:
+    """A change of cost as a change of what is aimed at, in display units."""
+    return (aim.size(change) or 0.0) * aim.sign
+
+
 def change_text(change: float, aim: Aim) -> str:
-    """A change of cost with its sign, in display units."""
-    size = aim.size(change) or 0.0
+    """What a change of cost does to what is aimed at, with its sign, in display units."""
+    size = aim_change(change, aim)
     return (
         signed(size, 1)
         if aim.kind == MONEY
@@ -82,7 +89,8 @@ def change_text(change: float, aim: Aim) -> str:
 def drivers_text(found: Sequence[Influence], aim: Aim, count: int = 4) -> str:
     """The largest ones in one line."""
     texts = [f"{one.words} {change_text(one.change, aim)}" for one in drivers(found)[:count]]
-    return f"DRIVERS      {'; '.join(texts)}." if texts else ""
+    what = f"{'cost' if aim.kind == MONEY else aim.quantity}, {aim.unit}".removesuffix(", ")
+    return f"DRIVERS      of the best {what}: {'; '.join(texts)}." if texts else ""
 
 
 def drivers_table(found: Sequence[Influence], aim: Aim, count: int = 16) -> Table:
@@ -91,5 +99,5 @@ def drivers_table(found: Sequence[Influence], aim: Aim, count: int = 16) -> Tabl
     return table(f"WHAT MOVES THE ANSWER, {aim.heading}", [
         Column(("",), tuple(one.what for one in rows), left=True),
         Column(("more by",), tuple(one.step for one in rows), left=True),
-        Column(("best cost",), tuple(change_text(one.change, aim) for one in rows)),
+        Column(("the best changes by",), tuple(change_text(one.change, aim) for one in rows)),
     ])  # fmt: skip

@@ -9,7 +9,7 @@ from matplotlib.figure import Figure
 
 from reactorstage.report import look
 from reactorstage.report.aim import MONEY, Aim
-from reactorstage.report.drivers import change_text, drivers
+from reactorstage.report.drivers import aim_change, change_text, drivers
 from reactorstage.train.influence import Influence
 
 ROWS = 16
@@ -30,15 +30,15 @@ def says_something(found: Sequence[Influence]) -> bool:
 
 
 def influence_figure(found: Sequence[Influence], aim: Aim, title: str, status: str) -> Figure:
-    """Bars to the right where the best cost rises, to the left where it falls, largest on top."""
+    """Bars to the right where what is aimed at rises, to the left where it falls, largest on top."""
     rows = drivers(found)[:ROWS]
     rows = [row for row in rows if abs(row.change) > FAINTEST * abs(rows[0].change)]
     height = ABOVE + BELOW + ROW_INCHES * len(rows)
     figure = look.new_figure(height, title, status)
     box = (NAMES, BELOW / height, look.RIGHT - NAMES + 0.07, ROW_INCHES * len(rows) / height)
     axes = figure.add_axes(box)
-    sizes = [aim.size(row.change) or 0.0 for row in rows]
-    colours = [WORSE if size > 0.0 else BETTER for size in sizes]
+    sizes = [aim_change(row.change, aim) for row in rows]
+    colours = [WORSE if row.change > 0.0 else BETTER for row in rows]
     axes.barh(range(len(rows)), sizes, height=0.62, color=colours, linewidth=0, zorder=3)
     axes.axvline(0.0, color=look.INK, linewidth=0.8, zorder=4)
     most = max(abs(size) for size in sizes)
@@ -62,7 +62,8 @@ def influence_figure(found: Sequence[Influence], aim: Aim, title: str, status: s
 def _label(aim: Aim) -> str:
     if aim.kind == MONEY:
         return f"change of the best cost, {aim.unit} (to the right: dearer)"
-    return f"{aim.quantity}, {aim.unit} (to the right: worse)"
+    side = "worse" if aim.sign > 0.0 else "better"
+    return f"change of the best {aim.quantity}, {aim.unit or 'its number'} (to the right: {side})"
 
 
 def _value(axes: Axes, place: int, size: float, text: str) -> None:

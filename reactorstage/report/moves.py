@@ -23,16 +23,18 @@ def first_move_text(moves: Moves, numbers: Sequence[FreeNumber], today: Rating, 
     text = f"First set {what}: {gain_text(first.gain, aim)}{_why(first, today)}"
     if not others:
         return f"{text}; there is no other move that is worth it."
-    rest = gain_text(moves.gain - first.gain, aim)
-    return f"{text}. Then {counted(others, 'more move')}, each inside all limits: {rest} (see --explain)."
+    rest = gain_text(moves.gain - first.gain, aim, several=others > 1)
+    return f"{text}. Then {counted(others, 'more move')}, each inside all limits, {rest} (see --explain)."
 
 
-def gain_text(gain: float, aim: Aim) -> str:
-    """`saves 15.9 EUR/h` or `costs 1.2 EUR/h`."""
+def gain_text(gain: float, aim: Aim, several: bool = False) -> str:
+    """`saves 15.9 EUR/h`, `costs 1.2 EUR/h`, and of several `save`."""
     size = with_unit(aim.number(abs(gain)), aim.unit)
+    word = ("save" if gain >= 0.0 else "cost") if aim.kind == MONEY else "bring"
+    verb = word if several else f"{word}s"
     if aim.kind == MONEY:
-        return f"{'saves' if gain >= 0.0 else 'costs'} {size}"
-    return f"{aim.quantity} {'better' if gain >= 0.0 else 'worse'} by {size}"
+        return f"{verb} {size}"
+    return f"{verb} {aim.quantity} {'forward' if gain >= 0.0 else 'back'} by {size}"
 
 
 def settings_text(move: Move, numbers: Sequence[FreeNumber], before: Array) -> str:
@@ -88,7 +90,7 @@ def moves_table(moves: Moves, numbers: Sequence[FreeNumber], today: Rating, aim:
             ))  # fmt: skip
         before = move.x
     columns = list(zip(*rows, strict=True)) if rows else [()] * 8
-    heads = [("",), ("enter",), ("from",), ("to",), ("",), ("gain",), (aim.heading, "then"), ("",)]
+    heads = [("",), ("enter",), ("from",), ("to",), ("",), ("gain",), (aim.unit or "aim", "then"), ("",)]
     left = (True, True, False, False, True, False, False, True)
     return table("MOVES", [
         Column(head, tuple(cells), left=side) for head, cells, side in zip(heads, columns, left, strict=True)
