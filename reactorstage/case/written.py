@@ -281,10 +281,11 @@ class PanelWritten(Words):
         "number (bed 1.inlet temperature: 0.5 K)",
     )
     least_gain: Annotated[Raw, RawText(positive=True, example="1 EUR/h")] | None = Field(
-        None, description="moves that gain less are left out; money or %, by default 0.1 % of the money terms"
+        None,
+        description="moves that gain less are left out; as the aim or %, by default 0.1 % of the money terms",
     )
     flat_within: Annotated[Raw, RawText(positive=True, example="1 %")] | None = Field(
-        None, description="loss within which a setting counts as flat; money or %, by default 1 %"
+        None, description="loss within which a setting counts as flat; as the aim or %, by default 1 %"
     )
 
 

@@ -145,10 +145,11 @@ def answers_table(programme: Programme, optimum: Optimum, rated: Sequence[Rating
         character(programme, answer.x, rated[k] if k < len(rated) else None)
         for k, answer in enumerate(answers)
     ]
+    dearer = ("costs", "more") if aim.kind == MONEY else ("worse", "by")
     return table(f"ANSWERS, {aim.heading}", [
         Column(("",), tuple(str(k + 1) for k in range(len(answers)))),
         Column(("starts",), tuple(str(answer.starts) for answer in answers)),
-        Column(("costs", "more") if aim.kind == MONEY else ("worse", "by"), tuple(aim.number(value) for value in more)),
+        Column(dearer, tuple(aim.number(value) for value in more)),
         Column(("in words",), tuple(looks), left=True),
         Column(("residual",), tuple(f"{answer.residual:.0e}" for answer in answers), rank=2),
         Column(("curvature",), tuple(_curvature(answer, aim) for answer in answers), rank=1),

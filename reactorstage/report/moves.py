@@ -20,7 +20,9 @@ def first_move_text(moves: Moves, numbers: Sequence[FreeNumber], today: Rating, 
         return ""
     first, others = moves.moves[0], len(moves.moves) - 1
     what = settings_text(first, numbers, today.x)
-    text = f"First set {what}: {gain_text(first.gain, aim)}{_why(first, today)}"
+    why = _why(first, today)
+    joint = " and " if first.mends and first.gain >= 0.0 else ", " if why else ""
+    text = f"First set {what}: {gain_text(first.gain, aim)}{joint}{why}"
     if not others:
         return f"{text}; there is no other move that is worth it."
     rest = gain_text(moves.gain - first.gain, aim, several=others > 1)
@@ -56,12 +58,10 @@ def _why(move: Move, today: Rating) -> str:
     """What a move is for, where its gain does not say it."""
     if move.mends:
         mended = and_list(bounds.together(today.limits[k] for k in move.mends))
-        return (
-            f", brings today's setting inside {mended}"
-            if move.gain >= 0.0
-            else (f", the price of bringing today's setting inside {mended}")
-        )
-    return ", makes room for what follows" if move.gain < 0.0 else ""
+        if move.gain >= 0.0:
+            return f"brings {mended} back inside"
+        return f"the price of bringing {mended} back inside"
+    return "makes room for what follows" if move.gain < 0.0 else ""
 
 
 def dropped_text(moves: Moves, numbers: Sequence[FreeNumber]) -> str:
@@ -86,7 +86,7 @@ def moves_table(moves: Moves, numbers: Sequence[FreeNumber], today: Rating, aim:
                 unit(numbers[k].kind),
                 aim.number(move.gain) if last else "",
                 aim.number(aim.sign * move.cost) if last else "",
-                _why(move, today).removeprefix(", ") if last else "",
+                _why(move, today) if last else "",
             ))  # fmt: skip
         before = move.x
     columns = list(zip(*rows, strict=True)) if rows else [()] * 8

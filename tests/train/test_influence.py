@@ -98,9 +98,13 @@ def test_influences_are_ranked_and_leave_free_numbers_out() -> None:
     assert all(one.change == pytest.approx(one.slope * one.step) or one.relative for one in found)
 
 
+def without_panel() -> str:
+    return LEAD.read_text(encoding="utf-8").partition("\npanel:")[0] + "\n"
+
+
 def written(tmp_path: Path, panel: str) -> Case:
     path = tmp_path / "plant.yaml"
-    path.write_text(LEAD.read_text(encoding="utf-8") + f"\npanel:\n{panel}", encoding="utf-8")
+    path.write_text(without_panel() + f"\npanel:\n{panel}", encoding="utf-8")
     return reactorstage.load(path)
 
 
@@ -146,7 +150,7 @@ def test_a_wrong_panel_is_shown_with_its_place(tmp_path: Path, panel: str, expec
         reactorstage.compile(written(tmp_path, panel))
     (problem,) = caught.value.problems
     assert expected in str(problem)
-    assert problem.line == len(LEAD.read_text(encoding="utf-8").splitlines()) + 3
+    assert problem.line == len(without_panel().splitlines()) + 3
 
 
 def test_turnover_is_the_sum_of_absolute_money_terms() -> None:
