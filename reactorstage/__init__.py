@@ -16,12 +16,14 @@ from reactorstage.case import load
 from reactorstage.face import Optimisation, compile, optimise, rate, rate_many, sensitivities
 
 if TYPE_CHECKING:
+    from reactorstage.report.comparing import compare
     from reactorstage.report.notebook import Tables
     from reactorstage.train.result import Rating
 
 __all__ = [
     "Optimisation",
     "__version__",
+    "compare",
     "compile",
     "figures",
     "load",
@@ -55,3 +57,11 @@ def page(result: Rating | Optimisation, units: str = "trade") -> str:
     from reactorstage.report.notebook import page as made
 
     return made(result, units)
+
+
+def __getattr__(name: str) -> Any:
+    if name == "compare":
+        from reactorstage.report.comparing import compare
+
+        return compare
+    raise AttributeError(f"module {__name__!r} has no attribute {name!r}")

@@ -14,8 +14,10 @@ if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
 
     from reactorstage.case.model import Case
+    from reactorstage.optimiser.asked import Asked
     from reactorstage.optimiser.result import Optimum
     from reactorstage.train.batch import Batch
+    from reactorstage.train.influence import Influence
     from reactorstage.train.parameters import Sensitivities
     from reactorstage.train.programme import TrainProgramme
     from reactorstage.train.result import Rating
@@ -28,7 +30,7 @@ class Optimisation:
     """What `optimise` gives: the search, today's rating, the best answer rated, other distinct answers rated.
 
     best is None when nothing could be evaluated; with status "cannot meet all limits" it is the
-    least-violating answer. seconds is wall time.
+    least-violating answer. influences say what moves the best cost, largest first. seconds is wall time.
     """
 
     case: Case
@@ -39,6 +41,7 @@ class Optimisation:
     others: tuple[Rating, ...]
     seconds: float
     seed: int
+    influences: tuple[Influence, ...] = ()
 
     @property
     def status(self) -> str:
@@ -90,7 +93,14 @@ def optimise(
     programme = compile(case)
     today = programme.rate()
     optimum = search(
-        programme, starts=starts, seed=seed, jobs=jobs, progress=progress, stop=stop, explain=explain
+        programme,
+        starts=starts,
+        seed=seed,
+        jobs=jobs,
+        progress=progress,
+        stop=stop,
+        explain=explain,
+        asked=_asked(programme),
     )
     cannot = optimum.status == CANNOT
     rated = [programme.rate(programme.complete(a.x) if cannot else a.x) for a in optimum.answers]
@@ -103,6 +113,7 @@ def optimise(
         others=tuple(rated[1:]),
         seconds=time.perf_counter() - begun,
         seed=seed,
+        influences=_influences(programme, optimum) if explain else (),
     )
 
 
@@ -136,3 +147,26 @@ def _programme(case: Case | TrainProgramme) -> TrainProgramme:
     from reactorstage.train.programme import TrainProgramme
 
     return case if isinstance(case, TrainProgramme) else compile(case)
+
+
+def _influences(programme: TrainProgramme, optimum: Optimum) -> tuple[Influence, ...]:
+    """What moves the best answer; nothing where no answer is inside all limits."""
+    from reactorstage.optimiser.result import INSIDE
+    from reactorstage.train.influence import influences
+
+    if optimum.status != INSIDE:
+        return ()
+    return influences(programme, optimum.best.x, optimum.best.multipliers)
+
+
+def _asked(programme: TrainProgramme) -> Asked:
+    """How settings of this case are entered, and which money says nothing."""
+    from reactorstage.optimiser.asked import Asked, Sizes
+
+    panel, money = programme.panel, programme.case.aim.quantity == "money.total"
+
+    def sizes(x: NDArray[np.float64], cost: float) -> Sizes:
+        size = programme.turnover(x) if money else abs(cost)
+        return Sizes(panel.band(size), panel.least_gain(size))
+
+    return Asked(panel.steps, panel.origins, sizes)

@@ -6,13 +6,14 @@ from pathlib import Path
 from typing import Any, Literal, TypeVar, cast
 
 from reactorstage.case.fields import Number, Raw
-from reactorstage.case.model import Case, Feed, HeatLevels, Limit, Section, Source, Split, Step
+from reactorstage.case.model import Case, Feed, HeatLevels, Limit, Panel, Section, Source, Split, Step
 from reactorstage.case.written import (
     Bed,
     CaseWritten,
     FeedWritten,
     HeatLevelsWritten,
     LimitWritten,
+    PanelWritten,
     SplitWritten,
     StepWritten,
 )
@@ -47,6 +48,7 @@ def build(written: CaseWritten, source: Source, folder: Path) -> Case:
         heat_levels=_heat_levels(written.heat_levels),
         prices=written.prices,
         limits={label: _limit(limit) for label, limit in written.limits.items()},
+        panel=_panel(written.panel),
     )
     case._source = source
     return case
@@ -155,6 +157,12 @@ def _heat_levels(written: HeatLevelsWritten | None) -> HeatLevels | None:
     if written is None:
         return None
     return HeatLevels(minimum_approach=written.minimum_approach, levels=extras(written))
+
+
+def _panel(written: PanelWritten | None) -> Panel | None:
+    if written is None:
+        return None
+    return Panel(steps=written.steps, least_gain=written.least_gain, flat_within=written.flat_within)
 
 
 def _limit(limit: LimitWritten) -> Limit:

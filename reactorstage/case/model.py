@@ -57,6 +57,7 @@ __all__ = [
     "LiquidDensity",
     "Number",
     "OwnEquilibrium",
+    "Panel",
     "Price",
     "Raw",
     "Reaction",
@@ -165,6 +166,14 @@ class Limit(Frozen):
     exceptions: dict[str, dict[str, Raw]] = {}
 
 
+class Panel(Frozen):
+    """How settings are entered; steps by kind of quantity or name of a free number."""
+
+    steps: dict[str, Raw] = {}
+    least_gain: Raw | None = None
+    flat_within: Raw | None = None
+
+
 class Case(Frozen):
     """A whole case in SI units."""
 
@@ -182,6 +191,7 @@ class Case(Frozen):
     heat_levels: HeatLevels | None = None
     prices: dict[str, Price] = {}
     limits: dict[str, Limit] = {}
+    panel: Panel | None = None
     _source: Source = PrivateAttr()
 
     @property

@@ -294,6 +294,23 @@ class LimitWritten(LimitException):
     )
 
 
+class PanelWritten(Words):
+    """How settings are entered by hand, and which differences are not worth a move."""
+
+    steps: dict[str, Annotated[Raw, RawText(positive=True, example="1 K")]] = Field(
+        {},
+        description="smallest change that can be entered, by kind of quantity (temperature: 1 K) or by free "
+        "number (bed 1.inlet temperature: 0.5 K)",
+    )
+    least_gain: Annotated[Raw, RawText(positive=True, example="1 EUR/h")] | None = Field(
+        None,
+        description="moves that gain less are left out; as the aim or %, by default 0.1 % of the money terms",
+    )
+    flat_within: Annotated[Raw, RawText(positive=True, example="1 %")] | None = Field(
+        None, description="loss within which a setting counts as flat; as the aim or %, by default 1 %"
+    )
+
+
 class CaseWritten(Words):
     """A train of catalyst beds: what flows, what reacts, where, inside which limits, for what money."""
 
@@ -320,6 +337,7 @@ class CaseWritten(Words):
     heat_levels: HeatLevelsWritten | None = Field(None, description="where heat goes to and comes from")
     prices: dict[str, Price] = Field({}, description="money on quantities, by label")
     limits: dict[str, LimitWritten] = Field({}, description="bounds on quantities, by label")
+    panel: PanelWritten | None = Field(None, description="how settings are entered by hand")
 
 
 class VariantWritten(Words):

@@ -12,6 +12,7 @@ from reactorstage.commands.options import Output
 
 if TYPE_CHECKING:
     from reactorstage.optimiser.result import Optimum
+    from reactorstage.train.influence import Influence
     from reactorstage.train.result import Rating
 
 
@@ -26,6 +27,7 @@ class Result:
     drawn: Rating | None
     behind: Rating | None = None
     optimum: Optimum | None = None
+    influences: Sequence[Influence] = ()
 
 
 def deliver(result: Result, output: Output) -> None:
@@ -51,7 +53,8 @@ def _write(result: Result, text: str, output: Output) -> None:
         from reactorstage.report.figures import figure_files
 
         paths += write_all(
-            output.folder, figure_files(result.drawn, result.behind, result.status, result.optimum)
+            output.folder,
+            figure_files(result.drawn, result.behind, result.status, result.optimum, result.influences),
         )
     if not output.quiet:
         tell(_written_text(output.folder, paths))

@@ -5,7 +5,7 @@ from __future__ import annotations
 import click
 
 from reactorstage import __version__
-from reactorstage.commands import check, new, optimise, rate, report, schema
+from reactorstage.commands import check, compare, new, optimise, rate, report, schema
 from reactorstage.commands.verbs import Group
 
 
@@ -23,6 +23,14 @@ def main() -> None:
     """
 
 
-for verb in (check.check, rate.rate, optimise.optimise, report.report, schema.schema, new.new):
+for verb in (
+    check.check,
+    rate.rate,
+    optimise.optimise,
+    report.report,
+    compare.compare,
+    schema.schema,
+    new.new,
+):
     main.add_command(verb)
 main.add_command(optimise.optimise_alias)

@@ -46,8 +46,15 @@ jobs_option = click.option(
 @starts_option
 @seed_option
 @jobs_option
+@click.option("--explain", is_flag=True, help="Tables behind every line of the explanation as well.")
 def optimise(
-    case_file: Path, overrides: tuple[str, ...], starts: int, seed: int, jobs: int | None, **options: Any
+    case_file: Path,
+    overrides: tuple[str, ...],
+    starts: int,
+    seed: int,
+    jobs: int | None,
+    explain: bool,
+    **options: Any,
 ) -> int:
     """Find the cheapest setting of CASE inside all limits and say what each limit costs.
 
@@ -66,12 +73,13 @@ def optimise(
         outcome = face.optimise(case, starts=starts, seed=seed, jobs=jobs, progress=progress)
     finally:
         progress.end()
-    _deliver(outcome, output)
+    _deliver(outcome, output, explain)
     return status_of(outcome.optimum.status)
 
 
-def _deliver(outcome: Optimisation, output: Output) -> None:
+def _deliver(outcome: Optimisation, output: Output, explain: bool) -> None:
     from reactorstage.commands.deliver import Result, deliver
+    from reactorstage.commands.explained import explained_lines
     from reactorstage.commands.screens import optimum_lines
     from reactorstage.report.result_json import optimum_json
 
@@ -83,17 +91,22 @@ def _deliver(outcome: Optimisation, output: Output) -> None:
         outcome.others,
         outcome.seed,
         output.overrides,
+        outcome.influences,
     )
     status = f"best found, {outcome.optimum.status}"
     deliver(
         Result(
             content,
-            lambda width: optimum_lines(outcome, width),
+            lambda width: [
+                *optimum_lines(outcome, width),
+                *(explained_lines(outcome, width) if explain else []),
+            ],
             outcome.seconds,
             status,
             outcome.best,
             outcome.today,
             outcome.optimum,
+            outcome.influences,
         ),
         output,
     )

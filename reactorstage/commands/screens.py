@@ -5,13 +5,17 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
+from reactorstage.commands.explained import explanation_texts
 from reactorstage.commands.layout import INDENT, items, paragraph, spread, table_lines
 from reactorstage.optimiser import result as words
 from reactorstage.report import bounds, sentences
 from reactorstage.report.accounts import accounts, heat_words
+from reactorstage.report.aim import aim_of
 from reactorstage.report.beds import bed_table
 from reactorstage.report.display import counted, unit
 from reactorstage.report.gaps import gap_table
+from reactorstage.report.moves import first_move_text
+from reactorstage.report.reach import conflict_text, pairs_text, reach_text
 from reactorstage.train.result import Rating
 
 if TYPE_CHECKING:
@@ -131,21 +135,28 @@ def _money(now: Rating, was: Rating | None, width: int) -> list[str]:
 def _held(outcome: Optimisation, best: Rating, width: int) -> list[str]:
     optimum = outcome.optimum
     if optimum.conflict is not None:
-        return _conflict(optimum.conflict, best, width)
+        return _conflict(optimum, optimum.conflict, best, width)
     held = bounds.at_work(best)
     free = sum(not number.internal for number in outcome.programme.numbers)
     lines = table_lines(bounds.worth_table(optimum, best), width)
     if not lines and held:
         lines = items("LIMITS AT WORK (*)", bounds.together(held), width)
     tail = f"{bounds.count_text(held, free)} {bounds.next_text(best)}" if held else bounds.next_text(best)
-    return [*lines, *paragraph(tail.strip(), width)]
+    aim = aim_of(best)
+    further = [reach_text(optimum, best, aim), pairs_text(optimum.pairs, best, aim, 1)]
+    return [
+        *lines,
+        *paragraph(tail.strip(), width),
+        *[line for text in further if text for line in paragraph(text, width, INDENT)],
+    ]
 
 
-def _conflict(conflict: words.Conflict, best: Rating, width: int) -> list[str]:
+def _conflict(optimum: words.Optimum, conflict: words.Conflict, best: Rating, width: int) -> list[str]:
     lines = [f"  {bounds.sentence(best.limits[index], best.case.currency)}" for index, _ in conflict.broken]
     against = bounds.together(best.limits[index] for index in conflict.against)
     held = paragraph(f"  held by: {', '.join(against)}", width, 4) if against else []
-    return ["LIMITS THAT CANNOT ALL BE MET", *lines, *held]
+    why = [line for text in conflict_text(optimum, best) for line in paragraph(text, width, INDENT)]
+    return ["LIMITS THAT CANNOT ALL BE MET", *lines, *held, *why]
 
 
 def _after_money(outcome: Optimisation, best: Rating, width: int) -> list[str]:
@@ -153,6 +164,7 @@ def _after_money(outcome: Optimisation, best: Rating, width: int) -> list[str]:
     if outcome.optimum.conflict is None:
         texts.append(sentences.margin_text(outcome.optimum, best))
     texts.append(_range_ends(outcome))
+    texts += explanation_texts(outcome, best)
     return [line for text in texts if text for line in paragraph(text, width, INDENT)]
 
 
@@ -167,11 +179,7 @@ def _range_ends(outcome: Optimisation) -> str:
 
 def _three(outcome: Optimisation, best: Rating) -> list[str]:
     today, optimum = outcome.today, outcome.optimum
-    first = (
-        sentences.first_change(outcome.programme, best, today)
-        if optimum.conflict is None
-        else sentences.give_way(optimum.conflict, best)
-    )
+    first = _first(outcome, best) if optimum.conflict is None else sentences.give_way(optimum.conflict, best)
     return [
         first,
         sentences.second_answer(outcome.programme, optimum, best, outcome.others),
@@ -179,6 +187,15 @@ def _three(outcome: Optimisation, best: Rating) -> list[str]:
         *sentences.warnings(best),
         f"{sentences.today_text(today)} {sentences.caution()}",
     ]
+
+
+def _first(outcome: Optimisation, best: Rating) -> str:
+    """What to change first: the first move where there are moves, else the largest changes."""
+    changes = sentences.first_change(outcome.programme, best, outcome.today)
+    if outcome.optimum.moves is None:
+        return changes
+    numbers, aim = outcome.programme.numbers, aim_of(best)
+    return first_move_text(outcome.optimum.moves, numbers, outcome.today, aim) or changes
 
 
 def _numbered(texts: Sequence[str], width: int) -> list[str]:

@@ -1,20 +1,29 @@
-"""What the best answer is explained with: worths, equal splits, the cost of keeping away."""
+"""What the best answer is explained with: worths and their reach, splits, flatness, moves, keeping away."""
 
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 from functools import partial
+from typing import TypeVar
 
+from reactorstage.optimiser.asked import Asked
+from reactorstage.optimiser.flat import flat_number, handles, left_alone
 from reactorstage.optimiser.job import Job
 from reactorstage.optimiser.merge import merged
+from reactorstage.optimiser.moves import moves_to
 from reactorstage.optimiser.polish import polished
 from reactorstage.optimiser.pool import run
 from reactorstage.optimiser.programme import Array
+from reactorstage.optimiser.reach import pair_tasks, reach
+from reactorstage.optimiser.reasons import Flatness, FlatNumber, Moves, Pair, Reach
 from reactorstage.optimiser.resolve import INSIDE_ENOUGH, Base
 from reactorstage.optimiser.result import Answer, EqualSplit, Optimum, Worth
 from reactorstage.optimiser.split import equal_split
-from reactorstage.optimiser.worth import asked_for, keep_away_cost, moves, worth
+from reactorstage.optimiser.worth import asked_for, keep_away_cost, moves, step_away_cost, worth
+
+Task = tuple[str, Callable[[], object]]
+Result = TypeVar("Result")
 
 
 @dataclass(frozen=True)
@@ -27,7 +36,7 @@ class Explanation:
     better: tuple[Array, ...] = ()
 
 
-def explained(job: Job, found: Optimum, today: Array) -> Optimum:
+def explained(job: Job, found: Optimum, today: Array, asked: Asked) -> Optimum:
     """The optimum with its explanation; a better answer met on the way is taken up first, once.
 
     today is the x of today's setting.
@@ -37,9 +46,10 @@ def explained(job: Job, found: Optimum, today: Array) -> Optimum:
     if better and not job.stop.is_set():
         found = taken_up(job, found, better)
         told = explanation(job, found.answers, today)
-    return replace(
+    found = replace(
         found, worths=told.worths, equal_splits=told.equal_splits, keep_away_cost=told.keep_away_cost
     )
+    return found if job.stop.is_set() else deepened(job, found, today, asked)
 
 
 def better_answers(job: Job, told: Explanation) -> list[Answer]:
@@ -56,26 +66,36 @@ def taken_up(job: Job, found: Optimum, better: Sequence[Answer]) -> Optimum:
     return replace(found, answers=tuple(answers), starts=tuple(starts), notes=(*found.notes, note))
 
 
+def base_of(job: Job, answers: Sequence[Answer]) -> Base:
+    """The base of every re-solve of these answers."""
+    return Base(job.programme, tuple(answer.x for answer in answers), answers[0].cost, job.size, job.stop)
+
+
 def explanation(job: Job, answers: Sequence[Answer], today: Array) -> Explanation:
     """Worths of the limits at work, equal splits and keep-away cost of the best answer, in threads."""
-    known = tuple(answer.x for answer in answers)
-    base = Base(job.programme, known, answers[0].cost, job.size, job.stop)
-    moved = moves(job.programme.limits, asked_for(job.programme, answers[0]))
-    groups = job.programme.splits
-    tasks: list[Callable[[], object]] = [
-        *(partial(worth, base, move) for move in moved),
-        *(partial(equal_split, base, group, [known[0], today, *known[1:]]) for group in groups),
-        partial(keep_away_cost, base),
+    base = base_of(job, answers)
+    known = base.known
+    tasks: list[Task] = [
+        (f"worth of {one.label}", partial(worth, base, one))
+        for one in moves(job.programme.limits, asked_for(job.programme, answers[0]))
     ]
-    texts = [f"worth of {move.label}" for move in moved] + [f"equal split of {g.feed}" for g in groups]
-    texts.append("keep away")
-    done: list[int] = []
+    tasks += [
+        (f"equal split of {g.feed}", partial(equal_split, base, g, [known[0], today, *known[1:]]))
+        for g in job.programme.splits
+    ]
+    tasks.append(("keep away", partial(keep_away_cost, base)))
+    return sorted_out(done(job, base.cost, tasks), base)
+
+
+def done(job: Job, cost: float, tasks: Sequence[Task]) -> list[object]:
+    """Results of named tasks, run in threads, with progress told."""
+    ended: list[int] = []
 
     def finished(index: int, result: object) -> None:
-        done.append(index)
-        job.progress(len(done), len(tasks), answers[0].cost, texts[index])
+        ended.append(index)
+        job.progress(len(ended), len(tasks), cost, tasks[index][0])
 
-    return sorted_out(run(tasks, job.jobs, job.stop, finished), base)
+    return run([task for _, task in tasks], job.jobs, job.stop, finished)
 
 
 def sorted_out(results: Sequence[object], base: Base) -> Explanation:
@@ -91,3 +111,44 @@ def sorted_out(results: Sequence[object], base: Base) -> Explanation:
 def cheaper_split(split: EqualSplit, base: Base) -> bool:
     """True when equal shares, under the limits as they stand, cost less than the best answer."""
     return not split.relaxed and split.cost is not None and split.cost < base.cost - base.noise
+
+
+def deepened(job: Job, found: Optimum, today: Array, asked: Asked) -> Optimum:
+    """The optimum with reach and pairs of the worths, flatness, moves and what a step further away costs."""
+    base = base_of(job, found.answers)
+    sizes = asked.sizes(base.known[0], base.cost)
+    band = sizes.band
+    tasks: list[Task] = []
+    if asked.steps is not None:
+        tasks.append(("moves from today", partial(moves_to, base, asked, sizes.noise, today)))
+    tasks += [(f"reach of {one.label}", partial(reach, base, one)) for one in found.worths]
+    tasks += [
+        (f"flatness of {h.name}", partial(flat_number, base, h, band, today)) for h in handles(base.programme)
+    ]
+    tasks += [("pairs of limits", task) for task in pair_tasks(base, found.worths)]
+    tasks.append(("one step further away", partial(step_away_cost, base)))
+    results = done(job, base.cost, tasks)
+    flat = tuple(of(FlatNumber, results))
+    names, left_costs = ((), 0.0) if job.stop.is_set() else left_alone(base, flat, band, today)
+    return replace(
+        found,
+        worths=reaching(found.worths, tasks, results),
+        pairs=tuple(of(Pair, results)),
+        flatness=Flatness(band, flat, names, left_costs),
+        moves=next(iter(of(Moves, results)), None),
+        step_away_cost=next(iter(of(float, results)), None),
+    )
+
+
+def of(kind: type[Result], results: Sequence[object]) -> list[Result]:
+    """The results of one kind, in their order."""
+    return [result for result in results if isinstance(result, kind)]
+
+
+def reaching(worths: Sequence[Worth], tasks: Sequence[Task], results: Sequence[object]) -> tuple[Worth, ...]:
+    """The worths with their reaches, whose tasks stand in the same order."""
+    ends = [result for (text, _), result in zip(tasks, results, strict=True) if text.startswith("reach of ")]
+    return tuple(
+        replace(one, reach=end if isinstance(end, Reach) else None)
+        for one, end in zip(worths, ends, strict=True)
+    )

@@ -7,6 +7,8 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
+from reactorstage.optimiser.reasons import ConflictSet, Flatness, Moves, Pair, Reach
+
 Array = NDArray[np.float64]
 
 INSIDE = "inside all limits"
@@ -63,7 +65,8 @@ class Worth:
     """What relaxing and tightening one limit (all its owners together, or one alone) does, re-solved.
 
     saves and costs are >= 0 for one `step` (own unit) either way, None where the re-solve did not end or
-    tightening leaves nothing feasible. limits holds the indices of the rows moved together.
+    tightening leaves nothing feasible. limits holds the indices of the rows moved together. reach says how
+    far relaxing pays, None where it was not asked for or did not end.
     """
 
     label: str
@@ -74,6 +77,7 @@ class Worth:
     saves: float | None
     costs: float | None
     note: str = ""
+    reach: Reach | None = None
 
 
 @dataclass(frozen=True)
@@ -105,7 +109,8 @@ class Conflict:
 class Optimum:
     """The result of `optimise`: best answer first, other distinct answers by cost.
 
-    keep_away_cost is money per second that the keep-away amounts of all limits together cost;
+    keep_away_cost is money per second that the keep-away amounts of all limits together cost, step_away_cost
+    what it would cost to keep all limits by their step further away (None where that leaves nothing);
     discretisation_error the change of the best answer's cost from the search's tolerance to the final
     one, money per second; evaluations counts all evaluations of the programme. With the status "cannot
     meet all limits" the one answer is the least-violating one; answers is empty with "no answer".
@@ -121,6 +126,11 @@ class Optimum:
     discretisation_error: float | None = None
     evaluations: int = 0
     notes: tuple[str, ...] = field(default=())
+    step_away_cost: float | None = None
+    pairs: tuple[Pair, ...] = ()
+    flatness: Flatness | None = None
+    moves: Moves | None = None
+    conflict_set: ConflictSet | None = None
 
     @property
     def best(self) -> Answer:

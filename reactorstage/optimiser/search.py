@@ -9,6 +9,7 @@ from functools import partial
 
 import numpy as np
 
+from reactorstage.optimiser.asked import Asked
 from reactorstage.optimiser.conflict import least_violating
 from reactorstage.optimiser.explain import explained
 from reactorstage.optimiser.job import Job, Progress
@@ -24,10 +25,12 @@ from reactorstage.optimiser.result import (
     NO_ANSWER,
     STOPPED,
     Answer,
+    Conflict,
     Optimum,
     StartRecord,
 )
 from reactorstage.optimiser.scaling import needed, typical_change
+from reactorstage.optimiser.smallest_conflict import smallest_conflict
 from reactorstage.optimiser.solve import Ending
 from reactorstage.optimiser.starts import Start
 from reactorstage.optimiser.starts import starts as starting_points
@@ -45,13 +48,15 @@ def optimise(
     progress: Progress | None = None,
     explain: bool = True,
     stop: threading.Event | None = None,
+    asked: Asked | None = None,
 ) -> Optimum:
     """Cheapest setting inside all limits, the other distinct optima, and what the limits are worth.
 
     starts is the number of local solves, jobs the number of threads (all processors when None); the
     result does not depend on jobs. progress(done, total, best cost or None, text) is called from the
     calling thread. Ctrl-C, or a set `stop`, ends the search with what is found, status "stopped by you".
-    Without explain there are no worths, equal splits and keep-away cost. Never raises for a failed
+    asked tells how settings are entered and which money says nothing, for moves and flatness. Without
+    explain there are no worths, equal splits, flatness, moves and conflict sets. Never raises for a failed
     evaluation: where nothing can be evaluated the status is "no answer".
     """
     counted = Counted(programme)
@@ -61,22 +66,35 @@ def optimise(
     endings = run_starts(job, points)
     answers, records = distinct_answers(job, points, endings)
     if not answers:
-        return replace(without_answer(job, endings, records), evaluations=counted.evaluations)
+        found = without_answer(job, endings, records)
+        if explain and found.conflict is not None and not job.stop.is_set():
+            found = with_conflict_set(job, found, found.conflict, seed)
+        return replace(found, evaluations=counted.evaluations)
     found = Optimum(INSIDE, tuple(answers), tuple(records), notes=remarks(answers[0]))
     if explain and not job.stop.is_set():
-        found = explained_or_stopped(job, found, points[0])
+        found = explained_or_stopped(job, found, points[0], asked or Asked())
     error = discretisation_error(counted, found.best)
     status = STOPPED if job.stop.is_set() else INSIDE
     return replace(found, status=status, discretisation_error=error, evaluations=counted.evaluations)
 
 
-def explained_or_stopped(job: Job, found: Optimum, today: Start) -> Optimum:
+def explained_or_stopped(job: Job, found: Optimum, today: Start, asked: Asked) -> Optimum:
     """The optimum with its explanation, or as it is when the user stops between two tasks."""
     try:
-        return explained(job, found, job.programme.complete(today.x))
+        return explained(job, found, job.programme.complete(today.x), asked)
     except KeyboardInterrupt:
         job.stop.set()
         return found
+
+
+def with_conflict_set(job: Job, found: Optimum, conflict: Conflict, seed: int) -> Optimum:
+    """The optimum with its smallest conflict, or as it is when the user stops on the way."""
+    held = None
+    try:
+        held = smallest_conflict(job, found.best.x, conflict, seed)
+    except KeyboardInterrupt:
+        job.stop.set()
+    return replace(found, conflict_set=held, status=STOPPED if job.stop.is_set() else found.status)
 
 
 def remarks(best: Answer) -> tuple[str, ...]:

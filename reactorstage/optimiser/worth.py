@@ -102,3 +102,14 @@ def keep_away_cost(base: Base) -> float | None:
         return None
     freed = resolve(Shifted(base.programme, amounts), base.known[:KNOWN_ANSWERS], base)
     return gain(base.cost - freed.cost, freed, base, "leaving out keep away")[0]
+
+
+def step_away_cost(base: Base) -> float | None:
+    """Money per second that it costs to keep a step further away from every hard limit of the case.
+
+    None when that leaves nothing inside all limits, or did not end.
+    """
+    limits = base.programme.limits
+    amounts = np.array([0.0 if one.implied or one.soft_price is not None else -one.step for one in limits])
+    kept = resolve(Shifted(base.programme, amounts), base.known[:KNOWN_ANSWERS], base)
+    return gain(kept.cost - base.cost, kept, base, "keeping away")[0]

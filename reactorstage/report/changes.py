@@ -24,9 +24,20 @@ class Change:
     @property
     def what(self) -> str:
         """`inlet temperature of beds 1-3`, `ethylene to bed 4`."""
-        feed = self.word.removeprefix("injected ")
-        owners = owners_text(self.owners)
-        return f"{feed} to {owners}" if feed != self.word else f"{self.word} of {owners}"
+        return named(self.word, self.owners)
+
+
+def named(word: str, owners: Sequence[str]) -> str:
+    """A quantity of some owners in words: `inlet temperature of beds 1-3`, `ethylene to bed 4`."""
+    feed = word.removeprefix("injected ")
+    where = owners_text(owners)
+    return f"{feed} to {where}" if feed != word else f"{word} of {where}"
+
+
+def spoken(name: str) -> str:
+    """A quantity by its full name in words: `ethylene to bed 1`, `inlet of bed 2`."""
+    owner, _, word = name.rpartition(".")
+    return named("inlet" if word == "inlet temperature" else word, [owner]) if owner else word
 
 
 def changes(numbers: Sequence[FreeNumber], old: Array, new: Array) -> list[Change]:

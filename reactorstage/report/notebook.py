@@ -17,6 +17,7 @@ from reactorstage.train.result import Rating
 
 if TYPE_CHECKING:
     from reactorstage.face import Optimisation
+    from reactorstage.train.influence import Influence
 
 EVERY = 10_000
 
@@ -78,11 +79,12 @@ def figures(result: Rating | Optimisation, units: str = TRADE) -> dict[str, Any]
 
     if isinstance(result, Rating):
         now, today, optimum, status = result, None, None, f"rating, {result.status}"
+        influences: tuple[Influence, ...] = ()
     else:
         now, today, optimum = result.best or result.today, result.today, result.optimum
-        status = f"best found, {result.status}"
+        status, influences = f"best found, {result.status}", result.influences
     with in_units(units), look.drawing():
-        return {one.name: one.figure for one in pictures(now, today, status, optimum)}
+        return {one.name: one.figure for one in pictures(now, today, status, optimum, influences)}
 
 
 def page(result: Rating | Optimisation, units: str = TRADE) -> str:

@@ -18,13 +18,15 @@ from reactorstage.optimiser.result import Answer, EqualSplit, Optimum, StartReco
 from reactorstage.report.aim import Aim, aim_of
 from reactorstage.report.cautions import FULL
 from reactorstage.report.display import difference, difference_kind, in_units, money, shown, unit
+from reactorstage.report.explained_json import explanation_json, reach_json
 from reactorstage.report.unit_sets import TRADE
+from reactorstage.train.influence import Influence
 from reactorstage.train.result import HeatSale, LimitState, Rating, Value
 
 if TYPE_CHECKING:
     from reactorstage.case.model import Case
 
-SCHEMA_VERSION = 1
+SCHEMA_VERSION = 2
 LIBRARIES = ("numpy", "scipy", "numba", "cantera")
 SIGNIFICANT = 12
 LINE = 120
@@ -55,6 +57,7 @@ def optimum_json(
     others: Sequence[Rating],
     seed: int,
     overrides: Sequence[str] = (),
+    influences: Sequence[Influence] = (),
 ) -> Json:
     """The content of result.json for `optimise`: the best answer first, today's setting beside it."""
     main = best if best is not None else today
@@ -71,6 +74,7 @@ def optimum_json(
         "aim": {"direction": main.case.aim.direction, "of": aim.quantity, "unit of differences": aim.unit},
         "keep away costs": aim.size(optimum.keep_away_cost),
         "conflict": _conflict(programme, optimum),
+        **explanation_json(programme, optimum, influences, aim, main.case.currency),
         "answers": [_answer(programme, answer, aim) for answer in optimum.answers],
         "other answers": [_setting(rating) for rating in others],
         "today": {"status": today.status, "failure": today.failure or None, **_setting(today)},
@@ -89,6 +93,11 @@ def as_text(content: Mapping[str, Any], seconds: float | None = None) -> str:
     """JSON text with rounded numbers; `times` comes last and alone depends on the clock."""
     times = {} if seconds is None else {"times": {"calculation": {"value": round(seconds, 4), "unit": "s"}}}
     return _text(_clean({**content, **times})) + "\n"
+
+
+def plain_content(content: Mapping[str, Any]) -> Json:
+    """The content as its file would give it back: rounded, without what is not finite."""
+    return {str(key): _clean(value) for key, value in content.items()}
 
 
 def _text(item: Any, indent: str = "") -> str:
@@ -131,7 +140,26 @@ def _head(what: str, rating: Rating, overrides: Sequence[str]) -> Json:
         "schema version": SCHEMA_VERSION,
         "result": what,
         "case": case_json(rating.case, overrides),
+        "train": train_json(rating),
         "versions": versions(),
+    }
+
+
+def train_json(rating: Rating) -> Json:
+    """What a train is: beds, steps, species, reactions, feeds, aim, currency; like ones can be compared."""
+    steps: dict[str, list[str]] = {}
+    for section in rating.case.train:
+        if section.bed is None:
+            steps[section.owner] = [" ".join(filter(None, (one.kind, one.feed))) for one in section.steps]
+    return {
+        "beds": [section.owner for section in rating.case.train if section.bed is not None],
+        "steps": steps,
+        "species": list(rating.species),
+        "reactions": list(rating.reactions),
+        "by-products": list(rating.by_products),
+        "feeds": list(rating.case.feeds),
+        "aim": f"{rating.case.aim.direction} {rating.case.aim.quantity}",
+        "currency": rating.case.currency,
     }
 
 
@@ -240,6 +268,7 @@ def _worth(programme: Programme, worth: Worth, aim: Aim, currency: str) -> Json:
         "tightening costs": aim.size(worth.costs),
         "saving unit": aim.unit,
         "moves": [programme.limits[index].name for index in worth.limits],
+        "reach": None if worth.reach is None else reach_json(programme, worth.reach, worth.kind, aim),
         **({"note": worth.note} if worth.note else {}),
     }
 

@@ -92,7 +92,9 @@ def second_answer(programme: Programme, optimum: Optimum, best: Rating, others: 
     where = f" ({'; '.join(apart)})" if apart else ""
     cost = "has no value" if more is None else aim_of(best).worse(more)
     rest = f"; {len(others) - 1} more in result.json" if len(others) > 1 else ""
-    return f"A second answer{where} {cost}{rest}."
+    reached = sum(start.answer == 0 for start in optimum.starts)
+    share = f"; {reached} of {len(optimum.starts)} starts reached the best" if optimum.starts else ""
+    return f"A second answer{where} {cost}{rest}{share}."
 
 
 def number_shown(value: float, kind: str) -> float:
@@ -128,7 +130,18 @@ def margin_text(optimum: Optimum, best: Rating) -> str:
     bare = list(dict.fromkeys(s.label for s in bounds.at_work(best) if not s.implied and s.keep_away == 0.0))
     if not bare:
         return ""
-    return f"KEEP AWAY    none on {and_list(bare)}: instrument error can cross {_it(bare)}."
+    further = _step_away(optimum, best)
+    return f"KEEP AWAY    none on {and_list(bare)}: instrument error can cross {_it(bare)}{further}."
+
+
+def _step_away(optimum: Optimum, best: Rating) -> str:
+    """What it costs to stay one step further inside every limit; empty where that is not known."""
+    aim = aim_of(best)
+    if optimum.step_away_cost is None:
+        return ""
+    steps = list(dict.fromkeys(bounds.step_text(worth) for worth in optimum.worths))
+    size = with_unit(aim.number(optimum.step_away_cost), aim.unit)
+    return f"; one step ({', '.join(steps)}) away from every limit costs {size}"
 
 
 def _it(words: Sequence[str]) -> str:

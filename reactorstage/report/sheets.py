@@ -6,11 +6,13 @@ from collections.abc import Callable, Iterator, Sequence
 
 import numpy as np
 
+from reactorstage.report.aim import Aim
 from reactorstage.report.cascade import Cascade
 from reactorstage.report.composition import panels_of
 from reactorstage.report.conversion import background, way
 from reactorstage.report.diagram import temperature_range
 from reactorstage.report.display import shown, unit
+from reactorstage.report.drivers import aim_change, drivers
 from reactorstage.report.heat import bound_of, steps
 from reactorstage.report.profiles import BedProfile, displayed, train_profiles
 from reactorstage.report.rates import lighting, used
@@ -18,6 +20,7 @@ from reactorstage.report.sheet import Cell, Sheet, sheet
 from reactorstage.report.temperature import equilibria, places_of_gaps
 from reactorstage.report.unit_sets import RATE
 from reactorstage.report.worths import WorthBar
+from reactorstage.train.influence import Influence
 from reactorstage.train.result import Array, LimitState, Rating
 
 THIS, TODAY = "this setting", "today"
@@ -175,3 +178,9 @@ def worths_sheet(bars: Sequence[WorthBar], heading: str) -> Sheet:
     """The bars."""
     rows = [[bar.name, bar.step, bar.saves, bar.costs] for bar in bars]
     return sheet(["limit", "step", f"relaxing saves, {heading}", f"tightening costs, {heading}"], rows)
+
+
+def influence_sheet(found: Sequence[Influence], aim: Aim) -> Sheet:
+    """Every parameter with its step and what that does to the best answer."""
+    rows: list[list[Cell]] = [[row.words, aim_change(row.change, aim)] for row in drivers(found)]
+    return sheet(["parameter and its step", f"change of the best answer, {aim.heading}"], rows)

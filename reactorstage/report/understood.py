@@ -302,3 +302,13 @@ def _limit_json(row: LimitRow, currency: str) -> dict[str, Any]:
         "implied": row.implied,
         "why": row.why,
     }
+
+
+def order_table(seen: Understanding) -> Table:
+    """The order of every reaction in the split reactant; empty without a split."""
+    rows = [row for row in seen.reactions if row.order_in_split is not None] if seen.split_reactant else []
+    return table(f"ORDER IN {seen.split_reactant.upper()}", [
+        Column(("",), tuple(row.name for row in rows), left=True),
+        Column(("equation",), tuple(row.equation for row in rows), left=True),
+        Column(("order",), tuple(brief(row.order_in_split) for row in rows)),
+    ])  # fmt: skip

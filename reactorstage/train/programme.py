@@ -33,6 +33,7 @@ from reactorstage.train.inputs import InputBuilder, InputMap
 from reactorstage.train.layout import Layout, lay_out
 from reactorstage.train.limits import Bound, expand_limits
 from reactorstage.train.money import money_forms
+from reactorstage.train.panel import Panel, read_panel
 from reactorstage.train.passing import FINAL, SEARCH, Outcome, Pass
 from reactorstage.train.quantities import Catalogue
 from reactorstage.train.temperatures import highest_data, lowest_data
@@ -162,6 +163,7 @@ class TrainProgramme:
         self._scales = np.array([bound.row.scale for bound in bounds])
         self._rows = Rows.of([*forms, aim.top, aim.bottom or Linear(const=1.0)])
         self._sign = 1.0 if case.aim.direction == "least" else -1.0
+        self.panel: Panel = read_panel(case, self.numbers, aim.kind)
 
     @property
     def case(self) -> Case:
@@ -218,6 +220,20 @@ class TrainProgramme:
         from reactorstage.train.understanding import understand
 
         return understand(self, tell)
+
+    def turnover(self, x: Array) -> float:
+        """Sum of the absolute money terms at x, money per second: each price, and heat by place."""
+        rating = self.rate(x, dense=False)
+        return sum(abs(value) for label, value in rating.money.items() if label not in ("total", "heat"))
+
+    def lagrangian_of(self, base: Array, multipliers: Array) -> Array:
+        """(D,) derivatives of cost less limits times multipliers (M,), by the directions of a base vector."""
+        M = len(self.limits)
+        margin, weight, aim = np.split(self._rows.of_base(base), (M, 2 * M))
+        cost = aim[0, 0] / aim[1, 0]
+        cost_by = self._sign * (aim[0, 1:] - cost * aim[1, 1:]) / aim[1, 0]
+        held = np.flatnonzero(multipliers)
+        return np.asarray(cost_by - (multipliers[held] / weight[held, 0]) @ margin[held, 1:])
 
     def _evaluation(self, outcome: Outcome, u: Array, du: Array, x: Array) -> Evaluation:
         if outcome.failure:

@@ -35,7 +35,7 @@ def test_the_train_in_one_answer_with_bounded_work() -> None:
     assert found.best.starts == 20 and found.best.residual < 1e-8 and found.best.violation <= 1e-9
     assert found.evaluations <= 20 * 15
     explained = optimise(train, starts=20, jobs=1)
-    assert explained.evaluations - found.evaluations <= 400
+    assert explained.evaluations - found.evaluations <= 2000
 
 
 def test_the_same_digits_for_any_jobs() -> None:
@@ -68,7 +68,8 @@ def test_progress_is_told_from_the_calling_thread() -> None:
     first = told[:4]
     assert [done for done, *_ in first] == [1, 2, 3, 4] and {total for _, total, *_ in first} == {4}
     assert first[-1][2] == pytest.approx(found.best.cost)
-    assert told[-1][0] == told[-1][1] == len(told) - 4
+    assert told[-1][0] == told[-1][1]
+    assert sum(total for done, total, *_ in told[4:] if done == total) == len(told) - 4
 
 
 def test_nothing_can_be_evaluated() -> None:

@@ -95,6 +95,8 @@ def case(options: Options, number_of_beds: int) -> Any:
         currency="EUR",
         hash="0" * 64,
         heat_levels=levels,
+        train=[SimpleNamespace(owner=f"bed {n + 1}", bed=True, steps=()) for n in range(number_of_beds)],
+        feeds={"benzene": None, "ethylene": None},
         aim=SimpleNamespace(direction="least", quantity="money.total"),
         fluid=SimpleNamespace(density="ideal gas", phase=None),
     )
@@ -398,6 +400,7 @@ def optimisation(others: int = 1, status: str = optimise_result.INSIDE) -> Any:
         others=(second,) * others,
         seconds=1.1,
         seed=1,
+        influences=(),
     )
 
 

@@ -36,7 +36,7 @@ def refuse(constant: str) -> float:
 
 def test_json_has_what_provenance_needs() -> None:
     content = json.loads(as_text(rating_json(synthetic.rating(), ["bed 1.catalyst=2 t"]), 0.5))
-    assert content["schema version"] == 1
+    assert content["schema version"] == 2
     assert content["case"]["hash"] == "0" * 64
     assert content["case"]["set"] == ["bed 1.catalyst=2 t"]
     assert {"python", "reactorstage", "numpy", "scipy", "numba", "cantera"} <= set(content["versions"])
