@@ -19,13 +19,25 @@ from reactorstage.bed.events import (
     slope_within,
     temperature_tangent,
 )
-from reactorstage.bed.integrate import DONE, TOO_COLD, TOO_HOT, integrate
+from reactorstage.bed.gap_steps import (
+    DRAW,
+    DROP,
+    MORE_THAN_THERE,
+    REMOVE_FLOWS,
+    REMOVE_SHARES,
+    add_drawn,
+    draw,
+    drop_pressure,
+    remove_flows,
+    remove_shares,
+)
+from reactorstage.bed.integrate import DONE, NO_PRESSURE, TOO_COLD, TOO_HOT, integrate
 from reactorstage.bed.layout import at_factor, at_mass, at_nu, at_profile, work_length
 from reactorstage.bed.properties import heat_and_enthalpy, heat_capacity_flow, temperature_of
 from reactorstage.bed.tangents import differentiate
 
 ADD, HOLD, SET_TEMPERATURE, REMOVE_HEAT, ARRIVE, BED = 0, 1, 2, 3, 4, 5
-"""Operations (code, a, b, c); numbers are positions in the input vector u, -1 for none:
+"""Operations (code, a, b, c), with those of `gap_steps`; numbers are positions in u, -1 for none:
 ADD a feed, b flow, c temperature; HOLD nothing (its heat follows at the next ARRIVE);
 SET_TEMPERATURE a; REMOVE_HEAT a; ARRIVE a held temperature, b pressure, c position of the HOLD;
 BED a bed number, b first of its three numbers in u: catalyst, catalyst activity, friction factor; c first of
@@ -315,6 +327,31 @@ def run_bed(
     return DONE, 1.0, calls
 
 
+@inlined
+def gap_step(chem, code, a, b, c, row, out, u, du, moved, work, H_d):
+    """One of the operations of `gap_steps`; its status."""
+    S, there = chem.S, True
+    T = out[row + S + 2, 0]
+    if code in (REMOVE_SHARES, REMOVE_FLOWS):
+        if code == REMOVE_SHARES:
+            remove_shares(S, row, out, u, du, a)
+        else:
+            there = remove_flows(S, row, out, u, du, a)
+        H = enthalpy_at(chem, row, out, T, out[row + S + 2, 1:], moved, work, H_d)
+        set_row(out, row + S, H, H_d)
+    elif code == DROP:
+        if not drop_pressure(S, row, out, u, du, a):
+            return NO_PRESSURE
+        record_temperature(chem, row, out, T, moved, work)
+    elif code == DRAW:
+        there = draw(S, row, out, u, du, a)
+    else:
+        add_drawn(S, row, out, u, du, a, b, c)
+        if not record_temperature(chem, row, out, T, moved, work):
+            return TOO_HOT if out[row + S + 2, 0] >= chem.T_high else TOO_COLD
+    return DONE if there else MORE_THAN_THERE
+
+
 @entry
 def train_pass(
     chem, beds, operations, feeds, u, du, moved, tolerance, frozen, places, stages, reference, out
@@ -372,4 +409,8 @@ def train_pass(
             taken += stages.counts[a]
             if status != DONE:
                 return status, k, depth, calls, taken
+        elif code >= REMOVE_SHARES:
+            status = gap_step(chem, code, a, b, c, row, out, u, du, moved, work, H_d)
+            if status != DONE:
+                return status, k, 0.0, calls, taken
     return DONE, K, 1.0, calls, taken

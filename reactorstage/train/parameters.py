@@ -74,6 +74,8 @@ def parameters_of(model: Model) -> tuple[Parameter, ...]:
 
 def _numbers(model: Model) -> Iterator[Parameter]:
     for index, number in enumerate(model.inputs.numbers):
+        if number.internal:
+            continue
         yield Parameter(number.name, -1, index)
 
 

@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from reactorstage.bed import integrate as status
 from reactorstage.bed.compiled import first_call
+from reactorstage.bed.gap_steps import MORE_THAN_THERE
 from reactorstage.bed.data import KIND, LAW, Beds, Chemistry, Index, Stages, Tolerance
 from reactorstage.bed.sample import sample_bed
 from reactorstage.bed.train_pass import train_pass
@@ -31,6 +32,7 @@ SENTENCES = {
     status.TOO_COLD: "the temperature falls below the range of the species data",
     status.NO_FLOW: "nothing flows into it",
     status.USED_UP: "a reactant is used up but its reaction runs on (an order of zero or below)",
+    MORE_THAN_THERE: "more is taken out than there is; lower what is removed or drawn off",
     status.FROZEN_FAILED: "the step sequence of another setting does not fit here",
 }
 
@@ -112,10 +114,13 @@ class Pass:
                 break
         return outcome
 
-    def frozen(self, u: Array, du: Array, mesh: Stages, places: bool = True) -> Outcome:
-        """Integrate on the step sequences of an earlier pass."""
+    def frozen(
+        self, u: Array, du: Array, mesh: Stages, places: bool = True, chemistry: Chemistry | None = None
+    ) -> Outcome:
+        """Integrate on the step sequences of an earlier pass; chemistry replaces that of the case."""
         stages = self.stages(max(1, int(mesh.counts.max())))
-        return self._run(u, du, self.tolerance(SEARCH), True, places, stages, mesh)
+        tolerance = self.tolerance(SEARCH)
+        return self._run(u, du, tolerance, True, places, stages, mesh, chemistry=chemistry)
 
     def _run(
         self,
