@@ -43,7 +43,8 @@ def moves(limits: Sequence[LimitRow], at_work: Sequence[int]) -> list[Move]:
 def asked_for(programme: Programme, answer: Answer) -> list[int]:
     """Limits at work whose worth means something.
 
-    Left out are implied limits that move with numbers that keep books: they keep books too, nobody can relax them.
+    Left out are implied limits that move with numbers that keep books: they keep books too, nobody can relax
+    them.
     """
     evaluation = programme.final(answer.x)
     if not evaluation.ok:

@@ -104,7 +104,7 @@ class Closing:
         """The answer that Newton reaches from v."""
         v = v.copy()
         trial, mesh, step = self.at(v), None, np.inf
-        for k in range(ITERATIONS):
+        for _ in range(ITERATIONS):
             if trial.failure:
                 return Solved(v, trial.residual, trial.jacobian, step, None, self.evaluations, trial.failure)
             move = self._move(trial)
@@ -117,7 +117,7 @@ class Closing:
                 return Solved(v, trial.residual, trial.jacobian, step, None, self.evaluations, why)
             v, trial = found
         else:
-            why = f"no answer after {k + 1} steps"
+            why = f"no answer after {ITERATIONS} steps"
             return Solved(v, trial.residual, trial.jacobian, step, None, self.evaluations, why)
         mesh = trial.mesh
         return self._sharpened(v, trial, mesh)

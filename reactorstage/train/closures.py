@@ -54,7 +54,7 @@ def applied(value: float, slope: float, inner: Array) -> Array:
 
 @dataclass(frozen=True)
 class Size:
-    """How much an exchanger passes: by effectiveness, or by area, clean coefficient and fouling resistance."""
+    """What an exchanger passes: by effectiveness, or by area, clean coefficient, fouling resistance."""
 
     effectiveness: Linear | None = None
     area: Linear | None = None
@@ -129,15 +129,13 @@ class Exchange:
         """
         assert self.size.effectiveness is not None
         between = row_of(self.hot[0] - self.cold[0], base)
-        return np.asarray(
-            self._greater_change(base) - times(row_of(self.size.effectiveness, base), between)
-        )
+        return np.asarray(self._greater_change(base) - times(row_of(self.size.effectiveness, base), between))
 
     def _by_area(self, base: Array) -> Array:
         """The equation Q = k A LMTD in a form without its singularities.
 
-        Countercurrent, in W: Q z / (1 - exp(-z)) - k A (T_hot,out - T_cold,in), z = k A (rise - fall) / Q.
-        Parallel flow, in K: (T_hot,in - T_cold,in) exp(-z) - (T_hot,out - T_cold,out), z = k A (rise + fall) / Q.
+        Countercurrent, W: Q z / (1 - exp(-z)) - k A (T_hot,out - T_cold,in), z = k A (rise - fall) / Q.
+        Parallel flow, K: (T_hot,in - T_cold,in) exp(-z) - (T_hot,out - T_cold,out), z = k A (rise + fall) / Q
         """
         conductance, Q = self.size.conductance(base), row_of(self.heat, base)
         fall, rise = self._changes(base)

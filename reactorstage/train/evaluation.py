@@ -18,8 +18,8 @@ Array = NDArray[np.float64]
 class FreeNumber:
     """One number of x with its search range.
 
-    role is "split", "inlet temperature", "closure", "internal" or "other"; feed, bed and total are set for splits
-    (bed counts from 1; total is the flow that the whole split sums to), bed for inlet temperatures.
+    role is "split", "inlet temperature", "closure", "internal" or "other"; feed, bed and total are set for
+    splits (bed counts from 1; total is the flow that the whole split sums to), bed for inlet temperatures.
     """
 
     name: str

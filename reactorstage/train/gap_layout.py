@@ -33,8 +33,8 @@ T_SEARCH = (150.0, 1500.0)
 class Sides:
     """An exchanger while it is laid out: its inputs and the operations of its two streams.
 
-    heat is the heat that passes; cold and hot what the stream on that side is heated or cooled by as if all of
-    it went through; streams: owner, operation before, operation behind it, by "heat" and "cool".
+    heat is the heat that passes; cold and hot what the stream on that side is heated or cooled by as if all
+    of it went through; streams: owner, operation before, operation behind it, by "heat" and "cool".
     """
 
     name: str
@@ -107,7 +107,7 @@ class GapWriter:
         return number
 
     def _sides(self, name: str, exchanger: Exchanger) -> Sides:
-        """Inputs of one exchanger: the heat y that all of a bypassed stream would take up, and Q = y (1 - b)."""
+        """Inputs of one exchanger: heat y that all of a bypassed stream would take up, Q = y (1 - b)."""
         count, owner = self.inputs.unknown_count, f"exchanger {name}"
         y = self._heat(f"{owner}.heat")
         heat, through, bypassed = y, {"heat": y, "cool": y}, {}
@@ -150,9 +150,7 @@ class GapWriter:
         ]
         low, now, high = (float(mixture @ h(self.chemistry.table, T)) for T in (200.0, WARM, T_SEARCH[1]))
         spread = 4.0 * (high - low)
-        enthalpy = self.inputs.unknown(
-            f"{owner}.enthalpy", now, now - spread, now + spread, "molar energy"
-        )
+        enthalpy = self.inputs.unknown(f"{owner}.enthalpy", now, now - spread, now + spread, "molar energy")
         flow = self.inputs.number(f"{owner}.flow", recycle.flow)
         return Loop(name, fractions[0], enthalpy, flow, count)
 
@@ -181,7 +179,7 @@ class GapWriter:
 
     def by_area(self, owner: str, step: Step) -> None:
         """A heater or cooler whose heat follows from its area."""
-        [level] = step.levels
+        level = step.levels[0]
         assert self.case.heat_levels is not None
         given = self.case.heat_levels.levels[level]
         heating = step.kind == "heat"
@@ -311,7 +309,8 @@ def removed_words(kind: str) -> str:
 def _size_of(layout: Layout, size: dict[str, int]) -> Size:
     forms = {words: layout.input(index) for words, index in size.items()}
     return Size(
-        forms.get("effectiveness"), forms.get("area"), forms.get("coefficient"), forms.get("fouling resistance")
+        forms.get("effectiveness"),
+        forms.get("area"),
+        forms.get("coefficient"),
+        forms.get("fouling resistance"),
     )
-
-

@@ -29,8 +29,9 @@ Index = NDArray[np.int64]
 class Device:
     """A heater or cooler: its operations, what gives its heat, its levels, and its place in the case.
 
-    outlet is the input that fixes the temperature right behind it, -1 when that follows from elsewhere; last is
-    its last operation where it has several (a stream that goes round it in part); exchanger its name, if any.
+    outlet is the input that fixes the temperature right behind it, -1 when that follows from elsewhere; last
+    is its last operation where it has several (a stream that goes round it in part); exchanger its name, if
+    any.
     """
 
     operation: int
@@ -86,8 +87,8 @@ class Layout:
     """Everything about positions: operations (K, 4), compositions (NF, S), places, beds, inputs.
 
     amounts are the inputs of the flows of feeds by operation, returned those of recycles; recycles gives the
-    input of the flow and the operation that draws it off. shut names feeds of which a bed out of service shuts
-    a part, bypassed exchangers that do nothing.
+    input of the flow and the operation that draws it off. shut names feeds of which a bed out of service
+    shuts a part, bypassed exchangers that do nothing.
     """
 
     operations: Index
@@ -259,9 +260,7 @@ class _Writer:
             splits=tuple(self.splits),
             species=len(self.case.species),
             returned=self.returned,
-            recycles={
-                name: (loop.flow, self.gaps.drawn[name]) for name, loop in self.gaps.loops.items()
-            },
+            recycles={name: (loop.flow, self.gaps.drawn[name]) for name, loop in self.gaps.loops.items()},
             shut=frozenset(self.shut),
             bypassed=tuple(name for name, one in self.case.exchangers.items() if one.state == "bypassed"),
         )
@@ -311,7 +310,9 @@ class _Writer:
         if step.kind == "inject" and self.fate.get(bed):
             self.shut |= {name} if self.fate[bed] == SHUT else set()
             return []
-        moved = [self.amount[name, b] for b, to in self.fate.items() if to == bed and (name, b) in self.amount]
+        moved = [
+            self.amount[name, b] for b, to in self.fate.items() if to == bed and (name, b) in self.amount
+        ]
         return [(self._add(name, amount), name) for amount in (own, *moved)]
 
     def _add(self, name: str, amount: int) -> int:

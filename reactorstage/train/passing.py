@@ -10,8 +10,8 @@ from numpy.typing import NDArray
 
 from reactorstage.bed import integrate as status
 from reactorstage.bed.compiled import first_call
-from reactorstage.bed.gap_steps import MORE_THAN_THERE
 from reactorstage.bed.data import KIND, LAW, Beds, Chemistry, Index, Stages, Tolerance
+from reactorstage.bed.gap_steps import MORE_THAN_THERE
 from reactorstage.bed.sample import sample_bed
 from reactorstage.bed.train_pass import train_pass
 from reactorstage.train.layout import BedPlace, Layout

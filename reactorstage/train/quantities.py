@@ -7,7 +7,7 @@ that only a rating gives, without derivatives, stand in a table of their own.
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from difflib import get_close_matches
 from functools import cached_property, lru_cache
@@ -59,7 +59,10 @@ class Catalogue:
                 return bed
         kind, _, rest = owner.partition(" ")
         known = {"feed": self.layout.feeds, "level": tuple(self.levels), "train": ("",), "money": ("",)}
-        known |= {"exchanger": (*self.exchanges, *self.layout.bypassed), "recycle": tuple(self.layout.recycles)}
+        known |= {
+            "exchanger": (*self.exchanges, *self.layout.bypassed),
+            "recycle": tuple(self.layout.recycles),
+        }
         if kind in known and rest in known[kind]:
             return rest
         raise LookupError(f"there is no {owner!r} in this train; owners are {', '.join(self.owners())}")
@@ -159,7 +162,19 @@ def _end(c: Catalogue) -> int:
 
 
 def _train_made(c: Catalogue, name: str) -> Linear:
-    return c.layout.flow(_end(c), c.species(name)) - fed(c, name)
+    return c.layout.flow(_end(c), c.species(name)) + _removed_in(c, c.layout.places, name) - fed(c, name)
+
+
+def _removed_in(c: Catalogue, places: Sequence[Place], name: str) -> Linear:
+    """Flow of a species that the removals of some places take out."""
+    s = c.species(name)
+    removals = [k for place in places for k, kind, _ in place.others if kind == "remove"]
+    return total([c.layout.flow(k - 1, s) - c.layout.flow(k, s) for k in removals])
+
+
+def _removed(c: Catalogue, place: Place, name: str) -> Form:
+    there = any(kind == "remove" for _, kind, _ in place.others)
+    return Form("molar flow", _removed_in(c, [place], name), reason="no removal", absent=not there)
 
 
 def _ratio(kind: str, top: Linear, bottom: Linear, name: str) -> Form:
@@ -245,6 +260,7 @@ PATTERNS: tuple[Pattern, ...] = (
             "fraction", c.layout.flow(_exit_of(p), c.species(s)), c.layout.total_flow(_exit_of(p)), "flow"
         ),
     ),
+    *_places("removed <species>", _removed),
     *_places(
         "pressure",
         lambda c, p: Form("pressure", c.layout.pressure(max(_exit_of(p), c.layout.beds[0].inlet))),
@@ -334,9 +350,7 @@ PATTERNS: tuple[Pattern, ...] = (
     Pattern("exchanger", "difference at the cold end", lambda c, x: _end_difference(c, x, 1)),
     Pattern("exchanger", "area", lambda c, x: _size(c, x, "area", "area")),
     Pattern("exchanger", "effectiveness", lambda c, x: _size(c, x, "fraction", "effectiveness")),
-    Pattern(
-        "recycle", "flow", lambda c, r: Form("molar flow", c.layout.input(c.layout.recycles[r][0]))
-    ),
+    Pattern("recycle", "flow", lambda c, r: Form("molar flow", c.layout.input(c.layout.recycles[r][0]))),
     Pattern(
         "recycle",
         "temperature",

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -9,10 +10,14 @@ from numpy.typing import NDArray
 
 from reactorstage.bed.train_pass import EXTRAS
 from reactorstage.chemistry.thermo import h
+from reactorstage.train.closed_result import closed_result, closure_notes, effectivenesses
+from reactorstage.train.closing import closed, put
+from reactorstage.train.closures import FeedHeat
 from reactorstage.train.limits import names_of
 from reactorstage.train.passing import Outcome
 from reactorstage.train.potential import bed_potentials, potential_values, unlit_notes
-from reactorstage.train.result import HeatSale, LimitState, Profile, Rating, StepState, Value
+from reactorstage.train.result import Closed, HeatSale, LimitState, Profile, Rating, StepState, Value
+from reactorstage.train.states import Found, states
 
 if TYPE_CHECKING:
     from reactorstage.train.forms import Form
@@ -31,8 +36,8 @@ POINTS = 120
 def rate(programme: TrainProgramme, x: Array, dense: bool, tolerance: float) -> Rating:
     """The train at x; a failure inside it gives a Rating with the sentence and what was reached."""
     model = programme.model
+    x, outcome, known = _passed(model, x, tolerance)
     u, du = model.inputs.values(x)
-    outcome = model.passing.adaptive(u, du[:, :0], tolerance)
     wanted = () if outcome.failure else model.catalogue.equilibria
     base = model.base(outcome.out, u, du, x, wanted)[:, 0]
     profiles = _profiles(model, outcome, u, dense)
@@ -44,6 +49,10 @@ def rate(programme: TrainProgramme, x: Array, dense: bool, tolerance: float) -> 
         status = "inside all limits" if all(one.met or one.soft for one in limits) else "limits broken"
         atoms, energy = closure(model, base)
         quantities |= _closures(atoms, energy)
+    closed_state = Closed()
+    if known is not None and not outcome.failure:
+        closed_state = closed_result(model, base, x, known)
+        quantities |= effectivenesses(closed_state)
     quantities |= _peaks(model, profiles) | _outside(model, profiles)
     roles = _roles(model, base) if not outcome.failure else ("", "", "", ())
     potentials = bed_potentials(model, base, profiles, roles[0])
@@ -71,11 +80,34 @@ def rate(programme: TrainProgramme, x: Array, dense: bool, tolerance: float) -> 
         unpriced=tuple(dict.fromkeys(model.ladder.unpriced)),
         atoms=atoms,
         energy=energy,
-        notes=(*unlit_notes(potentials), *_notes(model, quantities)),
+        notes=(
+            *closure_notes(closed_state),
+            *unlit_notes(potentials),
+            *_warm_quenches(model, base, outcome),
+            *_notes(model, quantities),
+        ),
         integration_steps=outcome.steps,
         right_hand_sides=outcome.evaluations,
         chemistry=model.chemistry,
+        closed=closed_state,
     )
+
+
+def _passed(model: Model, x: Array, tolerance: float) -> tuple[Array, Outcome, Found | None]:
+    """The pass at x, its closures closed from where they stand in x; all states of a closed train."""
+    u, du = model.inputs.values(x)
+    if not model.layout.closures:
+        return x, model.passing.adaptive(u, du[:, :0], tolerance), None
+    known, v = states(model, model.inputs.all_numbers(x)), model.inputs.all_numbers(x)
+    solved = closed(model, v, tolerance)
+    if solved.failure and known.states:
+        solved = closed(model, known.states[0].v, tolerance)
+    if solved.mesh is None:
+        outcome = model.passing.adaptive(u, du[:, :0], tolerance)
+        return x, replace(outcome, failure=outcome.failure or known.why or solved.failure), known
+    x = put(model, x, solved.v)
+    u, du = model.inputs.values(x)
+    return x, model.passing.frozen(u, np.ascontiguousarray(du[:, :0]), solved.mesh), known
 
 
 def _profiles(model: Model, outcome: Outcome, u: Array, dense: bool) -> tuple[Profile, ...]:
@@ -195,14 +227,16 @@ def _limit(bound: Bound, base: Array) -> LimitState:
 
 
 def closure(model: Model, base: Array) -> tuple[float, float]:
-    """Relative closure of atoms and of energy over the whole train.
+    """Relative closure of atoms and of energy over the whole train, recycles and exchangers included.
 
-    Atoms: largest difference between feeds and effluent of an element, by its flow. Energy: feeds less heat
-    removed less the effluent's enthalpy found anew from its flows and temperature, by the enthalpy that the
-    train turns over (sum of absolute changes along beds and heat removed).
+    Atoms: largest difference between feeds and what leaves of an element, by its flow. Energy: feeds less
+    heat removed less the enthalpy of what leaves, found anew from its flows and temperature, by the enthalpy
+    that the train turns over (sum of absolute changes along beds and heat removed). What leaves is effluent
+    and removals; a recycle that leaves and one that enters are counted as they are stated on either side, so
+    that a loop that is not closed shows here.
     """
     layout, table = model.layout, model.chemistry.table
-    S, width, end = layout.species, layout.width, len(layout.operations) - 1
+    S, width = layout.species, layout.width
     fed, enthalpy, turned = np.zeros(S), 0.0, 0.0
     for operation, amount in layout.amounts.items():
         feed = int(layout.operations[operation][1])
@@ -210,9 +244,9 @@ def closure(model: Model, base: Array) -> tuple[float, float]:
         T = base[layout.rows + layout.feed_temperature[layout.feeds[feed]]]
         fed += flow
         enthalpy += float(flow @ h(table, float(T)))
-    record = base[end * width : (end + 1) * width]
+    left_F, left_H = _left(model, base)
     elements = np.abs(fed @ table.atoms)
-    atoms = float((np.abs((fed - record[:S]) @ table.atoms) / np.where(elements > 0.0, elements, 1.0)).max())
+    atoms = float((np.abs((fed - left_F) @ table.atoms) / np.where(elements > 0.0, elements, 1.0)).max())
     for place in layout.places:
         for device in place.devices:
             Q = layout.heat_removed(device).value(base)
@@ -221,29 +255,84 @@ def closure(model: Model, base: Array) -> tuple[float, float]:
     for bed in layout.beds:
         inlet, out = base[bed.inlet * width :][:width], base[bed.exit * width :][:width]
         turned += abs(float(out[:S] @ (h(table, float(out[S + 2])) - h(table, float(inlet[S + 2])))))
-    left = float(record[:S] @ h(table, float(record[S + 2])))
-    return atoms, abs(enthalpy - left) / max(turned, 1e-300)
+    for one in layout.closures:
+        if isinstance(one, FeedHeat):
+            enthalpy += one.sign * one.heat.value(base)
+    return atoms, abs(enthalpy - left_H) / max(turned, 1e-300)
+
+
+def _left(model: Model, base: Array) -> tuple[Array, float]:
+    """Flows (S,) and enthalpy of what leaves for good, with what recycles draw less what they bring."""
+    layout, table = model.layout, model.chemistry.table
+    S, width, end = layout.species, layout.width, len(layout.operations) - 1
+
+    def record(operation: int) -> Array:
+        return base[operation * width : (operation + 1) * width]
+
+    def enthalpy(flows: Array, operation: int) -> float:
+        return float(flows @ h(table, float(record(operation)[S + 2])))
+
+    F = record(end)[:S].copy()
+    H = enthalpy(F, end)
+    for place in layout.places:
+        for operation, kind, _ in place.others:
+            if kind in ("remove", "draw"):
+                gone = record(operation - 1)[:S] - record(operation)[:S]
+                F, H = F + gone, H + enthalpy(gone, operation)
+    for operation in layout.returned:
+        F -= record(operation)[:S] - record(operation - 1)[:S]
+        H -= float(record(operation)[S] - record(operation - 1)[S])
+    return F, H
+
+
+def _warm_quenches(model: Model, base: Array, outcome: Outcome) -> list[str]:
+    """Injections of gaps that are no colder than what leaves the bed before them."""
+    layout, notes = model.layout, []
+    for place in layout.places:
+        for operation, name in place.injections if place.kind == "gap" and not outcome.failure else ():
+            before = layout.temperature(place.first - 1).value(base)
+            own = _injected_temperature(model, base, operation, name)
+            flow = base[layout.rows + layout.amount(operation)]
+            if flow > 0.0 and own >= before:
+                notes.append(
+                    f"{name} enters {place.owner} at {own - 273.15:.0f} degC, no colder than the "
+                    f"{before - 273.15:.0f} degC of what leaves the bed: it quenches nothing."
+                )
+    return notes
+
+
+def _injected_temperature(model: Model, base: Array, operation: int, name: str) -> float:
+    """Temperature of what is injected, K."""
+    layout = model.layout
+    if operation in layout.amounts:
+        return float(base[layout.rows + layout.operations[operation][3]])
+    return layout.temperature(layout.recycles[name][1]).value(base)
 
 
 def _steps(model: Model, base: Array, outcome: Outcome) -> tuple[StepState, ...]:
     layout, steps = model.layout, []
     for place in layout.places:
-        injections, devices = dict(place.injections), {d.operation: d for d in place.devices}
+        injections, others = dict(place.injections), {k: (kind, what) for k, kind, what in place.others}
+        devices = {device.operation: device for device in place.devices}
         for k in range(place.first, place.last + 1):
-            if k >= outcome.reached or (k not in injections and k not in devices):
+            if k >= outcome.reached or not (k in injections or k in devices or k in others):
                 continue
+            end = devices[k].end if k in devices else k
             before = layout.temperature(k - 1).value(base) if k > 0 else None
-            after = layout.temperature(k).value(base)
+            after, Q = layout.temperature(end).value(base), 0.0
             if k in injections:
-                kind = "take" if k == 0 else "inject"
-                flow = float(base[layout.rows + layout.amounts[k]])
-                steps.append(StepState(place.owner, kind, injections[k], flow, 0.0, before, after))
-            else:
-                device = devices[k]
+                flow = float(base[layout.rows + layout.amount(k)])
+                kind = "take" if k == 0 else "inject" if k in layout.amounts else "recycle"
+                what = injections[k]
+            elif k in devices:
+                device, flow = devices[k], 0.0
                 what = device.levels if isinstance(device.levels, str) else ", ".join(device.levels)
-                Q = layout.heat_removed(device).value(base)
-                kind = "heat" if device.heating else "cool"
-                steps.append(StepState(place.owner, kind, what, 0.0, Q, before, after))
+                what = device.exchanger or what
+                kind, Q = "heat" if device.heating else "cool", layout.heat_removed(device).value(base)
+            else:
+                kind, what = others[k]
+                flow = (layout.total_flow(k) - layout.total_flow(k - 1)).value(base)
+            steps.append(StepState(place.owner, kind, what, flow, Q, before, after))
     return tuple(steps)
 
 
@@ -268,9 +357,8 @@ def _roles(model: Model, base: Array) -> tuple[str, str, str, tuple[str, ...]]:
     from reactorstage.train.quantities import fed
 
     catalogue, names, nu = model.catalogue, model.chemistry.species, model.chemistry.laws.nu
-    end = (len(model.layout.operations) - 1) * model.layout.width
     given = {name: fed(catalogue, name).value(base) for name in names}
-    made = {name: float(base[end + s]) - given[name] for s, name in enumerate(names)}
+    made = {name: catalogue.find(f"train.made {name}").top.value(base) for name in names}
     consumed = [n for s, n in enumerate(names) if (nu[:, s] < 0).any() and given[n] > 0.0 and made[n] < 0.0]
     split = [feed for feed in model.layout.feeds if model.case.feeds[feed].split is not None]
     main = ""

@@ -70,7 +70,10 @@ class Found:
 
 @dataclass
 class _Curve:
-    """Residual and needed size of one exchanger over its heat, with the other closures solved."""
+    """Residual and needed size of one exchanger over its heat, with the other closures solved.
+
+    The heat is that of the unknown; what passes is less where a part of a stream goes round the exchanger.
+    """
 
     model: Model
     exchange: Exchange
@@ -84,6 +87,7 @@ class _Curve:
         self.whole = Closing(self.model)
         self.rest = Closing(self.model, without=self.row) if inputs.unknowns > 1 else None
         self.seen: dict[float, tuple[float, float, Array]] = {}
+        self.passed: dict[float, float] = {}
 
     @property
     def range(self) -> tuple[float, float]:
@@ -107,21 +111,20 @@ class _Curve:
         trial = self.whole.at(v, slopes=False)
         if trial.base is None:
             return np.nan, np.nan, v
+        self.passed[heat] = self.exchange.heat.value(trial.base[:, 0])
         return float(trial.residual[self.row]), self.exchange.needed(trial.base), v
 
     def _near(self, heat: float) -> Array:
         """The numbers at the nearest heat that could be looked at."""
-        known = [(abs(q - heat), k) for k, (q, found) in enumerate(self.seen.items()) if np.isfinite(found[0])]
+        known = [
+            (abs(q - heat), k) for k, (q, found) in enumerate(self.seen.items()) if np.isfinite(found[0])
+        ]
         return list(self.seen.values())[min(known)[1]][2] if known else self.v
 
 
 def states(model: Model, v: Array) -> Found:
     """All states that can be found with the numbers v (V,); its unknowns are where Newton may begin."""
-    exchanges = [
-        (k, one)
-        for k, one in enumerate(_rows(model))
-        if isinstance(one, Exchange)
-    ]
+    exchanges = [(k, one) for k, one in enumerate(_rows(model)) if isinstance(one, Exchange)]
     if not exchanges:
         return _from_starts(model, v)
     row, exchange = exchanges[0]
@@ -131,8 +134,8 @@ def states(model: Model, v: Array) -> Found:
     for heat in sorted(grid, key=abs):
         curve.at(heat)
     folds = _folds(curve, grid)
-    found = _roots(curve, sorted({*grid, *(fold.heat for fold in folds)}))
-    return Found(tuple(found), tuple(folds), "" if found else _why(curve, grid))
+    found = _roots(curve, sorted({*grid, *(heat for heat, _ in folds)}))
+    return Found(tuple(found), tuple(fold for _, fold in folds), "" if found else _why(curve, grid))
 
 
 def _rows(model: Model) -> list[object]:
@@ -143,9 +146,8 @@ def _rows(model: Model) -> list[object]:
     return rows
 
 
-def _folds(curve: _Curve, grid: list[float]) -> list[Fold]:
-    """Turning points of the needed size over the heat."""
-    low, high = curve.range
+def _folds(curve: _Curve, grid: list[float]) -> list[tuple[float, Fold]]:
+    """Turning points of the needed size, each with the unknown there."""
     found = []
     values = [curve.at(heat)[1] for heat in grid]
     for k in range(1, len(grid) - 1):
@@ -161,14 +163,15 @@ def _folds(curve: _Curve, grid: list[float]) -> list[Fold]:
             tol=REFINED,
         )
         heat = float(best.x) if grid[k - 1] < best.x < grid[k + 1] else grid[k]
-        found.append(Fold(curve.exchange.name, heat, curve.at(heat)[1], sign > 0.0))
+        needed = curve.at(heat)[1]
+        found.append((heat, Fold(curve.exchange.name, curve.passed[heat], needed, sign > 0.0)))
     return found
 
 
 def _roots(curve: _Curve, grid: list[float]) -> list[State]:
     """States between neighbours where the residual changes its sign."""
     low, high = curve.range
-    found: list[State] = []
+    found: dict[float, State] = {}
     for left, right in pairwise(grid):
         a, b = curve.at(left)[0], curve.at(right)[0]
         if not (np.isfinite([a, b]).all() and a * b <= 0.0) or (b == 0.0 and right != grid[-1]):
@@ -179,10 +182,12 @@ def _roots(curve: _Curve, grid: list[float]) -> list[State]:
         solved = curve.whole.solve(curve.at(heat)[2])
         if solved.failure:
             continue
-        near = [one for one in found if abs(one.heat - solved.v[curve.index]) < SAME * (high - low)]
-        if not near:
-            found.append(State(solved.v, solved.slope_sign >= 0, float(solved.v[curve.index])))
-    return sorted(found, key=lambda one: -one.heat)
+        y = float(solved.v[curve.index])
+        trial = curve.whole.at(solved.v, slopes=False)
+        if trial.base is not None and all(abs(y - other) >= SAME * (high - low) for other in found):
+            passed = curve.exchange.heat.value(trial.base[:, 0])
+            found[y] = State(solved.v, solved.slope_sign >= 0, passed)
+    return [found[y] for y in sorted(found, reverse=True)]
 
 
 def _why(curve: _Curve, grid: list[float]) -> str:
@@ -194,8 +199,8 @@ def _why(curve: _Curve, grid: list[float]) -> str:
         return f"exchanger {name}: the train has no answer at any heat that it could pass"
     heat, needed = min(there, key=lambda pair: abs(np.log(max(pair[1], 1e-12))))
     return (
-        f"exchanger {name}: no heat between {curve.range[0] / 1e6:.3g} and {curve.range[1] / 1e6:.3g} MW fits "
-        f"it; nearest at {heat / 1e6:.3g} MW, which needs {needed:.3g} times its size"
+        f"exchanger {name}: no heat between {curve.range[0] / 1e6:.3g} and {curve.range[1] / 1e6:.3g} MW "
+        f"fits it; nearest at {heat / 1e6:.3g} MW, which needs {needed:.3g} times its size"
     )
 
 

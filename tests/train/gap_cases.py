@@ -15,10 +15,14 @@ def ammonia(activity: float = 1.0, pressure: float = 200.0, size: Tree | None = 
     """NH3-5: three beds with two cold shots, the feed of bed 1 heated by the effluent, a part going round.
 
     Morud & Skogestad, AIChE J. 44 (1998) 888, inputs from memory: feed 250 degC with 4.17 mol % NH3, rest
-    H2:N2 3:1; 127 t/h through the exchanger and 58 t/h round it, quenches 35 and 32 t/h, 6.69, 9.63 and 15.2 m3
-    of catalyst, 536 W/(m2 K) on 283 m2, countercurrent; rates times 4.75. Heat capacities here are Cantera's.
+    H2:N2 3:1; 127 t/h through the exchanger and 58 t/h round it, quenches 35 and 32 t/h, catalyst 6.69, 9.63
+    and 15.2 m3, 536 W/(m2 K) on 283 m2, countercurrent; rates times 4.75. Heat capacities here are Cantera's.
     """
-    exchanger = size or {"area": "283 m^2", "coefficient": "536 W/(m^2 K)", "cold bypass": f"{58.0 / 185.0!r}"}
+    exchanger = size or {
+        "area": "283 m^2",
+        "coefficient": "536 W/(m^2 K)",
+        "cold bypass": f"{58.0 / 185.0!r}",
+    }
     shares = {"bed 1": "185 t/h", "bed 2": "35 t/h", "bed 3": "32 t/h"}
     feed = {
         "flow": "252 t/h",
