@@ -12,15 +12,12 @@ from reactorstage.case import units
 from reactorstage.chemistry.thermo import cp
 from reactorstage.train.closures import AREA_OF, Closure, Exchange, FeedHeat, Return, row_of
 from reactorstage.train.result import Closed, ExchangeState, TrainState, TurningPoint, Value
-from reactorstage.train.states import Found, State
+from reactorstage.train.states import SAME, Found, State
 
 if TYPE_CHECKING:
     from reactorstage.train.programme import Model
 
 Array = NDArray[np.float64]
-
-SAME = 1e-3
-"""A state is that of the rating when its unknowns differ by less than this share of their ranges."""
 
 
 def closed_result(model: Model, base: Array, x: Array, known: Found) -> Closed:

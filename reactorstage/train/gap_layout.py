@@ -109,7 +109,7 @@ class GapWriter:
     def _sides(self, name: str, exchanger: Exchanger) -> Sides:
         """Inputs of one exchanger: heat y that all of a bypassed stream would take up, Q = y (1 - b)."""
         count, owner = self.inputs.unknown_count, f"exchanger {name}"
-        y = self._heat(f"{owner}.heat")
+        y = self._heat(f"{owner}.heat of its closure")
         heat, through, bypassed = y, {"heat": y, "cool": y}, {}
         for verb, share, words in (
             ("heat", exchanger.cold_bypass, "cold bypass"),

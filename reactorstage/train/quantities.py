@@ -260,7 +260,10 @@ PATTERNS: tuple[Pattern, ...] = (
             "fraction", c.layout.flow(_exit_of(p), c.species(s)), c.layout.total_flow(_exit_of(p)), "flow"
         ),
     ),
-    *_places("removed <species>", _removed),
+    *(
+        Pattern(owner, "removed <species>", _removed, list_them=False)
+        for owner in ("entry", "gap", "effluent")
+    ),
     *_places(
         "pressure",
         lambda c, p: Form("pressure", c.layout.pressure(max(_exit_of(p), c.layout.beds[0].inlet))),

@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from reactorstage.bed.train_pass import EXTRAS
-from reactorstage.chemistry.thermo import h
+from reactorstage.chemistry.thermo import cp, h
 from reactorstage.train.closed_result import closed_result, closure_notes, effectivenesses
 from reactorstage.train.closing import closed, put
 from reactorstage.train.closures import FeedHeat
@@ -17,7 +17,7 @@ from reactorstage.train.limits import names_of
 from reactorstage.train.passing import Outcome
 from reactorstage.train.potential import bed_potentials, potential_values, unlit_notes
 from reactorstage.train.result import Closed, HeatSale, LimitState, Profile, Rating, StepState, Value
-from reactorstage.train.states import Found, states
+from reactorstage.train.states import Found, states, with_state
 
 if TYPE_CHECKING:
     from reactorstage.train.forms import Form
@@ -102,6 +102,7 @@ def _passed(model: Model, x: Array, tolerance: float) -> tuple[Array, Outcome, F
     solved = closed(model, v, tolerance)
     if solved.failure and known.states:
         solved = closed(model, known.states[0].v, tolerance)
+    known = with_state(model, known, solved)
     if solved.mesh is None:
         outcome = model.passing.adaptive(u, du[:, :0], tolerance)
         return x, replace(outcome, failure=outcome.failure or known.why or solved.failure), known
@@ -125,6 +126,7 @@ def _quantities(model: Model, outcome: Outcome, base: Array) -> dict[str, Value]
     values: dict[str, Value] = {}
     listed = [
         *model.catalogue.names(),
+        *_removals(model),
         model.case.aim.quantity,
         *(name for price in model.case.prices.values() for _, name in names_of(price.of, model.layout)),
         *(b.row.quantity for b in model.bounds if b.row.label != "heat ladder"),
@@ -137,6 +139,15 @@ def _quantities(model: Model, outcome: Outcome, base: Array) -> dict[str, Value]
         value = form.value(base)
         values[name] = Value(value, form.kind, "" if value is not None else form.reason)
     return values
+
+
+def _removals(model: Model) -> list[str]:
+    """Names of what removals take out, where there are any."""
+    found = []
+    for place in model.layout.places:
+        removed = [what.split(", ") for _, kind, what in place.others if kind == "remove"]
+        found += [f"{place.owner}.removed {name}" for names in removed for name in names]
+    return found
 
 
 def _reached(model: Model, form: Form, reached: int) -> bool:
@@ -258,7 +269,9 @@ def closure(model: Model, base: Array) -> tuple[float, float]:
     for one in layout.closures:
         if isinstance(one, FeedHeat):
             enthalpy += one.sign * one.heat.value(base)
-    return atoms, abs(enthalpy - left_H) / max(turned, 1e-300)
+    record = base[(len(layout.operations) - 1) * width :][:width]
+    one_kelvin = float(record[:S] @ cp(table, float(record[S + 2])))
+    return atoms, abs(enthalpy - left_H) / max(turned, one_kelvin)
 
 
 def _left(model: Model, base: Array) -> tuple[Array, float]:

@@ -8,7 +8,7 @@ in terms of the exchanger itself. Without an exchanger Newton starts from severa
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import pairwise
 from typing import TYPE_CHECKING
 
@@ -16,6 +16,7 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.optimize import brentq, minimize_scalar
 
+from reactorstage.bed.data import Chemistry
 from reactorstage.train.closing import Closing, Solved
 from reactorstage.train.closures import Exchange
 
@@ -24,11 +25,14 @@ if TYPE_CHECKING:
 
 Array = NDArray[np.float64]
 
-POINTS = 49
-"""Values of the exchanged heat at which the closures are looked at."""
+POINTS, CLOSER = 33, 41
+"""Values of the exchanged heat at which the closures are looked at: in all, and where no stream crosses."""
 
 REFINED = 1e-4
-"""How exactly a turning point is found, as a share of the range."""
+"""How exactly a turning point is found, as a share of the distance between its neighbours."""
+
+FAR = 1e6
+"""Size, over that which is there, from which on a crossing is as good as one."""
 
 SAME = 1e-4
 """States nearer than this share of the ranges are one."""
@@ -79,13 +83,15 @@ class _Curve:
     exchange: Exchange
     v: Array
     row: int
+    chemistry: Chemistry | None = None
 
     def __post_init__(self) -> None:
         inputs = self.model.inputs
         first = len(inputs.free) - inputs.unknowns
         self.index = int(inputs.free[first + self.row])
-        self.whole = Closing(self.model)
-        self.rest = Closing(self.model, without=self.row) if inputs.unknowns > 1 else None
+        self.whole = Closing(self.model, chemistry=self.chemistry)
+        others = Closing(self.model, chemistry=self.chemistry, without=self.row)
+        self.rest = others if inputs.unknowns > 1 else None
         self.seen: dict[float, tuple[float, float, Array]] = {}
         self.passed: dict[float, float] = {}
 
@@ -122,20 +128,50 @@ class _Curve:
         return list(self.seen.values())[min(known)[1]][2] if known else self.v
 
 
-def states(model: Model, v: Array) -> Found:
-    """All states that can be found with the numbers v (V,); its unknowns are where Newton may begin."""
+def states(model: Model, v: Array, chemistry: Chemistry | None = None) -> Found:
+    """All states that can be found with the numbers v (V,); its unknowns are where Newton may begin.
+
+    chemistry replaces that of the case.
+    """
     exchanges = [(k, one) for k, one in enumerate(_rows(model)) if isinstance(one, Exchange)]
     if not exchanges:
-        return _from_starts(model, v)
+        return _from_starts(Closing(model, chemistry=chemistry), v)
     row, exchange = exchanges[0]
-    curve = _Curve(model, exchange, v, row)
-    low, high = curve.range
-    grid = sorted({*(float(q) for q in np.linspace(low, high, POINTS)), 0.0})
-    for heat in sorted(grid, key=abs):
-        curve.at(heat)
+    curve = _Curve(model, exchange, v, row, chemistry)
+    grid = _looked_at(curve)
     folds = _folds(curve, grid)
     found = _roots(curve, sorted({*grid, *(heat for heat, _ in folds)}))
     return Found(tuple(found), tuple(fold for _, fold in folds), "" if found else _why(curve, grid))
+
+
+def with_state(model: Model, known: Found, solved: Solved) -> Found:
+    """The states with one that was solved for, where it is none of them (two states that nearly meet)."""
+    closing = Closing(model)
+    apart = [np.abs((one.v - solved.v)[closing.unknown] / closing.span).max() for one in known.states]
+    if solved.failure or min(apart, default=1.0) < SAME:
+        return known
+    trial = closing.at(solved.v, slopes=False)
+    first = model.layout.closures[0]
+    heat = (
+        first.heat.value(trial.base[:, 0]) if isinstance(first, Exchange) and trial.base is not None else 0.0
+    )
+    added = State(solved.v, solved.slope_sign >= 0, heat)
+    return replace(known, states=tuple(sorted((*known.states, added), key=lambda one: -one.heat)))
+
+
+def _looked_at(curve: _Curve) -> list[float]:
+    """Heats at which the curve is known: over the whole range, closer where the exchanger could be real."""
+    grid = {0.0, *(float(q) for q in np.linspace(*curve.range, POINTS))}
+    for heat in sorted(grid, key=abs):
+        curve.at(heat)
+    ordered = sorted(grid)
+    real = [k for k, heat in enumerate(ordered) if np.isfinite(curve.at(heat)[1]) and heat >= 0.0]
+    if real:
+        low, high = ordered[max(real[0] - 1, 0)], ordered[min(real[-1] + 1, len(ordered) - 1)]
+        grid |= {float(q) for q in np.linspace(max(low, 0.0), high, CLOSER)}
+    for heat in sorted(grid, key=abs):
+        curve.at(heat)
+    return sorted(grid)
 
 
 def _rows(model: Model) -> list[object]:
@@ -152,17 +188,18 @@ def _folds(curve: _Curve, grid: list[float]) -> list[tuple[float, Fold]]:
     values = [curve.at(heat)[1] for heat in grid]
     for k in range(1, len(grid) - 1):
         left, here, right = values[k - 1 : k + 2]
-        if not np.isfinite([left, here, right]).all() or grid[k] <= 0.0:
+        if np.isnan([left, here, right]).any() or not np.isfinite(here) or grid[k] <= 0.0:
             continue
         sign = 1.0 if here < min(left, right) else -1.0 if here > max(left, right) else 0.0
         if sign == 0.0:
             continue
         best = minimize_scalar(
-            lambda heat, sign=sign: sign * curve.at(float(heat))[1],
-            bracket=(grid[k - 1], grid[k], grid[k + 1]),
-            tol=REFINED,
+            lambda heat, sign=sign: sign * min(curve.at(float(heat))[1], FAR),
+            bounds=(grid[k - 1], grid[k + 1]),
+            method="bounded",
+            options={"xatol": REFINED * (grid[k + 1] - grid[k - 1])},
         )
-        heat = float(best.x) if grid[k - 1] < best.x < grid[k + 1] else grid[k]
+        heat = float(best.x) if sign * curve.at(float(best.x))[1] < sign * here else grid[k]
         needed = curve.at(heat)[1]
         found.append((heat, Fold(curve.exchange.name, curve.passed[heat], needed, sign > 0.0)))
     return found
@@ -204,9 +241,8 @@ def _why(curve: _Curve, grid: list[float]) -> str:
     )
 
 
-def _from_starts(model: Model, v: Array) -> Found:
+def _from_starts(closing: Closing, v: Array) -> Found:
     """Newton from several points of the ranges."""
-    closing = Closing(model)
     found: list[Solved] = []
     why = ""
     for share in (None, *STARTS):
