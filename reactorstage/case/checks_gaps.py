@@ -66,7 +66,12 @@ def devices(parts: Sequence[Part]) -> Iterator[tuple[Part, TreePath, str, HeatSt
 def check_exchangers(parts: Sequence[Part], case: CaseWritten, findings: Findings) -> None:
     """Each exchanger has two sides and is given in one way."""
     uses: dict[str, list[Use]] = {name: [] for name in case.exchangers}
+    held: dict[str, list[TreePath]] = {}
     for _, path, verb, device in devices(parts):
+        ways = ("holds", "to", device.heat_key)
+        own = [way for way in ways if getattr(device, way.replace(" ", "_")) is not None]
+        if device.exchanger and own:
+            held.setdefault(device.exchanger, []).append((*path, own[0]))
         name = device.exchanger
         if name and name in uses:
             uses[name].append(((*path, "exchanger"), verb))
@@ -77,7 +82,7 @@ def check_exchangers(parts: Sequence[Part], case: CaseWritten, findings: Finding
         check_by_area(path, device, case, findings)
     for name, exchanger in case.exchangers.items():
         check_sides(name, exchanger, uses[name], case, findings)
-        check_size(name, exchanger, findings)
+        check_size(name, exchanger, held.get(name, []), findings)
 
 
 def check_by_area(path: TreePath, device: HeatStep | CoolStep, case: CaseWritten, findings: Findings) -> None:
@@ -125,12 +130,17 @@ def check_sides(
         findings.add(where, f"{name} has one stream only", hint, True)
 
 
-def check_size(name: str, exchanger: ExchangerWritten, findings: Findings) -> None:
-    """By effectiveness, or by area and coefficient; one stream at most goes round it."""
+def check_size(name: str, exchanger: ExchangerWritten, held: Sequence[TreePath], findings: Findings) -> None:
+    """By effectiveness, or by area and coefficient, or by what one stream holds; one goes round it at most."""
     where: TreePath = ("exchangers", name)
+    for path in held[1:]:
+        findings.add(path, f"both streams of {name} fix its heat", "let one of them follow")
+    if held:
+        check_held_size(name, exchanger, findings)
+        return
     by_area = exchanger.area is not None or exchanger.coefficient is not None
     if exchanger.effectiveness is None and not by_area:
-        hint = "give `effectiveness`, or `area` and `coefficient`"
+        hint = "give `effectiveness`, or `area` and `coefficient`, or let one of its steps hold a temperature"
         findings.add(where, f"nothing says how large {name} is", hint, True)
     elif exchanger.effectiveness is not None and (by_area or exchanger.fouling_resistance is not None):
         message = f"{name} has an effectiveness and an area"
@@ -145,6 +155,14 @@ def check_size(name: str, exchanger: ExchangerWritten, findings: Findings) -> No
         key = "cold bypass" if exchanger.cold_bypass else "hot bypass"
         message = "a bypass is for exchangers between two streams of the train"
         findings.add((*where, key), message, "leave it out", True)
+
+
+def check_held_size(name: str, exchanger: ExchangerWritten, findings: Findings) -> None:
+    """Where a stream fixes the heat, the size follows: no size and no bypass may be given too."""
+    for key in ("effectiveness", "area", "cold bypass", "hot bypass"):
+        if getattr(exchanger, key.replace(" ", "_")) is not None:
+            message = f"one stream of {name} fixes its heat, so its {key} follows"
+            findings.add(("exchangers", name, key), message, "leave it out, or let the stream follow")
 
 
 def check_recycles(parts: Sequence[Part], case: CaseWritten, findings: Findings) -> None:

@@ -198,7 +198,7 @@ def check_device(
         return
     path = (*path, verb)
     ways = ("holds", "to", device.heat_key, "area", "exchanger")
-    found = given(device)
+    found = [way for way in given(device) if way != "exchanger"] or given(device)
     if len(found) != 1:
         what = "nothing says how much" if not found else f"{' and '.join(found)} are given together"
         findings.add(path, f"{what} in this `{verb}`", f"give exactly one of {', '.join(ways)}", True)

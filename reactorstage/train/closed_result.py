@@ -10,9 +10,9 @@ from numpy.typing import NDArray
 
 from reactorstage.case import units
 from reactorstage.chemistry.thermo import cp
-from reactorstage.train.closures import AREA_OF, Closure, Exchange, FeedHeat, Return, row_of
+from reactorstage.train.closures import AREA_OF, Closure, Exchange, FeedHeat, HeldHeat, Return, row_of
 from reactorstage.train.result import Closed, ExchangeState, TrainState, TurningPoint, Value
-from reactorstage.train.states import SAME, Found, State
+from reactorstage.train.states import SAME, Found, State, leads
 
 if TYPE_CHECKING:
     from reactorstage.train.programme import Model
@@ -57,8 +57,10 @@ def _residual(model: Model, one: Closure, base: Array) -> tuple[str, float]:
         F = base[one.record : one.record + S, 0]
         heat = T * float(F @ cp(model.chemistry.table, T)) / float(F.sum())
         return f"recycle {one.name}", float(max(found[:S].max(), found[S] / heat))
-    if isinstance(one, FeedHeat):
-        return f"feed of exchanger {one.name}", float(found[0] / max(abs(one.heat.value(base[:, 0])), 1.0))
+    if isinstance(one, FeedHeat | HeldHeat):
+        words = "feed" if isinstance(one, FeedHeat) else "held stream"
+        size = max(abs(one.heat.value(base[:, 0])), 1.0)
+        return f"{words} of exchanger {one.name}", float(found[0] / size)
     between = abs(row_of(one.hot[0] - one.cold[0], base)[0])
     scale = between if one.size.effectiveness is not None or one.parallel else abs(one.heat.value(base[:, 0]))
     name = one.name if one.name.startswith(AREA_OF) else f"exchanger {one.name}"
@@ -70,7 +72,7 @@ def _states(model: Model, x: Array, known: Found) -> Iterator[TrainState]:
 
     closing = Closing(model)
     here = model.inputs.all_numbers(x)[closing.unknown]
-    with_heat = isinstance(model.layout.closures[0], Exchange)
+    with_heat = any(leads(one) for one in model.layout.closures)
     for one in known.states:
         trial = closing.at(one.v, slopes=False)
         if trial.base is None:

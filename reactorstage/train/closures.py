@@ -76,7 +76,8 @@ class Size:
 class Exchange:
     """Heat between a hot and a cold stream, in temperatures at the ends of both and the heat that passes.
 
-    unknown is the position in x of its internal number; from_ and to name where heat comes from and goes.
+    unknown is the position in x of its internal number: the heat or, where something else fixes the heat
+    (sized), the size that this takes. from_ and to name where heat comes from and goes.
     """
 
     name: str
@@ -89,6 +90,7 @@ class Exchange:
     parallel: bool
     approach: float
     unknown: int
+    sized: bool = False
 
     @property
     def ends(self) -> tuple[Linear, Linear]:
@@ -99,9 +101,9 @@ class Exchange:
 
     def residuals(self, base: Array) -> Array:
         """(1, 1 + D), in K or W."""
-        if self.size.effectiveness is not None:
-            return self._by_effectiveness(base)[None, :]
-        return self._by_area(base)[None, :]
+        by_area = self.size.effectiveness is None
+        row = self._by_area(base) if by_area else self._by_effectiveness(base)
+        return (-row if self.sized else row)[None, :]
 
     def _changes(self, base: Array) -> tuple[Array, Array]:
         """Fall of the hot and rise of the cold temperature."""
@@ -218,6 +220,20 @@ class FeedHeat:
 
 
 @dataclass(frozen=True)
+class HeldHeat:
+    """Heat of an exchanger that one of its streams fixes: stated less taken up (or given off) there, W."""
+
+    name: str
+    heat: Linear
+    taken: Linear
+    unknown: int
+
+    def residuals(self, base: Array) -> Array:
+        """(1, 1 + D)."""
+        return row_of(self.heat - self.taken, base)[None, :]
+
+
+@dataclass(frozen=True)
 class Return:
     """A recycle: mole fractions (S,) and molar enthalpy as stated, against those where it is drawn off.
 
@@ -240,7 +256,7 @@ class Return:
         return np.array([one - times(base[self.record + s], inverse) for s, one in enumerate(stated)])
 
 
-Closure = Exchange | FeedHeat | Return
+Closure = Exchange | FeedHeat | HeldHeat | Return
 
 
 def residuals(closures: Sequence[Closure], base: Array) -> Array:

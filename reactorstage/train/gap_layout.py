@@ -11,7 +11,7 @@ from reactorstage.bed import gap_steps as steps
 from reactorstage.bed import train_pass as kernel
 from reactorstage.chemistry.thermo import cp, h
 from reactorstage.train.chemistry import CaseChemistry
-from reactorstage.train.closures import AREA_OF, Closure, Exchange, FeedHeat, Return, Size
+from reactorstage.train.closures import AREA_OF, Closure, Exchange, FeedHeat, HeldHeat, Return, Size
 from reactorstage.train.forms import Linear, total
 from reactorstage.train.inputs import InputBuilder
 
@@ -27,6 +27,18 @@ BACKWARDS = 0.25
 
 T_SEARCH = (150.0, 1500.0)
 """Search range of the temperature of a feed behind an exchanger, K."""
+
+
+EFFECTIVENESS_SEARCH = (-1.0, 2.0)
+"""Search range of an effectiveness that follows: beyond 1 there is no exchanger, which the limits say."""
+
+SMALL_DIFFERENCE = 20.0
+"""Kelvin at which all the heat of the search range would pass the largest area that is searched."""
+
+
+def fixes_heat(step: Step) -> bool:
+    """Whether a heater or cooler is given by something of its own beside the exchanger that it is part of."""
+    return step.holds is not None or step.to is not None or step.heat is not None
 
 
 @dataclass
@@ -45,6 +57,8 @@ class Sides:
     size: dict[str, int]
     unknown: int
     feed: int = -1
+    held: str = ""
+    size_unknown: int = -1
     streams: dict[str, tuple[str, int, int]] = field(default_factory=dict)
 
 
@@ -130,7 +144,24 @@ class GapWriter:
         if exchanger.with_feed is not None:
             T = self.case.feeds[exchanger.with_feed].temperature.now
             found.feed = self.inputs.unknown(f"{owner}.temperature of feed", T, *T_SEARCH, "temperature")
+        found.held = self._held_side(name)
+        if found.held:
+            found.size_unknown = self.inputs.unknown_count
+            found.size |= self._size_taken(owner, exchanger)
         return found
+
+    def _held_side(self, name: str) -> str:
+        """Verb of the stream whose own heat is fixed by a temperature or an amount; empty for none."""
+        steps = [step for section in self.case.train for step in section.steps if step.exchanger == name]
+        return next((step.kind for step in steps if fixes_heat(step)), "")
+
+    def _size_taken(self, owner: str, exchanger: Exchanger) -> dict[str, int]:
+        """The size as an unknown: an area where the coefficient is given, else the effectiveness."""
+        if exchanger.coefficient is None:
+            index = self.inputs.unknown(f"{owner}.effectiveness", 0.5, *EFFECTIVENESS_SEARCH, "fraction")
+            return {"effectiveness": index}
+        most = self.most / (exchanger.coefficient.now * SMALL_DIFFERENCE)
+        return {"area": self.inputs.unknown(f"{owner}.area", 1e-3 * most, 0.0, most, "area")}
 
     def _size(self, owner: str, effectiveness: object, *area: object) -> dict[str, int]:
         names = ("effectiveness", "area", "coefficient", "fouling resistance")
@@ -163,10 +194,13 @@ class GapWriter:
         }
 
     def side(self, owner: str, step: Step) -> tuple[int, int]:
-        """One stream of an exchanger; first and last operation. Nothing is written for one out of use."""
+        """One stream of an exchanger; its first and last operation, written here unless it fixes the heat."""
         one = self.sides[step.exchanger or ""]
         sign = -1.0 if step.kind == "heat" else 1.0
         first = len(self.operations)
+        if fixes_heat(step):
+            one.streams[step.kind] = (owner, first - 1, first)
+            return first, first
         one.streams[step.kind] = (owner, first - 1, first)
         self._remove_heat(one.name, one.through[step.kind], sign)
         if step.kind in one.bypassed:
@@ -225,7 +259,9 @@ class GapWriter:
         users = len(self.inputs.numbers)
         found: list[tuple[int, Closure]] = []
         for one in self.sides.values():
-            found += [(one.unknown, self._exchange(layout, one, users))]
+            found += [(max(one.unknown, one.size_unknown), self._exchange(layout, one, users))]
+            if one.held:
+                found += [(one.unknown, self._held_heat(layout, one, users))]
             if one.feed >= 0:
                 found += [(one.unknown + 1, self._feed_heat(layout, one, users))]
         for loop in self.loops.values():
@@ -257,8 +293,15 @@ class GapWriter:
             size=_size_of(layout, one.size),
             parallel=one.exchanger.arrangement == "parallel flow",
             approach=one.exchanger.minimum_approach,
-            unknown=users + one.unknown,
+            unknown=users + max(one.unknown, one.size_unknown),
+            sized=bool(one.held),
         )
+
+    def _held_heat(self, layout: Layout, one: Sides, users: int) -> HeldHeat:
+        _, before, behind = one.streams[one.held]
+        sign = 1.0 if one.held == "heat" else -1.0
+        taken = (layout.enthalpy(behind) - layout.enthalpy(before)) * sign
+        return HeldHeat(one.name, layout.input(one.heat), taken, users + one.unknown)
 
     def _feed_heat(self, layout: Layout, one: Sides, users: int) -> FeedHeat:
         feed = one.exchanger.with_feed or ""

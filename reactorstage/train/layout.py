@@ -15,7 +15,7 @@ from reactorstage.train.chemistry import CaseChemistry
 from reactorstage.train.closures import Closure
 from reactorstage.train.evaluation import SplitGroup
 from reactorstage.train.forms import Linear, at, total
-from reactorstage.train.gap_layout import GapWriter
+from reactorstage.train.gap_layout import GapWriter, fixes_heat
 from reactorstage.train.inputs import InputBuilder
 
 if TYPE_CHECKING:
@@ -329,9 +329,9 @@ class _Writer:
         operation = len(self.operations)
         outlet, given, last = -1, "holds", -1
         if step.exchanger is not None:
-            given = "exchanger"
+            given = "holds" if fixes_heat(step) else "exchanger"
             operation, last = self.gaps.side(section.owner, step)
-        elif step.area is not None:
+        if step.area is not None:
             given = "area"
             self.gaps.by_area(section.owner, step)
         elif step.to is not None:
@@ -343,7 +343,7 @@ class _Writer:
                 f"{section.owner}.heat {'added' if sign < 0 else 'removed'}", step.heat, sign
             )
             self.operations.append((kernel.REMOVE_HEAT, heat, -1, -1))
-        else:
+        elif given == "holds":
             self.operations.append((kernel.HOLD, -1, -1, -1))
         heating, exchanger = step.kind == "heat", step.exchanger or ""
         return Device(operation, heating, step.levels, given, outlet, path, last, exchanger)

@@ -175,7 +175,7 @@ def _implied(catalogue: Catalogue, ladder: Ladder, given: Sequence[Bound]) -> li
     for place in layout.places:
         covered = len(place.devices) == 1 and _has(given, f"{place.owner}.heat removed")
         for device in place.devices:
-            if device.given in ("heat", "exchanger") or (covered and not device.heating):
+            if device.exchanger or device.given == "heat" or (covered and not device.heating):
                 continue
             sign = -1.0 if device.heating else 1.0
             label = "a heater may not cool" if device.heating else "a cooler may not heat"

@@ -14,7 +14,6 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.optimize import brentq, minimize_scalar
 
 from reactorstage.bed.data import Chemistry
 from reactorstage.train.closing import Closing, Solved
@@ -133,7 +132,7 @@ def states(model: Model, v: Array, chemistry: Chemistry | None = None) -> Found:
 
     chemistry replaces that of the case.
     """
-    exchanges = [(k, one) for k, one in enumerate(_rows(model)) if isinstance(one, Exchange)]
+    exchanges = [(k, one) for k, one in enumerate(_rows(model)) if isinstance(one, Exchange) and leads(one)]
     if not exchanges:
         return _from_starts(Closing(model, chemistry=chemistry), v)
     row, exchange = exchanges[0]
@@ -144,6 +143,11 @@ def states(model: Model, v: Array, chemistry: Chemistry | None = None) -> Found:
     return Found(tuple(found), tuple(fold for _, fold in folds), "" if found else _why(curve, grid))
 
 
+def leads(one: object) -> bool:
+    """Whether a closure is an exchanger whose heat can be taken through its range."""
+    return isinstance(one, Exchange) and not one.sized
+
+
 def with_state(model: Model, known: Found, solved: Solved) -> Found:
     """The states with one that was solved for, where it is none of them (two states that nearly meet)."""
     closing = Closing(model)
@@ -151,10 +155,8 @@ def with_state(model: Model, known: Found, solved: Solved) -> Found:
     if solved.failure or min(apart, default=1.0) < SAME:
         return known
     trial = closing.at(solved.v, slopes=False)
-    first = model.layout.closures[0]
-    heat = (
-        first.heat.value(trial.base[:, 0]) if isinstance(first, Exchange) and trial.base is not None else 0.0
-    )
+    first = next((one for one in model.layout.closures if isinstance(one, Exchange) and leads(one)), None)
+    heat = 0.0 if first is None or trial.base is None else first.heat.value(trial.base[:, 0])
     added = State(solved.v, solved.slope_sign >= 0, heat)
     return replace(known, states=tuple(sorted((*known.states, added), key=lambda one: -one.heat)))
 
@@ -184,6 +186,8 @@ def _rows(model: Model) -> list[object]:
 
 def _folds(curve: _Curve, grid: list[float]) -> list[tuple[float, Fold]]:
     """Turning points of the needed size, each with the unknown there."""
+    from scipy.optimize import minimize_scalar
+
     found = []
     values = [curve.at(heat)[1] for heat in grid]
     for k in range(1, len(grid) - 1):
@@ -207,6 +211,8 @@ def _folds(curve: _Curve, grid: list[float]) -> list[tuple[float, Fold]]:
 
 def _roots(curve: _Curve, grid: list[float]) -> list[State]:
     """States between neighbours where the residual changes its sign."""
+    from scipy.optimize import brentq
+
     low, high = curve.range
     found: dict[float, State] = {}
     for left, right in pairwise(grid):

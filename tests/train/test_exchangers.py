@@ -9,9 +9,10 @@ from math import exp
 import numpy as np
 import pytest
 
+import reactorstage as rs
 from reactorstage.train.closures import bernoulli, log_mean
 from reactorstage.train.result import Rating
-from tests.bed.build import FLUID, HEAD, Tree, programme
+from tests.bed.build import FLUID, HEAD, Tree, load, programme
 from tests.published.ideal import constant
 
 CP = {"A": 50.0, "B": 80.0}
@@ -288,3 +289,73 @@ def test_derivatives_of_residuals(exchanger: Tree) -> None:
         assert ends[0] is not None and ends[1] is not None
         difference = (ends[0] - ends[1]) / (2.0 * step)
         assert evaluation.residual_dx[:, k] == pytest.approx(difference, rel=1e-6)
+
+
+@pytest.mark.parametrize("by_area", [False, True])
+def test_a_stream_that_holds_a_temperature_asks_for_a_size(by_area: bool) -> None:
+    """Closed form: the feed is brought to 420 K; effectiveness, or area by Q = U A LMTD, follow; 1e-9."""
+    tree = train({"coefficient": "300 W/(m^2 K)"} if by_area else {})
+    tree["train"][0]["entry"][-1] = {"heat": {"exchanger": "X", "to": "420 K"}}
+    rating = rated(tree)
+    hot = hot_inlet(420.0)
+    Q = 500.0 * 120.0
+    assert rating.number("exchanger X.heat") == pytest.approx(Q, rel=1e-9)
+    assert rating.number("exchanger X.effectiveness") == pytest.approx(120.0 / (hot - 300.0), rel=1e-9)
+    a, b = hot - 420.0, hot - Q / 820.0 - 300.0
+    if by_area:
+        area = Q / (300.0 * (a - b) / np.log(a / b))
+        assert rating.number("exchanger X.area") == pytest.approx(area, rel=1e-9)
+
+
+@pytest.mark.parametrize("size", [{}, {"coefficient": "300 W/(m^2 K)"}])
+def test_derivatives_where_the_size_follows(size: Tree) -> None:
+    """Central differences of residuals on one mesh, 1e-6, by the temperature held and all unknowns."""
+    tree = train(size)
+    to = {"now": "420 K", "from": "380 K", "to": "450 K"}
+    tree["train"][0]["entry"][-1] = {"heat": {"exchanger": "X", "to": to}}
+    made = programme(tree)
+    x = made.now
+    evaluation, mesh = made.start_mesh(x)
+    assert evaluation.residual_dx is not None and len(made.numbers) == 3
+    for k, number in enumerate(made.numbers):
+        step = 1e-6 * (number.high - number.low)
+        ends = [made.evaluate(x + side * step * np.eye(3)[k], mesh).residual for side in (1.0, -1.0)]
+        assert ends[0] is not None and ends[1] is not None
+        difference = (ends[0] - ends[1]) / (2.0 * step)
+        size_of = np.abs(evaluation.residual_dx[:, k]).max()
+        assert evaluation.residual_dx[:, k] == pytest.approx(difference, abs=1e-6 * size_of)
+
+
+def test_a_held_inlet_with_the_hot_side_before_it() -> None:
+    """Heat goes downstream; equal heat capacities are rounded within 1e-4 of the effectiveness."""
+    tree = train({})
+    tree["train"][0]["entry"].pop()
+    tree["train"][3]["bed 2"]["inlet temperature"] = "500 K"
+    reheat = {"heat": {"exchanger": "X", "holds": "bed 2.inlet temperature"}}
+    cooled = {"cool": {"to": "350 K", "heat to": "unpriced"}}
+    tree["train"][2] = {"gap 1": [{"inject": "B"}, {"cool": {"exchanger": "X"}}, cooled, reheat]}
+    tree["train"][-1] = {"effluent": []}
+    tree["heat levels"] = LEVELS
+    rating = rated(tree)
+    assert rating.number("bed 2.inlet temperature") == 500.0
+    assert rating.number("exchanger X.heat") == pytest.approx(820.0 * 150.0, rel=1e-9)
+    assert rating.number("exchanger X.effectiveness") == pytest.approx(
+        150.0 / (hot_inlet(T_FEED) - 350.0), rel=1e-4
+    )
+
+
+def test_an_area_that_follows_can_be_priced_and_limited() -> None:
+    """A free inlet temperature, area at a price and heat for nothing: the search shuts the exchanger or
+    fills it.
+    """
+    tree = train({"coefficient": "300 W/(m^2 K)"}, aim="most exchanger X.heat")
+    tree["limits"] = {"plot": {"of": "exchanger X.area", "at most": "2 m^2"}}
+    tree["prices"] = {"area": {"of": "exchanger X.area", "costs": "0.01 EUR/(m^2 h)"}}
+    to = {"now": "350 K", "from": "310 K", "to": "600 K"}
+    tree["train"][0]["entry"][-1] = {"heat": {"exchanger": "X", "to": to}}
+    best = rs.optimise(load(tree), starts=3, explain=False).best
+    assert best is not None
+    assert best.number("exchanger X.area") == pytest.approx(2.0, rel=1e-6)
+    assert best.number("money.area") * 3600.0 == pytest.approx(0.02, rel=1e-6)
+    fixed = rated(train({"area": "2 m^2", "coefficient": "300 W/(m^2 K)"}))
+    assert best.number("exchanger X.heat") == pytest.approx(fixed.number("exchanger X.heat"), rel=1e-6)
