@@ -131,7 +131,7 @@ def check_sides(
 
 
 def check_size(name: str, exchanger: ExchangerWritten, held: Sequence[TreePath], findings: Findings) -> None:
-    """By effectiveness, or by area and coefficient, or by what one stream holds; one goes round it at most."""
+    """By effectiveness, by area and coefficient, or by what one stream holds; at most one goes round it."""
     where: TreePath = ("exchangers", name)
     for path in held[1:]:
         findings.add(path, f"both streams of {name} fix its heat", "let one of them follow")

@@ -139,7 +139,7 @@ def test_a_third_bed_saves_catalyst() -> None:
 def least_on_a_grid(
     points: int, centre: tuple[float, float, float], half: tuple[float, float, float]
 ) -> float:
-    """Least volume (L) of two beds over shares of bed 1, its inlets and its conversions, by Gauss quadrature."""
+    """Least volume (L) of two beds over shares, inlets and conversions of bed 1, by Gauss quadrature."""
     lam, T1, X1 = np.meshgrid(
         *(np.linspace(c - h, c + h, points) for c, h in zip(centre, half, strict=True)), indexing="ij"
     )
