@@ -41,6 +41,13 @@ def fixes_heat(step: Step) -> bool:
     return step.holds is not None or step.to is not None or step.heat is not None
 
 
+def out_of_use(case: Case) -> tuple[str, ...]:
+    """Exchangers that exchange nothing: bypassed themselves, or by one of the steps that they are part of."""
+    steps = [step for section in case.train for step in section.steps]
+    passed = {step.exchanger for step in steps if step.bypassed}
+    return tuple(name for name, one in case.exchangers.items() if one.state == "bypassed" or name in passed)
+
+
 @dataclass
 class Sides:
     """An exchanger while it is laid out: its inputs and the operations of its two streams.
@@ -111,7 +118,7 @@ class GapWriter:
         self.most = float(np.dot(flows, warm))
         mixture = np.array(flows) @ compositions
         for name, exchanger in self.case.exchangers.items():
-            if exchanger.state == "running":
+            if name not in out_of_use(self.case):
                 self.sides[name] = self._sides(name, exchanger)
         for name, recycle in self.case.recycles.items():
             self.loops[name] = self._loop(name, recycle, mixture / mixture.sum())

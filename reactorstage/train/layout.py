@@ -15,7 +15,7 @@ from reactorstage.train.chemistry import CaseChemistry
 from reactorstage.train.closures import Closure
 from reactorstage.train.evaluation import SplitGroup
 from reactorstage.train.forms import Linear, at, total
-from reactorstage.train.gap_layout import GapWriter, fixes_heat
+from reactorstage.train.gap_layout import GapWriter, fixes_heat, out_of_use
 from reactorstage.train.inputs import InputBuilder
 
 if TYPE_CHECKING:
@@ -262,7 +262,7 @@ class _Writer:
             returned=self.returned,
             recycles={name: (loop.flow, self.gaps.drawn[name]) for name, loop in self.gaps.loops.items()},
             shut=frozenset(self.shut),
-            bypassed=tuple(name for name, one in self.case.exchangers.items() if one.state == "bypassed"),
+            bypassed=out_of_use(self.case),
         )
         return replace(layout, closures=self.gaps.closures(layout))
 
@@ -291,8 +291,7 @@ class _Writer:
 
     def _unused(self, step: Step) -> bool:
         """A device that is bypassed, or whose exchanger is."""
-        exchanger = self.case.exchangers.get(step.exchanger or "")
-        return step.bypassed or (exchanger is not None and exchanger.state == "bypassed")
+        return step.bypassed or step.exchanger in out_of_use(self.case)
 
     def _other(self, owner: str, step: Step) -> None:
         if step.kind == "remove":

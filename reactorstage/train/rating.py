@@ -104,7 +104,8 @@ def _passed(model: Model, x: Array, tolerance: float) -> tuple[Array, Outcome, F
     known = with_state(model, known, solved)
     if solved.mesh is None:
         outcome = model.passing.adaptive(u, du[:, :0], tolerance)
-        return x, replace(outcome, failure=outcome.failure or known.why or solved.failure), known
+        failure = known.why or outcome.failure or solved.failure
+        return x, replace(outcome, failure=failure, reached=0), known
     x = put(model, x, solved.v)
     u, du = model.inputs.values(x)
     return x, model.passing.frozen(u, np.ascontiguousarray(du[:, :0]), solved.mesh), known

@@ -241,6 +241,13 @@ def test_a_bypassed_exchanger_does_nothing_and_its_limits_rest() -> None:
     assert rating.limits == ()
 
 
+def test_a_step_that_bypasses_takes_its_exchanger_out_of_use() -> None:
+    tree = train({"effectiveness": "60 %"})
+    tree["train"][-1]["effluent"][0]["cool"]["state"] = "bypassed"
+    rating = rated(tree)
+    assert rating.number("bed 1.inlet temperature") == T_FEED and not rating.closed.exchanges
+
+
 @pytest.mark.parametrize("z", [-400.0, -3.0, -1e-3, -1e-4, 0.0, 1e-4, 2e-3, 5.0, 300.0])
 def test_bernoulli_and_its_slope(z: float) -> None:
     """Central difference of the closed form z / (1 - exp(-z)) in extended precision."""
