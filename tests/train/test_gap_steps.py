@@ -9,6 +9,7 @@ import pytest
 import reactorstage as rs
 from reactorstage.optimiser.local import local_solve
 from reactorstage.optimiser.scaling import typical_change
+from reactorstage.report.gaps import gap_table
 from reactorstage.train.result import Rating
 from tests.bed.build import FLUID, HEAD, Tree, load, programme
 from tests.chemistry.published_laws import COLLINA, SO2
@@ -59,6 +60,14 @@ def test_removal_takes_its_share_and_the_rest_reacts_on() -> None:
     assert rating.number("train.made SO3") == pytest.approx(converted * 25.0, rel=1e-9)
     without = rated(contact(COOL, HEAT)).number("train.conversion of SO2")
     assert converted > without + 0.02
+
+
+def test_the_gap_table_tells_what_is_taken_out() -> None:
+    [column] = [
+        one for one in gap_table(rated(contact(COOL, ABSORB, HEAT))).columns if "taken" in one.heading[0]
+    ]
+    flow = rated(contact(COOL, ABSORB, HEAT)).number("gap 1.removed SO3") * 3.6
+    assert [cell.strip() for cell in column.cells] == ["-", f"{flow:.2f}"]
 
 
 def test_what_is_removed_leaves_with_its_enthalpy() -> None:
