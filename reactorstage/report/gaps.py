@@ -46,7 +46,7 @@ def _temperature(
 
 def _taken_out(rating: Rating, places: Sequence[str]) -> Column | None:
     """What removals and draws take out of the stream, where there are any."""
-    out = {place: 0.0 for place in places}
+    out = dict.fromkeys(places, 0.0)
     taking = [step for step in rating.steps if step.kind in ("remove", "draw")]
     for step in taking:
         out[step.owner] -= step.flow
