@@ -20,13 +20,25 @@ from reactorstage.bed.events import (
     slope_within,
     temperature_tangent,
 )
-from reactorstage.bed.integrate import DONE, OTHER_PHASE, TOO_COLD, TOO_HOT, integrate
+from reactorstage.bed.gap_steps import (
+    DRAW,
+    DROP,
+    MORE_THAN_THERE,
+    REMOVE_FLOWS,
+    REMOVE_SHARES,
+    add_drawn,
+    draw,
+    drop_pressure,
+    remove_flows,
+    remove_shares,
+)
+from reactorstage.bed.integrate import DONE, NO_PRESSURE, OTHER_PHASE, TOO_COLD, TOO_HOT, integrate
 from reactorstage.bed.layout import at_factor, at_mass, at_nu, at_partial, at_profile, at_state, work_length
 from reactorstage.bed.state import all_properties, enthalpy_flow, heat_capacity_flow, temperature_of
 from reactorstage.bed.tangents import differentiate
 
 ADD, HOLD, SET_TEMPERATURE, REMOVE_HEAT, ARRIVE, BED, ADD_OTHER = 0, 1, 2, 3, 4, 5, 6
-"""Operations (code, a, b, c); numbers are positions in the input vector u, -1 for none:
+"""Operations (code, a, b, c), with those of `gap_steps`; numbers are positions in u, -1 for none:
 ADD a feed, b flow, c temperature with the feed's pressure behind it; ADD_OTHER likewise a feed that comes in
 the other phase of a cubic equation (a liquid into a vapour: it evaporates); HOLD nothing (its heat follows at
 the next ARRIVE);
@@ -334,6 +346,42 @@ def first_pressure(operations, u, du, row, out):
             break
 
 
+@compiled
+def beyond(chem, T):
+    """Why a record has no temperature: its phase, or the end of the data that lies near."""
+    if np.isnan(T):
+        return OTHER_PHASE
+    return TOO_HOT if chem.T_high <= T else TOO_COLD
+
+
+@inlined
+def gap_step(chem, code, a, b, c, row, out, u, du, moved, work, H_d):
+    """One of the operations of `gap_steps`; its status."""
+    S, there = chem.S, True
+    T = out[row + S + 2, 0]
+    if code in (REMOVE_SHARES, REMOVE_FLOWS):
+        if code == REMOVE_SHARES:
+            remove_shares(S, row, out, u, du, a)
+        else:
+            there = remove_flows(S, row, out, u, du, a)
+        H = enthalpy_at(chem, row, out, T, out[row + S + 2, 1:], moved, work, H_d)
+        if np.isnan(H):
+            return OTHER_PHASE
+        set_row(out, row + S, H, H_d)
+    elif code == DROP:
+        if not drop_pressure(S, row, out, u, du, a):
+            return NO_PRESSURE
+        if not record_temperature(chem, row, out, T, moved, work):
+            return beyond(chem, out[row + S + 2, 0])
+    elif code == DRAW:
+        there = draw(S, row, out, u, du, a)
+    else:
+        add_drawn(S, row, out, u, du, a, b, c)
+        if not record_temperature(chem, row, out, T, moved, work):
+            return beyond(chem, out[row + S + 2, 0])
+    return DONE if there else MORE_THAN_THERE
+
+
 @entry
 def train_pass(
     chem, beds, operations, feeds, u, du, moved, tolerance, frozen, places, stages, reference, out
@@ -401,4 +449,8 @@ def train_pass(
             taken += stages.counts[a]
             if status != DONE:
                 return status, k, depth, calls, taken
+        elif code >= REMOVE_SHARES:
+            status = gap_step(chem, code, a, b, c, row, out, u, du, moved, work, H_d)
+            if status != DONE:
+                return status, k, 0.0, calls, taken
     return DONE, K, 1.0, calls, taken

@@ -6,12 +6,25 @@ from pathlib import Path
 from typing import Any, Literal, TypeVar, cast
 
 from reactorstage.case.fields import Number, Raw
-from reactorstage.case.model import Case, Feed, HeatLevels, Limit, Panel, Section, Source, Split, Step
+from reactorstage.case.model import (
+    Case,
+    Feed,
+    HeatLevels,
+    Limit,
+    Panel,
+    Recycle,
+    Section,
+    Source,
+    Split,
+    Step,
+)
 from reactorstage.case.written import (
     Bed,
     CaseWritten,
+    CoolStep,
     FeedWritten,
     HeatLevelsWritten,
+    HeatStep,
     LimitWritten,
     PanelWritten,
     SplitWritten,
@@ -25,6 +38,7 @@ from reactorstage.case.written_chemistry import (
     Species,
     SpeciesData,
 )
+from reactorstage.case.written_gaps import RecycleSplitWritten
 
 Data = TypeVar("Data", bound=SpeciesData)
 
@@ -45,6 +59,11 @@ def build(written: CaseWritten, source: Source, folder: Path) -> Case:
         reactions={name: _reaction(reaction) for name, reaction in extras(written.reactions).items()},
         feeds={name: _feed(feed) for name, feed in written.feeds.items()},
         train=tuple(_section(index, section) for index, section in enumerate(written.train)),
+        exchangers=written.exchangers,
+        recycles={
+            name: Recycle(flow=one.flow, split=_split(one.split, one.flow) if one.split else None)
+            for name, one in written.recycles.items()
+        },
         heat_levels=_heat_levels(written.heat_levels),
         prices=written.prices,
         limits={label: _limit(limit) for label, limit in written.limits.items()},
@@ -103,14 +122,14 @@ def fractions(composition: dict[str, float | None]) -> dict[str, float]:
     return {name: share / total for name, share in filled.items()}
 
 
-def free_beds(split: SplitWritten) -> tuple[str, ...]:
+def free_beds(split: SplitWritten | RecycleSplitWritten) -> tuple[str, ...]:
     """The beds named in `free`."""
     if split.free == "all":
         return tuple(split.now)
     return cast(tuple[str, ...], split.free or ())
 
 
-def rest_of(split: SplitWritten) -> str | None:
+def rest_of(split: SplitWritten | RecycleSplitWritten) -> str | None:
     """The bed that takes what is left: the one that says so or, when all are free, the last."""
     named = [bed for bed, entry in split.now.items() if entry is None]
     if named:
@@ -118,7 +137,7 @@ def rest_of(split: SplitWritten) -> str | None:
     return list(split.now)[-1] if split.free == "all" else None
 
 
-def _split(split: SplitWritten, flow: Number) -> Split:
+def _split(split: SplitWritten | RecycleSplitWritten, flow: Number) -> Split:
     rest, free = rest_of(split), free_beds(split)
     entries = {bed: entry for bed, entry in split.now.items() if entry is not None}
     kind = next((entry.kind for entry in entries.values()), "fraction")
@@ -141,16 +160,31 @@ def _section(index: int, section: dict[str, Any]) -> Section:
 
 def _step(step: StepWritten) -> Step:
     if step.heat:
-        device = step.heat
-        return Step(
-            kind="heat", holds=device.holds, to=device.to, heat=device.heat_added, levels=device.heat_from
-        )
+        return _device("heat", step.heat, step.heat.heat_added)
     if step.cool:
-        cooler = step.cool
-        return Step(
-            kind="cool", holds=cooler.holds, to=cooler.to, heat=cooler.heat_removed, levels=cooler.heat_to
-        )
+        return _device("cool", step.cool, step.cool.heat_removed)
+    if step.remove:
+        return Step(kind="remove", removed=step.remove)
+    if step.pressure_drop:
+        return Step(kind="pressure drop", pressure=step.pressure_drop)
+    if step.draw:
+        return Step(kind="draw", feed=step.draw)
     return Step(kind="take", feed=step.take) if step.take else Step(kind="inject", feed=step.inject)
+
+
+def _device(kind: Literal["heat", "cool"], device: HeatStep | CoolStep, heat: Number | None) -> Step:
+    return Step(
+        kind=kind,
+        holds=device.holds,
+        to=device.to,
+        heat=heat,
+        levels=device.levels_named or (),
+        exchanger=device.exchanger,
+        area=device.area,
+        coefficient=device.coefficient,
+        fouling=device.fouling_resistance,
+        bypassed=device.state == "bypassed",
+    )
 
 
 def _heat_levels(written: HeatLevelsWritten | None) -> HeatLevels | None:

@@ -76,6 +76,8 @@ def owners_of(case: CaseWritten, reactions: Mapping[str, Reaction]) -> list[str]
         "train",
         "money",
         *(f"feed {name}" for name in case.feeds),
+        *(f"exchanger {name}" for name in case.exchangers),
+        *(f"recycle {name}" for name in case.recycles),
         *(f"level {name}" for name in levels),
         *(f"reaction {name}" for name in reactions),
     ]

@@ -11,6 +11,7 @@ from reactorstage.case.units import display_unit, shown, to_display
 from reactorstage.case.validate import Findings
 from reactorstage.case.word_fields import one_of
 from reactorstage.case.written import CaseWritten, FeedWritten, SplitWritten
+from reactorstage.case.written_gaps import RecycleSplitWritten
 
 CLOSES = 1e-6  # relative: how nearly shares written out must sum to the whole
 ROUNDING = 1e-9
@@ -21,6 +22,9 @@ def check_feeds(case: CaseWritten, findings: Findings) -> None:
         check_composition(name, feed, case, findings)
         if feed.split and feed.split.now:
             check_split(name, feed.split, feed.flow, findings)
+    for name, recycle in case.recycles.items():
+        if recycle.split and recycle.split.now:
+            check_split(name, recycle.split, recycle.flow, findings, "recycles")
 
 
 def check_composition(name: str, feed: FeedWritten, case: CaseWritten, findings: Findings) -> None:
@@ -64,10 +68,16 @@ def check_sum(
         )
 
 
-def check_split(name: str, split: SplitWritten, flow: Number, findings: Findings) -> None:
-    path: TreePath = ("feeds", name, "split", "now")
+def check_split(
+    name: str,
+    split: SplitWritten | RecycleSplitWritten,
+    flow: Number,
+    findings: Findings,
+    group: str = "feeds",
+) -> None:
+    path: TreePath = (group, name, "split", "now")
     entries = {bed: entry for bed, entry in split.now.items() if entry is not None}
-    check_free(name, split, flow, findings)
+    check_free(name, split, flow, findings, group)
     if not one_rest(split.now, path, findings):
         return
     wrong = [bed for bed, entry in entries.items() if entry.kind not in (flow.kind, "fraction")]
@@ -87,9 +97,11 @@ def check_split(name: str, split: SplitWritten, flow: Number, findings: Findings
         check_sum(f"the split of {name}", split.now, known, whole, kind, path, findings)
 
 
-def check_free(name: str, split: SplitWritten, flow: Number, findings: Findings) -> None:
+def check_free(
+    name: str, split: SplitWritten | RecycleSplitWritten, flow: Number, findings: Findings, group: str
+) -> None:
     """What `free` names must be there, and something must take what is left."""
-    path: TreePath = ("feeds", name, "split")
+    path: TreePath = (group, name, "split")
     named, rest = free_beds(split), rest_of(split)
     for bed in named:
         if bed not in split.now:

@@ -9,6 +9,7 @@ from dataclasses import dataclass
 from itertools import pairwise
 
 from reactorstage.case.build import extras
+from reactorstage.case.checks_gaps import check_gaps
 from reactorstage.case.fields import Activities, Number
 from reactorstage.case.marks import TreePath
 from reactorstage.case.units import shown
@@ -21,11 +22,13 @@ from reactorstage.case.written import (
     Bed,
     CaseWritten,
     CoolStep,
+    FeedWritten,
     HeatStep,
     Level,
     StepWritten,
 )
 from reactorstage.case.written_chemistry import Reaction
+from reactorstage.case.written_gaps import RecycleWritten
 
 
 @dataclass(frozen=True)
@@ -68,6 +71,7 @@ def check_train(case: CaseWritten, reactions: Mapping[str, Reaction], findings: 
                 check_device(part, path, step, case, beds, findings)
         check_behind_holder(part, findings)
     check_held(parts, beds, findings)
+    check_gaps(parts, case, findings)
     check_beds(beds, reactions, findings)
 
 
@@ -125,16 +129,20 @@ def check_takes(parts: list[Part], findings: Findings) -> None:
 
 def check_uses(parts: list[Part], case: CaseWritten, findings: Findings) -> None:
     """Feeds named by steps, and steps demanded by feeds."""
-    uses: dict[str, list[tuple[TreePath, str]]] = {name: [] for name in case.feeds}
+    sources: dict[str, FeedWritten | RecycleWritten] = {**case.recycles, **case.feeds}
+    uses: dict[str, list[tuple[TreePath, str]]] = {name: [] for name in sources}
     for part in parts:
         for path, step in part.steps:
             key, name = ("take", step.take) if step.take is not None else ("inject", step.inject)
-            if name and name in uses:
+            if name and name in uses and (key == "inject" or name in case.feeds):
                 uses[name].append(((*path, key), part.next_bed))
             elif name and case.feeds:
-                findings.add((*path, key), f"there is no feed {shown(name)}", one_of(name, list(case.feeds)))
+                known = list(sources) if key == "inject" else list(case.feeds)
+                findings.add((*path, key), f"there is no feed {shown(name)}", one_of(name, known))
     beds = [part.owner for part in parts if isinstance(part.body, Bed)]
-    for name, feed in case.feeds.items():
+    for name, feed in sources.items():
+        if not uses[name] and name in case.recycles:
+            continue
         if not uses[name]:
             findings.add(
                 ("feeds", name), f"{name} is never used", f"add `- inject: {name}` to the train", True
@@ -145,16 +153,22 @@ def check_uses(parts: list[Part], case: CaseWritten, findings: Findings) -> None
                     path, f"{name} is used a second time", f"say in a `split` of {name} how it is divided"
                 )
         elif feed.split.now:
-            check_split_uses(name, list(feed.split.now), uses[name], beds, findings)
+            group = "feeds" if name in case.feeds else "recycles"
+            check_split_uses(name, list(feed.split.now), uses[name], beds, findings, group)
 
 
 def check_split_uses(
-    name: str, split: list[str], uses: list[tuple[TreePath, str]], beds: list[str], findings: Findings
+    name: str,
+    split: list[str],
+    uses: list[tuple[TreePath, str]],
+    beds: list[str],
+    findings: Findings,
+    group: str = "feeds",
 ) -> None:
     """Every share has its step and every step its share."""
     served = [bed for _, bed in uses]
     for bed in split:
-        path: TreePath = ("feeds", name, "split", "now", bed)
+        path: TreePath = (group, name, "split", "now", bed)
         if bed not in beds:
             findings.add(path, f"there is no {shown(bed)} in the train", one_of(bed, beds), True)
         elif bed not in served:
@@ -180,16 +194,23 @@ def check_device(
     """A heater or cooler: given in one way, and served by levels of its kind."""
     verb = "heat" if step.heat else "cool"
     device = step.heat or step.cool
-    if device is None or device.levels_named == ():  # empty: it could not be read
+    if device is None or device.levels_named == () or not device.model_fields_set:  # it could not be read
         return
     path = (*path, verb)
-    ways = ("holds", "to", device.heat_key)
-    found = given(device)
+    ways = ("holds", "to", device.heat_key, "area", "exchanger")
+    found = [way for way in given(device) if way != "exchanger"] or given(device)
     if len(found) != 1:
         what = "nothing says how much" if not found else f"{' and '.join(found)} are given together"
         findings.add(path, f"{what} in this `{verb}`", f"give exactly one of {', '.join(ways)}", True)
     if device.holds:
         check_holds(part, (*path, "holds"), device.holds, beds, findings)
+    if device.levels_named is not None and device.exchanger is not None:
+        message = "heat of an exchanger goes to no level"
+        findings.add((*path, device.levels_key), message, "leave it out, or leave the exchanger out")
+    elif device.levels_named is None and device.exchanger is None:
+        words = str(type(device).model_fields[device.levels_key.replace(" ", "_")].description)
+        message = f"{device.levels_key} is missing in {verb}"
+        findings.add(path, message, f"{device.levels_key}: {words}", True)
     check_levels_of(path, device, case, findings)
 
 
@@ -198,6 +219,9 @@ def check_behind_holder(part: Part, findings: Findings) -> None:
     held = False
     for path, step in part.steps:
         device = step.heat or step.cool
+        if held and step.remove:
+            message = f"the inlet of {part.next_bed} is held by an earlier device, before this removal"
+            findings.add((*path, "remove"), message, "let a device behind it hold the inlet")
         if device is None:
             continue
         if held and device.to is not None:
@@ -232,7 +256,7 @@ def check_levels_of(
     key, heats = device.levels_key, isinstance(device, HeatStep)
     levels: dict[str, Level] = extras(case.heat_levels) if case.heat_levels else {}
     names = device.levels_named
-    if names == UNPRICED:
+    if names is None or names == UNPRICED:
         return
     fitting = [name for name, level in levels.items() if level.heats_up_to is None or heats]
     fitting = [name for name in fitting if levels[name].cools_down_to is None or not heats]
@@ -262,15 +286,17 @@ def _unreadable(case: CaseWritten) -> bool:
 def may_hold(step: StepWritten) -> bool:
     """True for a device that holds something, or whose way of being given was reported as missing."""
     device = step.heat or step.cool
-    if device is None:
-        return False
+    if device is None or not device.model_fields_set:
+        return device is not None
     return device.holds is not None or device.levels_named == () or not given(device)
 
 
 def given(device: HeatStep | CoolStep) -> list[str]:
     """Which of its possible keys say how much a device heats or cools."""
     return [
-        way for way in ("holds", "to", device.heat_key) if way.replace(" ", "_") in device.model_fields_set
+        way
+        for way in ("holds", "to", device.heat_key, "area", "exchanger")
+        if way.replace(" ", "_") in device.model_fields_set
     ]
 
 

@@ -26,6 +26,7 @@ from reactorstage.case.written_chemistry import (
     Validity,
 )
 from reactorstage.case.written_fluid import CriticalData, Fluid, LiquidDensity
+from reactorstage.case.written_gaps import ExchangerWritten as Exchanger
 from reactorstage.case.written_rates import (
     Constant,
     Effectiveness,
@@ -47,6 +48,7 @@ __all__ = [
     "DepthPoint",
     "Effectiveness",
     "EquilibriumConstant",
+    "Exchanger",
     "Factor",
     "Feed",
     "Fluid",
@@ -61,6 +63,7 @@ __all__ = [
     "Price",
     "Raw",
     "Reaction",
+    "Recycle",
     "Section",
     "Source",
     "Species",
@@ -116,20 +119,37 @@ class Feed(Frozen):
     phase: str | None = None
 
 
+class Recycle(Frozen):
+    """A stream drawn off downstream and injected upstream."""
+
+    flow: Number
+    split: Split | None = None
+
+
 class Step(Frozen):
     """One step of the pipe.
 
     kind: what it does; feed: of take and inject; holds, to [K], heat [W, removed by cool, added by heat]: the
     one that is given of a heater or cooler; levels: names of heat levels, or one of the words
-    "every cooling level", "every heating level", "unpriced" (empty for take and inject).
+    "every cooling level", "every heating level", "unpriced" (empty for all other steps); exchanger: its
+    name; area with coefficient and fouling (SI) where heat follows from these; bypassed: it does nothing;
+    removed: share or flow (mol/s) by species; pressure: Pa that a pressure drop takes. feed names the recycle
+    of draw, and may name one for inject.
     """
 
-    kind: Literal["take", "inject", "heat", "cool"]
+    kind: Literal["take", "inject", "heat", "cool", "remove", "pressure drop", "draw"]
     feed: str | None = None
     holds: str | None = None
     to: Number | None = None
     heat: Number | None = None
     levels: tuple[str, ...] | str = ()
+    exchanger: str | None = None
+    area: Number | None = None
+    coefficient: Number | None = None
+    fouling: Number | None = None
+    bypassed: bool = False
+    removed: dict[str, Number] = {}
+    pressure: Number | None = None
 
 
 class Section(Frozen):
@@ -188,6 +208,8 @@ class Case(Frozen):
     reactions: dict[str, Reaction]
     feeds: dict[str, Feed]
     train: tuple[Section, ...]
+    exchangers: dict[str, Exchanger] = {}
+    recycles: dict[str, Recycle] = {}
     heat_levels: HeatLevels | None = None
     prices: dict[str, Price] = {}
     limits: dict[str, Limit] = {}

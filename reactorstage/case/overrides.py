@@ -15,11 +15,15 @@ from reactorstage.case.resolve import BED, branch, get, put, sections, transplan
 from reactorstage.case.units import shown
 from reactorstage.case.word_fields import EVERY_REACTION, REST
 from reactorstage.case.written import EveryBed
+from reactorstage.case.written_gaps import ExchangerWritten
 from reactorstage.errors import CallError
 
 OPTION = "--set"
 LIMIT_KEYS = ("at most", "at least", "keep away", "soft")
 OTHER_PRICE = {"costs": "earns", "earns": "costs"}
+DEVICES = {"heat": "heater", "cool": "cooler"}
+AREA_KEYS = ("area", "coefficient", "fouling resistance")
+EXCHANGER_KEYS = tuple(str(one.alias) for one in ExchangerWritten.model_fields.values())
 Targets = dict[str, list[TreePath]]
 
 
@@ -52,7 +56,7 @@ def settable(tree: Tree) -> Targets:
         targets |= feed_names(tree, name)
     targets |= entry_names(tree, "limits", "limit", LIMIT_KEYS)
     targets |= entry_names(tree, "prices", "price", tuple(OTHER_PRICE))
-    targets |= level_names(tree)
+    targets |= level_names(tree) | closure_names(tree)
     return targets
 
 
@@ -84,9 +88,31 @@ def device_names(tree: Tree, path: TreePath) -> Targets:
                     targets[f"{path[-1]}.{name}"] = [(*device, key)]
             if get(tree, (*device, "to")) is not None and isinstance(steps, list) and i == len(steps) - 1:
                 targets[f"{path[-1]}.exit temperature"] = [(*device, "to")]
+            if verb in DEVICES:
+                targets.setdefault(f"{path[-1]}.{DEVICES[verb]} state", []).append((*device, "state"))
+            targets |= step_names(tree, device, verb)
             if get(tree, (*device, "heat added")) is not None:
                 targets[f"{path[-1]}.heat added"] = [(*device, "heat added")]
     return targets
+
+
+def step_names(tree: Tree, path: TreePath, verb: str) -> Targets:
+    """Area and fouling of a device, what a removal takes and a pressure drop."""
+    owner = path[-3]
+    if verb == "pressure drop":
+        return {f"{owner}.pressure drop": [path]}
+    if verb == "remove":
+        words = {name: removal_words(get(tree, (*path, name))) for name in keys(tree, *path)}
+        return {f"{owner}.{words[name]} {name}": [(*path, name)] for name in words}
+    if verb not in DEVICES or get(tree, (*path, "area")) is None:
+        return {}
+    return {f"{owner}.{DEVICES[verb]} {key}": [(*path, key)] for key in AREA_KEYS}
+
+
+def removal_words(value: Tree) -> str:
+    """How the number of a removal is called: a share or a flow."""
+    text = str(get(value, ("now",)) if isinstance(value, dict) else value)
+    return "flow removed of" if "/" in text else "share removed of"
 
 
 def feed_names(tree: Tree, feed: str) -> Targets:
@@ -97,7 +123,22 @@ def feed_names(tree: Tree, feed: str) -> Targets:
         for bed in split
         for words in ("injected", "share of")
     }
-    return entries | {f"feed {feed}.{key}": [("feeds", feed, key)] for key in ("flow", "temperature")}
+    own = ("flow", "temperature", "composition")
+    return entries | {f"feed {feed}.{key}": [("feeds", feed, key)] for key in own}
+
+
+def closure_names(tree: Tree) -> Targets:
+    """Everything of exchangers, and flow and division of recycles."""
+    targets: Targets = {}
+    for name in keys(tree, "exchangers"):
+        for key in EXCHANGER_KEYS:
+            targets[f"exchanger {name}.{key}"] = [("exchangers", name, key)]
+    for name in keys(tree, "recycles"):
+        targets[f"recycle {name}.flow"] = [("recycles", name, "flow")]
+        for bed in keys(tree, "recycles", name, "split", "now"):
+            for words in ("injected", "share of"):
+                targets[f"{bed}.{words} {name}"] = [("recycles", name, "split", "now", bed)]
+    return targets
 
 
 def entry_names(tree: Tree, group: str, owner: str, names: Sequence[str]) -> Targets:

@@ -38,10 +38,12 @@ from reactorstage.case.word_fields import (
 from reactorstage.case.words import Bound, Name, PriceText, Words, mergeable
 from reactorstage.case.written_chemistry import ReactionsWritten, Species
 from reactorstage.case.written_fluid import Fluid, PhaseWord
+from reactorstage.case.written_gaps import Device, ExchangerWritten, RecycleWritten, Removed
 
 FORMAT = 1
 EVERY_BED, EVERY_GAP = "every bed", "every gap"
 EVERY_COOLING_LEVEL, EVERY_HEATING_LEVEL, UNPRICED = "every cooling level", "every heating level", "unpriced"
+INJECTION_ADVICE = "write shut, or moved to and a bed, as in moved to bed 3"
 BED_NAME = r"bed [1-9][0-9]*"
 STEPS_NAME = r"(entry|effluent|gap [1-9][0-9]*)"
 
@@ -76,8 +78,15 @@ class FeedWritten(Words):
     split: SplitWritten | None = Field(None, description="the only place where a division among beds stands")
 
 
-class HeatStep(Words):
-    """A heater: holds an inlet temperature, or is given by its exit temperature or its heat."""
+def levels_or_exchanger(key: str) -> dict[str, Any]:
+    """A device has levels for its heat, or is one side of an exchanger."""
+    return {"anyOf": [{"required": [key]}, {"required": ["exchanger"]}]}
+
+
+class HeatStep(Device):
+    """A heater: holds an inlet temperature, or given by exit temperature, heat, area, or exchanger."""
+
+    model_config = ConfigDict(json_schema_extra=levels_or_exchanger("heat from"))
 
     holds: Name | None = Field(
         None, description="the inlet temperature that it makes, as in bed 1.inlet temperature"
@@ -86,19 +95,21 @@ class HeatStep(Words):
         None, description="temperature behind it"
     )
     heat_added: Annotated[Number, Free("power", least=0.0)] | None = Field(None, description="heat given")
-    heat_from: Annotated[tuple[str, ...] | str, Names(EVERY_HEATING_LEVEL, UNPRICED)] = Field(
-        description="heat level, list of them, `every heating level` or `unpriced`"
+    heat_from: Annotated[tuple[str, ...] | str, Names(EVERY_HEATING_LEVEL, UNPRICED)] | None = Field(
+        None, description="heat level, list of them, `every heating level` or `unpriced`"
     )
     heat_key: ClassVar[str] = "heat added"
     levels_key: ClassVar[str] = "heat from"
 
     @property
-    def levels_named(self) -> tuple[str, ...] | str:
+    def levels_named(self) -> tuple[str, ...] | str | None:
         return self.heat_from
 
 
-class CoolStep(Words):
-    """A cooler: holds an inlet temperature, or is given by its exit temperature or its heat."""
+class CoolStep(Device):
+    """A cooler: holds an inlet temperature, or given by exit temperature, heat, area, or exchanger."""
+
+    model_config = ConfigDict(json_schema_extra=levels_or_exchanger("heat to"))
 
     holds: Name | None = Field(
         None, description="the inlet temperature that it makes, as in bed 2.inlet temperature"
@@ -109,19 +120,19 @@ class CoolStep(Words):
     heat_removed: Annotated[Number, Free("power", least=0.0)] | None = Field(
         None, description="heat taken out"
     )
-    heat_to: Annotated[tuple[str, ...] | str, Names(EVERY_COOLING_LEVEL, UNPRICED)] = Field(
-        description="heat level, list of them, `every cooling level` or `unpriced`"
+    heat_to: Annotated[tuple[str, ...] | str, Names(EVERY_COOLING_LEVEL, UNPRICED)] | None = Field(
+        None, description="heat level, list of them, `every cooling level` or `unpriced`"
     )
     heat_key: ClassVar[str] = "heat removed"
     levels_key: ClassVar[str] = "heat to"
 
     @property
-    def levels_named(self) -> tuple[str, ...] | str:
+    def levels_named(self) -> tuple[str, ...] | str | None:
         return self.heat_to
 
 
 class StepWritten(Words):
-    """One step of the pipe: exactly one of take, inject, heat, cool."""
+    """One step of the pipe: exactly one of take, inject, heat, cool, remove, pressure drop, draw."""
 
     model_config = ConfigDict(json_schema_extra={"minProperties": 1, "maxProperties": 1})
 
@@ -129,12 +140,20 @@ class StepWritten(Words):
     inject: Name | None = Field(None, description="a feed that is mixed in; how much stands in its split")
     heat: HeatStep | None = Field(None, description="a heater")
     cool: CoolStep | None = Field(None, description="a cooler")
+    remove: Annotated[dict[str, Removed], Field(min_length=1)] | None = Field(
+        None, description="shares or flows of species that leave here at the temperature of the stream"
+    )
+    pressure_drop: Annotated[Number, Free("pressure difference", least=0.0)] | None = Field(
+        None, description="pressure lost here"
+    )
+    draw: Name | None = Field(None, description="a recycle that is drawn off here; how much stands in it")
 
     @model_validator(mode="after")
     def _one(self) -> StepWritten:
         if len(self.model_fields_set) != 1:
             raise problem(
-                "a step has exactly one of take, inject, heat, cool", "begin each step with its own `- `"
+                "a step has exactly one of take, inject, heat, cool, remove, pressure drop, draw",
+                "begin each step with its own `- `",
             )
         return self
 
@@ -184,8 +203,15 @@ class EveryBed(Words):
     design_temperature: Annotated[float, In("temperature", above=0.0)] | None = Field(
         None, description="of the vessel"
     )
-    state: Annotated[Literal["running", "bypassed"], Choice("running", "bypassed")] = Field(
-        "running", description="a bypassed bed lets the stream pass unchanged"
+    state: Annotated[
+        Literal["running", "bypassed", "out of service"], Choice("running", "bypassed", "out of service")
+    ] = Field(
+        "running",
+        description="a bypassed bed lets the stream pass unchanged, injection included; one that is out of "
+        "service also says what becomes of `its injection`, and limits on every bed leave it out",
+    )
+    its_injection: Annotated[str, TextOf("shut|moved to bed [1-9][0-9]*", INJECTION_ADVICE)] | None = Field(
+        None, description="what becomes of it when the bed is out of service: shut, or moved to bed 3"
     )
 
 
@@ -332,6 +358,12 @@ class CaseWritten(Words):
     feeds: dict[str, FeedWritten] = Field(description="streams that enter, by name", min_length=1)
     train: tuple[SectionWritten, ...] = Field(
         description="entry, bed 1, gap 1, bed 2 ... effluent, in flow order; steps in the order of the pipe"
+    )
+    exchangers: dict[str, ExchangerWritten] = Field(
+        {}, description="exchange of heat between streams of the train, by name"
+    )
+    recycles: dict[str, RecycleWritten] = Field(
+        {}, description="streams drawn off behind the beds and injected again, by name"
     )
     every_bed: EveryBed | None = Field(None, description="written once; each bed may say otherwise")
     heat_levels: HeatLevelsWritten | None = Field(None, description="where heat goes to and comes from")

@@ -64,6 +64,14 @@ class Mixture:
         own = residual_capacity(self.fluid.equation, F, T, p, Z)
         return np.asarray(h - R_GAS * T * T * slopes.T), capacity + own
 
+    def molar(self, y: Floats, T: float, p: float, phase: str | None = None) -> tuple[float, float]:
+        """Enthalpy, J/mol, and heat capacity, J/(mol K), of mole fractions (S,), in a phase as `enthalpy`."""
+        fluid = self.fluid
+        if isinstance(fluid, CubicStream) and phase not in (None, fluid.phase):
+            other: Phase = "liquid" if fluid.phase == "vapour" else "vapour"
+            return Mixture(self.table, CubicStream(fluid.equation, other)).molar(y, T, p)
+        return float(self.enthalpy(y, T, p)), self.heats(y, T, p)[1]
+
     def volume(self, F: Array, T: Scalar, p: Scalar) -> Any:
         """Volume flow, m3/s."""
         if isinstance(self.fluid, CubicStream):

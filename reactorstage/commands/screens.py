@@ -12,6 +12,7 @@ from reactorstage.report import bounds, sentences
 from reactorstage.report.accounts import accounts, heat_words
 from reactorstage.report.aim import aim_of
 from reactorstage.report.beds import bed_table
+from reactorstage.report.closures import exchanger_table, residual_text
 from reactorstage.report.display import counted, unit
 from reactorstage.report.gaps import gap_table
 from reactorstage.report.moves import first_move_text
@@ -31,6 +32,7 @@ def rating_lines(rating: Rating, seconds: float, width: int) -> list[str]:
         *_failure(rating, width),
         *_block(table_lines(bed_table(rating), width), paragraph(sentences.out_line(rating), width, 5)),
         *_block(table_lines(gap_table(rating), width)),
+        *_block(table_lines(exchanger_table(rating), width)),
         *_block(table_lines(bounds.rating_table(rating), width), _more_limits(rating)),
         *_block(_money(rating, None, width)),
         *_numbered(sentences.warnings(rating), width),
@@ -51,6 +53,7 @@ def optimum_lines(outcome: Optimisation, width: int) -> list[str]:
             table_lines(bed_table(best, today), width), paragraph(sentences.out_line(best, today), width, 5)
         ),
         *_block(table_lines(gap_table(best, today), width)),
+        *_block(table_lines(exchanger_table(best), width)),
         *_block(_held(outcome, best, width)),
         *_money(best, today, width),
         *_after_money(outcome, best, width),
@@ -81,7 +84,8 @@ def _limits(count: int) -> str:
 def _closure(rating: Rating) -> str:
     if rating.failure:
         return f"{counted(len(rating.profiles), 'bed')} rated before the failure"
-    return f"atoms {_small(rating.atoms)}, energy {_small(rating.energy)}"
+    parts = [f"atoms {_small(rating.atoms)}", f"energy {_small(rating.energy)}", residual_text(rating.closed)]
+    return ", ".join(part for part in parts if part)
 
 
 def _small(error: float) -> str:

@@ -66,7 +66,7 @@ def numbers_apart(programme: Programme, best: Array, other: Array, show: Show) -
     found = []
     for k, number in enumerate(programme.numbers):
         apart = abs(float(other[k] - best[k])) / max(number.high - number.low, 1e-300)
-        if apart > SAME_NUMBER and number.role not in ("split", "internal"):
+        if apart > SAME_NUMBER and number.role != "split" and not number.internal:
             (there, here), unit = show([float(other[k]), float(best[k])], number.kind)
             found.append((apart, f"{called(number)} at {there} instead of {here}{unit}"))
     return found

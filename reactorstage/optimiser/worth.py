@@ -43,12 +43,13 @@ def moves(limits: Sequence[LimitRow], at_work: Sequence[int]) -> list[Move]:
 def asked_for(programme: Programme, answer: Answer) -> list[int]:
     """Limits at work whose worth means something.
 
-    Left out are implied limits that move with internal numbers: they keep books, nobody can relax them.
+    Left out are implied limits that move with numbers that keep books: they keep books too, nobody can relax
+    them.
     """
     evaluation = programme.final(answer.x)
     if not evaluation.ok:
         return []
-    internal = np.array([number.internal for number in programme.numbers], dtype=bool)
+    internal = np.array([number.book for number in programme.numbers], dtype=bool)
     books = np.any(needed(evaluation.margin_dx)[:, internal] != 0.0, axis=1)
     return [k for k in answer.at_work if not (programme.limits[k].implied and books[k])]
 

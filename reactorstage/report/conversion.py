@@ -18,7 +18,7 @@ from reactorstage.chemistry.rates import rates
 from reactorstage.chemistry.reaction import independent_count
 from reactorstage.train.chemistry import CaseChemistry
 from reactorstage.train.layout import mole_fractions
-from reactorstage.train.result import Array, Profile, Rating
+from reactorstage.train.result import Array, Profile, Rating, StepState
 
 POINTS_T, POINTS_X = 56, 60
 
@@ -99,19 +99,21 @@ def _gap(rating: Rating, before: Profile, F: float, fed: float) -> list[Leg]:
     for step in rating.steps:
         if step.owner != owner or step.T_before is None:
             continue
-        came = step.flow * _share(rating, step.what) if step.kind == "inject" else 0.0
+        came = step.flow * _share(rating, step) if step.kind in ("inject", "recycle") else 0.0
         ends = [1.0 - F / fed if fed > 0.0 else np.nan, np.nan]
         F, fed = F + came, fed + came
         ends[1] = 1.0 - F / fed if fed > 0.0 else np.nan
-        kind = "injection" if step.kind == "inject" else "exchanger"
+        kind = "injection" if step.kind in ("inject", "recycle") else "exchanger"
         legs.append(Leg(owner, kind, np.array([step.T_before, step.T_after]), np.array(ends)))
     return legs
 
 
-def _share(rating: Rating, feed: str) -> float:
-    """Mole fraction of the main reactant in a feed."""
+def _share(rating: Rating, step: StepState) -> float:
+    """Mole fraction of the main reactant in a feed or a recycle."""
     assert rating.chemistry is not None
-    fractions = mole_fractions(rating.case, rating.chemistry, rating.case.feeds[feed])
+    if step.kind == "recycle":
+        return rating.number(f"recycle {step.what}.mole fraction of {rating.main_reactant}") or 0.0
+    fractions = mole_fractions(rating.case, rating.chemistry, rating.case.feeds[step.what])
     return float(fractions[rating.species.index(rating.main_reactant)])
 
 

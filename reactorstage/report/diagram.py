@@ -291,6 +291,8 @@ def explained(rating: Rating, behind: Background | None) -> list[str]:
     if behind is None:
         return [f"No reversible reaction uses {name}: there is no line of equilibrium."]
     feed = f"all feeds together at {told(whole_feed(rating).p, 'pressure')}"
+    if any(step.kind == "remove" for step in rating.steps):
+        feed += " and nothing removed"
     if behind.rates is not None:
         return [f"Equilibrium, best rate and equal rates: for {feed}, catalyst activity 1."]
     return [

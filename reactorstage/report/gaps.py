@@ -24,6 +24,7 @@ def gap_table(now: Rating, was: Rating | None = None) -> Table:
             _temperature(now, places, "inlet temperature", ("from", degc)),
             _temperature(now, places, "temperature after injection", ("after", "injection"), rank=1),
             _temperature(now, places, "temperature after exchanger", ("after", "exchanger")),
+            _taken_out(now, places),
             *paired(now, before, "heat removed", ("heat removed,", power), 3, ranks=(0, 2)),
             _money(now, places),
             _destinations(now, places),
@@ -41,6 +42,16 @@ def _temperature(
 ) -> Column:
     values = values_of(rating, places, word)
     return Column(heading, marked(values, 1, signs_of(rating, places, word)), rank)
+
+
+def _taken_out(rating: Rating, places: Sequence[str]) -> Column | None:
+    """What removals and draws take out of the stream, where there are any."""
+    out = dict.fromkeys(places, 0.0)
+    taking = [step for step in rating.steps if step.kind in ("remove", "draw")]
+    for step in taking:
+        out[step.owner] -= step.flow
+    cells = tuple(readable(shown(flow, "molar flow")) if flow else "-" for flow in out.values())
+    return Column(("taken out,", unit("molar flow")), cells) if taking else None
 
 
 def _money(rating: Rating, places: Sequence[str]) -> Column | None:

@@ -17,6 +17,7 @@ from reactorstage.optimiser.programme import FreeNumber, Programme
 from reactorstage.optimiser.result import Answer, EqualSplit, Optimum, StartRecord, Worth
 from reactorstage.report.aim import Aim, aim_of
 from reactorstage.report.cautions import FULL
+from reactorstage.report.closures import closures_json
 from reactorstage.report.display import difference, difference_kind, in_units, money, shown, unit
 from reactorstage.report.explained_json import explanation_json, reach_json
 from reactorstage.report.unit_sets import TRADE
@@ -193,6 +194,7 @@ def _setting(rating: Rating) -> Json:
         "heat": [_sale(sale, currency) for sale in rating.heat],
         "unpriced heat": list(rating.unpriced),
         "closure": {"atoms": rating.atoms, "energy": rating.energy},
+        **({"closures": closures_json(rating.closed)} if rating.closed else {}),
     }
 
 

@@ -14,8 +14,10 @@ from numpy.typing import ArrayLike, NDArray
 from reactorstage.bed.data import COMPOSITION
 from reactorstage.bed.pack import shift_kinetics
 from reactorstage.errors import CallError
+from reactorstage.train.closing import closed, put
 from reactorstage.train.parameters import FormRows, Parameter, pick, quick_forms, shifted
 from reactorstage.train.passing import SEARCH
+from reactorstage.train.states import states
 
 if TYPE_CHECKING:
     from reactorstage.train.programme import Model, TrainProgramme
@@ -56,7 +58,8 @@ def rate_many(
     settings gives (N,) values for names: numbers of the case in SI units, or parameters of
     `reactorstage.train.parameters`, for which a value is a shift in SI units. Names that are not given
     stand as in the case. Approaches to equilibrium are found only when asked for by name; internal numbers
-    of the heat ladder are found anew where the case has any. jobs are threads (all processors when None).
+    of the heat ladder are found anew where the case has any. A train that is closed on itself is rated at its
+    hottest state. jobs are threads (all processors when None).
     Raises CallError for unknown names or unequal lengths.
     """
     columns, count = _columns(programme.model, settings)
@@ -105,11 +108,21 @@ def _one(
         if one.kind < 0:
             v[one.index] = amount
     x[: len(model.inputs.free)] = v[model.inputs.free]
+    kinetics = {(one.kind, one.index): amount * one.factor for one, amount in moved.items()}
+    packed = shift_kinetics(model.passing.chemistry, kinetics) if moved else None
+    if model.layout.closures:
+        known = states(model, v, packed)
+        if not known.states:
+            return np.nan, known.why
+        v = (
+            known.states[0].v
+            if tolerance >= SEARCH
+            else closed(model, known.states[0].v, tolerance, packed).v
+        )
+        x = put(model, x, v)
     if len(x) > len(model.inputs.free):
         x = programme.complete(x)
     u, _ = model.inputs.of_numbers(v)
-    kinetics = {(one.kind, one.index): amount * one.factor for one, amount in moved.items()}
-    packed = shift_kinetics(model.passing.chemistry, kinetics) if moved else None
     nothing = np.zeros((len(u), 0))
     outcome = model.passing.adaptive(u, nothing, tolerance, chemistry=packed)
     if outcome.failure:

@@ -1,7 +1,7 @@
 """Numbers, limits and one evaluation with exact derivatives: what a compiled train gives to the optimiser.
 
 Everything is in SI units and money per second. M limits, D numbers (user numbers first, then internal
-ones such as heat sent to a level or the slack of a soft limit), E equations.
+ones: unknowns of closures, heat sent to a level, slacks of soft limits), E equations.
 """
 
 from __future__ import annotations
@@ -18,8 +18,8 @@ Array = NDArray[np.float64]
 class FreeNumber:
     """One number of x with its search range.
 
-    role is "split", "inlet temperature", "internal" or "other"; feed, bed and total are set for splits
-    (bed counts from 1; total is the flow that the whole split sums to), bed for inlet temperatures.
+    role is "split", "inlet temperature", "closure", "internal" or "other"; feed, bed and total are set for
+    splits (bed counts from 1; total is the flow that the whole split sums to), bed for inlet temperatures.
     """
 
     name: str
@@ -34,6 +34,12 @@ class FreeNumber:
 
     @property
     def internal(self) -> bool:
+        """Whether it is no number of the user's: an unknown of a closure, or one that keeps books."""
+        return self.role in ("internal", "closure")
+
+    @property
+    def book(self) -> bool:
+        """Whether only money and limits depend on it, not the train."""
         return self.role == "internal"
 
 

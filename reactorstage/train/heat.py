@@ -131,6 +131,8 @@ def build_ladder(
     }
     for place in layout.places:
         for device in place.devices:
+            if device.exchanger:
+                continue
             if device.levels == "unpriced":
                 ladder.unpriced.append(place.owner)
                 continue
@@ -210,7 +212,7 @@ def _cool(ladder: Ladder, stream: _Stream, rungs: Sequence[Rung]) -> None:
     owner, (low, high) = stream.place.owner, stream.span
     limited = any(rung.capacity is not None for rung in rungs)
     kept = list(rungs) if limited else _improving(rungs)
-    if low < kept[0].reach:
+    if low < kept[0].reach and stream.device.given != "area":
         ladder.reach.append((stream.device, owner, kept[0].reach, "at least", kept[0].level))
     above = [stream.removed]
     for rung in kept[1:]:
@@ -243,7 +245,7 @@ def _heat(ladder: Ladder, stream: _Stream, rungs: Sequence[Rung]) -> None:
     """Heat taken from the rungs of a heater: cheapest first, hotter ones for what lies above their reach."""
     owner, high = stream.place.owner, stream.span[1]
     hottest = max(rungs, key=lambda rung: rung.reach)
-    if high > hottest.reach:
+    if high > hottest.reach and stream.device.given != "area":
         ladder.reach.append((stream.device, owner, hottest.reach, "at most", hottest.level))
     limited = any(rung.capacity is not None for rung in rungs)
     kept = list(rungs) if limited else _rising(rungs)

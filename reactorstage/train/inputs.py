@@ -1,7 +1,7 @@
 """From the numbers of a case to the inputs u of a pass, with derivatives.
 
-v (V,) are all numbers of the case that a pass depends on, x (D,) those of them that are free, followed by
-internal numbers, which no input depends on.
+v (V,) are all numbers of the case that a pass depends on, with the unknowns of its closures; x (D,) are those
+of them that are free, then the unknowns, followed by internal numbers, which no input depends on.
 """
 
 from __future__ import annotations
@@ -23,7 +23,7 @@ class InputMap:
     """u = constant + slope @ v, then u[target] = u[a] * u[b] for each product (shares of a flow).
 
     names (U,) are those of the inputs, numbers (V,) the numbers of the case (fixed ones with low = high),
-    free the positions in v of the first numbers of x.
+    free the positions in v of the first numbers of x, of which the last `unknowns` are those of closures.
     """
 
     names: tuple[str, ...]
@@ -32,6 +32,7 @@ class InputMap:
     constant: Array
     slope: Array
     products: tuple[tuple[int, int, int], ...]
+    unknowns: int = 0
 
     def all_numbers(self, x: Array) -> Array:
         """v (V,) with the free numbers taken from x and the others as the case states them."""
@@ -64,6 +65,7 @@ class InputBuilder:
     def __init__(self) -> None:
         self.all: list[FreeNumber] = []
         self._free: list[int] = []
+        self._unknown: list[int] = []
         self._names: list[str] = []
         self._forms: list[Linear] = []
         self._products: list[tuple[int, int, int]] = []
@@ -72,6 +74,21 @@ class InputBuilder:
     def numbers(self) -> list[FreeNumber]:
         """The free numbers, in the order of x."""
         return [self.all[index] for index in self._free]
+
+    @property
+    def unknowns(self) -> list[FreeNumber]:
+        """The unknowns of closures, which follow the free numbers in x."""
+        return [self.all[index] for index in self._unknown]
+
+    @property
+    def unknown_count(self) -> int:
+        return len(self._unknown)
+
+    def unknown(self, name: str, now: float, low: float, high: float, kind: str) -> int:
+        """An input that is an unknown of a closure."""
+        self.all.append(FreeNumber(name, now, low, high, kind, role="closure"))
+        self._unknown.append(len(self.all) - 1)
+        return self._append(name, at(len(self.all) - 1))
 
     def constant(self, name: str, value: float) -> int:
         """An input that never moves."""
@@ -109,6 +126,10 @@ class InputBuilder:
         self._products.append((target, a, b))
         return target
 
+    def scaled(self, name: str, index: int, factor: float) -> int:
+        """An input that is a multiple of an earlier one, which may be a product."""
+        return self.product(name, index, self.constant(f"{name}, factor", factor))
+
     def build(self) -> InputMap:
         """The finished map."""
         size = len(self.all)
@@ -116,10 +137,11 @@ class InputBuilder:
         return InputMap(
             names=tuple(self._names),
             numbers=tuple(self.all),
-            free=np.array(self._free, dtype=np.intp),
+            free=np.array([*self._free, *self._unknown], dtype=np.intp),
             constant=np.array([form.const for form in self._forms]),
             slope=np.ascontiguousarray(slope),
             products=tuple(self._products),
+            unknowns=len(self._unknown),
         )
 
     def _append(self, name: str, form: Linear) -> int:

@@ -19,7 +19,7 @@ from reactorstage.train.composition import feed_moles
 from reactorstage.train.temperatures import at_inlets
 
 if TYPE_CHECKING:
-    from reactorstage.case.model import Case, Reaction
+    from reactorstage.case.model import Case, Number, Reaction
     from reactorstage.errors import Problem
 
 MARGIN = 25.0
@@ -46,18 +46,21 @@ def missing_floors(
 def may_be_absent(case: Case, equations: Mapping[str, Equation], table: SpeciesTable) -> dict[str, str]:
     """Species of which a bed may see nothing: why, in words.
 
-    Those that no feed of the entry holds, and those that an irreversible reaction can use up: of its
-    reactants the one of which all feeds together hold least for it.
+    Those that no feed of the entry holds, those that a removal takes whole, and those that an irreversible
+    reaction can use up: of its reactants the one of which all feeds together hold least for it.
     """
     entry = [step.feed for section in case.train if section.kind == "entry" for step in section.steps]
     moles = {name: feed_moles(case, table, feed) for name, feed in case.feeds.items()}
-    first = sum((moles[name] for name in entry if name), np.zeros(len(table.names)))
+    first = sum((moles[name] for name in entry if name in moles), np.zeros(len(table.names)))
     fed = sum(moles.values(), np.zeros(len(table.names)))
     found = {
         name: "the feeds of the entry do not hold it"
         for name, amount in zip(table.names, first, strict=True)
         if not amount > 0.0
     }
+    steps = [step for section in case.train for step in section.steps]
+    for name in (name for step in steps for name, number in step.removed.items() if takes_all(number)):
+        found.setdefault(name, "a removal takes all of it")
     for label, equation in equations.items():
         if equation.reversible:
             continue
@@ -70,6 +73,12 @@ def may_be_absent(case: Case, equations: Mapping[str, Equation], table: SpeciesT
             if amount <= min(enough.values()) * (1.0 + 1e-9):
                 found.setdefault(name, f"{label} can use it up")
     return found
+
+
+def takes_all(number: Number) -> bool:
+    """Whether a removal may leave nothing, or (by flow) cannot be seen to leave something."""
+    most = number.high if number.high is not None else number.now
+    return number.kind != "fraction" or most >= 1.0
 
 
 def vanishing_effectiveness(case: Case, laws: Sequence[RateLaw], table: SpeciesTable) -> Iterator[Problem]:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -13,12 +13,14 @@ from reactorstage.case.model import Activities
 from reactorstage.chemistry.constants import P_STANDARD
 from reactorstage.train import composition
 from reactorstage.train.chemistry import CaseChemistry
+from reactorstage.train.closures import Closure
 from reactorstage.train.evaluation import SplitGroup
-from reactorstage.train.forms import Linear, at
+from reactorstage.train.forms import Linear, at, total
+from reactorstage.train.gap_layout import GapWriter, fixes_heat, out_of_use
 from reactorstage.train.inputs import InputBuilder
 
 if TYPE_CHECKING:
-    from reactorstage.case.model import Case, Feed, Number, Section, Step
+    from reactorstage.case.model import Case, Feed, Number, Recycle, Section, Split, Step
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -26,9 +28,11 @@ Index = NDArray[np.int64]
 
 @dataclass(frozen=True)
 class Device:
-    """A heater or cooler: its operation, what gives its heat, its levels, and its place in the case.
+    """A heater or cooler: its operations, what gives its heat, its levels, and its place in the case.
 
-    outlet is the input that fixes the temperature right behind it, -1 when that follows from elsewhere.
+    outlet is the input that fixes the temperature right behind it, -1 when that follows from elsewhere; last
+    is its last operation where it has several (a stream that goes round it in part); exchanger its name, if
+    any.
     """
 
     operation: int
@@ -37,11 +41,21 @@ class Device:
     given: str
     outlet: int
     path: tuple[str | int, ...]
+    last: int = -1
+    exchanger: str = ""
+
+    @property
+    def end(self) -> int:
+        """The operation whose record is the stream behind it."""
+        return max(self.last, self.operation)
 
 
 @dataclass(frozen=True)
 class Place:
-    """Entry, gap or effluent: the operations first..last; injections as (operation, feed)."""
+    """Entry, gap or effluent: the operations first..last; injections as (operation, feed or recycle).
+
+    others are removals, pressure drops and draws as (operation, kind, what).
+    """
 
     owner: str
     kind: str
@@ -49,11 +63,15 @@ class Place:
     last: int
     injections: tuple[tuple[int, str], ...]
     devices: tuple[Device, ...]
+    others: tuple[tuple[int, str, str], ...] = ()
 
 
 @dataclass(frozen=True)
 class BedPlace:
-    """A bed: the operations of its inlet and exit, the first of its inputs, what is injected before it."""
+    """A bed: the operations of its inlet and exit, the first of its inputs, what is injected before it.
+
+    in_service is false for one that is out of service: limits on every bed leave it out.
+    """
 
     owner: str
     number: int
@@ -62,11 +80,17 @@ class BedPlace:
     inputs: int
     injections: tuple[tuple[int, str], ...]
     held: bool
+    in_service: bool = True
 
 
 @dataclass(frozen=True)
 class Layout:
-    """Everything about positions: operations (K, 4), compositions (NF, S), places, beds, inputs."""
+    """Everything about positions: operations (K, 4), compositions (NF, S), places, beds, inputs.
+
+    amounts are the inputs of the flows of feeds by operation, returned those of recycles; recycles gives the
+    input of the flow and the operation that draws it off. shut names feeds of which a bed out of service
+    shuts a part, bypassed exchangers that do nothing.
+    """
 
     operations: Index
     compositions: Array
@@ -78,6 +102,11 @@ class Layout:
     amounts: dict[int, int]
     splits: tuple[SplitGroup, ...]
     species: int
+    returned: dict[int, int] = field(default_factory=dict)
+    recycles: dict[str, tuple[int, int]] = field(default_factory=dict)
+    shut: frozenset[str] = frozenset()
+    bypassed: tuple[str, ...] = ()
+    closures: tuple[Closure, ...] = ()
 
     @property
     def width(self) -> int:
@@ -113,7 +142,19 @@ class Layout:
 
     def heat_removed(self, device: Device) -> Linear:
         """Heat taken out by a device, W."""
-        return self.enthalpy(device.operation - 1) - self.enthalpy(device.operation)
+        return self.enthalpy(device.operation - 1) - self.enthalpy(device.end)
+
+    def amount(self, operation: int) -> int:
+        """Input of the flow that an injection brings."""
+        return self.amounts[operation] if operation in self.amounts else self.returned[operation]
+
+    def feed_entering(self, feed: str) -> Linear:
+        """Flow of a feed: as stated, or what enters where a bed out of service shuts a part of it."""
+        if feed not in self.shut:
+            return self.input(self.feed_flow[feed])
+        index = self.feeds.index(feed)
+        enters = [amount for k, amount in self.amounts.items() if self.operations[k][1] == index]
+        return total([self.input(amount) for amount in enters])
 
 
 class _Writer:
@@ -133,14 +174,23 @@ class _Writer:
             name: inputs.number(f"feed {name}.flow", feed.flow, self._factor(name, feed.flow.kind))
             for name, feed in case.feeds.items()
         }
+        self.gaps = GapWriter(case, chemistry, inputs, self.operations)
+        self.gaps.begin(self.feed_flow, self.compositions)
+        self.entering = {**self.feed_temperature, **self.gaps.feed_inputs()}
+        self.fate = {section.owner: fate_of_injection(section) for section in case.train if section.bed}
         self.amount: dict[tuple[str, str], int] = {}
         self.splits: list[SplitGroup] = []
         for name, feed in case.feeds.items():
             if feed.split is not None:
-                self._split(name, feed)
+                self._split(name, feed, self.feed_flow[name])
+        for name, recycle in case.recycles.items():
+            if recycle.split is not None:
+                self._split(name, recycle, self.gaps.loops[name].flow)
         self.places: list[Place] = []
         self.beds: list[BedPlace] = []
         self.amounts: dict[int, int] = {}
+        self.returned: dict[int, int] = {}
+        self.shut: set[str] = set()
 
     def _condition(self, name: str, feed: Feed) -> int:
         """Inputs for the temperature of a feed and, behind it, its pressure; position of the former."""
@@ -151,17 +201,17 @@ class _Writer:
     def _factor(self, feed: str, kind: str) -> float:
         return 1.0 / self.molar[feed] if kind == "mass flow" else 1.0
 
-    def _split(self, name: str, feed: Feed) -> None:
+    def _split(self, name: str, feed: Feed | Recycle, flow: int) -> None:
         """Inputs for the flow of a feed to each bed; the rest takes what the others leave."""
         split = feed.split
         assert split is not None
         shares = any(number.kind == "fraction" for number in split.values.values())
-        total = Linear(const=1.0) if shares else self.inputs.form(self.feed_flow[name])
-        left, free, fixed = total, [], 0.0
+        whole = Linear(const=1.0) if shares else self.inputs.form(flow)
+        left, free, fixed = whole, [], 0.0
         for bed in split.beds:
             if bed == split.rest:
                 continue
-            number = split.values[bed]
+            number = self._settled(split, bed)
             label = f"{bed}.injected {name}" if not shares else f"{bed}.share of {name}"
             factor = 1.0 if shares else self._factor(name, number.kind)
             size = 1.0 if shares else feed.flow.now
@@ -180,12 +230,17 @@ class _Writer:
         if shares:
             for bed in split.beds:
                 self.amount[name, bed] = self.inputs.product(
-                    f"{bed}.injected {name}", self.amount[name, bed], self.feed_flow[name]
+                    f"{bed}.injected {name}", self.amount[name, bed], flow
                 )
         if free:
             rest = int(split.rest.split()[1]) if split.rest else 0
             size = 1.0 if shares else feed.flow.now
             self.splits.append(SplitGroup(name, tuple(free), size, fixed, rest))
+
+    def _settled(self, split: Split, bed: str) -> Number:
+        """The entry of a bed; that of one out of service is not free."""
+        number = split.values[bed]
+        return number if not self.fate[bed] else replace(number, low=None, high=None)
 
     def write(self) -> Layout:
         sections = list(self.case.train)
@@ -197,7 +252,7 @@ class _Writer:
             else:
                 following = sections[position + 1].owner if position + 1 < len(sections) else ""
                 pending = self._place(section, following, position)
-        return Layout(
+        layout = Layout(
             operations=np.array(self.operations, dtype=np.int64).reshape(-1, 4),
             compositions=np.ascontiguousarray(self.compositions),
             places=tuple(self.places),
@@ -208,38 +263,83 @@ class _Writer:
             amounts=self.amounts,
             splits=tuple(self.splits),
             species=len(self.case.species),
+            returned=self.returned,
+            recycles={name: (loop.flow, self.gaps.drawn[name]) for name, loop in self.gaps.loops.items()},
+            shut=frozenset(self.shut),
+            bypassed=out_of_use(self.case),
         )
+        return replace(layout, closures=self.gaps.closures(layout))
 
     def _place(self, section: Section, following: str, position: int) -> list[tuple[int, str]]:
         first = len(self.operations)
         injections: list[tuple[int, str]] = []
         devices: list[Device] = []
+        others: list[tuple[int, str, str]] = []
         for number, step in enumerate(section.steps):
+            path = ("train", position, section.owner, number, step.kind)
             if step.kind in ("take", "inject"):
                 assert step.feed is not None
-                self._inject(step.feed, following)
-                injections.append((len(self.operations) - 1, step.feed))
+                injections += self._inject(step, following)
+            elif step.kind in ("heat", "cool"):
+                if not self._unused(step):
+                    devices.append(self._device(section, step, path))
             else:
-                devices.append(
-                    self._device(section, step, ("train", position, section.owner, number, step.kind))
-                )
+                others.append((len(self.operations), step.kind, ", ".join(step.removed) or step.feed or ""))
+                self._other(section.owner, step)
         if following.startswith("bed"):
             self._arrive(following, devices)
         last = len(self.operations) - 1
-        self.places.append(Place(section.owner, section.kind, first, last, tuple(injections), tuple(devices)))
+        self.places.append(Place(section.owner, section.kind, first, last, tuple(injections), tuple(devices),
+                                 tuple(others)))  # fmt: skip
         return injections
 
-    def _inject(self, feed: str, bed: str) -> None:
-        amount = self.amount.get((feed, bed), self.feed_flow[feed])
-        self.amounts[len(self.operations)] = amount
-        given = self.case.feeds[feed].phase
-        code = kernel.ADD if given in (None, self.case.fluid.phase) else kernel.ADD_OTHER
-        self.operations.append((code, self.feeds.index(feed), amount, self.feed_temperature[feed]))
+    def _unused(self, step: Step) -> bool:
+        """A device that is bypassed, or whose exchanger is."""
+        return step.bypassed or step.exchanger in out_of_use(self.case)
+
+    def _other(self, owner: str, step: Step) -> None:
+        if step.kind == "remove":
+            self.gaps.remove(owner, step)
+        elif step.kind == "pressure drop":
+            self.gaps.pressure_drop(owner, step)
+        else:
+            self.gaps.draw(step)
+
+    def _inject(self, step: Step, bed: str) -> list[tuple[int, str]]:
+        """A feed or recycle as injected before a bed, with what moves here from beds out of service."""
+        name = step.feed or ""
+        flow = self.gaps.loops[name].flow if name in self.gaps.loops else self.feed_flow[name]
+        own = self.amount.get((name, bed), flow)
+        if step.kind == "inject" and self.fate.get(bed):
+            self.shut |= {name} if self.fate[bed] == SHUT else set()
+            return []
+        moved = [
+            self.amount[name, b] for b, to in self.fate.items() if to == bed and (name, b) in self.amount
+        ]
+        return [(self._add(name, amount), name) for amount in (own, *moved)]
+
+    def _add(self, name: str, amount: int) -> int:
+        operation = len(self.operations)
+        if name in self.gaps.loops:
+            self.returned[operation] = amount
+            self.gaps.bring_back(name, amount)
+        else:
+            self.amounts[operation] = amount
+            given = self.case.feeds[name].phase
+            code = kernel.ADD if given in (None, self.case.fluid.phase) else kernel.ADD_OTHER
+            self.operations.append((code, self.feeds.index(name), amount, self.entering[name]))
+        return operation
 
     def _device(self, section: Section, step: Step, path: tuple[str | int, ...]) -> Device:
         operation = len(self.operations)
-        outlet, given = -1, "holds"
-        if step.to is not None:
+        outlet, given, last = -1, "holds", -1
+        if step.exchanger is not None:
+            given = "holds" if fixes_heat(step) else "exchanger"
+            operation, last = self.gaps.side(section.owner, step)
+        if step.area is not None:
+            given = "area"
+            self.gaps.by_area(section.owner, step)
+        elif step.to is not None:
             outlet, given = self.inputs.number(f"{section.owner}.exit temperature", step.to), "to"
             self.operations.append((kernel.SET_TEMPERATURE, outlet, -1, -1))
         elif step.heat is not None:
@@ -248,9 +348,10 @@ class _Writer:
                 f"{section.owner}.heat {'added' if sign < 0 else 'removed'}", step.heat, sign
             )
             self.operations.append((kernel.REMOVE_HEAT, heat, -1, -1))
-        else:
+        elif given == "holds":
             self.operations.append((kernel.HOLD, -1, -1, -1))
-        return Device(operation, step.kind == "heat", step.levels, given, outlet, path)
+        heating, exchanger = step.kind == "heat", step.exchanger or ""
+        return Device(operation, heating, step.levels, given, outlet, path, last, exchanger)
 
     def _arrive(self, bed: str, devices: list[Device]) -> None:
         """The stream before a bed: held temperature, own pressure."""
@@ -264,9 +365,7 @@ class _Writer:
                 f"{bed}.inlet temperature", given.inlet_temperature, role="inlet temperature", bed=number
             )
             if holder.operation == len(self.operations) - 1:
-                devices[devices.index(holder)] = Device(
-                    holder.operation, holder.heating, holder.levels, holder.given, held, holder.path
-                )
+                devices[devices.index(holder)] = replace(holder, outlet=held)
         if given.inlet_pressure is not None:
             pressure = self.inputs.number(f"{bed}.inlet pressure", given.inlet_pressure)
         self.operations.append((kernel.ARRIVE, held, pressure, holder.operation if holder else -1))
@@ -275,7 +374,7 @@ class _Writer:
         bed, owner, number = section.bed, section.owner, len(self.beds)
         assert bed is not None
         factor = 1.0 if bed.catalyst.kind == "mass" else float(bed.bulk_density or 1.0)
-        running = bed.state != "bypassed"
+        running = bed.state == "running"
         first = (
             self.inputs.number(f"{owner}.catalyst", bed.catalyst, factor)
             if running
@@ -287,7 +386,8 @@ class _Writer:
         inlet = len(self.operations) - 1
         held = self.operations[inlet][1] >= 0
         self.operations.append((kernel.BED, number, first, each))
-        self.beds.append(BedPlace(owner, int(owner.split()[1]), inlet, inlet + 1, first, injections, held))
+        place = BedPlace(owner, int(owner.split()[1]), inlet, inlet + 1, first, injections, held)
+        self.beds.append(replace(place, in_service=bed.state != "out of service"))
 
     def _activities(self, owner: str, activity: Number, common: int) -> int:
         """First of the activities of all reactions; -1 when one, at the input `common`, holds for all."""
@@ -302,6 +402,17 @@ class _Writer:
             for name in self.chemistry.reactions
         ]
         return listed[0]
+
+
+SHUT = "shut"
+
+
+def fate_of_injection(section: Section) -> str:
+    """Where the injection before a bed goes: empty for into it, `shut`, or the bed that gets it."""
+    bed = section.bed
+    if bed is None or bed.state != "out of service":
+        return ""
+    return (bed.its_injection or "").removeprefix("moved to ")
 
 
 def mole_fractions(case: Case, chemistry: CaseChemistry, feed: Feed) -> Array:

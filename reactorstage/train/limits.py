@@ -80,6 +80,7 @@ def _expand(
     everywhere = limit.of.startswith("every ")
     targets = names_of(limit.of, catalogue.layout)
     owners = [owner for owner, _ in targets]
+    resting = {bed.owner for bed in catalogue.layout.beds if not bed.in_service}
     for owner in limit.exceptions:
         if owner not in owners:
             where = ("limits", label, "except", owner)
@@ -90,7 +91,9 @@ def _expand(
         except LookupError as error:
             problems.append(case.problem(path, str(error.args[0])))
             break
-        if everywhere and (form.absent or not form.top.terms):
+        if everywhere and (form.absent or not form.top.terms or owner in resting):
+            continue
+        if form.absent and owner.removeprefix("exchanger ") in catalogue.layout.bypassed:
             continue
         if form.absent:
             problems.append(case.problem(path, f"{name} does not exist in this train: {form.reason}"))
@@ -174,13 +177,15 @@ def _implied(catalogue: Catalogue, ladder: Ladder, given: Sequence[Bound]) -> li
     for place in layout.places:
         covered = len(place.devices) == 1 and _has(given, f"{place.owner}.heat removed")
         for device in place.devices:
-            if device.given == "heat" or (covered and not device.heating):
+            if device.exchanger or device.given == "heat" or (covered and not device.heating):
                 continue
             sign = -1.0 if device.heating else 1.0
             label = "a heater may not cool" if device.heating else "a cooler may not heat"
             form = Form("power", layout.heat_removed(device) * sign)
             bounds.append(Bound(_rule(label, place.owner, f"{place.owner}.heat removed", form.kind), form))
     bounds += _one_phase(catalogue)
+    for name, exchange in catalogue.exchanges.items():
+        bounds += _exchanger_rules(catalogue, name, exchange.approach)
     for device, owner, T, direction, level in ladder.reach:
         form = Form("temperature", layout.temperature(device.operation))
         row = _rule(f"reach of {level}", owner, f"{owner}.temperature after exchanger", "temperature")
@@ -215,6 +220,19 @@ def _one_phase(catalogue: Catalogue) -> list[Bound]:
             name = f"{bed.owner}.{where} {WORDS[fluid.phase]} margin"
             row = _rule(f"stays {fluid.phase}", bed.owner, name, "temperature difference")
             bounds.append(Bound(row, catalogue.find(name)))
+    return bounds
+
+
+def _exchanger_rules(catalogue: Catalogue, name: str, approach: float) -> list[Bound]:
+    """Heat flows from the hot stream to the cold one, and the temperatures do not cross."""
+    owner = f"exchanger {name}"
+    rules = [("an exchanger may not work backwards", "heat", 0.0)]
+    rules += [("no temperature cross", f"difference at the {end} end", approach) for end in ("hot", "cold")]
+    bounds = []
+    for label, words, least in rules:
+        form = catalogue.find(f"{owner}.{words}")
+        row = replace(_rule(label, owner, f"{owner}.{words}", form.kind), bound=least)
+        bounds.append(Bound(row, form))
     return bounds
 
 

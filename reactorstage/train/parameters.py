@@ -26,6 +26,7 @@ from reactorstage.bed import data as kernel
 from reactorstage.chemistry.constants import R_GAS
 from reactorstage.chemistry.rate_law import RateLaws
 from reactorstage.errors import CallError, ComputationError
+from reactorstage.train.closures import residuals
 from reactorstage.train.forms import Form, Linear, Rows
 
 if TYPE_CHECKING:
@@ -74,6 +75,8 @@ def parameters_of(model: Model) -> tuple[Parameter, ...]:
 
 def _numbers(model: Model) -> Iterator[Parameter]:
     for index, number in enumerate(model.inputs.numbers):
+        if number.internal:
+            continue
         yield Parameter(number.name, -1, index)
 
 
@@ -173,6 +176,8 @@ def sensitivities(
 ) -> Sensitivities:
     """Derivatives of quantities by parameters at x (today's setting without it), numbers x standing still.
 
+    Unknowns of closures move along, so that these stay closed.
+
     One pass, exact to rounding for its step sequence. Raises CallError for unknown names and
     ComputationError where the train has no answer.
     """
@@ -185,10 +190,15 @@ def sensitivities(
     v = model.inputs.all_numbers(x)
     u, du_dv = model.inputs.of_numbers(v)
     du, moved = directions(picked, du_dv)
+    if model.layout.closures:
+        v = closed_or_raise(model, v, tolerance or FINAL)
+        u, du_dv = model.inputs.of_numbers(v)
+        du, moved = with_unknowns(model, directions(picked, du_dv), du_dv)
     outcome = model.passing.adaptive(u, du, tolerance or FINAL, moved=moved)
     if outcome.failure:
         raise ComputationError(outcome.failure)
     base = model.base(outcome.out, u, du, x, model.catalogue.found, moved=moved)
+    base = eliminated(model, base, len(picked))
     found = FormRows.of(forms).of_base(base)
     factors = np.array([one.factor for one in picked])
     return Sensitivities(
@@ -210,6 +220,39 @@ def directions(picked: Sequence[Parameter], du_dv: Array) -> tuple[Array, NDArra
         else:
             moved[d] = one.kind, one.index
     return du, moved
+
+
+def closed_or_raise(model: Model, v: Array, tolerance: float) -> Array:
+    """v (V,) with its closures closed; ComputationError where they cannot be."""
+    from reactorstage.train.closing import closed
+
+    solved = closed(model, v, tolerance)
+    if solved.failure:
+        raise ComputationError(solved.failure)
+    return solved.v
+
+
+def with_unknowns(
+    model: Model, given: tuple[Array, NDArray[np.int64]], du_dv: Array
+) -> tuple[Array, NDArray[np.int64]]:
+    """Directions with those of the unknowns of closures behind them."""
+    inputs = model.inputs
+    unknown = inputs.free[len(inputs.free) - inputs.unknowns :]
+    moved = np.full((len(unknown), 2), -1, dtype=np.int64)
+    return np.ascontiguousarray(np.hstack([given[0], du_dv[:, unknown]])), np.vstack([given[1], moved])
+
+
+def eliminated(model: Model, base: Array, count: int) -> Array:
+    """The base vector with derivatives by `count` parameters while the closures stay closed.
+
+    dR = R_p dp + R_y dy = 0 gives what the unknowns y, whose directions stand behind, add.
+    """
+    if not model.layout.closures:
+        return base
+    rows = residuals(model.layout.closures, base)
+    y_dp = -np.linalg.solve(rows[:, 1 + count :], rows[:, 1 : 1 + count])
+    moved = base[:, 1 + count :] @ y_dp
+    return np.asarray(base[:, : 1 + count] + np.pad(moved, ((0, 0), (1, 0))))
 
 
 def shifted(chemistry: CaseChemistry, shifts: dict[Parameter, float]) -> CaseChemistry:

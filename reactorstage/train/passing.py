@@ -13,6 +13,7 @@ from reactorstage.bed import integrate as status
 from reactorstage.bed.compiled import first_call
 from reactorstage.bed.cubic import VAPOUR_MARK
 from reactorstage.bed.data import KIND, LAW, Beds, Chemistry, Index, Stages, Tolerance
+from reactorstage.bed.gap_steps import MORE_THAN_THERE
 from reactorstage.bed.sample import sample_bed
 from reactorstage.bed.train_pass import train_pass
 from reactorstage.train.layout import BedPlace, Layout
@@ -34,6 +35,7 @@ SENTENCES = {
     status.NO_FLOW: "nothing flows into it",
     status.USED_UP: "a reactant is used up but its reaction runs on (an order of zero or below)",
     status.OTHER_PHASE: "the stream cannot be a {phase} there",
+    MORE_THAN_THERE: "more is taken out than there is; lower what is removed or drawn off",
     status.FROZEN_FAILED: "the step sequence of another setting does not fit here",
 }
 
@@ -121,10 +123,13 @@ class Pass:
                 break
         return outcome
 
-    def frozen(self, u: Array, du: Array, mesh: Stages, places: bool = True) -> Outcome:
-        """Integrate on the step sequences of an earlier pass."""
+    def frozen(
+        self, u: Array, du: Array, mesh: Stages, places: bool = True, chemistry: Chemistry | None = None
+    ) -> Outcome:
+        """Integrate on the step sequences of an earlier pass; chemistry replaces that of the case."""
         stages = self.stages(max(1, int(mesh.counts.max())))
-        return self._run(u, du, self.tolerance(SEARCH), True, places, stages, mesh)
+        tolerance = self.tolerance(SEARCH)
+        return self._run(u, du, tolerance, True, places, stages, mesh, chemistry=chemistry)
 
     def _run(
         self,

@@ -25,6 +25,7 @@ from reactorstage.train.boundaries import (
     fill_residuals,
 )
 from reactorstage.train.chemistry import CaseChemistry, read_chemistry
+from reactorstage.train.closures import residuals
 from reactorstage.train.equilibria import Equilibrium, equilibria_of
 from reactorstage.train.evaluation import Evaluation, FreeNumber, LimitRow, SplitGroup
 from reactorstage.train.forms import Form, Linear, Rows, at, total
@@ -129,6 +130,14 @@ class Model:
         fill_boundaries(edges, self.passing.chemistry, self.chemistry.fluid, self.layout, base)
         return base
 
+    def partial_base(self, out: Array, u: Array, du: Array) -> Array:
+        """Records and inputs of the base vector with their derivatives: what closures read."""
+        base = np.zeros((self.layout.rows + len(u), out.shape[1]))
+        base[: self.layout.rows] = out
+        base[self.layout.rows :, 0] = u
+        base[self.layout.rows :, 1:] = du
+        return base
+
     def _held(self, base: Array, moved: NDArray[np.int64]) -> Array:
         """What a shift of a formation enthalpy adds to each hinge's stream at the level's temperature."""
         first = np.array([one.operation * self.layout.width for one in self.ladder.hinges])
@@ -198,13 +207,18 @@ class TrainProgramme:
         return self.start_mesh(x, fine=True)[0]
 
     def complete(self, x: Array) -> Array:
-        """x with its internal numbers (heat above levels, slacks of soft limits) at their best values."""
-        internal = [i for i, number in enumerate(self.numbers) if number.internal]
-        if not internal:
+        """x with its internal numbers at their best: closures closed, as far as they can be, then the books
+        (heat above levels, slacks of soft limits)."""
+        if self.model.layout.closures:
+            from reactorstage.train.closing import closed_from
+
+            x = closed_from(self.model, x)
+        books = [i for i, number in enumerate(self.numbers) if number.book]
+        if not books:
             return x
         from reactorstage.train.complete import complete
 
-        return complete(self, x, internal)
+        return complete(self, x, books)
 
     def rate(self, x: Array | None = None, dense: bool = True, tolerance: float = FINAL) -> Rating:
         """Rate the train at x (today's setting without it), at the final tolerance."""
@@ -247,6 +261,7 @@ class TrainProgramme:
         if missing.any():
             margin[missing], weight[missing] = 0.0, 0.0
             margin[missing, 0], weight[missing, 0] = self._scales[missing], 1.0
+        residual = residuals(self.model.layout.closures, base)
         cost = aim[0, 0] / aim[1, 0]
         cost_dx = (aim[0, 1:] - cost * aim[1, 1:]) / aim[1, 0]
         return Evaluation(
@@ -257,8 +272,8 @@ class TrainProgramme:
             margin[:, 1:],
             weight[:, 0].copy(),
             weight[:, 1:],
-            np.zeros(0),
-            np.zeros((0, len(x))),
+            residual[:, 0].copy(),
+            residual[:, 1:],
             outcome.evaluations,
         )
 
@@ -282,7 +297,7 @@ class _Draft:
     residuals: tuple[Residual, ...] = ()
 
     def finish(self) -> Model:
-        users = len(self.inputs.numbers)
+        users = len(self.inputs.numbers) + len(self.inputs.unknowns)
         first = self.layout.rows + len(self.inputs.build().names)
         equilibria = equilibria_of(self.layout, self.chemistry, first)
         edges = boundaries_of(self.layout, self.chemistry.fluid, first + len(equilibria))
@@ -306,7 +321,7 @@ class _Draft:
         catalogue = replace(catalogue, money=money_forms(self.case, catalogue, ladder, price))
         bounds = expand_limits(self.case, catalogue, ladder)
         softened, slack_numbers = _soften(bounds, first_slack)
-        numbers = (*self.inputs.numbers, *internal, *slack_numbers)
+        numbers = (*self.inputs.numbers, *self.inputs.unknowns, *internal, *slack_numbers)
         return Model(
             case=self.case,
             chemistry=self.chemistry,

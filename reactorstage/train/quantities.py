@@ -7,14 +7,15 @@ that only a rating gives, without derivatives, stand in a table of their own.
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from difflib import get_close_matches
-from functools import lru_cache
+from functools import cached_property, lru_cache
 
 from reactorstage.chemistry.fluid import CubicStream
 from reactorstage.train.boundaries import WORDS, Boundary
 from reactorstage.train.chemistry import CaseChemistry
+from reactorstage.train.closures import AREA_OF, Exchange
 from reactorstage.train.equilibria import Equilibrium
 from reactorstage.train.forms import Form, Linear, at, total
 from reactorstage.train.layout import BedPlace, Layout, Place
@@ -66,6 +67,10 @@ class Catalogue:
                 return bed
         kind, _, rest = owner.partition(" ")
         known = {"feed": self.layout.feeds, "level": tuple(self.levels), "train": ("",), "money": ("",)}
+        known |= {
+            "exchanger": (*self.exchanges, *self.layout.bypassed),
+            "recycle": tuple(self.layout.recycles),
+        }
         if kind in known and rest in known[kind]:
             return rest
         raise LookupError(f"there is no {owner!r} in this train; owners are {', '.join(self.owners())}")
@@ -73,8 +78,10 @@ class Catalogue:
     def owners(self) -> list[str]:
         feeds = [f"feed {name}" for name in self.layout.feeds]
         levels = [f"level {name}" for name in self.levels]
+        between = [f"exchanger {name}" for name in (*self.exchanges, *self.layout.bypassed)]
+        between += [f"recycle {name}" for name in self.layout.recycles]
         places: list[Place | BedPlace] = sorted([*self.layout.places, *self.layout.beds], key=_position)
-        return [*[place.owner for place in places], *feeds, *levels, "train", "money"]
+        return [*[place.owner for place in places], *between, *feeds, *levels, "train", "money"]
 
     def names(self) -> Iterator[str]:
         """Names of all quantities of this train that a result lists."""
@@ -83,6 +90,12 @@ class Catalogue:
                 if pattern.owner == owner.split(" ", 1)[0]:
                     for quantity in pattern.listed(self):
                         yield f"{owner}.{quantity}"
+
+    @cached_property
+    def exchanges(self) -> dict[str, Exchange]:
+        """Exchangers between streams, by name."""
+        found = [one for one in self.layout.closures if isinstance(one, Exchange)]
+        return {one.name: one for one in found if not one.name.startswith(AREA_OF)}
 
     def species(self, name: str) -> int:
         return self.chemistry.species.index(name)
@@ -114,7 +127,7 @@ def _after_injection(c: Catalogue, place: Place) -> Form:
 def _after_exchanger(c: Catalogue, place: Place) -> Form:
     if not place.devices:
         return Form("temperature", Linear(), reason="no exchanger", absent=True)
-    return Form("temperature", c.layout.temperature(place.devices[-1].operation))
+    return Form("temperature", c.layout.temperature(place.devices[-1].end))
 
 
 def heat_of_place(layout: Layout, place: Place) -> Linear:
@@ -138,7 +151,7 @@ def _made(c: Catalogue, bed: BedPlace, name: str) -> Linear:
 
 
 def _injected(c: Catalogue, bed: BedPlace, feed: str) -> Form:
-    inputs = [c.layout.amounts[operation] for operation, name in bed.injections if name == feed]
+    inputs = [c.layout.amount(operation) for operation, name in bed.injections if name == feed]
     return Form("molar flow", total([c.layout.input(index) for index in inputs]))
 
 
@@ -157,7 +170,19 @@ def _end(c: Catalogue) -> int:
 
 
 def _train_made(c: Catalogue, name: str) -> Linear:
-    return c.layout.flow(_end(c), c.species(name)) - fed(c, name)
+    return c.layout.flow(_end(c), c.species(name)) + _removed_in(c, c.layout.places, name) - fed(c, name)
+
+
+def _removed_in(c: Catalogue, places: Sequence[Place], name: str) -> Linear:
+    """Flow of a species that the removals of some places take out."""
+    s = c.species(name)
+    removals = [k for place in places for k, kind, _ in place.others if kind == "remove"]
+    return total([c.layout.flow(k - 1, s) - c.layout.flow(k, s) for k in removals])
+
+
+def _removed(c: Catalogue, place: Place, name: str) -> Form:
+    there = any(kind == "remove" for _, kind, _ in place.others)
+    return Form("molar flow", _removed_in(c, [place], name), reason="no removal", absent=not there)
 
 
 def _ratio(kind: str, top: Linear, bottom: Linear, name: str) -> Form:
@@ -215,7 +240,7 @@ class Pattern:
             fluid = catalogue.chemistry.fluid
             return (WORDS[fluid.phase],) if isinstance(fluid, CubicStream) else ()
         if slot == "feed":
-            return catalogue.layout.feeds
+            return (*catalogue.layout.feeds, *catalogue.layout.recycles)
         return tuple(catalogue.money) if slot == "term" else catalogue.chemistry.species
 
 
@@ -245,6 +270,10 @@ PATTERNS: tuple[Pattern, ...] = (
         lambda c, p, s: _ratio(
             "fraction", c.layout.flow(_exit_of(p), c.species(s)), c.layout.total_flow(_exit_of(p)), "flow"
         ),
+    ),
+    *(
+        Pattern(owner, "removed <species>", _removed, list_them=False)
+        for owner in ("entry", "gap", "effluent")
     ),
     *_places(
         "pressure",
@@ -330,10 +359,22 @@ PATTERNS: tuple[Pattern, ...] = (
     Pattern("train", "number of beds", lambda c, _: Form("count", Linear(const=float(len(c.layout.beds))))),
     Pattern("train", "number of coolers", lambda c, _: Form("count", Linear(const=_coolers(c)))),
     Pattern("train", "number of cold shots", lambda c, _: Form("count", Linear(const=_cold_shots(c)))),
-    Pattern("feed", "flow", lambda c, f: Form("molar flow", c.layout.input(c.layout.feed_flow[f]))),
+    Pattern("feed", "flow", lambda c, f: Form("molar flow", c.layout.feed_entering(f))),
     Pattern(
         "feed", "temperature", lambda c, f: Form("temperature", c.layout.input(c.layout.feed_temperature[f]))
     ),
+    Pattern("exchanger", "heat", lambda c, x: _exchanged(c, x)),
+    Pattern("exchanger", "difference at the hot end", lambda c, x: _end_difference(c, x, 0)),
+    Pattern("exchanger", "difference at the cold end", lambda c, x: _end_difference(c, x, 1)),
+    Pattern("exchanger", "area", lambda c, x: _size(c, x, "area", "area")),
+    Pattern("exchanger", "effectiveness", lambda c, x: _size(c, x, "fraction", "effectiveness")),
+    Pattern("recycle", "flow", lambda c, r: Form("molar flow", c.layout.input(c.layout.recycles[r][0]))),
+    Pattern(
+        "recycle",
+        "temperature",
+        lambda c, r: Form("temperature", c.layout.temperature(c.layout.recycles[r][1])),
+    ),
+    Pattern("recycle", "mole fraction of <species>", lambda c, r, s: _drawn_share(c, r, s)),
     Pattern("level", "heat", lambda c, level: c.levels[level]),
     Pattern("money", "<term>", lambda c, _, term: c.money[term]),
 )
@@ -390,3 +431,34 @@ def _approach(c: Catalogue, bed: BedPlace, reaction: str) -> Form:
             form = at(one.index) - c.layout.temperature(bed.exit)
             return Form(kind, form if one.exothermic else form * -1.0, reason=why)
     return Form(kind, Linear(), reason="the reaction is not reversible", absent=True)
+
+
+def _end_difference(c: Catalogue, exchanger: str, end: int) -> Form:
+    kind = "temperature difference"
+    one = c.exchanges.get(exchanger)
+    return Form(kind, one.ends[end]) if one else _bypassed(kind)
+
+
+def _exchanged(c: Catalogue, exchanger: str) -> Form:
+    one = c.exchanges.get(exchanger)
+    return Form("power", one.heat) if one else _bypassed("power")
+
+
+def _size(c: Catalogue, exchanger: str, kind: str, words: str) -> Form:
+    """A size that the case gives; the effectiveness of one given by its area is found when rating."""
+    one = c.exchanges.get(exchanger)
+    form = getattr(one.size, words) if one else None
+    if one is None:
+        return _bypassed(kind)
+    return Form(kind, form) if form else Form(kind, Linear(), reason=f"no {words} is given", absent=True)
+
+
+def _bypassed(kind: str) -> Form:
+    return Form(kind, Linear(), reason="the exchanger is bypassed", absent=True)
+
+
+def _drawn_share(c: Catalogue, recycle: str, name: str) -> Form:
+    operation = c.layout.recycles[recycle][1]
+    return _ratio(
+        "fraction", c.layout.flow(operation, c.species(name)), c.layout.total_flow(operation), "flow"
+    )

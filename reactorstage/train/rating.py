@@ -2,17 +2,21 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
 
 from reactorstage.bed.train_pass import EXTRAS
-from reactorstage.chemistry.thermo import h
+from reactorstage.train.balances import closure, warm_quenches
+from reactorstage.train.closed_result import closed_result, closure_notes, effectivenesses
+from reactorstage.train.closing import closed, put
 from reactorstage.train.limits import names_of
 from reactorstage.train.passing import Outcome
 from reactorstage.train.potential import bed_potentials, potential_values, unlit_notes
-from reactorstage.train.result import HeatSale, LimitState, Profile, Rating, StepState, Value
+from reactorstage.train.result import Closed, HeatSale, LimitState, Profile, Rating, StepState, Value
+from reactorstage.train.states import Found, states, with_state
 
 if TYPE_CHECKING:
     from reactorstage.train.forms import Form
@@ -31,8 +35,8 @@ POINTS = 120
 def rate(programme: TrainProgramme, x: Array, dense: bool, tolerance: float) -> Rating:
     """The train at x; a failure inside it gives a Rating with the sentence and what was reached."""
     model = programme.model
+    x, outcome, known = _passed(model, x, tolerance)
     u, du = model.inputs.values(x)
-    outcome = model.passing.adaptive(u, du[:, :0], tolerance)
     wanted = () if outcome.failure else model.catalogue.found
     base = model.base(outcome.out, u, du, x, wanted)[:, 0]
     profiles = _profiles(model, outcome, u, dense)
@@ -44,6 +48,10 @@ def rate(programme: TrainProgramme, x: Array, dense: bool, tolerance: float) -> 
         status = "inside all limits" if all(one.met or one.soft for one in limits) else "limits broken"
         atoms, energy = closure(model, base)
         quantities |= _closures(atoms, energy)
+    closed_state = Closed()
+    if known is not None and not outcome.failure:
+        closed_state = closed_result(model, base, x, known)
+        quantities |= effectivenesses(closed_state)
     quantities |= _peaks(model, profiles) | _outside(model, profiles)
     roles = _roles(model, base) if not outcome.failure else ("", "", "", ())
     potentials = bed_potentials(model, base, profiles, roles[0])
@@ -71,11 +79,36 @@ def rate(programme: TrainProgramme, x: Array, dense: bool, tolerance: float) -> 
         unpriced=tuple(dict.fromkeys(model.ladder.unpriced)),
         atoms=atoms,
         energy=energy,
-        notes=(*unlit_notes(potentials), *_notes(model, quantities)),
+        notes=(
+            *closure_notes(closed_state),
+            *unlit_notes(potentials),
+            *warm_quenches(model, base, outcome),
+            *_notes(model, quantities),
+        ),
         integration_steps=outcome.steps,
         right_hand_sides=outcome.evaluations,
         chemistry=model.chemistry,
+        closed=closed_state,
     )
+
+
+def _passed(model: Model, x: Array, tolerance: float) -> tuple[Array, Outcome, Found | None]:
+    """The pass at x, its closures closed from where they stand in x; all states of a closed train."""
+    u, du = model.inputs.values(x)
+    if not model.layout.closures:
+        return x, model.passing.adaptive(u, du[:, :0], tolerance), None
+    known, v = states(model, model.inputs.all_numbers(x)), model.inputs.all_numbers(x)
+    solved = closed(model, v, tolerance)
+    if solved.failure and known.states:
+        solved = closed(model, known.states[0].v, tolerance)
+    known = with_state(model, known, solved)
+    if solved.mesh is None:
+        outcome = model.passing.adaptive(u, du[:, :0], tolerance)
+        failure = known.why or outcome.failure or solved.failure
+        return x, replace(outcome, failure=failure, reached=0), known
+    x = put(model, x, solved.v)
+    u, du = model.inputs.values(x)
+    return x, model.passing.frozen(u, np.ascontiguousarray(du[:, :0]), solved.mesh), known
 
 
 def _profiles(model: Model, outcome: Outcome, u: Array, dense: bool) -> tuple[Profile, ...]:
@@ -93,6 +126,7 @@ def _quantities(model: Model, outcome: Outcome, base: Array) -> dict[str, Value]
     values: dict[str, Value] = {}
     listed = [
         *model.catalogue.names(),
+        *_removals(model),
         model.case.aim.quantity,
         *(name for price in model.case.prices.values() for _, name in names_of(price.of, model.layout)),
         *(b.row.quantity for b in model.bounds if b.row.label != "heat ladder"),
@@ -105,6 +139,15 @@ def _quantities(model: Model, outcome: Outcome, base: Array) -> dict[str, Value]
         value = form.value(base)
         values[name] = Value(value, form.kind, "" if value is not None else form.reason)
     return values
+
+
+def _removals(model: Model) -> list[str]:
+    """Names of what removals take out, where there are any."""
+    found = []
+    for place in model.layout.places:
+        removed = [what.split(", ") for _, kind, what in place.others if kind == "remove"]
+        found += [f"{place.owner}.removed {name}" for names in removed for name in names]
+    return found
 
 
 def _reached(model: Model, form: Form, reached: int) -> bool:
@@ -194,58 +237,30 @@ def _limit(bound: Bound, base: Array) -> LimitState:
     )
 
 
-def closure(model: Model, base: Array) -> tuple[float, float]:
-    """Relative closure of atoms and of energy over the whole train.
-
-    Atoms: largest difference between feeds and effluent of an element, by its flow. Energy: feeds less heat
-    removed less the effluent's enthalpy found anew from its flows and temperature, by the enthalpy that the
-    train turns over (sum of absolute changes along beds and heat removed).
-    """
-    layout, table, mixture = model.layout, model.chemistry.table, model.chemistry.mixture
-    S, width, end = layout.species, layout.width, len(layout.operations) - 1
-    fed, enthalpy, turned = np.zeros(S), 0.0, 0.0
-    for operation, amount in layout.amounts.items():
-        feed = int(layout.operations[operation][1])
-        flow = base[layout.rows + amount] * layout.compositions[feed]
-        state = layout.rows + layout.feed_temperature[layout.feeds[feed]]
-        fed += flow
-        given = model.case.feeds[layout.feeds[feed]]
-        if flow.any():
-            enthalpy += float(mixture.enthalpy(flow, float(base[state]), float(base[state + 1]), given.phase))
-    record = base[end * width : (end + 1) * width]
-    elements = np.abs(fed @ table.atoms)
-    atoms = float((np.abs((fed - record[:S]) @ table.atoms) / np.where(elements > 0.0, elements, 1.0)).max())
-    for place in layout.places:
-        for device in place.devices:
-            Q = layout.heat_removed(device).value(base)
-            enthalpy -= Q
-            turned += abs(Q)
-    for bed in layout.beds:
-        inlet, out = base[bed.inlet * width :][:width], base[bed.exit * width :][:width]
-        turned += abs(float(out[:S] @ (h(table, float(out[S + 2])) - h(table, float(inlet[S + 2])))))
-    left = float(mixture.enthalpy(record[:S], float(record[S + 2]), float(record[S + 1])))
-    return atoms, abs(enthalpy - left) / max(turned, 1e-300)
-
-
 def _steps(model: Model, base: Array, outcome: Outcome) -> tuple[StepState, ...]:
     layout, steps = model.layout, []
     for place in layout.places:
-        injections, devices = dict(place.injections), {d.operation: d for d in place.devices}
+        injections, others = dict(place.injections), {k: (kind, what) for k, kind, what in place.others}
+        devices = {device.operation: device for device in place.devices}
         for k in range(place.first, place.last + 1):
-            if k >= outcome.reached or (k not in injections and k not in devices):
+            if k >= outcome.reached or not (k in injections or k in devices or k in others):
                 continue
+            end = devices[k].end if k in devices else k
             before = layout.temperature(k - 1).value(base) if k > 0 else None
-            after = layout.temperature(k).value(base)
+            after, Q = layout.temperature(end).value(base), 0.0
             if k in injections:
-                kind = "take" if k == 0 else "inject"
-                flow = float(base[layout.rows + layout.amounts[k]])
-                steps.append(StepState(place.owner, kind, injections[k], flow, 0.0, before, after))
-            else:
-                device = devices[k]
+                flow = float(base[layout.rows + layout.amount(k)])
+                kind = "take" if k == 0 else "inject" if k in layout.amounts else "recycle"
+                what = injections[k]
+            elif k in devices:
+                device, flow = devices[k], 0.0
                 what = device.levels if isinstance(device.levels, str) else ", ".join(device.levels)
-                Q = layout.heat_removed(device).value(base)
-                kind = "heat" if device.heating else "cool"
-                steps.append(StepState(place.owner, kind, what, 0.0, Q, before, after))
+                what = device.exchanger or what
+                kind, Q = "heat" if device.heating else "cool", layout.heat_removed(device).value(base)
+            else:
+                kind, what = others[k]
+                flow = (layout.total_flow(k) - layout.total_flow(k - 1)).value(base)
+            steps.append(StepState(place.owner, kind, what, flow, Q, before, after))
     return tuple(steps)
 
 
@@ -274,9 +289,8 @@ def _roles(model: Model, base: Array) -> tuple[str, str, str, tuple[str, ...]]:
     from reactorstage.train.quantities import fed
 
     catalogue, names, nu = model.catalogue, model.chemistry.species, model.chemistry.laws.nu
-    end = (len(model.layout.operations) - 1) * model.layout.width
     given = {name: fed(catalogue, name).value(base) for name in names}
-    made = {name: float(base[end + s]) - given[name] for s, name in enumerate(names)}
+    made = {name: catalogue.find(f"train.made {name}").top.value(base) for name in names}
     consumed = [n for s, n in enumerate(names) if (nu[:, s] < 0).any() and given[n] > 0.0 and made[n] < 0.0]
     split = [feed for feed in model.layout.feeds if model.case.feeds[feed].split is not None]
     main = ""

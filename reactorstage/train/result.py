@@ -47,8 +47,9 @@ class Profile:
 class StepState:
     """One step of an entry, gap or effluent: the stream after it.
 
-    kind is take, inject, heat or cool; what names the feed or the level(s); flow is what came in (mol/s,
-    0 for heat and cool), heat_removed W (positive when removed), T_before and T_after K.
+    kind is take, inject, recycle (a recycle injected), heat, cool, remove, pressure drop or draw; what names
+    the feed, recycle, level(s), exchanger or species; flow is what came in (mol/s, below zero for what left,
+    0 for the others), heat_removed W (positive when removed), T_before and T_after K.
     """
 
     owner: str
@@ -97,6 +98,70 @@ class HeatSale:
 
 
 @dataclass(frozen=True)
+class ExchangeState:
+    """Heat between two streams: from where to where, W; (in, out) temperatures K of hot and cold stream.
+
+    differences K at the hot and at the cold end, effectiveness as a fraction (None without a difference of
+    the inlets), conductance area times coefficient in W/K (None where given by effectiveness).
+    """
+
+    name: str
+    from_: str
+    to: str
+    heat: float
+    hot: tuple[float, float]
+    cold: tuple[float, float]
+    differences: tuple[float, float]
+    effectiveness: float | None
+    conductance: float | None
+
+
+@dataclass(frozen=True)
+class TrainState:
+    """One of the states that the closures of a train allow at one setting.
+
+    T_first is the inlet of bed 1, T_hottest the hottest bed exit (K), heat that of the first exchanger (W,
+    None without one). stable: the slope condition holds; shown: it is the state that the rating tells about.
+    """
+
+    T_first: float
+    T_hottest: float
+    heat: float | None
+    stable: bool
+    shown: bool
+
+
+@dataclass(frozen=True)
+class TurningPoint:
+    """A fold: two states meet at this heat (W) of an exchanger when its size is changed by the factor needed.
+
+    least: below that size the hotter states vanish; else above it the colder ones.
+    """
+
+    exchanger: str
+    heat: float
+    needed: float
+    least: bool
+
+
+@dataclass(frozen=True)
+class Closed:
+    """The closures of a train as rated: exchangers, all states, folds, and how well they close.
+
+    residuals by name: of an exchanger relative to its heat (or as a share of the difference of its inlets),
+    of a recycle the largest error of its fractions and of its enthalpy relative to cp T.
+    """
+
+    exchanges: tuple[ExchangeState, ...] = ()
+    states: tuple[TrainState, ...] = ()
+    folds: tuple[TurningPoint, ...] = ()
+    residuals: Mapping[str, float] = field(default_factory=dict)
+
+    def __bool__(self) -> bool:
+        return bool(self.residuals)
+
+
+@dataclass(frozen=True)
 class Rating:
     """A train at one setting: every quantity by name, profiles, limits, money, closure.
 
@@ -106,7 +171,8 @@ class Rating:
     main_reactant is the split (scarce) reactant, product the species made most, by_products the other
     species that reactions make, most made first. unpriced lists places whose heat carries no price.
     atoms and energy are relative closure errors over the whole train. chemistry is that of the train, for
-    pictures that need more than the profiles.
+    pictures that need more than the profiles. closed tells about exchangers and recycles, where there are
+    any.
     """
 
     case: Case
@@ -133,6 +199,7 @@ class Rating:
     integration_steps: int
     right_hand_sides: int
     chemistry: CaseChemistry | None = field(default=None, repr=False)
+    closed: Closed = field(default_factory=Closed)
 
     def number(self, name: str) -> float | None:
         """SI value of a quantity by its name; None where it does not exist."""

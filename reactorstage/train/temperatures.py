@@ -38,7 +38,7 @@ def at_inlets(case: Case, table: SpeciesTable) -> list[Number]:
         for step in section.steps:
             if step.to is not None:
                 arriving = [(1.0, step.to)]
-            elif step.feed is not None and section.kind == "entry":
+            elif step.feed in case.feeds and section.kind == "entry":
                 feed = case.feeds[step.feed]
                 arriving.append((float(feed_moles(case, table, feed).sum()), feed.temperature))
         if section.bed is not None:
@@ -70,7 +70,7 @@ def beyond_data(case: Case, table: SpeciesTable, equations: Iterable[Equation]) 
     there: set[str] = set()
     for section in case.train:
         for number, step in enumerate(section.steps):
-            if step.feed is not None:
+            if step.feed in case.feeds:
                 there |= {s for s, share in case.feeds[step.feed].composition.items() if share > 0.0}
             elif step.to is not None:
                 yield from _misses(case, _place(section, number, step), section.owner, step.to, table, there)

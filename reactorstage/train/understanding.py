@@ -272,7 +272,9 @@ def _injection_sums(model: Model, tell: Tell) -> Iterator[str]:
         if model.case.feeds[feed].split is None:
             continue
         beds = [bed.owner for bed in model.layout.beds if any(name == feed for _, name in bed.injections)]
-        total = float(u[model.layout.feed_flow[feed]])
+        index = model.layout.feeds.index(feed)
+        enters = [a for k, a in model.layout.amounts.items() if model.layout.operations[k][1] == index]
+        total = float(u[enters].sum())
         ends = {
             (b.row.owner, b.row.direction): b.row.bound
             for b in model.bounds

@@ -47,8 +47,11 @@ def test_every_shipped_case_is_understood_and_rated_on_a_screen(
     assert "BEDS" in rated.stdout and "LIMITS" in rated.stdout
 
 
-@pytest.mark.parametrize("path", CASES, ids=lambda path: path.stem)
-def test_every_shipped_case_gives_an_optimum_with_files(path: Path) -> None:
+WHOLE = [path for path in CASES if "variant of" not in path.read_text(encoding="utf-8")]
+
+
+@pytest.mark.parametrize("path", WHOLE, ids=lambda path: path.stem)
+def test_every_case_of_its_own_gives_an_optimum_with_files(path: Path) -> None:
     done = run("optimise", path, "--starts", 6, "--out", "out")
     assert done.exit_code == 0, done.stderr
     assert "best found, INSIDE ALL LIMITS" in done.stdout and "Steady state" in done.stdout
