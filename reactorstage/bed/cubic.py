@@ -22,7 +22,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from reactorstage.bed.compiled import compiled, inlined
+from reactorstage.bed.compiled import compiled
 from reactorstage.bed.data import GAS_CONSTANT, Array
 from reactorstage.chemistry.cubic import DENSE, FOUND, NOT_FINITE, OTHER_PHASE, VAPOUR, CubicFluid, Phase
 
@@ -91,7 +91,7 @@ def cubic(real, start, S, T, p, work, at, extent):
     return OTHER_PHASE if ratio > real[start + 2] else DENSE
 
 
-@inlined
+@compiled
 def mix(real, start, S, T, work, at):
     """Sums over the species; q, -T dq/dT and D_i/(B T) into the space, T D_iT/(B T) into the second row."""
     roots, b, pairs = start + HEAD, start + HEAD + 2 * S, start + HEAD + 3 * S
@@ -119,7 +119,7 @@ def mix(real, start, S, T, work, at):
     work[at + Q], work[at + Q_T], work[at + Q_TT] = D * per_BT, (D_T - D) * per_BT, D_TT * per_BT
 
 
-@inlined
+@compiled
 def compressibility(real, start, ratio, B):
     """Root of Z^3 + c2 Z^2 + c1 Z + c0 above B on the wanted side, else the only root there is.
 
@@ -144,7 +144,7 @@ def compressibility(real, start, ratio, B):
     return root
 
 
-@inlined
+@compiled
 def bulk(real, start, n, T, p, B, root, work, at):
     """Volume and residual enthalpy with their slopes by T and p."""
     delta_1, delta_2, RT = real[start], real[start + 1], GAS_CONSTANT * T
@@ -166,7 +166,7 @@ def bulk(real, start, n, T, p, B, root, work, at):
     work[at + Z_1], work[at + CURVE], work[at + STIFF] = z, curve, stiff
 
 
-@inlined
+@compiled
 def of_species(real, start, S, T, p, B, work, at):
     """ln phi with its slopes by T and p, dV/dF and dH/dF; swell into the space, Q_i in place of D_i/(B T)."""
     b, row, space = start + HEAD + 2 * S, at + FIELD, at + at_slopes(S) + S * S
@@ -190,7 +190,7 @@ def of_species(real, start, S, T, p, B, work, at):
         work[space + S + i], work[space + 2 * S + i] = swell, Q_i
 
 
-@inlined
+@compiled
 def of_pairs(real, start, S, T, work, at):
     """d ln phi_i/dF_j, symmetric."""
     b, pairs, row = start + HEAD + 2 * S, start + HEAD + 3 * S, at + at_slopes(S)

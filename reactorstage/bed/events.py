@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from reactorstage.bed.balance import flows
-from reactorstage.bed.compiled import compiled, inlined
+from reactorstage.bed.compiled import compiled
 from reactorstage.bed.data import F_UNIT, GAS_CONSTANT, H_IN, P_UNIT, T_IN
 from reactorstage.bed.layout import (
     at_nu,
@@ -123,7 +123,7 @@ def hottest(chem, bed, steps, count, y, work):
     return k, low, temperature_within(chem, bed, steps[k], low, T_best, y, work)
 
 
-@inlined
+@compiled
 def first_interval(chem, steps, count, target, rising):
     """(step, stage) whose end is the first at or beyond target; step -1 when there is none."""
     at_T = 2 + 4 * (chem.R + 1)

@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from reactorstage.bed.balance import evaluate, flows
-from reactorstage.bed.compiled import compiled, inlined
+from reactorstage.bed.compiled import compiled
 from reactorstage.bed.damped import damped_newton
 from reactorstage.bed.data import BED, F_UNIT, P_UNIT, T_IN
 from reactorstage.bed.depth import next_kink
@@ -119,7 +119,7 @@ def stage_correction(n, step, G, Z, real, complex_, pivots, U, weight):
     return size
 
 
-@inlined
+@compiled
 def newton(chem, bed, step, real, complex_, pivots, tol, work, f, point, G, U, weight, none):
     """Simplified Newton on the three stages of a step; (converged, evaluations).
 
@@ -151,7 +151,7 @@ def newton(chem, bed, step, real, complex_, pivots, tol, work, f, point, G, U, w
     return before <= 1e3 * tol, 3 * NEWTON_CAP
 
 
-@inlined
+@compiled
 def factorise_step(J, n, h, real, complex_, pivots):
     """Factors of the two Newton systems of a step of length h."""
     for i in range(n):
@@ -216,7 +216,7 @@ def continued(before, after, n, sign):
                 after[Z + i * n + k] += sign * weight * before[Z + j * n + k]
 
 
-@inlined
+@compiled
 def guess(k, n, steps, slope, reference, frozen):
     """Stages to start Newton from: the previous polynomial continued, else the slope at the start.
 
@@ -239,7 +239,7 @@ def guess(k, n, steps, slope, reference, frozen):
         continued(steps[k - 1], step, n, 1.0)
 
 
-@inlined
+@compiled
 def first_step(slope, tol):
     """Length of the first step from the slope at the inlet."""
     size = 0.0

@@ -9,7 +9,7 @@ from __future__ import annotations
 import numpy as np
 
 from reactorstage.bed import data as d_
-from reactorstage.bed.compiled import compiled, entry, inlined
+from reactorstage.bed.compiled import compiled, entry
 from reactorstage.bed.cubic import H_RES_P
 from reactorstage.bed.data import BED as BED_ROWS
 from reactorstage.bed.data import COMPOSITION, ENTHALPY, F_UNIT, GAS_CONSTANT, P_UNIT
@@ -234,7 +234,7 @@ def bed_directions(chem, beds, b, row, out, u, du, first, each, picked, D):
     return ways
 
 
-@inlined
+@compiled
 def write_exit(chem, bed, row, out, step, work):
     """Record of the stream leaving a bed (values)."""
     S, n, nu = chem.S, chem.R + 1, at_nu(chem)
@@ -249,7 +249,7 @@ def write_exit(chem, bed, row, out, step, work):
     out[row + S + 2, 0] = step[2 + 4 * n + 2]
 
 
-@inlined
+@compiled
 def write_exit_tangents(chem, bed, ways, picked, D, y_d, row, out):
     """Derivatives of the record of the stream leaving a bed, but temperature."""
     S, R, nu = chem.S, chem.R, at_nu(chem)
@@ -264,7 +264,7 @@ def write_exit_tangents(chem, bed, ways, picked, D, y_d, row, out):
         out[row + S + 1, d] = bed[P_UNIT] * y_d[R * D + i]
 
 
-@inlined
+@compiled
 def write_places(chem, bed, steps, count, ways, moved, y0_d, Z_d, picked, D, row, exit_row, extra, out, work):
     """Peak temperature and the depths at 10, 50 and 90 % of the rise, with derivatives."""
     S = chem.S
@@ -293,7 +293,7 @@ def write_places(chem, bed, steps, count, ways, moved, y0_d, Z_d, picked, D, row
             out[extra + 2 + j, d] = (wanted - T_d[i]) / slope
 
 
-@inlined
+@compiled
 def run_bed(
     chem, beds, b, row, exit_row, extra, u, du, first, each, moved, tolerance, frozen, places, stages,
     reference, out, work,
@@ -337,7 +337,7 @@ def run_bed(
     return DONE, 1.0, calls
 
 
-@inlined
+@compiled
 def first_pressure(operations, u, du, row, out):
     """Write the first pressure that a bed states, which is that of all that comes before it."""
     for k in range(operations.shape[0]):
@@ -354,7 +354,7 @@ def beyond(chem, T):
     return TOO_HOT if chem.T_high <= T else TOO_COLD
 
 
-@inlined
+@compiled
 def gap_step(chem, code, a, b, c, row, out, u, du, moved, work, H_d):
     """One of the operations of `gap_steps`; its status."""
     S, there = chem.S, True

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import gc
 import os
 import sys
 import traceback
@@ -16,6 +17,10 @@ from reactorstage.errors import CallError, CaseProblems, ComputationError, React
 DEFECT, WRONG_CALL, INTERRUPTED = ReactorstageError.exit_status, CallError.exit_status, 130
 LIMITS_BROKEN, FAILED, POINTS_FAILED = 5, ComputationError.exit_status, 6
 TRACE = "REACTORSTAGE_TRACE"
+
+
+COLLECT_AFTER = 200_000
+"""Objects made between two collections of garbage: a verb runs for seconds, collecting cost a tenth of it."""
 
 
 class Helping(click.Command):
@@ -39,6 +44,7 @@ class Group(Helping, click.Group):
 
     def main(self, args: Sequence[str] | None = None, prog_name: str | None = None, **named: Any) -> NoReturn:  # type: ignore[override]
         named["standalone_mode"] = False
+        gc.set_threshold(COLLECT_AFTER)
         sys.exit(self._status(args, prog_name or "reactorstage", named))
 
     def _status(self, args: Sequence[str] | None, prog_name: str, named: dict[str, Any]) -> int:
