@@ -208,7 +208,7 @@ def test_scale_of_money_and_of_limits_does_not_matter() -> None:
 
 
 class Uneven(Toy):
-    """A toy whose first margin differs from mesh to mesh by up to `unevenness`, far more than its scale times 1e-4."""
+    """A toy whose first margin differs from mesh to mesh by up to `unevenness`; what is near is far less."""
 
     unevenness = 1e-3
 
