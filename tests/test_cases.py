@@ -19,7 +19,9 @@ KMOL_PER_H = 3.6
 
 @cache
 def solved(name: str) -> Optimisation:
-    return reactorstage.optimise(reactorstage.load(FOLDER / name), starts=20, seed=1)
+    """The lead case and its kin have several answers, found from many starts; others need fewer."""
+    starts = 20 if name.startswith("selkemouth") else 8
+    return reactorstage.optimise(reactorstage.load(FOLDER / name), starts=starts, seed=1)
 
 
 @pytest.mark.parametrize("name", CASES)
