@@ -128,7 +128,7 @@ def remeshed(oracle: Oracle, state: State, last: State) -> State:
     for _ in range(HALVINGS):
         evaluation = oracle.start(x)
         if evaluation.ok:
-            return corrected(oracle, judged(oracle, x, evaluation, state.size))
+            return corrected(oracle, judged(oracle, x, evaluation, state.size), state.found)
         x = 0.5 * (x + last.x)
     return last
 

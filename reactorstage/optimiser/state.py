@@ -12,7 +12,7 @@ from reactorstage.optimiser.oracle import Oracle
 from reactorstage.optimiser.programme import Array, Evaluation
 from reactorstage.optimiser.scaling import Point, Scale, scale_at, scaled
 
-FEASIBLE = 1e-8
+FEASIBLE = 1e-7
 STATIONARY = 1e-5
 CORRECTIONS = 4
 LARGEST_CORRECTION = 0.1
@@ -66,24 +66,34 @@ def state_at(oracle: Oracle, state: State, u: Array) -> State | None:
     return judged(oracle, x, evaluation, state.size) if evaluation.ok else None
 
 
-def corrected(oracle: Oracle, state: State) -> State:
-    """The state after a few Newton steps onto the limits at work, as far as these help."""
+def corrected(oracle: Oracle, state: State, held: Multipliers | None = None) -> State:
+    """The state after a few Newton steps onto the limits at work, as far as these help.
+
+    held are the multipliers of the mesh before: what was at work there is drawn to zero margin here, also
+    where the new mesh leaves it a little slack.
+    """
     for _ in range(CORRECTIONS):
-        step = step_onto_limits(state)
+        slack = held is not None and np.any((held.limit > 0.0) & (state.found.limit == 0.0))
+        found = held if held is not None and slack else state.found
+        step = step_onto_limits(state, found)
         moved = None if step is None else state_at(oracle, state, state.point.u + step)
-        if moved is None or moved.violation > max(0.5 * state.violation, FEASIBLE):
+        if moved is None or moved.violation > max(0.5 * off_limits(state, found), FEASIBLE):
             return state
-        state = moved
+        state, held = moved, None
     return state
 
 
-def step_onto_limits(state: State) -> Array | None:
+def off_limits(state: State, found: Multipliers) -> float:
+    """Largest scaled distance of what is held from zero margin, or violation."""
+    held = state.point.margin[found.limit > 0.0]
+    return max(float(np.max(np.abs(held), initial=0.0)), state.violation)
+
+
+def step_onto_limits(state: State, found: Multipliers) -> Array | None:
     """The correction of a state; None when it needs none or is too far from its limits."""
-    held = state.point.margin[state.found.limit > 0.0]
-    slack = float(np.max(np.abs(held), initial=0.0))
-    if max(slack, state.violation) <= 0.1 * FEASIBLE:
+    if off_limits(state, found) <= 0.1 * FEASIBLE:
         return None
-    step = correction(state.point, state.found, state.scale.upper)
+    step = correction(state.point, found, state.scale.upper)
     if step is None or np.max(np.abs(step), initial=0.0) > LARGEST_CORRECTION:
         return None
     return step

@@ -6,6 +6,7 @@ from collections.abc import Sequence
 
 from reactorstage.report.display import difference_kind, places, shown, unit
 from reactorstage.report.table import Column, Table, folded, marked, marks, plain, table
+from reactorstage.train.forms import MEANINGLESS
 from reactorstage.train.result import Rating
 
 PEAK_SHOWN_K = 0.5
@@ -159,7 +160,10 @@ def ratio_species(rating: Rating) -> tuple[str, str]:
 
 
 def _over(above: float | None, below: float | None) -> float | None:
-    return above / below if above is not None and below else None
+    """The ratio; None where nothing but rounding errors stands below."""
+    if above is None or not below or below < MEANINGLESS * abs(above):
+        return None
+    return above / below
 
 
 def _peak(now: Rating, beds: Sequence[str]) -> Column | None:

@@ -13,6 +13,8 @@ from reactorstage.report.display import (
     counted,
     difference,
     difference_kind,
+    in_ppm,
+    is_trace,
     owners_text,
     readable,
     shown,
@@ -133,6 +135,13 @@ def state_word(state: LimitState) -> str:
 
 def _margin_text(state: LimitState, currency: str) -> str:
     margin = 0.0 if state.at_work else difference(state.margin, state.kind)
+    if (
+        state.kind == "fraction"
+        and state.margin is not None
+        and not state.at_work
+        and is_trace(state.margin, state.kind)
+    ):
+        return in_ppm(state.margin)
     if margin is None:
         return "-"
     return with_unit(readable(margin), unit(difference_kind(state.kind), currency))

@@ -40,6 +40,10 @@ def _scale(kind: str) -> Scale | None:
     return _chosen.get().scales.get(kind, RATE_SCALE if kind == RATE else None)
 
 
+TRACE = 1e-3
+"""Shares below this are told in parts per million."""
+
+
 def shown(value: float | None, kind: str) -> float | None:
     """An SI value in its display unit; None stays None."""
     if value is None:
@@ -117,6 +121,8 @@ def with_unit(text: str, unit_text: str) -> str:
 
 def told(value: float | None, kind: str, currency: str = "") -> str:
     """A value with its unit for a sentence: `424.3 degC`."""
+    if value is not None and is_trace(value, kind):
+        return in_ppm(value)
     number = shown(value, kind)
     text = fixed(number, DECIMALS[kind]) if kind in DECIMALS else brief(number)
     return text if number is None else with_unit(text, unit(kind, currency))
@@ -124,9 +130,21 @@ def told(value: float | None, kind: str, currency: str = "") -> str:
 
 def allowed(bound: float, kind: str, currency: str = "") -> str:
     """A bound with its unit as its owner wrote it: `424 degC`, `11.6 mol/mol`."""
+    if is_trace(bound, kind):
+        return in_ppm(bound)
     number = shown(bound, kind)
     assert number is not None
     return with_unit(brief(round(number, 9), 6), unit(kind, currency))
+
+
+def is_trace(value: float, kind: str) -> bool:
+    """Whether a share is better told in parts per million."""
+    return kind == "fraction" and 0.0 < abs(value) < TRACE
+
+
+def in_ppm(value: float) -> str:
+    """`0.81 ppm` of the share 8.1e-7."""
+    return f"{brief(1e6 * value, 3)} ppm"
 
 
 def and_list(words: Sequence[str]) -> str:

@@ -51,7 +51,7 @@ def _feeds(rows: Sequence[StreamRow]) -> Table:
     degrees = [shown(row.T, "temperature") for row in rows]
     return table("FEEDS", [
         Column(("",), tuple(row.name for row in rows), left=True),
-        Column((unit("molar flow"),), tuple(same_decimals(flows, 2))),
+        Column((unit("molar flow"),), tuple(brief(flow, 5) for flow in flows)),
         Column((unit("mass flow"),), tuple(same_decimals(masses, 2)), rank=3),
         Column((unit("temperature"),), tuple(same_decimals(degrees, 1))),
         Column(("mol %",), tuple(_shares(row) for row in rows), left=True),

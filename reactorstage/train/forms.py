@@ -60,6 +60,10 @@ def total(forms: Sequence[Linear]) -> Linear:
     return out
 
 
+MEANINGLESS = 1e-10
+"""Denominators below this part of their numerators are rounding errors of nothing."""
+
+
 @dataclass(frozen=True)
 class Form:
     """A quantity: kind of unit, numerator and, for ratios, denominator with the reason when it is zero.
@@ -82,7 +86,8 @@ class Form:
             found = self.top.value(base)
             return found if np.isfinite(found) else None
         under = self.bottom.value(base)
-        return self.top.value(base) / under if under > nothing else None
+        top = self.top.value(base)
+        return top / under if under > max(nothing, MEANINGLESS * abs(top)) else None
 
 
 @dataclass(frozen=True)

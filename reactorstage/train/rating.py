@@ -331,6 +331,10 @@ def _notes(model: Model, quantities: dict[str, Value]) -> tuple[str, ...]:
         owner, found, reaction = name.partition(".outside validity of ")
         if found and value.value:
             outside.setdefault((owner, f"{100.0 * value.value:.0f} %"), []).append(reaction)
+    alike: dict[tuple[str, str], list[str]] = {}
     for (owner, share), reactions in outside.items():
-        notes.append(f"{share} of {owner} lies outside the stated validity of {', '.join(reactions)}.")
+        alike.setdefault((share, ", ".join(reactions)), []).append(owner)
+    for (share, reactions_), owners in alike.items():
+        verb = "lies" if len(owners) == 1 else "lie, each,"
+        notes.append(f"{share} of {', '.join(owners)} {verb} outside the stated validity of {reactions_}.")
     return tuple(notes)

@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 import threading
+from dataclasses import replace
 
 import numpy as np
 import pytest
 
 from reactorstage.optimiser.local import local_solve
-from reactorstage.optimiser.programme import Array
+from reactorstage.optimiser.programme import Array, Evaluation
 from reactorstage.optimiser.solve import descend
 from tests.optimiser.toy_train import Prices, ToyTrain
 from tests.optimiser.toys import (
@@ -204,3 +205,34 @@ def test_scale_of_money_and_of_limits_does_not_matter() -> None:
     ends = [descend(train(factor), np.array([-1.2, 1.0])) for factor in (1e-6, 1.0, 1e6)]
     assert {end.evaluations for end in ends} == {ends[0].evaluations}
     assert ends[0].x == pytest.approx(ends[2].x, abs=1e-9)
+
+
+class Uneven(Toy):
+    """A toy whose first margin differs from mesh to mesh by up to `unevenness`; what is near is far less."""
+
+    unevenness = 1e-3
+
+    def _values(self, x: Array, mesh: Array) -> Evaluation:
+        found = super()._values(x, mesh)
+        assert found.margin is not None
+        off = self.unevenness * np.sin(1e7 * mesh[0])
+        return replace(found, margin=found.margin + np.eye(found.margin.size)[0] * off)
+
+
+@pytest.mark.parametrize("unevenness", [1e-7, 1e-6, 5e-6])
+def test_a_limit_at_work_is_found_again_on_a_mesh_that_leaves_it_slack(unevenness: float) -> None:
+    """Closed form: x1 + x2 >= 1 at least (x1 - 2 x2)^2 + x1 + 2 x2 gives x1 - 2 x2 = 1/6, the cost 1.3055...
+
+    With y = x1 - 2 x2 and x1 + x2 = s the cost is y^2 - y/3 + 4 s/3, least at y = 1/6 and s = 1.
+    """
+
+    def cost(x: Array) -> tuple[float, list[float]]:
+        y = x[0] - 2.0 * x[1]
+        return float(y**2 + x[0] + 2.0 * x[1]), [2.0 * y + 1.0, 2.0 - 4.0 * y]
+
+    toy = Uneven(box([3.0, 2.0], -5.0, 5.0), cost, [(row("sum", scale=1e-3), linear(-1.0, 1.0, 1.0))])
+    toy.unevenness = unevenness
+    for start in spread(toy, 6, 1):
+        ending = descend(toy, start)
+        assert ending.ended == "local optimum"
+        assert ending.cost == pytest.approx(4.0 / 3.0 - 1.0 / 36.0, abs=2.0 * unevenness)

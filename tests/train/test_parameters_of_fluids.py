@@ -8,9 +8,6 @@ import tests.train.test_parameters as of_cases
 from tests.bed.build import programme
 from tests.bed.fluid_cases import CASES
 
-NARROWER = 0.5
-"""These trains bend more than the shipped cases: steps of differences, by those of the cases."""
-
 newton_to_rounding = of_cases.newton_to_rounding
 
 
@@ -20,6 +17,5 @@ def test_derivatives_by_every_parameter_are_central_differences_in_fluids(
     name: str, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     train = programme(CASES[name]())
-    monkeypatch.setattr(of_cases, "STEPS", {kind: NARROWER * step for kind, step in of_cases.STEPS.items()})
     monkeypatch.setattr(of_cases, "programme", lambda _: train)
     of_cases.test_derivatives_by_every_parameter_are_central_differences(name)
