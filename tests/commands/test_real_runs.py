@@ -50,7 +50,15 @@ def test_every_shipped_case_is_understood_and_rated_on_a_screen(
 WHOLE = [path for path in CASES if "variant of" not in path.read_text(encoding="utf-8")]
 
 
-@pytest.mark.parametrize("path", WHOLE, ids=lambda path: path.stem)
+FEW = ("quernthwaite-butadiene", "selkemouth-ethylation")
+"""Cases that are searched and explained here; the others among the slow tests."""
+
+
+@pytest.mark.parametrize(
+    "path",
+    [pytest.param(path, marks=() if path.stem in FEW else pytest.mark.slow) for path in WHOLE],
+    ids=lambda path: path.stem,
+)
 def test_every_case_of_its_own_gives_an_optimum_with_files(path: Path) -> None:
     done = run("optimise", path, "--starts", 6, "--out", "out")
     assert done.exit_code == 0, done.stderr
