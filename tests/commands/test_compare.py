@@ -101,6 +101,7 @@ def test_what_cannot_be_met_names_the_conflict_and_what_would_make_it_possible(l
                "every bed.catalyst activity=0.55")  # fmt: skip
     assert done.exit_code == 5
     text = " ".join(done.stdout.split())
+    assert "CANNOT MEET ALL LIMITS" in text and "would have to give way" in text
     assert "cannot be met together within the search ranges" in text
     assert "POSSIBLE IF one gives way alone: slip (effluent) by 0.8 kmol/h (to 2.15 kmol/h)." in text
     held = json.loads(Path("out/result.json").read_text())["smallest conflict"]

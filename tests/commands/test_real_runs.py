@@ -100,13 +100,6 @@ def test_set_changes_the_result_and_the_hash(lead: Path) -> None:
     assert changed["case"]["hash"] != plain["case"]["hash"]
 
 
-def test_limits_that_cannot_be_met_end_with_5_and_name_themselves(lead: Path) -> None:
-    aged = [word for n in (1, 2, 3, 4) for word in ("--set", f"bed {n}.catalyst activity=0.5")]
-    done = run("optimise", lead, "--starts", 4, "--no-files", *aged)
-    assert done.exit_code == 5
-    assert "CANNOT MEET ALL LIMITS" in done.stdout and "would have to give way" in done.stdout
-
-
 def test_ctrl_c_keeps_and_writes_the_best_answer(lead: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     def interrupting(self: console.ProgressLine, done: int, *_: object) -> None:
         if done == 3:

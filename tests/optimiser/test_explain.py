@@ -200,7 +200,7 @@ def test_what_the_conflict_leaves_open_is_made_cheap() -> None:
 
 def test_conflict_of_the_train() -> None:
     train = ToyTrain(slip=0.1, exit_limit=680.0)
-    found = optimise(train, starts=6, jobs=2)
+    found = optimise(train, starts=6, jobs=2, explain=False)
     assert found.status == CANNOT and found.conflict is not None
     names = {train.limits[k].name for k, _ in found.conflict.broken}
     assert names == {"hot exit, bed 4", "slip, effluent"}

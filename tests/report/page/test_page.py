@@ -236,7 +236,7 @@ def test_a_rating_has_a_page_that_promises_no_worths(hostile: Made) -> None:
 
 def test_limits_that_cannot_be_met_are_told(lead: Path) -> None:
     case = reactorstage.load(lead, ["every bed.catalyst activity=0.5"])
-    subject = of_optimum(reactorstage.optimise(case, starts=2))
+    subject = of_optimum(reactorstage.optimise(case, starts=2, explain=False))
     text = page_html(subject).decode()
     assert "no setting found meets them all" in text and "would have to give way" in text
     Reader(text)
