@@ -18,19 +18,23 @@ PER_HOUR = 3600.0
 KMOL_PER_H = 3.6
 
 
+SUMS = ("total", "heat")
+"""Money terms that are sums of others."""
+
 OPERATING = ("turndown", "dilute-ethylene", "cooler-out", "bed-2-out")
-"""Variants of the lead case, searched from fewer starts to keep the tests short."""
+"""Variants of the lead case."""
+
+EXPLAINED = ("selkemouth-ethylation.yaml",)
+"""Cases of which more is claimed than the best answer: searched from many starts and explained."""
 
 
 @cache
 def solved(name: str) -> Optimisation:
-    """Ethylation has several answers and needs many starts; only the lead case is explained."""
-    if name.removeprefix("selkemouth-").removesuffix(".yaml") in OPERATING:
-        starts = 5
-    else:
-        starts = 20 if name.startswith("selkemouth") else 6
+    """Only few are explained and searched from many starts; ethylation in mid-run needs them to be found."""
+    explain = name in EXPLAINED
     case = reactorstage.load(FOLDER / name)
-    return reactorstage.optimise(case, starts=starts, seed=1, explain=name == LEAD)
+    starts = 20 if explain or name.startswith("selkemouth-xyl") else 5
+    return reactorstage.optimise(case, starts=starts, seed=1, explain=explain)
 
 
 @pytest.mark.parametrize("name", CASES)
@@ -47,16 +51,25 @@ def test_case_closes_and_meets_its_limits_at_the_optimum(name: str) -> None:
     for rating in (outcome.today, outcome.best):
         assert rating.atoms <= 1e-12
         assert rating.energy <= 1e-9
+        assert max(rating.closed.residuals.values(), default=0.0) <= 1e-9
     assert outcome.status == "inside all limits" == outcome.best.status
     assert outcome.today.status == "limits broken"
     assert outcome.optimum.discretisation_error is not None
-    assert abs(outcome.optimum.discretisation_error) < 3e-6 * abs(outcome.optimum.best.cost)
+    turnover = sum(abs(value) for label, value in outcome.best.money.items() if label not in SUMS)
+    assert abs(outcome.optimum.discretisation_error) < 3e-6 * turnover
 
 
 @pytest.mark.parametrize("name", CASES)
 def test_every_start_ends_or_says_why(name: str) -> None:
     for record in solved(name).optimum.starts:
         assert record.answer >= 0 or record.ended
+
+
+@pytest.mark.parametrize("name", CASES)
+def test_work_of_a_local_optimum_is_bounded(name: str) -> None:
+    """Frozen with half to spare; an evaluation with gradient takes 1 to 3 ms, the whole far below 0.3 s."""
+    best = solved(name).optimum
+    assert min(start.evaluations for start in best.starts if start.answer == 0) <= 60
 
 
 def numbers(outcome: Optimisation, which: int) -> dict[str, float]:

@@ -66,6 +66,9 @@ class Elastic:
     def complete(self, x: Array) -> Array:
         return np.concatenate([self.programme.complete(x[: self.count]), x[self.count :]])
 
+    def begin(self, x: Array) -> Array:
+        return np.concatenate([self.programme.begin(x[: self.count]), x[self.count :]])
+
     def stretched(self, evaluation: Evaluation, x: Array) -> Evaluation:
         """An evaluation of the programme underneath as one of this, at x with v behind it."""
         if not evaluation.ok:

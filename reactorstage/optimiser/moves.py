@@ -24,6 +24,10 @@ AT_ONCE = 3
 MOST_STATES = 600
 MET = 1e-6
 NO_SETTING = "no setting of values that can be entered was found inside all limits"
+OTHER_STATE = (
+    "the answer is another state than today's: from there its settings alone do not lead to it, it has to be "
+    "started up"
+)
 
 Moved = frozenset[int]
 
@@ -85,6 +89,9 @@ def moves_to(base: Base, asked: Asked, noise: float, today: Array) -> Moves:
         return Moves(start.cost, (), None, start.cost, broken=broken, note=NO_SETTING)
     way = Way(base.programme, today, found[0], {frozenset(): start})
     wanted = changed(base.programme, today, found[0])
+    end = way.at(wanted)
+    if end is None or not end.inside:
+        return Moves(start.cost, (), None, start.cost, broken=broken, note=OTHER_STATE)
     kept = worth_moving(way, wanted, noise)
     steps = ordered(way, start, kept) or [kept]
     made = told(way, start, steps, tuple(sorted(wanted - kept)))

@@ -43,3 +43,6 @@ class Programme(Protocol):
 
     def complete(self, x: Array) -> Array:
         """x with its internal numbers set to their best values for the user numbers of x."""
+
+    def begin(self, x: Array) -> Array:
+        """As `complete`, but where a search does well to begin, which may leave equations open."""

@@ -55,6 +55,9 @@ class Pushed:
     def complete(self, x: Array) -> Array:
         return self.programme.complete(x)
 
+    def begin(self, x: Array) -> Array:
+        return self.programme.begin(x)
+
     def _turned(self, evaluation: Evaluation, x: Array) -> Evaluation:
         """The cost becomes a limit, the form the cost."""
         if not evaluation.ok:
@@ -102,6 +105,9 @@ class Held:
 
     def complete(self, x: Array) -> Array:
         return self.programme.complete(x)
+
+    def begin(self, x: Array) -> Array:
+        return self.programme.begin(x)
 
     def _held(self, evaluation: Evaluation, x: Array) -> Evaluation:
         if not evaluation.ok:

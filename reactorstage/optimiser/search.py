@@ -120,7 +120,7 @@ def run_starts(job: Job, points: Sequence[Start]) -> list[Ending]:
     done: list[int] = []
 
     def solve(start: Start) -> Ending:
-        x = job.programme.complete(start.x)
+        x = job.programme.begin(start.x)
         return local_solve(job.programme, x, job.size, home=home, stop=job.stop)
 
     def finished(index: int, ending: Ending) -> None:

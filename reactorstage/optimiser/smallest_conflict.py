@@ -108,7 +108,7 @@ def smallest_conflict(job: Job, x: Array, conflict: Conflict, seed: int) -> Conf
 
     None when the user stops, or when a setting inside everything is met on the way.
     """
-    points = [x, *(job.programme.complete(start.x) for start in starts(job.programme, TRIED, seed))]
+    points = [x, *(job.programme.begin(start.x) for start in starts(job.programme, TRIED, seed))]
     prober = Prober(job, points)
     prober.note(x)
     limits = job.programme.limits
@@ -214,6 +214,9 @@ class Loosened:
 
     def complete(self, x: Array) -> Array:
         return np.append(self.programme.complete(x[:-1]), x[-1])
+
+    def begin(self, x: Array) -> Array:
+        return np.append(self.programme.begin(x[:-1]), x[-1])
 
     def _loose(self, evaluation: Evaluation, x: Array) -> Evaluation:
         if not evaluation.ok:

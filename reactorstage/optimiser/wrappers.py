@@ -39,6 +39,9 @@ class Counted:
     def complete(self, x: Array) -> Array:
         return self.programme.complete(x)
 
+    def begin(self, x: Array) -> Array:
+        return self.programme.begin(x)
+
     def _count(self) -> None:
         with self._lock:
             self.evaluations += 1
@@ -75,6 +78,9 @@ class Shifted:
 
     def complete(self, x: Array) -> Array:
         return self.programme.complete(x)
+
+    def begin(self, x: Array) -> Array:
+        return self.programme.begin(x)
 
     def _shift(self, evaluation: Evaluation) -> Evaluation:
         if not evaluation.ok:
@@ -124,6 +130,9 @@ class Pinned:
 
     def complete(self, x: Array) -> Array:
         return self.free(self.programme.complete(self.full(x)))
+
+    def begin(self, x: Array) -> Array:
+        return self.free(self.programme.begin(self.full(x)))
 
     def _group(self, group: SplitGroup) -> SplitGroup:
         places = {int(old): new for new, old in enumerate(self.kept)}

@@ -57,6 +57,11 @@ def left_out(rating: Rating) -> list[str]:
     return [owner for owner in rating.unpriced if rating.heat]
 
 
+def passed_on(rating: Rating) -> list[str]:
+    """Exchangers between streams: their heat enters and leaves no level, so it is not drawn."""
+    return [one.name for one in rating.closed.exchanges]
+
+
 def _cascade(rating: Rating, heating: bool) -> Cascade | None:
     streams = [step for step in rating.steps if _counts(step, rating, heating)]
     if not streams:
@@ -69,6 +74,7 @@ def _cascade(rating: Rating, heating: bool) -> Cascade | None:
 def _counts(step: StepState, rating: Rating, heating: bool) -> bool:
     return (
         step.kind in ("heat", "cool")
+        and step.what not in passed_on(rating)
         and step.T_before is not None
         and (step.heat_removed < -LEAST_HEAT if heating else step.heat_removed > LEAST_HEAT)
         and step.owner not in left_out(rating)

@@ -9,7 +9,7 @@ from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 
 from reactorstage.report import look
-from reactorstage.report.cascade import Cascade, Rung, cascades, left_out
+from reactorstage.report.cascade import Cascade, Rung, cascades, left_out, passed_on
 from reactorstage.report.cautions import SHORT
 from reactorstage.report.display import allowed, and_list, brief, shown, unit
 from reactorstage.report.profiles import displayed
@@ -51,7 +51,8 @@ def notes(rating: Rating, sides: Sequence[Cascade]) -> list[str]:
     )
     absent = left_out(rating)
     missing = [f"Not drawn, since its heat is unpriced: {and_list(absent)}."] if absent else []
-    said = " ".join([*approach, *missing])
+    between = ["Heat that passes between two streams is left out."] if passed_on(rating) else []
+    said = " ".join([*approach, *missing, *between])
     first = f"{SUMMED}; {ORDER}." if any(side.rungs for side in sides) else f"{SUMMED}."
     return [first, *([said] if said else []), SHORT]
 

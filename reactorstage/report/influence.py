@@ -41,9 +41,8 @@ def influence_figure(found: Sequence[Influence], aim: Aim, title: str, status: s
     colours = [WORSE if row.change > 0.0 else BETTER for row in rows]
     axes.barh(range(len(rows)), sizes, height=0.62, color=colours, linewidth=0, zorder=3)
     axes.axvline(0.0, color=look.INK, linewidth=0.8, zorder=4)
-    most = max(abs(size) for size in sizes)
-    room = 0.02 * most, 0.2 * most
     low, high = min(0.0, *sizes), max(0.0, *sizes)
+    room = 0.02 * (high - low), 0.2 * (high - low)
     axes.set_xlim(low - room[low < 0.0], high + room[high > 0.0])
     for place, (row, size) in enumerate(zip(rows, sizes, strict=True)):
         _value(axes, place, size, change_text(row.change, aim))

@@ -220,6 +220,10 @@ def end_labels(axes: Axes, labels: Sequence[tuple[float, str, str]]) -> None:
         )
 
 
+MANY_ROWS = 5
+"""Kinds of line beyond which their key is set closer, so that it stays clear of the status."""
+
+
 def key(figure: Figure, rows: Sequence[KeyRow], colour: str) -> None:
     """The kinds of line, right above the panel."""
     handles = [
@@ -234,8 +238,9 @@ def key(figure: Figure, rows: Sequence[KeyRow], colour: str) -> None:
         ncols=len(rows),
         frameon=False,
         fontsize=SMALL,
-        handlelength=1.8,
-        columnspacing=1.2,
+        handlelength=1.8 if len(rows) <= MANY_ROWS else 1.3,
+        handletextpad=0.8 if len(rows) <= MANY_ROWS else 0.4,
+        columnspacing=1.2 if len(rows) <= MANY_ROWS else 0.6,
         borderaxespad=0.2,
     )
 

@@ -154,7 +154,7 @@ def _keep_away(state: LimitState) -> str:
 
 def equal_split_text(split: EqualSplit, best: Rating) -> str:
     """What equal shares would cost with everything else re-optimised."""
-    head = f"EQUAL SPLIT  of {split.feed}, all else re-optimised,"
+    head = f"EQUAL SPLIT  of {split.feed}, all else re-optimised"
     if split.penalty is None:
         return f"{head}: {split.note or 'none was found'}."
     aim = aim_of(best)
@@ -163,7 +163,7 @@ def equal_split_text(split: EqualSplit, best: Rating) -> str:
     gives = [_relaxed(best, index, amount) for index, amount in split.relaxed]
     condition = f" even with {and_list(gives)}" if gives else ""
     note = f"; {split.note}" if split.note else ""
-    return f"{head} {aim.worse(split.penalty)}{percent}{condition}{note}."
+    return f"{head}, {aim.worse(split.penalty)}{percent}{condition}{note}."
 
 
 def _relaxed(best: Rating, index: int, amount: float) -> str:

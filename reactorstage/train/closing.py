@@ -194,6 +194,17 @@ def closed_from(model: Model, x: Array) -> Array:
     return put(model, x, known[0].v) if known else x
 
 
+def begun_from(model: Model, x: Array) -> Array:
+    """x at its hottest state or, where none lies above the nearest fold, at the fold, its closures open."""
+    from reactorstage.train.states import states
+
+    known = states(model, model.inputs.all_numbers(x))
+    fold = min((one for one in known.folds if one.least), key=lambda one: one.needed, default=None)
+    if fold is not None and all(state.heat < fold.heat for state in known.states):
+        return put(model, x, fold.v)
+    return put(model, x, known.states[0].v) if known.states else x
+
+
 def closed(model: Model, v: Array, tolerance: float = FINAL, chemistry: Chemistry | None = None) -> Solved:
     """The answer nearest to v at a tolerance."""
     return Closing(model, tolerance, chemistry).solve(v)

@@ -53,12 +53,17 @@ def applied(value: float, slope: float, inner: Array) -> Array:
 
 @dataclass(frozen=True)
 class Size:
-    """What an exchanger passes: by effectiveness, or by area, clean coefficient, fouling resistance."""
+    """What an exchanger passes: by effectiveness, or by area, clean coefficient, fouling resistance.
+
+    The bypasses are the shares of its streams that go round it.
+    """
 
     effectiveness: Linear | None = None
     area: Linear | None = None
     coefficient: Linear | None = None
     fouling: Linear | None = None
+    cold_bypass: Linear | None = None
+    hot_bypass: Linear | None = None
 
     def conductance(self, base: Array) -> Array:
         """Area times coefficient in W/K as a row: A / (1/k + R)."""

@@ -132,7 +132,7 @@ class GapWriter:
         """Inputs of one exchanger: heat y that all of a bypassed stream would take up, Q = y (1 - b)."""
         count, owner = self.inputs.unknown_count, f"exchanger {name}"
         y = self._heat(f"{owner}.heat of its closure")
-        heat, through, bypassed = y, {"heat": y, "cool": y}, {}
+        heat, through, bypassed, shares = y, {"heat": y, "cool": y}, {}, {}
         for verb, share, words in (
             ("heat", exchanger.cold_bypass, "cold bypass"),
             ("cool", exchanger.hot_bypass, "hot bypass"),
@@ -140,6 +140,7 @@ class GapWriter:
             if share is None:
                 continue
             b = self.inputs.number(f"{owner}.{words}", share)
+            shares[words] = b
             passing = self.inputs.combination(
                 f"{owner}.share passing", Linear(const=1.0) - self.inputs.form(b)
             )
@@ -148,7 +149,7 @@ class GapWriter:
             through = {**dict.fromkeys(through, heat), verb: y}
         size = self._size(owner, exchanger.effectiveness, exchanger.area, exchanger.coefficient,
                           exchanger.fouling_resistance)  # fmt: skip
-        found = Sides(name, exchanger, heat, through, bypassed, size, count)
+        found = Sides(name, exchanger, heat, through, bypassed, size | shares, count)
         if exchanger.with_feed is not None:
             T = self.case.feeds[exchanger.with_feed].temperature.now
             found.feed = self.inputs.unknown(f"{owner}.temperature of feed", T, *T_SEARCH, "temperature")
@@ -368,4 +369,6 @@ def _size_of(layout: Layout, size: dict[str, int]) -> Size:
         forms.get("area"),
         forms.get("coefficient"),
         forms.get("fouling resistance"),
+        forms.get("cold bypass"),
+        forms.get("hot bypass"),
     )

@@ -213,6 +213,18 @@ class TrainProgramme:
             from reactorstage.train.closing import closed_from
 
             x = closed_from(self.model, x)
+        return self._with_books(x)
+
+    def begin(self, x: Array) -> Array:
+        """As `complete`, but where the train has gone out its closures stand open at the nearest fold: a
+        search is free to choose numbers at which it is lit."""
+        if self.model.layout.closures:
+            from reactorstage.train.closing import begun_from
+
+            x = begun_from(self.model, x)
+        return self._with_books(x)
+
+    def _with_books(self, x: Array) -> Array:
         books = [i for i, number in enumerate(self.numbers) if number.book]
         if not books:
             return x

@@ -368,6 +368,8 @@ PATTERNS: tuple[Pattern, ...] = (
     Pattern("exchanger", "difference at the cold end", lambda c, x: _end_difference(c, x, 1)),
     Pattern("exchanger", "area", lambda c, x: _size(c, x, "area", "area")),
     Pattern("exchanger", "effectiveness", lambda c, x: _size(c, x, "fraction", "effectiveness")),
+    Pattern("exchanger", "cold bypass", lambda c, x: _size(c, x, "fraction", "cold bypass")),
+    Pattern("exchanger", "hot bypass", lambda c, x: _size(c, x, "fraction", "hot bypass")),
     Pattern("recycle", "flow", lambda c, r: Form("molar flow", c.layout.input(c.layout.recycles[r][0]))),
     Pattern(
         "recycle",
@@ -445,9 +447,9 @@ def _exchanged(c: Catalogue, exchanger: str) -> Form:
 
 
 def _size(c: Catalogue, exchanger: str, kind: str, words: str) -> Form:
-    """A size that the case gives; the effectiveness of one given by its area is found when rating."""
+    """A size or bypass that the case gives; an effectiveness that an area makes is found when rating."""
     one = c.exchanges.get(exchanger)
-    form = getattr(one.size, words) if one else None
+    form = getattr(one.size, words.replace(" ", "_")) if one else None
     if one is None:
         return _bypassed(kind)
     return Form(kind, form) if form else Form(kind, Linear(), reason=f"no {words} is given", absent=True)

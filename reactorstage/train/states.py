@@ -8,6 +8,7 @@ in terms of the exchanger itself. Without an exchanger Newton starts from severa
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import dataclass, replace
 from itertools import pairwise
 from typing import TYPE_CHECKING
@@ -54,12 +55,16 @@ class State:
 
 @dataclass(frozen=True)
 class Fold:
-    """Where two states meet: heat of the exchanger, and the size there over the size that is there."""
+    """Where two states meet: heat of the exchanger, and the size there over the size that is there.
+
+    v: all numbers (V,) there, every closure closed but that of the exchanger.
+    """
 
     exchanger: str
     heat: float
     needed: float
     least: bool
+    v: Array
 
 
 @dataclass(frozen=True)
@@ -171,9 +176,19 @@ def _looked_at(curve: _Curve) -> list[float]:
     if real:
         low, high = ordered[max(real[0] - 1, 0)], ordered[min(real[-1] + 1, len(ordered) - 1)]
         grid |= {float(q) for q in np.linspace(max(low, 0.0), high, CLOSER)}
-    for heat in sorted(grid, key=abs):
+    apart = _apart(grid, REFINED * (curve.range[1] - curve.range[0]))
+    for heat in sorted(apart, key=abs):
         curve.at(heat)
-    return sorted(grid)
+    return apart
+
+
+def _apart(heats: Iterable[float], least: float) -> list[float]:
+    """Heats in order without those nearer than least to the one before, where rounding would make folds."""
+    kept: list[float] = []
+    for heat in sorted(heats):
+        if not kept or heat - kept[-1] > least:
+            kept.append(heat)
+    return kept
 
 
 def _rows(model: Model) -> list[object]:
@@ -204,8 +219,8 @@ def _folds(curve: _Curve, grid: list[float]) -> list[tuple[float, Fold]]:
             options={"xatol": REFINED * (grid[k + 1] - grid[k - 1])},
         )
         heat = float(best.x) if sign * curve.at(float(best.x))[1] < sign * here else grid[k]
-        needed = curve.at(heat)[1]
-        found.append((heat, Fold(curve.exchange.name, curve.passed[heat], needed, sign > 0.0)))
+        _, needed, v = curve.at(heat)
+        found.append((heat, Fold(curve.exchange.name, curve.passed[heat], needed, sign > 0.0, v)))
     return found
 
 

@@ -110,6 +110,9 @@ class ToyTrain:
     def complete(self, x: Array) -> Array:
         return x
 
+    def begin(self, x: Array) -> Array:
+        return x
+
     def _evaluation(self, x: Array, mesh: Array) -> Evaluation:
         value = self._values(x.astype(complex), mesh)
         columns = []

@@ -87,6 +87,9 @@ class Toy:
     def complete(self, x: Array) -> Array:
         return self._complete(x)
 
+    def begin(self, x: Array) -> Array:
+        return self._complete(x)
+
     @property
     def total_calls(self) -> int:
         return sum(self.calls.values())

@@ -215,6 +215,30 @@ def test_closures_are_equalities_of_the_search() -> None:
     assert [one.shown for one in best.closed.states].count(True) == 1
 
 
+def test_a_converter_that_went_out_is_lit_by_the_search() -> None:
+    """Its today has no ignited state; with a smaller bypass there is one, which no step from a cold state
+    finds."""
+    outcome = rs.optimise(load(free_train(0.4)), starts=4, explain=False)
+    assert [one.stable for one in outcome.today.closed.states] == [True]
+    best = outcome.best
+    assert best is not None and outcome.status == "inside all limits"
+    assert outcome.optimum.starts[0].ended == "local optimum"
+    assert best.number("train.made NH3") > 20.0 * outcome.today.number("train.made NH3")
+    assert [one.shown for one in best.closed.states] == [True, False, False]
+
+
+def test_a_bypass_can_be_limited() -> None:
+    tree = free_train(0.6)
+    tree["limits"]["in hand"] = {"of": "exchanger interchanger.cold bypass", "at least": "33 %"}
+    outcome = rs.optimise(load(tree), starts=1, explain=False)
+    best = outcome.best
+    assert best is not None
+    assert [one.met for one in outcome.today.limits if one.label == "in hand"] == [False]
+    assert best.number("exchanger interchanger.cold bypass") >= 0.33 - 1e-9
+    without = best.quantities["exchanger interchanger.hot bypass"]
+    assert without.value is None and without.reason == "no hot bypass is given"
+
+
 def test_work_of_a_local_optimum_is_bounded() -> None:
     """Frozen with half to spare: 40 evaluations from today's setting, 19 iterations."""
     outcome = rs.optimise(load(free_train()), starts=1, explain=False)
