@@ -1,4 +1,4 @@
-"""Where one reaction alone comes to rest by its own law, which may have an equilibrium constant of its own."""
+"""Where one reaction alone comes to rest by the equilibrium constant of its own law."""
 
 from __future__ import annotations
 
@@ -34,10 +34,12 @@ def at_rest(chemistry: CaseChemistry, reaction: int, F: Array, T: float, p: floa
 
     first, last = low + edge, high - edge
     if not first < last or excess(first) >= 0.0:
-        return np.maximum(F + row * low, 0.0)
-    if excess(last) <= 0.0:
-        return np.maximum(F + row * high, 0.0)
-    return np.maximum(F + row * float(brentq(excess, first, last, xtol=edge, rtol=1e-14)), 0.0)
+        xi = low
+    elif excess(last) <= 0.0:
+        xi = high
+    else:
+        xi = float(brentq(excess, first, last, xtol=edge, rtol=1e-14))
+    return np.asarray(np.maximum(F + row * xi, 0.0))
 
 
 def stretch(row: Array, F: Array) -> tuple[float, float]:

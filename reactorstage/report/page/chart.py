@@ -19,6 +19,7 @@ WIDTH = 460.0
 LEFT, RIGHT, TOP, BOTTOM = 46.0, 452.0, 32.0, 252.0
 FOOT = 40.0
 LINE = 12.0
+STROKE = 18.0
 
 
 @dataclass(frozen=True)
@@ -62,11 +63,21 @@ class Area:
 
 @dataclass(frozen=True)
 class Bar:
-    """A filled box between two corners in values."""
+    """A filled box between two corners in values; kind is its outline."""
 
     x: tuple[float, float]
     y: tuple[float, float]
     colour: str
+    kind: str = "bar"
+
+
+@dataclass(frozen=True)
+class Mark:
+    """A point at a value: `best` is a dot, `was` an upright stroke."""
+
+    x: float
+    y: float
+    kind: str
 
 
 @dataclass(frozen=True)
@@ -99,6 +110,7 @@ class Chart:
     labels: tuple[Label, ...] = ()
     areas: tuple[Area, ...] = ()
     bars: tuple[Bar, ...] = ()
+    marks: tuple[Mark, ...] = ()
     legend: tuple[tuple[str, str, str], ...] = ()
     readings: tuple[Reading, ...] = ()
     logarithmic: bool = False
@@ -121,6 +133,7 @@ def svg(chart: Chart) -> Markup:
     """The chart as an SVG element whose name and description are those of the chart."""
     parts = [*_frame(chart), *_areas(chart), *_bars(chart)]
     parts += [_curve(chart, curve) for curve in chart.curves]
+    parts += [_mark(chart, mark) for mark in chart.marks]
     parts += [_label(chart, label) for label in chart.labels]
     inside = Markup("").join([*parts, _cursor(chart)])
     return Markup(
@@ -186,8 +199,8 @@ def _bars(chart: Chart) -> list[Markup]:
         xs, ys = np.sort(chart.x.place(np.array(bar.x))), np.sort(chart.y.place(np.array(bar.y)))
         found.append(
             Markup(
-                '<rect class="bar" fill="{}" x="{:.1f}" y="{:.1f}" width="{:.1f}" height="{:.1f}"/>'
-            ).format(bar.colour, xs[0], ys[0], xs[1] - xs[0], ys[1] - ys[0])
+                '<rect class="{}" fill="{}" x="{:.1f}" y="{:.1f}" width="{:.1f}" height="{:.1f}"/>'
+            ).format(bar.kind, bar.colour, xs[0], ys[0], xs[1] - xs[0], ys[1] - ys[0])
         )
     return found
 
@@ -208,6 +221,13 @@ def path_text(x: Array, y: Array) -> str:
     begun = there & ~np.concatenate([[False], there[:-1]])
     parts = [f"{'M' if begun[k] else 'L'}{x[k]:.1f} {y[k]:.1f}" for k in np.flatnonzero(there)]
     return "".join(parts) if len(parts) > 1 else ""
+
+
+def _mark(chart: Chart, mark: Mark) -> Markup:
+    x, y = _at(chart.x, mark.x), _at(chart.y, mark.y)
+    if mark.kind == "best":
+        return Markup('<circle class="best" cx="{:.1f}" cy="{:.1f}" r="4.5"/>').format(x, y)
+    return Markup('<path class="was" d="M{:.1f} {:.1f}v{:g}"/>').format(x, y - STROKE / 2, STROKE)
 
 
 def _label(chart: Chart, label: Label) -> Markup:
