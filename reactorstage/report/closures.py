@@ -50,7 +50,11 @@ def _power(heat: float | None) -> str:
 def recycle_table(rating: Rating) -> Table:
     """One row per recycle: how much goes round, at which temperature, and what it is."""
     word = ".mole fraction of "
-    names = list(rating.case.recycles)
+    names = [
+        name.removeprefix("recycle ").removesuffix(".flow")
+        for name in rating.quantities
+        if name.startswith("recycle ") and name.endswith(".flow")
+    ]
     degrees, flow = unit("temperature"), unit("molar flow")
     shares = [
         ", ".join(

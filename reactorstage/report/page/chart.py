@@ -19,6 +19,7 @@ WIDTH = 460.0
 LEFT, RIGHT, TOP, BOTTOM = 46.0, 452.0, 32.0, 252.0
 FOOT = 40.0
 LINE = 12.0
+BARE_TOP = 24.0
 STROKE = 18.0
 
 
@@ -136,13 +137,14 @@ def svg(chart: Chart) -> Markup:
     parts += [_mark(chart, mark) for mark in chart.marks]
     parts += [_label(chart, label) for label in chart.labels]
     inside = Markup("").join([*parts, _cursor(chart)])
+    above = 0.0 if chart.y_name or chart.areas else BARE_TOP
     return Markup(
-        '<svg id="{0}" viewBox="0 0 {1:g} {2:g}" role="img" aria-labelledby="{0}-name {0}-alt">'
+        '<svg id="{0}" viewBox="0 {10:g} {1:g} {2:g}" role="img" aria-labelledby="{0}-name {0}-alt">'
         '<title id="{0}-name">{3}</title><desc id="{0}-alt">{4}</desc>'
         '<clipPath id="{0}-clip"><rect x="{5:g}" y="{6:g}" width="{7:g}" height="{8:g}"/></clipPath>{9}</svg>'
     ).format(
-        f"chart-{chart.key}", WIDTH, chart.bottom + FOOT, chart.title, chart.alt,
-        chart.left, TOP - 2, RIGHT - chart.left, chart.bottom - TOP + 4, inside,
+        f"chart-{chart.key}", WIDTH, chart.bottom + FOOT - above, chart.title, chart.alt,
+        chart.left, TOP - 2, RIGHT - chart.left, chart.bottom - TOP + 4, inside, above,
     )  # fmt: skip
 
 
@@ -168,7 +170,8 @@ def _frame(chart: Chart) -> list[Markup]:
         for y in [_at(chart.y, tick)]
     ]
     names = AXIS_NAMES.format(RIGHT, foot + 33, chart.x_name, chart.y_name)
-    return [*y_ticks, *x_ticks, AXES.format(chart.left, TOP, foot, RIGHT), names]
+    foreign = chart.bare_y and chart.x_range[0] != 0.0
+    return [*y_ticks, *x_ticks, AXES.format(chart.left, foot if foreign else TOP, foot, RIGHT), names]
 
 
 def _at(scale: Scale, value: float) -> float:

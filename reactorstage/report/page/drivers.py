@@ -32,7 +32,7 @@ def driver_chart(rows: Sequence[Driver], aim: Aim) -> Chart:
         y_name="",
         x_range=ends,
         y_range=(-len(rows) + 0.5, 0.5),
-        curves=(Curve(np.zeros(2), np.array([0.5, 0.5 - len(rows)]), look.INK, "hair"),),
+        curves=tuple(_zero(k) for k in range(len(rows))),
         labels=tuple(
             label
             for k, (row, size) in enumerate(zip(rows, sizes, strict=True))
@@ -44,6 +44,11 @@ def driver_chart(rows: Sequence[Driver], aim: Aim) -> Chart:
         left=LEFT,
         bottom=bottom,
     )
+
+
+def _zero(k: int) -> Curve:
+    """A stroke at zero beside the bar, so that no line runs through the names."""
+    return Curve(np.zeros(2), np.array([-k - 0.42, -k + 0.1]), look.INK, "plain")
 
 
 def _name(k: int, row: Driver, low: float) -> Label:

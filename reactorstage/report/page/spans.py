@@ -16,7 +16,7 @@ from reactorstage.report.page.chart import RIGHT, TOP, WIDTH, Bar, Chart, Curve,
 ROW = 30.0
 LETTER, BESIDE = 6.3, 14.0
 MOST_NAME = 0.46
-ROOM = 0.03
+AROUND, ROOM = 0.4, 0.03
 HALF = 0.2
 Ranges = Mapping[str, tuple[float, float]]
 
@@ -56,12 +56,17 @@ def _chart(key: str, kind: str, rows: Sequence[FlatNumber], ranges: Ranges) -> C
 
 
 def _axis(kind: str, rows: Sequence[FlatNumber], ranges: Ranges) -> tuple[float, float]:
-    """What holds every range, span, today's value and the best, with a little room."""
+    """What holds every span, today's value and the best, with room beside them up to the search ranges."""
     ends = [end for row in rows for span in row.spans for end in span]
-    ends += [end for row in rows for end in (row.best, row.today, *ranges.get(row.name, ()))]
-    low, high = (shown(end, kind) or 0.0 for end in (min(ends), max(ends)))
-    room = ROOM * (high - low) or 1.0
-    return low - room, high + room
+    ends += [end for row in rows for end in (row.best, row.today)]
+    beyond = [*ends, *(end for row in rows for end in ranges.get(row.name, ()))]
+    low, high, lowest, highest = (
+        shown(end, kind) or 0.0 for end in (min(ends), max(ends), min(beyond), max(beyond))
+    )
+    room = AROUND * (high - low) or 1.0
+    low, high = max(low - room, lowest), min(high + room, highest)
+    edge = ROOM * (high - low) or 1.0
+    return low - edge, high + edge
 
 
 def _range_line(k: int, row: FlatNumber, ranges: Ranges) -> Curve:

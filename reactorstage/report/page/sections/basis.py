@@ -25,7 +25,7 @@ def inputs(subject: Subject) -> Section:
         Column(("group",), tuple(row.group for row in rows), left=True),
         Column(("name",), tuple(row.name for row in rows), left=True),
         Column(("as given",), tuple(row.text for row in rows), left=True),
-        Column(("where",), tuple(row.place.replace(f"{file}:", "line ") for row in rows), left=True),
+        Column(("where",), tuple(row.place.replace(f"{file}:", "line\u00a0") for row in rows), left=True),
     ])  # fmt: skip
     blocks: list[Block] = [
         Words(f"{AS_GIVEN} Lines without a file are those of {file}."),

@@ -6,6 +6,7 @@ from reactorstage.optimiser.programme import Programme
 from reactorstage.optimiser.result import CANNOT, Optimum
 from reactorstage.report.aim import Aim, aim_of
 from reactorstage.report.certificate import answers_table, certificate, curvature_text, small
+from reactorstage.report.changes import spoken
 from reactorstage.report.display import brief, counted, fixed, readable, shown, unit
 from reactorstage.report.page.parts import Block, Facts, Folded, Grid, Section
 from reactorstage.report.page.subject import Search, Subject
@@ -72,7 +73,7 @@ def settings_table(programme: Programme, optimum: Optimum, aim: Aim) -> Table:
     """Free numbers of each answer and its aim."""
     user = [(k, number) for k, number in enumerate(programme.numbers) if not number.internal]
     last = f"aim, {aim.unit or 'its number'}"
-    columns = [Column(("",), (*(number.name for _, number in user), last), left=True)]
+    columns = [Column(("",), (*(spoken(number.name) for _, number in user), last), left=True)]
     for n, answer in enumerate(optimum.answers, 1):
         values = [_number(shown(float(answer.x[k]), number.kind)) for k, number in user]
         value = aim.value(answer.cost)

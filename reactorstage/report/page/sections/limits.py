@@ -27,8 +27,8 @@ from reactorstage.train.result import LimitState, Rating
 EVERY = 10_000
 REACH = (
     "Relaxing pays as long as each further part saves at least half as much, per unit, as the first step. "
-    "Then come the limits that have taken over, the relaxation from which the limit no longer matters, and what "
-    "that saves in all."
+    "Then come the limits that have taken over, the relaxation from which the limit no longer matters, and "
+    "what that saves in all."
 )
 
 
@@ -41,7 +41,8 @@ def limits(subject: Subject) -> Section | None:
     if subject.search is not None:
         blocks += worths(subject, subject.search)
     nearest = bounds.rating_table(rating, EVERY)
-    blocks.append(Grid(nearest, "Limits: broken ones, then the nearest of each label"))
+    if nearest.rows:
+        blocks.append(Grid(nearest, "Limits: broken ones, then the nearest of each label"))
     blocks.append(Folded("Every limit with its margin", (Grid(every_limit(rating), "Every limit"),)))
     return Section("limits", "Limits at work", tuple(blocks))
 

@@ -10,10 +10,10 @@ from reactorstage.report.page.parts import Block, Grid, Section, Words
 from reactorstage.report.page.subject import Search, Subject
 
 NOTE = (
-    "Values are those that can be entered. What stands after `with` is entered at once with the line above. "
-    "Each move ends inside all limits by itself, so that one can stop after any of them; where today breaks "
-    "limits, the first brings them back."
-).replace("`", "")
+    "Values are those that can be entered; a line that begins with the word with is entered at once with the "
+    "line above. Each move by itself ends inside all limits, so that one can stop after any of them; where "
+    "today breaks limits, the first brings them back."
+)
 
 
 def moves(subject: Subject) -> Section | None:

@@ -35,7 +35,7 @@ def side_by_side(subject: Subject, other: Reference) -> list[Block]:
     try:
         found = in_shown_units(comparison(subject, other.rating))
     except CallError as error:
-        return [Words(f"{error}.".replace("..", "."))]
+        return [Words(f"{str(error)[:1].upper()}{str(error)[1:]}.")]
     tables = comparison_tables(found, subject.now.by_products, ("reference", "here"))
     return [
         Words(" ".join([verdict(found), *limits_sentences(found), *found.notes])),

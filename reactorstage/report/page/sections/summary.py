@@ -31,10 +31,11 @@ def summary(subject: Subject) -> Section:
 
 def summary_facts(subject: Subject) -> list[tuple[str, tuple[str, ...]]]:
     """Questions with their answers, those without one left out."""
+    money = aim_of(subject.now).kind == MONEY
     facts = (
         ("Inside its limits?", tuple(inside(subject))),
-        ("What does it cost?", tuple(cost(subject))),
-        ("Which limits cost money?", tuple(dear_limits(subject))),
+        ("What does it cost?" if money else "What does it achieve?", tuple(cost(subject))),
+        ("Which limits cost money?" if money else "Which limits hold it back?", tuple(dear_limits(subject))),
         ("What to change first?", tuple(first(subject))),
         ("What to worry about?", tuple(worries(subject))),
     )
@@ -154,11 +155,18 @@ def moves_texts(subject: Subject, search: Search, today: Rating) -> list[str]:
 
 def worries(subject: Subject) -> list[str]:
     """States, unlit beds, validity, second phases, range ends, other answers, margins, heat, the caution."""
-    texts = [*sentences.notes(subject.now), near_a_boundary(subject.now)]
+    warned = subject.seen.warnings
+    notes = [one for one in sentences.notes(subject.now) if not _said_by(one, warned)]
+    texts = [*notes, near_a_boundary(subject.now)]
     if subject.search is not None:
         texts += search_worries(subject, subject.search)
-    texts += [hottest(subject.now), *subject.seen.warnings, SHORT]
+    texts += [hottest(subject.now), *warned, SHORT]
     return [text for text in texts if text]
+
+
+def _said_by(note: str, others: Sequence[str]) -> bool:
+    """Whether another text begins with what a note says."""
+    return any(other.startswith(note.rstrip(".")) for other in others)
 
 
 def search_worries(subject: Subject, search: Search) -> list[str]:

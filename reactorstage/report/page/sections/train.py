@@ -20,6 +20,11 @@ SLOPE = (
     "its slope promises no more than that a small disturbance does not grow without swinging."
 )
 FOLD = "A size of 100 % is that of the exchanger as it stands."
+BY_GIBBS = (
+    "The possible rise follows the Gibbs energies of the species data; where a law has an equilibrium "
+    "constant of its own, a bed can go beyond it."
+)
+MORE_THAN_ALL = 1.005
 SIGNS = "* a limit holds this value; ! this value breaks a limit."
 
 
@@ -28,9 +33,9 @@ def train(subject: Subject) -> Section | None:
     now, was = subject.now, subject.behind
     if not now.profiles:
         return None
-    compared = " `Now` is this setting, `was` today's." if was is not None else ""
+    compared = " Now is this setting, was today's." if was is not None else ""
     blocks: list[Block] = [
-        Grid(bed_table(now, was), "Beds in flow direction", f"{SIGNS}{compared}".replace("`", "")),
+        Grid(bed_table(now, was), "Beds in flow direction", f"{SIGNS}{compared}{beyond(now)}"),
     ]
     if text := sentences.out_line(now, was):
         blocks.append(Words(f"O{text[1:]}."))
@@ -43,6 +48,12 @@ def train(subject: Subject) -> Section | None:
     if len(rows) > 1 or any(row.now for row in rows):
         blocks.append(Grid(money_table(rows, subject.currency), "Money, cost positive"))
     return Section("train", "Train and gaps", tuple(blocks))
+
+
+def beyond(rating: Rating) -> str:
+    """What it means when a bed rises further than it could by the Gibbs energies; else empty."""
+    used = [value.value for name, value in rating.quantities.items() if name.endswith(".utilisation")]
+    return f" {BY_GIBBS}" if any(share is not None and share > MORE_THAN_ALL for share in used) else ""
 
 
 def closed(rating: Rating) -> list[Block]:
