@@ -184,7 +184,8 @@ def _after_money(outcome: Optimisation, best: Rating, width: int) -> list[str]:
 def _range_ends(outcome: Optimisation) -> str:
     names = outcome.optimum.best.at_range
     return (
-        f"RANGE ENDS   {', '.join(names)}: the search range holds these, no limit does; widen it."
+        f"RANGE ENDS   {', '.join(names)}: the search range holds {'this' if len(names) == 1 else 'these'}, "
+        "no limit does; widen it."
         if names
         else ""
     )

@@ -11,13 +11,21 @@ from reactorstage.report import look
 from reactorstage.report.changes import spoken
 from reactorstage.report.display import fixed, shown, unit
 from reactorstage.report.flatness import spans_text
-from reactorstage.report.page.chart import RIGHT, TOP, WIDTH, Bar, Chart, Curve, Label, Mark
+from reactorstage.report.page.chart import TOP, Bar, Chart, Curve, Mark
+from reactorstage.report.page.names import name_labels, room_for
 
 ROW = 30.0
-LETTER, BESIDE = 6.3, 14.0
-MOST_NAME = 0.46
 AROUND, ROOM = 0.4, 0.03
 HALF = 0.2
+COLOURS = {
+    "temperature": look.TEMPERATURE,
+    "molar flow": look.SPLIT_REACTANT,
+    "mass flow": look.SPLIT_REACTANT,
+    "fraction": look.SPLIT_REACTANT,
+    "pressure": look.PRESSURE,
+    "power": look.HEAT,
+}
+NAMES = {"fraction": "shares", "mass": "masses", "power": "heats"}
 Ranges = Mapping[str, tuple[float, float]]
 
 
@@ -31,26 +39,25 @@ def span_charts(flat: Flatness, ranges: Ranges) -> tuple[Chart, ...]:
 
 
 def _chart(key: str, kind: str, rows: Sequence[FlatNumber], ranges: Ranges) -> Chart:
-    colour = look.TEMPERATURE if kind == "temperature" else look.SPLIT_REACTANT
+    colour = COLOURS.get(kind, look.LIMIT)
     names = [spoken(row.name) for row in rows]
     low, high = _axis(kind, rows, ranges)
+    room = room_for(names)
     return Chart(
         key=key,
-        title=f"How far {kind}s are flat" if not kind.endswith("s") else f"How far {kind} is flat",
+        title=f"How far {NAMES.get(kind, f'{kind}s')} can be moved",
         alt=" ".join(_words(name, row, kind) for name, row in zip(names, rows, strict=True)),
         x_name=unit(kind) or "its number",
         y_name="",
         x_range=(low, high),
         y_range=(-len(rows) + 0.5, 0.5),
         curves=tuple(_range_line(k, row, ranges) for k, row in enumerate(rows) if row.name in ranges),
-        labels=tuple(
-            Label(low, -k, name, "end", (-BESIDE / 2, 4.0)) for k, name in enumerate(names)
-        ),
+        labels=tuple(one for k, name in enumerate(names) for one in name_labels(low, -k, name, room)),
         bars=tuple(_bar(k, span, kind, colour) for k, row in enumerate(rows) for span in row.spans),
         marks=tuple(mark for k, row in enumerate(rows) for mark in _marks(k, row)),
         legend=_legend(colour, rows, ranges),
         bare_y=True,
-        left=min(LETTER * max(map(len, names)) + BESIDE, MOST_NAME * WIDTH, RIGHT - 120.0),
+        left=room,
         bottom=TOP + ROW * len(rows),
     )  # fmt: skip
 

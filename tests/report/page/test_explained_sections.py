@@ -14,9 +14,11 @@ from reactorstage.errors import CallError
 from reactorstage.face import Optimisation
 from reactorstage.optimiser.reasons import Flatness, FlatNumber
 from reactorstage.report.aim import aim_of
+from reactorstage.report.certificate import curvature_text
 from reactorstage.report.drivers import drivers
-from reactorstage.report.page.chart import svg
+from reactorstage.report.page.chart import WIDTH, svg
 from reactorstage.report.page.drivers import driver_chart
+from reactorstage.report.page.names import BESIDE, LETTER, lines_of, name_labels, room_for
 from reactorstage.report.page.render import page_html
 from reactorstage.report.page.said import said
 from reactorstage.report.page.sections.moves import in_all_text
@@ -195,3 +197,23 @@ def test_an_unlike_reference_is_told_and_nothing_more(page: Made, cases: Path) -
 )
 def test_lines_of_the_terminal_become_sentences(line: str, sentence: str) -> None:
     assert said(line) == sentence
+
+
+@pytest.mark.parametrize(
+    "name",
+    ["hot", "cold bypass of exchanger interchanger", "a" * 90, "one name " * 12, "light-off, beds 1-4"],
+)
+def test_names_beside_rows_keep_to_their_room(name: str) -> None:
+    room = room_for([name])
+    lines = lines_of(name, room)
+    assert 1 <= len(lines) <= 2 and all(LETTER * len(line) + BESIDE <= room + LETTER for line in lines)
+    assert lines[0].startswith(name[:3]) and room <= 0.5 * WIDTH
+    shifts = [label.shift[1] for label in name_labels(0.0, 0.0, name, room)]
+    assert np.mean(shifts) == pytest.approx(4.0)
+
+
+def test_a_flat_direction_is_told_in_words(found: Optimisation) -> None:
+    assert found.best is not None
+    aim = aim_of(found.best)
+    assert "stays the same" in curvature_text(-1e-9, aim) and "stays the same" in curvature_text(0.0, aim)
+    assert "does not rise" in curvature_text(-1.0, aim) and "rises by at least" in curvature_text(1.0, aim)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from functools import partial
 
 from reactorstage.optimiser.result import CANNOT, INSIDE, NO_ANSWER
 from reactorstage.report import bounds, sentences
@@ -10,7 +11,7 @@ from reactorstage.report.accounts import accounts
 from reactorstage.report.aim import MONEY, aim_of, cost_difference
 from reactorstage.report.cautions import SHORT
 from reactorstage.report.changes import spoken
-from reactorstage.report.display import and_list, counted, difference_kind, fixed, shown, told, unit
+from reactorstage.report.display import and_list, counted, difference_kind, fixed, readable, shown, told, unit
 from reactorstage.report.moves import first_move_text
 from reactorstage.report.page.parts import Facts, Section
 from reactorstage.report.page.said import said
@@ -111,13 +112,12 @@ def dear_limits(subject: Subject) -> list[str]:
 
 def worth_sentence(bar: WorthBar, money: str, in_money: bool) -> str:
     """`light-off, beds 1-4: 1 K more freedom saves 3.7 EUR/h, 1 K less costs 4.7 EUR/h.`"""
-    decimals = 1 if in_money else 3
-    saves = "could not be solved" if bar.saves is None else f"saves {fixed(bar.saves, decimals)} {money}"
+    number = partial(fixed, decimals=1) if in_money else readable
+    verb = "saves" if in_money else "brings"
+    saves = "could not be solved" if bar.saves is None else f"{verb} {number(bar.saves)} {money}"
     saves += f" and goes on paying for {bar.pays_for}" if bar.pays_for else ""
     costs = (
-        "leaves no setting inside the limits"
-        if bar.costs is None
-        else f"costs {fixed(bar.costs, decimals)} {money}"
+        "leaves no setting inside the limits" if bar.costs is None else f"costs {number(bar.costs)} {money}"
     )
     return f"{bar.name}: {bar.step} more freedom {saves}, {bar.step} less {costs}."
 
