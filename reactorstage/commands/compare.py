@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
+from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, TypeVar
 
 import click
 
 from reactorstage.commands.console import say
-from reactorstage.commands.options import json_option, quiet_option, set_option
+from reactorstage.commands.options import json_option, quiet_option, set_option, units_option
 from reactorstage.commands.verbs import Verb, status_of
 from reactorstage.errors import CallError
 
@@ -24,15 +25,33 @@ Result = TypeVar("Result")
 PROPOSED, BEST = "the setting proposed", "the best one"
 
 
+@dataclass(frozen=True)
+class Asked:
+    """The options of one call."""
+
+    overrides: tuple[str, ...]
+    best: bool
+    as_json: bool
+    quiet: bool
+    units: str
+
+
 @click.command(cls=Verb, example='reactorstage compare plant.yaml --set "bed 1.inlet temperature=370 degC"')
 @click.argument("first", metavar="FIRST", type=click.Path(path_type=Path))
 @click.argument("second", metavar="[SECOND]", required=False, type=click.Path(path_type=Path))
 @set_option
 @click.option("--best", is_flag=True, help="Take each case at its best setting, not as it is set.")
+@units_option
 @json_option
 @quiet_option
 def compare(
-    first: Path, second: Path | None, overrides: tuple[str, ...], best: bool, as_json: bool, quiet: bool
+    first: Path,
+    second: Path | None,
+    overrides: tuple[str, ...],
+    best: bool,
+    units: str,
+    as_json: bool,
+    quiet: bool,
 ) -> int:
     """Compare SECOND with FIRST, or the setting of one case with its best: why is it worse, and what changed.
 
@@ -43,6 +62,7 @@ def compare(
     """
     paths = [path for path in (first, second) if path is not None]
     results = [is_result(path) for path in paths]
+    asked = Asked(overrides, best, as_json, quiet, units)
     if overrides and all(results):
         raise CallError("--set changes a case; a result file stays as it is")
     if best and second is None:
@@ -50,8 +70,8 @@ def compare(
     if best and all(results):
         raise CallError("--best optimises a case; a result file stays as it is")
     if second is None:
-        return _against_best(first, overrides, as_json, quiet)
-    _two(first, second, overrides, best, as_json, quiet)
+        return _against_best(first, asked)
+    _two(first, second, asked)
     return 0
 
 
@@ -60,20 +80,18 @@ def is_result(path: Path) -> bool:
     return path.suffix.lower() == ".json"
 
 
-def _two(
-    first: Path, second: Path, overrides: tuple[str, ...], best: bool, as_json: bool, quiet: bool
-) -> None:
+def _two(first: Path, second: Path, asked: Asked) -> None:
     """Two files side by side."""
     from reactorstage.report.comparison import compared
 
-    one, other = (_content(path, overrides, best, quiet) for path in (first, second))
+    one, other = (_content(path, asked) for path in (first, second))
     names = one["case"]["name"], other["case"]["name"]
     if names[0] == names[1]:
         names = (str(first), str(second)) if first != second else ("the first", "the second")
-    _show(compared(one, other, names), other["train"].get("by-products", []), as_json)
+    _show(compared(one, other, names), other["train"].get("by-products", []), asked)
 
 
-def _content(path: Path, overrides: tuple[str, ...], best: bool, quiet: bool) -> Any:
+def _content(path: Path, asked: Asked) -> Any:
     """What a file gives: a result as it is written, a case rated or optimised."""
     from reactorstage import face
     from reactorstage.case import load
@@ -82,27 +100,27 @@ def _content(path: Path, overrides: tuple[str, ...], best: bool, quiet: bool) ->
 
     if is_result(path):
         return content_of(path)
-    case = load(path, overrides)
-    tell_of_compilation(case, quiet)
-    if not best:
+    case = load(path, asked.overrides)
+    tell_of_compilation(case, asked.quiet)
+    if not asked.best:
         return content_of(face.rate(case))
     return _watched(
-        case, quiet, lambda progress: content_of(face.optimise(case, progress=progress, explain=False))
+        case, asked, lambda progress: content_of(face.optimise(case, progress=progress, explain=False))
     )
 
 
-def _watched(case: Case, quiet: bool, work: Callable[[ProgressLine], Result]) -> Result:
+def _watched(case: Case, asked: Asked, work: Callable[[ProgressLine], Result]) -> Result:
     """What some work gives, with a line of progress while it lasts."""
-    from reactorstage.commands.console import ProgressLine
+    from reactorstage.commands.console import progress_line
 
-    progress = ProgressLine(quiet, case.currency if case.aim.quantity.startswith("money.") else "")
+    progress = progress_line(case, asked.quiet, asked.units)
     try:
         return work(progress)
     finally:
         progress.end()
 
 
-def _against_best(path: Path, overrides: tuple[str, ...], as_json: bool, quiet: bool) -> int:
+def _against_best(path: Path, asked: Asked) -> int:
     """The setting of a case against the best one found for it; the exit status of the search."""
     from reactorstage import face
     from reactorstage.case import load
@@ -111,27 +129,31 @@ def _against_best(path: Path, overrides: tuple[str, ...], as_json: bool, quiet: 
 
     if is_result(path):
         raise CallError(f"{path} is a result; name a second one to compare it with, or a case alone")
-    case = load(path, overrides)
-    tell_of_compilation(case, quiet)
-    outcome = _watched(case, quiet, lambda progress: face.optimise(case, progress=progress))
+    case = load(path, asked.overrides)
+    tell_of_compilation(case, asked.quiet)
+    outcome = _watched(case, asked, lambda progress: face.optimise(case, progress=progress))
     found = side_by_side(outcome, outcome.today, (BEST, PROPOSED))
-    _show(found, outcome.today.by_products, as_json, outcome)
+    _show(found, outcome.today.by_products, asked, outcome)
     return status_of(outcome.status)
 
 
 def _show(
-    found: Comparison, by_products: Sequence[str], as_json: bool, outcome: Optimisation | None = None
+    found: Comparison, by_products: Sequence[str], asked: Asked, outcome: Optimisation | None = None
 ) -> None:
-    """The comparison as a screen or as JSON, with the moves where there are some."""
+    """The comparison as a screen in the chosen units or as JSON, with the moves where there are some."""
     from reactorstage.commands.layout import screen_width
     from reactorstage.report.compared import comparison_json
+    from reactorstage.report.comparison_units import in_shown_units
+    from reactorstage.report.display import in_units
     from reactorstage.report.result_json import as_text
 
-    if as_json:
+    if asked.as_json:
         say(as_text({**comparison_json(found), **_moves_json(outcome)}).rstrip("\n"))
         return
     width = screen_width()
-    say("\n".join([*comparison_lines(found, by_products, width), *_moves_lines(outcome, width)]))
+    with in_units(asked.units):
+        shown = in_shown_units(found)
+        say("\n".join([*comparison_lines(shown, by_products, width), *_moves_lines(outcome, width)]))
 
 
 def comparison_lines(found: Comparison, by_products: Sequence[str], width: int) -> list[str]:

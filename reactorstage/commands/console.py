@@ -6,6 +6,7 @@ import os
 import re
 import sys
 import time
+from collections.abc import Callable
 from typing import TYPE_CHECKING, TextIO
 
 import click
@@ -67,22 +68,22 @@ def _painted_line(line: str) -> str:
 class ProgressLine:
     """One line on standard error that says how far the work is; nothing where it would be in the way.
 
-    currency is given where the aim is money; the best cost so far is then shown.
+    best writes the best cost so far with its unit; without it no number is shown.
     """
 
-    def __init__(self, quiet: bool, currency: str = ""):
+    def __init__(self, quiet: bool, best: Callable[[float], str] | None = None):
         self.active = not quiet and sys.stderr.isatty()
-        self.currency = currency
+        self.best = best
         self.drawn = -1.0
         self.started = time.monotonic()
 
     def __call__(self, done: int, total: int, best: float | None, text: str) -> None:
-        """done of total parts, best cost so far in money per second, what has just ended."""
+        """done of total parts, best cost of the aim so far in SI, what has just ended."""
         now = time.monotonic()
         if not self.active or (now - self.drawn < REDRAW_SECONDS and done < total):
             return
         self.drawn = now
-        found = f", best {3600.0 * best:.1f} {self.currency}/h" if best is not None and self.currency else ""
+        found = f", best {self.best(best)}" if best is not None and self.best else ""
         self._write(f"{text}{found}, {now - self.started:.1f} s")
 
     def end(self) -> None:
@@ -93,3 +94,21 @@ class ProgressLine:
     def _write(self, text: str) -> None:
         sys.stderr.write(f"\r\x1b[K{text[:100]}")
         sys.stderr.flush()
+
+
+def progress_line(case: Case, quiet: bool, units: str = "trade") -> ProgressLine:
+    """A line of progress for the search of a case; raises CaseProblems."""
+    line = ProgressLine(quiet)
+    if line.active:
+        from reactorstage import face
+        from reactorstage.report.aim import aim_in
+        from reactorstage.report.display import in_units
+
+        kind = face.compile(case).model.aim.kind
+
+        def best(cost: float) -> str:
+            with in_units(units):
+                return aim_in(case, kind).told(cost)
+
+        line.best = best
+    return line

@@ -36,11 +36,16 @@ def table_lines(table: Table, width: int) -> list[str]:
 
 
 def fitting(columns: Sequence[Column], width: int) -> list[Column]:
-    """The columns that fit, the highest ranks left out first."""
+    """The columns that fit, the highest ranks left out first; equal ranks under one heading go together."""
     kept = list(columns)
     while _total(kept) > width and any(column.rank > ALWAYS for column in kept):
-        kept.remove(max(kept, key=lambda column: column.rank))
+        last = max(kept, key=lambda column: column.rank)
+        kept = [one for one in kept if one is not last and not _beside(one, last)]
     return kept
+
+
+def _beside(one: Column, other: Column) -> bool:
+    return bool(other.group) and one.group == other.group and one.rank == other.rank
 
 
 def _total(columns: Sequence[Column]) -> int:

@@ -63,12 +63,12 @@ def optimise(
     """
     from reactorstage import face
     from reactorstage.case import load
-    from reactorstage.commands.console import ProgressLine, tell_of_compilation
+    from reactorstage.commands.console import progress_line, tell_of_compilation
 
     output = output_of(case_file, overrides=overrides, **options)
     case = load(case_file, overrides)
     tell_of_compilation(case, output.quiet)
-    progress = ProgressLine(output.quiet, case.currency if case.aim.quantity.startswith("money.") else "")
+    progress = progress_line(case, output.quiet, output.units)
     try:
         outcome = face.optimise(case, starts=starts, seed=seed, jobs=jobs, progress=progress)
     finally:

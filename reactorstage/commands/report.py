@@ -62,7 +62,7 @@ def report(
     --as-set with those of `rate`.
     """
     from reactorstage.case import load
-    from reactorstage.commands.console import ProgressLine, say, tell, tell_of_compilation
+    from reactorstage.commands.console import progress_line, say, tell, tell_of_compilation
     from reactorstage.report.files import write_all
     from reactorstage.report.page.render import page_html
 
@@ -70,18 +70,13 @@ def report(
     case = load(case_file, overrides)
     other = load(against) if against is not None else None
     tell_of_compilation(case, quiet)
-    work = Work(as_set, starts, seed, jobs, ProgressLine(quiet, currency_of(case)))
+    work = Work(as_set, starts, seed, jobs, progress_line(case, quiet, units))
     subject = work.subject(case, other, overrides)
     paths = write_all(place, {NAME: page_html(subject, units)})
     say("\n".join(summary_lines(subject, units)))
     if not quiet:
         tell(f"written: {paths[0]}")
     return status_of(subject.status)
-
-
-def currency_of(case: Case) -> str:
-    """The currency for the progress line; empty where the aim is not money."""
-    return case.currency if case.aim.quantity.startswith("money.") else ""
 
 
 class Work:

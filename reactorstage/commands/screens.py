@@ -12,10 +12,11 @@ from reactorstage.report import bounds, sentences
 from reactorstage.report.accounts import accounts, heat_words
 from reactorstage.report.aim import aim_of
 from reactorstage.report.beds import bed_table
-from reactorstage.report.closures import exchanger_table, residual_text
+from reactorstage.report.closures import exchanger_table, recycle_table, residual_text
 from reactorstage.report.display import counted, unit
 from reactorstage.report.gaps import gap_table
 from reactorstage.report.moves import first_move_text
+from reactorstage.report.phase import margin_table
 from reactorstage.report.reach import conflict_text, pairs_text, reach_text
 from reactorstage.train.result import Rating
 
@@ -32,7 +33,8 @@ def rating_lines(rating: Rating, seconds: float, width: int) -> list[str]:
         *_failure(rating, width),
         *_block(table_lines(bed_table(rating), width), paragraph(sentences.out_line(rating), width, 5)),
         *_block(table_lines(gap_table(rating), width)),
-        *_block(table_lines(exchanger_table(rating), width)),
+        *_closed(rating, width),
+        *_block(table_lines(margin_table(rating), width)),
         *_block(table_lines(bounds.rating_table(rating), width), _more_limits(rating)),
         *_block(_money(rating, None, width)),
         *_numbered(sentences.warnings(rating), width),
@@ -53,7 +55,8 @@ def optimum_lines(outcome: Optimisation, width: int) -> list[str]:
             table_lines(bed_table(best, today), width), paragraph(sentences.out_line(best, today), width, 5)
         ),
         *_block(table_lines(gap_table(best, today), width)),
-        *_block(table_lines(exchanger_table(best), width)),
+        *_closed(best, width),
+        *_block(table_lines(margin_table(best), width)),
         *_block(_held(outcome, best, width)),
         *_money(best, today, width),
         *_after_money(outcome, best, width),
@@ -117,6 +120,12 @@ def _block(*parts: Sequence[str]) -> list[str]:
     return ["", *lines] if lines else []
 
 
+def _closed(rating: Rating, width: int) -> list[str]:
+    """Exchangers and recycles, where there are any."""
+    made = (exchanger_table(rating), recycle_table(rating))
+    return [line for one in made for line in _block(table_lines(one, width))]
+
+
 def _more_limits(rating: Rating) -> list[str]:
     total = sum(not state.implied for state in rating.limits)
     count = len(bounds.broken(rating))
@@ -175,7 +184,8 @@ def _after_money(outcome: Optimisation, best: Rating, width: int) -> list[str]:
 def _range_ends(outcome: Optimisation) -> str:
     names = outcome.optimum.best.at_range
     return (
-        f"RANGE ENDS   {', '.join(names)}: the search range holds these, no limit does; widen it."
+        f"RANGE ENDS   {', '.join(names)}: the search range holds {'this' if len(names) == 1 else 'these'}, "
+        "no limit does; widen it."
         if names
         else ""
     )

@@ -76,12 +76,12 @@ def explanation(job: Job, answers: Sequence[Answer], today: Array) -> Explanatio
     base = base_of(job, answers)
     known = base.known
     tasks: list[Task] = [
-        (f"worth of {one.label}", partial(worth, base, one))
-        for one in moves(job.programme.limits, asked_for(job.programme, answers[0]))
-    ]
-    tasks += [
         (f"equal split of {g.feed}", partial(equal_split, base, g, [known[0], today, *known[1:]]))
         for g in job.programme.splits
+    ]
+    tasks += [
+        (f"worth of {one.label}", partial(worth, base, one))
+        for one in moves(job.programme.limits, asked_for(job.programme, answers[0]))
     ]
     tasks.append(("keep away", partial(keep_away_cost, base)))
     return sorted_out(done(job, base.cost, tasks), base)

@@ -129,8 +129,21 @@ def joined(spans: Sequence[tuple[float, float]], width: float) -> list[tuple[flo
 def staying_cost(base: Base, handle: Handle, value: float) -> float | None:
     """What it costs to hold a value, all else re-optimised; None where nothing inside is found."""
     held = Held(base.programme, handle.direction, value - handle.offset)
-    found = resolve(held, base.known, base)
+    found = resolve(held, base.known, base, restore=False)
+    if found.x is None and not beyond_reach(base, handle, value):
+        found = resolve(held, base.known, base)
     return None if found.x is None else max(found.cost - base.cost, 0.0)
+
+
+def beyond_reach(base: Base, handle: Handle, value: float) -> bool:
+    """Whether the limits stop the number short of a value, pushed towards it from every answer."""
+    for x in base.known:
+        sign = 1.0 if value >= handle.value(x) else -1.0
+        pushed = Pushed(base.programme, sign * handle.direction / handle.width)
+        found = resolve(pushed, [x], replace(base, cost=0.0, size=1.0), restore=False)
+        if found.x is None or sign * (value - handle.value(found.x)) <= AT_REST * handle.width:
+            return False
+    return True
 
 
 def left_alone(

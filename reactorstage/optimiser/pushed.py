@@ -20,12 +20,15 @@ from reactorstage.optimiser.scaling import needed
 
 @dataclass(frozen=True)
 class Pushed:
-    """The largest direction @ x inside all limits and at a cost of at most budget; size scales that row."""
+    """The largest direction @ x inside all limits and at a cost of at most budget; size scales that row.
+
+    Without a budget the cost may be what it will.
+    """
 
     programme: Programme
     direction: Array
-    budget: float
-    size: float
+    budget: float | None = None
+    size: float = 1.0
 
     @property
     def numbers(self) -> tuple[FreeNumber, ...]:
@@ -33,6 +36,8 @@ class Pushed:
 
     @property
     def limits(self) -> tuple[LimitRow, ...]:
+        if self.budget is None:
+            return self.programme.limits
         row = LimitRow(
             "budget", "", "cost", "at most", self.budget, 0.0, "number", self.size, self.size, implied=True
         )
@@ -62,10 +67,11 @@ class Pushed:
         """The cost becomes a limit, the form the cost."""
         if not evaluation.ok:
             return evaluation
+        turned = replace(evaluation, cost=-float(self.direction @ x), cost_dx=-self.direction)
+        if self.budget is None:
+            return turned
         return replace(
-            evaluation,
-            cost=-float(self.direction @ x),
-            cost_dx=-self.direction,
+            turned,
             margin=np.append(needed(evaluation.margin), self.budget - evaluation.cost),
             margin_dx=np.vstack([needed(evaluation.margin_dx), -needed(evaluation.cost_dx)]),
             weight=np.append(needed(evaluation.weight), 1.0),

@@ -13,7 +13,7 @@ from reactorstage.optimiser.multipliers import NEAR, multipliers
 from reactorstage.optimiser.polish import answer_at
 from reactorstage.optimiser.programme import Array, Programme
 from reactorstage.optimiser.scaling import scale_at, scaled
-from reactorstage.optimiser.solve import Ending
+from reactorstage.optimiser.solve import Ending, descend
 
 INSIDE_ENOUGH = 1e-6
 NOISE = 1e-6
@@ -47,9 +47,14 @@ class Resolved:
     nearest: Array | None = None
 
 
-def resolve(programme: Programme, points: Iterable[Array], base: Base) -> Resolved:
-    """Cheapest local optimum of a changed programme from the given points."""
-    endings = [local_solve(programme, x, base.size, stop=base.stop) for x in points]
+def resolve(programme: Programme, points: Iterable[Array], base: Base, restore: bool = True) -> Resolved:
+    """Cheapest local optimum of a changed programme from the given points.
+
+    Where limits stay broken they are let give way first, unless restore is off; that costs far more than
+    the rest.
+    """
+    solve = local_solve if restore else descend
+    endings = [solve(programme, x, base.size, stop=base.stop) for x in points]
     ended = [ending for ending in endings if ending.feasible and not ending.stopped]
     found = [finished(programme, ending, base) for ending in ended]
     inside = [result for result in found if result.x is not None]

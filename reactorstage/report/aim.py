@@ -3,9 +3,13 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
-from reactorstage.report.display import difference, difference_kind, fixed, readable, shown, unit
+from reactorstage.report.display import difference, difference_kind, fixed, readable, shown, told, unit
 from reactorstage.train.result import Rating
+
+if TYPE_CHECKING:
+    from reactorstage.case.model import Case
 
 MONEY = "money rate"
 SAME = 0.05
@@ -52,14 +56,23 @@ class Aim:
         """The quantity, in display units, that belongs to a cost."""
         return None if cost is None else shown(self.sign * cost, self.kind)
 
+    def told(self, cost: float) -> str:
+        """What is aimed at, with its unit: `979.8 EUR/h`, `87.1 %`."""
+        if self.kind == MONEY:
+            return f"{fixed(self.value(cost), 1)} {self.unit}"
+        return told(self.sign * cost, self.kind)
+
 
 def aim_of(rating: Rating) -> Aim:
     """The aim of the case that was rated."""
-    aim = rating.case.aim
-    known = rating.quantities.get(aim.quantity)
-    kind = MONEY if known is None else known.kind
-    sign = 1.0 if aim.direction == "least" else -1.0
-    return Aim(aim.quantity, kind, sign, unit(difference_kind(kind), rating.case.currency))
+    known = rating.quantities.get(rating.case.aim.quantity)
+    return aim_in(rating.case, MONEY if known is None else known.kind)
+
+
+def aim_in(case: Case, kind: str) -> Aim:
+    """The aim of a case, whose quantity is of this kind."""
+    sign = 1.0 if case.aim.direction == "least" else -1.0
+    return Aim(case.aim.quantity, kind, sign, unit(difference_kind(kind), case.currency))
 
 
 def cost_difference(one: Rating, other: Rating) -> float | None:

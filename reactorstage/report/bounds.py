@@ -207,7 +207,7 @@ def _allowed_text(worth: Worth, rating: Rating) -> str:
 
 
 def next_text(rating: Rating) -> str:
-    """`Next: slip, effluent: 1.10 of 1.35 kmol/h; ...` or nothing."""
+    """`Next: slip, effluent: 1.10 of 1.35 kmol/h; coking, bed 2: 11.9, at least 11.6 mol/mol.` or nothing."""
     states = next_ones(rating)
     if not states:
         return ""
@@ -217,7 +217,9 @@ def next_text(rating: Rating) -> str:
 def _of_text(state: LimitState, currency: str) -> str:
     value = shown(state.value, state.kind)
     assert value is not None
-    return f"{name(state)}: {brief(value, 3)} of {allowed(state.bound, state.kind, currency)}"
+    bound = allowed(state.bound, state.kind, currency)
+    between = " of" if state.direction == "at most" else f", {state.direction}"
+    return f"{name(state)}: {brief(value, 3)}{between} {bound}"
 
 
 def count_text(states: Sequence[LimitState], numbers: int) -> str:

@@ -68,7 +68,10 @@ def curvature_text(value: float | None, aim: Aim) -> str:
     """Whether the answer is a proper minimum along its limits, in words."""
     if value is None:
         return CORNER
-    size = with_unit(aim.number(abs(value)), aim.unit)
+    number = aim.number(abs(value))
+    if float(number) == 0.0:
+        return "in one direction along its limits the cost stays the same, to second order"
+    size = with_unit(number, aim.unit)
     if value <= 0.0:
         return f"along its limits the cost does not rise (second derivative -{size} per range squared)"
     return f"along its limits the cost rises by at least {size} per range squared"

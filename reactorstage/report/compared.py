@@ -13,6 +13,8 @@ from reactorstage.report.result_json import SCHEMA_VERSION, versions
 from reactorstage.report.table import Column, Table, table
 
 PER_BED = ("inlet temperature", "exit temperature", "rise", "pressure drop")
+Heads = tuple[str, str]
+HEADS: Heads = ("first", "second")
 MONEY_SHOWN = 0.05
 NOTHING = 1e-9
 
@@ -67,23 +69,24 @@ def _broken_text(row: LimitDifference, k: int) -> str:
     return f"{row.name} ({value}, {row.direction} {with_unit(brief(row.allowed[k], 6), row.unit)})"
 
 
-def comparison_tables(found: Comparison, by_products: Sequence[str]) -> list[Table]:
-    """Settings, limits, beds, gaps and money."""
+def comparison_tables(found: Comparison, by_products: Sequence[str], heads: Heads = HEADS) -> list[Table]:
+    """Settings, limits, beds, gaps and money; heads are what the two are called over the columns."""
+    per_bed = [*PER_BED, *(f"made {name}" for name in by_products)]
     made = [
-        _differences("SETTINGS", found.decisions),
-        _limits(found.limits),
-        _per_owner("BEDS", found, "bed ", [*PER_BED, *(f"made {name}" for name in by_products)]),
-        _per_owner("HEAT REMOVED", found, ("entry", "gap ", "effluent"), ["heat removed"]),
-        _money(found),
+        _differences("SETTINGS", found.decisions, heads),
+        _limits(found.limits, heads),
+        _per_owner("BEDS", found, "bed ", per_bed, heads),
+        _per_owner("HEAT REMOVED", found, ("entry", "gap ", "effluent"), ["heat removed"], heads),
+        _money(found, heads),
     ]
     return [one for one in made if one.rows]
 
 
-def _differences(title: str, rows: Sequence[Difference]) -> Table:
+def _differences(title: str, rows: Sequence[Difference], heads: Heads) -> Table:
     return table(title, [
         Column(("",), tuple(spoken(row.name) for row in rows), left=True),
-        Column(("first",), tuple(_number(row.first) for row in rows)),
-        Column(("second",), tuple(_number(row.second) for row in rows)),
+        Column((heads[0],), tuple(_number(row.first) for row in rows)),
+        Column((heads[1],), tuple(_number(row.second) for row in rows)),
         Column(("change",), tuple(_change(row) for row in rows)),
         Column(("",), tuple(row.unit for row in rows), left=True),
     ])  # fmt: skip
@@ -105,15 +108,15 @@ def _change(row: Difference) -> str:
     return f"{'+' if change > 0.0 else '-' if change < 0.0 else ''}{text}"
 
 
-def _limits(rows: Sequence[LimitDifference]) -> Table:
+def _limits(rows: Sequence[LimitDifference], heads: Heads) -> Table:
     shown = [row for row in rows if row.unit or row.values != (None, None)]
     return table("LIMITS", [
         Column(("",), tuple(row.name for row in shown), left=True),
         Column(("allowed",), tuple(_allowed(row) for row in shown), left=True),
-        Column(("first",), tuple(_number(row.values[0]) for row in shown), group=("value",)),
-        Column(("second",), tuple(_number(row.values[1]) for row in shown), group=("value",)),
-        Column(("first",), tuple(_state(row.states[0]) for row in shown), left=True, group=("state",)),
-        Column(("second",), tuple(_state(row.states[1]) for row in shown), left=True, group=("state",)),
+        Column((heads[0],), tuple(_number(row.values[0]) for row in shown), group=("value",)),
+        Column((heads[1],), tuple(_number(row.values[1]) for row in shown), group=("value",)),
+        Column((heads[0],), tuple(_state(row.states[0]) for row in shown), left=True, group=("state",)),
+        Column((heads[1],), tuple(_state(row.states[1]) for row in shown), left=True, group=("state",)),
     ])  # fmt: skip
 
 
@@ -126,23 +129,26 @@ def _state(word: str) -> str:
     return "BROKEN !" if word == "broken" else "at work *" if word == "at work" else word
 
 
-def _per_owner(title: str, found: Comparison, owners: str | tuple[str, ...], words: Sequence[str]) -> Table:
+def _per_owner(
+    title: str, found: Comparison, owners: str | tuple[str, ...], words: Sequence[str], heads: Heads
+) -> Table:
     """One row for each owner that differs, first and second of each quantity beside each other."""
     rows = {row.name: row for row in found.quantities if of_owner(row).startswith(owners)}
     places = list(dict.fromkeys(of_owner(row) for row in rows.values()))
     columns: list[Column | None] = [
         Column(("",), tuple(place.removeprefix("bed ") for place in places), left=True)
     ]
-    for word in words:
+    for rank, word in enumerate(words):
         cells = [rows.get(f"{place}.{word}") for place in places]
         unit = next((one.unit for one in cells if one), "")
         head = (f"{word.removesuffix(' temperature')}, {unit}",)
-        for which in ("first", "second"):
+        for which, named in zip(("first", "second"), heads, strict=True):
             columns.append(
                 Column(
-                    (which,),
+                    (named,),
                     tuple("-" if one is None else _number(getattr(one, which)) for one in cells),
-                    group=head,
+                    rank,
+                    head,
                 )
             )
     return (
@@ -150,12 +156,12 @@ def _per_owner(title: str, found: Comparison, owners: str | tuple[str, ...], wor
     )
 
 
-def _money(found: Comparison) -> Table:
+def _money(found: Comparison, heads: Heads) -> Table:
     rows = [row for row in found.money if row.first or row.second]
     return table(f"MONEY {found.money_unit}", [
         Column(("",), tuple(row.name for row in rows), left=True),
-        Column(("first",), tuple(fixed(row.first, 1) for row in rows)),
-        Column(("second",), tuple(fixed(row.second, 1) for row in rows)),
+        Column((heads[0],), tuple(fixed(row.first, 1) for row in rows)),
+        Column((heads[1],), tuple(fixed(row.second, 1) for row in rows)),
         Column(("change",), tuple(signed(row.change or 0.0) for row in rows)),
     ])  # fmt: skip
 

@@ -16,6 +16,7 @@ from reactorstage.chemistry.equilibrium import equilibrium
 from reactorstage.chemistry.rate_law import basis_factors
 from reactorstage.chemistry.rates import rates
 from reactorstage.chemistry.reaction import independent_count
+from reactorstage.train.at_rest import at_rest
 from reactorstage.train.chemistry import CaseChemistry
 from reactorstage.train.layout import mole_fractions
 from reactorstage.train.result import Array, Profile, Rating, StepState
@@ -59,13 +60,15 @@ class Rates:
 class Background:
     """Lines behind the way, for the whole feed at its mean pressure, over temperatures T (N,) K.
 
-    equilibrium (N,) are key conversions by the key reaction alone; rates are there when it is the only one.
+    equilibrium (N,) are key conversions by the key reaction alone, by its law's own constant where own_K
+    says that it has one; rates are there when it is the only one.
     """
 
     reaction: str
     T: Array
     equilibrium: Array
     rates: Rates | None
+    own_K: bool = False
 
 
 def has_conversion(rating: Rating) -> bool:
@@ -139,11 +142,14 @@ def background(rating: Rating, low: float, high: float) -> Background | None:
     line = _equilibrium(chemistry, keys[0], feed, s, T)
     single = independent_count(nu) == 1 and len(keys) == len(nu)
     found = _rates(rating, chemistry, keys[0], feed, s, T) if single else None
-    return Background(rating.reactions[keys[0]], T, line, found)
+    own = chemistry.own_K(keys[0]) is not None
+    return Background(rating.reactions[keys[0]], T, line, found, own)
 
 
 def _equilibrium(chemistry: CaseChemistry, key: int, feed: Feed, s: int, T: Array) -> Array:
-    """Key conversion at equilibrium of the key reaction alone, each from the answer before."""
+    """Key conversion at equilibrium of the key reaction alone, as its law sees it."""
+    if chemistry.own_K(key) is not None:
+        return np.array([1.0 - at_rest(chemistry, key, feed.F, float(t), feed.p)[s] / feed.main for t in T])
     nu, F = chemistry.laws.nu[key : key + 1], feed.F
     line = np.empty(len(T))
     for n, t in enumerate(T):

@@ -293,9 +293,10 @@ def explained(rating: Rating, behind: Background | None) -> list[str]:
     feed = f"all feeds together at {told(whole_feed(rating).p, 'pressure')}"
     if any(step.kind == "remove" for step in rating.steps):
         feed += " and nothing removed"
+    own = " by the law's own constant" if behind.own_K else ""
     if behind.rates is not None:
-        return [f"Equilibrium, best rate and equal rates: for {feed}, catalyst activity 1."]
+        return [f"Equilibrium{own}, best rate and equal rates: for {feed}, catalyst activity 1."]
     return [
         f"Several reactions: the train shows {name} used by all of them and may cross the equilibrium,",
-        f"which is that of {behind.reaction} alone, for {feed}, without by-products. No rates drawn.",
+        f"which is that of {behind.reaction} alone{own}, for {feed}, without by-products. No rates drawn.",
     ]

@@ -59,7 +59,7 @@ def _what(rows: Sequence[Influence]) -> str:
     if rows[0].name.startswith("price "):
         return rows[0].name
     owner, _, quantity = rows[0].name.rpartition(".")
-    subject = owner.partition(" ")[2]
+    subject = owner.partition(" ")[2] or owner
     return f"{quantity.removeprefix('ln ')} of {subject}" if owner else rows[0].name
 
 

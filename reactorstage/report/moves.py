@@ -14,8 +14,13 @@ from reactorstage.report.table import Column, Table, table
 from reactorstage.train.result import Array, Rating
 
 
-def first_move_text(moves: Moves, numbers: Sequence[FreeNumber], today: Rating, aim: Aim) -> str:
-    """The first move with its gain, and what the others bring; empty without moves."""
+def first_move_text(
+    moves: Moves, numbers: Sequence[FreeNumber], today: Rating, aim: Aim, where: str = "see --explain"
+) -> str:
+    """The first move with its gain, and what the others bring; empty without moves.
+
+    where says where the others stand.
+    """
     if not moves.moves:
         return ""
     first, others = moves.moves[0], len(moves.moves) - 1
@@ -26,7 +31,7 @@ def first_move_text(moves: Moves, numbers: Sequence[FreeNumber], today: Rating, 
     if not others:
         return f"{text}; there is no other move that is worth it."
     rest = gain_text(moves.gain - first.gain, aim, several=others > 1)
-    return f"{text}. Then {counted(others, 'more move')}, each inside all limits, {rest} (see --explain)."
+    return f"{text}. Then {counted(others, 'more move')}, each inside all limits, {rest} ({where})."
 
 
 def gain_text(gain: float, aim: Aim, several: bool = False) -> str:

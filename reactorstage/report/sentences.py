@@ -19,12 +19,14 @@ from reactorstage.report.display import (
     difference,
     difference_kind,
     fixed,
+    places,
     readable,
     shown,
     told,
     unit,
     with_unit,
 )
+from reactorstage.train.closed_result import closure_notes
 from reactorstage.train.result import LimitState, Rating
 
 PHRASES = 2
@@ -178,8 +180,14 @@ def warnings(rating: Rating) -> list[str]:
 
 
 def notes(rating: Rating) -> list[str]:
-    """The notes of the rating, temperatures in the unit that is shown."""
-    return [_in_shown_unit(rating, note) for note in rating.notes]
+    """The notes of the rating in the units that are shown; the train floor writes them in trade units."""
+    states = dict(zip(closure_notes(rating.closed), closure_notes(rating.closed, _plainly), strict=True))
+    return [_in_shown_unit(rating, states.get(note, note)) for note in rating.notes]
+
+
+def _plainly(value: float, kind: str) -> str:
+    decimals = 0 if kind == "temperature" else places(kind, 2)
+    return f"{fixed(shown(value, kind), decimals)} {unit(kind)}"
 
 
 def _in_shown_unit(rating: Rating, note: str) -> str:

@@ -7,26 +7,32 @@ from dataclasses import dataclass
 
 from matplotlib.figure import Figure
 
-from reactorstage.optimiser.result import Optimum
+from reactorstage.optimiser.result import Optimum, Worth
 from reactorstage.report import look
 from reactorstage.report.aim import aim_of
 from reactorstage.report.bounds import step_text, worth_rows
 from reactorstage.report.display import owners_text
+from reactorstage.report.reach import size_text
 from reactorstage.train.result import Rating
 
 ROW, BOTTOM, TOP = 0.44, 0.62, 0.72
 NAME_ROOM = 0.3
 THICK = 0.34
+BEYOND = 1.02
 
 
 @dataclass(frozen=True)
 class WorthBar:
-    """A limit with its step in words; what relaxing saves and tightening costs, display units, or None."""
+    """A limit with its step in words; what relaxing saves and tightening costs, display units, or None.
+
+    pays_for says how far relaxing goes on paying (`14 K`), where that is known and beyond the step.
+    """
 
     name: str
     step: str
     saves: float | None
     costs: float | None
+    pays_for: str = ""
 
 
 def worth_bars(optimum: Optimum, rating: Rating) -> list[WorthBar]:
@@ -40,10 +46,17 @@ def worth_bars(optimum: Optimum, rating: Rating) -> list[WorthBar]:
             step_text(row.together),
             aim.size(row.together.saves),
             aim.size(row.together.costs),
+            _pays_for(row.together),
         )
         for row in rows
     ]
     return sorted(bars, key=lambda bar: -max(bar.saves or 0.0, bar.costs or 0.0))
+
+
+def _pays_for(worth: Worth) -> str:
+    """How far the saving of the first step goes on; empty where not beyond the step."""
+    known = worth.reach is not None and worth.reach.holds > BEYOND * worth.step
+    return size_text(worth.reach.holds, worth.kind) if known and worth.reach is not None else ""
 
 
 def worths_figure(bars: Sequence[WorthBar], rating: Rating, title: str, status: str) -> Figure:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -18,6 +18,7 @@ if TYPE_CHECKING:
     from reactorstage.train.programme import Model
 
 Array = NDArray[np.float64]
+Tell = Callable[[float, str], str]
 
 
 def closed_result(model: Model, base: Array, x: Array, known: Found) -> Closed:
@@ -99,30 +100,36 @@ def effectivenesses(closed: Closed) -> dict[str, Value]:
     }
 
 
-def closure_notes(closed: Closed) -> list[str]:
-    """What must be said of several states and of the nearest fold."""
+def plainly(value: float, kind: str) -> str:
+    """A number of a note with its unit, in trade units."""
+    decimals = 0 if kind == "temperature" else 2
+    return f"{units.to_display(value, kind):.{decimals}f} {units.display_unit(kind)}"
+
+
+def closure_notes(closed: Closed, tell: Tell = plainly) -> list[str]:
+    """What must be said of several states and of the nearest fold.
+
+    tell(value, kind) writes a number with its unit.
+    """
     notes = []
     if len(closed.states) > 1:
         shown = [one for one in closed.states if one.shown]
         others = [one for one in closed.states if not one.shown]
         head = f"This setting has {len(closed.states)} states"
         if shown:
-            head += f"; shown is the one with {_state_words(shown[0])}"
-        notes.append(f"{head}; the others: {'; '.join(map(_state_words, others))}.")
-    notes += [text for text in (_fold_note(closed),) if text]
+            head += f"; shown is the one with {_state_words(shown[0], tell)}"
+        notes.append(f"{head}; the others: {'; '.join(_state_words(one, tell) for one in others)}.")
+    notes += [text for text in (_fold_note(closed, tell),) if text]
     return notes
 
 
-def _state_words(one: TrainState) -> str:
+def _state_words(one: TrainState, tell: Tell) -> str:
     stable = "stable by its slope" if one.stable else "UNSTABLE, a disturbance grows"
-    return f"bed 1 at {_degrees(one.T_first)}, hottest exit {_degrees(one.T_hottest)} ({stable})"
+    first, hottest = (tell(T, "temperature") for T in (one.T_first, one.T_hottest))
+    return f"bed 1 at {first}, hottest exit {hottest} ({stable})"
 
 
-def _degrees(T: float) -> str:
-    return f"{units.to_display(T, 'temperature'):.0f} degC"
-
-
-def _fold_note(closed: Closed) -> str:
+def _fold_note(closed: Closed, tell: Tell) -> str:
     """The fold nearest to the state shown: how much smaller or larger the exchanger would have to be."""
     shown = next((one for one in closed.states if one.shown), None)
     least = [one for one in closed.folds if one.least]
@@ -133,10 +140,10 @@ def _fold_note(closed: Closed) -> str:
         fold = max(below, key=lambda one: one.heat)
         return (
             f"Extinction: the state shown is lost when exchanger {fold.exchanger} falls to "
-            f"{100.0 * fold.needed:.1f} % of its size, at {fold.heat / 1e6:.2f} MW."
+            f"{100.0 * fold.needed:.1f} % of its size, at {tell(fold.heat, 'power')}."
         )
     fold = min(least, key=lambda one: one.needed)
     return (
-        f"No ignited state: the nearest fold is at {fold.heat / 1e6:.2f} MW, where exchanger "
+        f"No ignited state: the nearest fold is at {tell(fold.heat, 'power')}, where exchanger "
         f"{fold.exchanger} would need {100.0 * fold.needed:.1f} % of its size."
     )

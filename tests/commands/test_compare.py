@@ -106,3 +106,12 @@ def test_what_cannot_be_met_names_the_conflict_and_what_would_make_it_possible(l
     assert "POSSIBLE IF one gives way alone: slip (effluent) by 0.8 kmol/h (to 2.15 kmol/h)." in text
     held = json.loads(Path("out/result.json").read_text())["smallest conflict"]
     assert "slip, effluent" in held["limits"] and held["searches"] >= 8
+
+
+def test_a_comparison_is_shown_in_the_units_asked_for_and_written_in_trade_units(lead: Path) -> None:
+    aged = lead.with_name("selkemouth-aged-catalyst.yaml")
+    text = run("compare", lead, aged, "--units", "US").stdout
+    assert "degF" in text and "10^6 Btu/h" in text and "degC" not in text and "MW" not in text
+    assert max(map(len, text.splitlines())) <= 80
+    words = ("compare", lead, aged, "--json")
+    assert run(*words, "--units", "US").stdout == run(*words).stdout

@@ -70,3 +70,9 @@ def test_paragraphs_never_break_inside_a_word() -> None:
     lines = paragraph("1 the by-product of front-loaded beds is diethylbenzene", 20)
     assert all(len(line) <= 20 for line in lines)
     assert " ".join(" ".join(lines).split()) == "1 the by-product of front-loaded beds is diethylbenzene"
+
+
+def test_equal_ranks_under_one_heading_go_together() -> None:
+    pair = [Column((word,), ("1.0", "2.0"), rank=3, group=("rise, K",)) for word in ("first", "second")]
+    assert fitting((NAME, *pair, NOTE), 17) == [NAME, *pair]
+    assert fitting((NAME, *pair, NOTE), 10) == [NAME]

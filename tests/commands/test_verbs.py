@@ -352,7 +352,7 @@ def test_colour_changes_no_word(monkeypatch: pytest.MonkeyPatch) -> None:
 def test_progress_is_one_line_that_goes_away(monkeypatch: pytest.MonkeyPatch) -> None:
     stream = Terminal()
     monkeypatch.setattr(console.sys, "stderr", stream)
-    progress = console.ProgressLine(quiet=False, currency="EUR")
+    progress = console.ProgressLine(quiet=False, best=lambda cost: f"{3600.0 * cost:.1f} EUR/h")
     progress(1, 20, None, "start 1 of 20: today")
     progress(20, 20, 1319.7 / 3600, "start 20 of 20: random 14")
     progress.end()

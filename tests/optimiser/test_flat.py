@@ -8,7 +8,9 @@ from scipy.optimize import brentq
 
 from reactorstage.optimiser import optimise
 from reactorstage.optimiser.asked import Asked, Sizes
+from reactorstage.optimiser.flat import beyond_reach, handles
 from reactorstage.optimiser.programme import Array
+from reactorstage.optimiser.resolve import Base
 from tests.optimiser.toys import Toy, Values, box, hump, linear, row
 
 
@@ -56,3 +58,17 @@ def test_two_basins_give_two_spans_with_the_gap_between_them() -> None:
     near, far = found.flatness.numbers[0].spans
     assert near == pytest.approx(tuple(ends[:2]), abs=1e-3)
     assert far == pytest.approx(tuple(ends[2:]), abs=1e-3)
+
+
+def test_a_value_that_the_limits_keep_out_of_reach_cannot_stay() -> None:
+    # x1 is at most 0.4; with x2 held at 0.2 the best x1 is 0.25: 0.05^2 + 0.05^2
+    limited = Toy(box([0.9, 0.2], -1.0, 1.0), chained, [(row("top"), linear(0.4, -1.0, 0.0))])
+    found = optimise(limited, starts=2, jobs=1, asked=within(0.04))
+    assert found.flatness is not None
+    first, second = found.flatness.numbers
+    assert first.staying is None
+    assert second.staying == pytest.approx(0.005, abs=1e-6)
+    (handle, _) = handles(limited)
+    base = Base(limited, (found.best.x,), found.best.cost, 1.0)
+    assert beyond_reach(base, handle, 0.9) and beyond_reach(base, handle, 0.41)
+    assert not beyond_reach(base, handle, 0.39) and not beyond_reach(base, handle, -0.9)

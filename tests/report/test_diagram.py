@@ -26,7 +26,11 @@ from reactorstage.report.conversion import (
 )
 from reactorstage.report.diagram import conversion_figure, explained, temperature_range
 from reactorstage.report.figures import figure_files
+from reactorstage.train.at_rest import at_rest
 from reactorstage.train.result import Rating
+from tests.bed.build import programme
+from tests.chemistry.published_laws import SO2
+from tests.published.converter import converter
 from tests.report import synthetic
 from tests.report.test_figures import outside, overlapping, texts
 
@@ -103,6 +107,63 @@ def test_beds_end_below_the_equilibrium_and_best_rate_lies_between(ratings: dict
     X, best = lines.rates.X[known], lines.rates.best[known]
     assert known.sum() > 20 and (np.diff(best) < 0.0).all()
     assert (np.interp(best, lines.T, lines.equilibrium) > X).all()
+
+
+def test_the_line_follows_the_equilibrium_constant_of_the_law() -> None:
+    """Closed form: pSO3/(pSO2 pO2^1/2) = exp(11300/T - 10.68) atm^-1/2 on the line.
+
+    The law is that of Collina, Corbetta and Cappelli (1971), from memory, see `published_laws`; the Gibbs
+    energies of the species data give another line, which the train would seem to cross.
+    """
+    feed = {
+        "flow": "1000 kmol/h",
+        "temperature": "400 degC",
+        "composition": {"SO2": "7.8 %", "O2": "10.8 %", "N2": "rest"},
+    }
+    beds = [("20 t", "440 degC"), ("40 t", "450 degC")]
+    rating = programme(converter(SO2, feed, beds, "1.3 bar(a)")).rate()
+    lines = behind(rating)
+    X, atm = lines.equilibrium, 1.3e5 / 101325.0
+    p_SO2, p_O2, p_SO3 = (
+        n / (1.0 - 0.039 * X) * atm for n in (0.078 * (1.0 - X), 0.108 - 0.039 * X, 0.078 * X)
+    )
+    assert p_SO3 / (p_SO2 * np.sqrt(p_O2)) == pytest.approx(np.exp(11300.0 / lines.T - 10.68), rel=1e-6)
+    for leg in way(rating):
+        if leg.kind == "bed":
+            assert leg.X[-1] < np.interp(leg.T[-1], lines.T, X) + 1e-4
+    assert explained(rating, lines)[0].startswith("Equilibrium by the law's own constant, best rate")
+
+
+def test_a_reaction_that_follows_gibbs_energies_is_not_brought_to_rest_by_its_law(
+    ratings: dict[str, Rating],
+) -> None:
+    chemistry = ratings["oxidation"].chemistry
+    assert chemistry is not None
+    with pytest.raises(ValueError, match="no equilibrium constant of its own"):
+        at_rest(chemistry, 0, np.ones(4), 700.0, 1e5)
+
+
+@pytest.mark.parametrize(
+    ("F", "gone"), [((0.0, 1.0, 1.0, 5.0), None), ((1.0, 0.5, 0.0, 0.0), None), ((0.0, 1.0, 0.0, 1.0), 0)]
+)
+def test_coming_to_rest_begins_anywhere(F: tuple[float, ...], gone: int | None) -> None:
+    """From products alone, from reactants alone, and with nothing that could react."""
+    rating = programme(
+        converter(
+            SO2,
+            {"flow": "1 kmol/h", "temperature": "400 degC", "composition": {"SO2": "7.8 %", "O2": "rest"}},
+            [("1 kg", "440 degC")],
+            "1 atm(a)",
+        )
+    ).rate()
+    chemistry = rating.chemistry
+    assert chemistry is not None
+    found = at_rest(chemistry, 0, np.array(F), 750.0, 101325.0)
+    if gone is not None:
+        assert found == pytest.approx(F)
+        return
+    y = found / found.sum()
+    assert y[2] / (y[0] * np.sqrt(y[1])) == pytest.approx(np.exp(11300.0 / 750.0 - 10.68), rel=1e-6)
 
 
 def test_several_reactions_end_near_the_equilibrium_of_the_key_reaction(ratings: dict[str, Rating]) -> None:

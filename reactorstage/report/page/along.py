@@ -180,5 +180,5 @@ def values_range(values: Sequence[Array], zero: bool, logarithmic: bool) -> tupl
         return min(low / 1.3, top / 8.0), top * 1.3
     low = float(every.min())
     low = min(0.0, low) if zero else low
-    span = max(top - low, 1e-3 * max(abs(top), abs(low)), 1e-12)
+    span = max(top - low, 0.02 * max(abs(top), abs(low)), 1e-12)
     return (low if zero and low == 0.0 else low - 0.06 * span), top + 0.07 * span

@@ -19,6 +19,8 @@ WIDTH = 460.0
 LEFT, RIGHT, TOP, BOTTOM = 46.0, 452.0, 32.0, 252.0
 FOOT = 40.0
 LINE = 12.0
+BARE_TOP = 24.0
+STROKE = 18.0
 
 
 @dataclass(frozen=True)
@@ -62,11 +64,21 @@ class Area:
 
 @dataclass(frozen=True)
 class Bar:
-    """A filled box between two corners in values."""
+    """A filled box between two corners in values; kind is its outline."""
 
     x: tuple[float, float]
     y: tuple[float, float]
     colour: str
+    kind: str = "bar"
+
+
+@dataclass(frozen=True)
+class Mark:
+    """A point at a value: `best` is a dot, `was` an upright stroke."""
+
+    x: float
+    y: float
+    kind: str
 
 
 @dataclass(frozen=True)
@@ -99,6 +111,7 @@ class Chart:
     labels: tuple[Label, ...] = ()
     areas: tuple[Area, ...] = ()
     bars: tuple[Bar, ...] = ()
+    marks: tuple[Mark, ...] = ()
     legend: tuple[tuple[str, str, str], ...] = ()
     readings: tuple[Reading, ...] = ()
     logarithmic: bool = False
@@ -121,15 +134,17 @@ def svg(chart: Chart) -> Markup:
     """The chart as an SVG element whose name and description are those of the chart."""
     parts = [*_frame(chart), *_areas(chart), *_bars(chart)]
     parts += [_curve(chart, curve) for curve in chart.curves]
+    parts += [_mark(chart, mark) for mark in chart.marks]
     parts += [_label(chart, label) for label in chart.labels]
     inside = Markup("").join([*parts, _cursor(chart)])
+    above = 0.0 if chart.y_name or chart.areas else BARE_TOP
     return Markup(
-        '<svg id="{0}" viewBox="0 0 {1:g} {2:g}" role="img" aria-labelledby="{0}-name {0}-alt">'
+        '<svg id="{0}" viewBox="0 {10:g} {1:g} {2:g}" role="img" aria-labelledby="{0}-name {0}-alt">'
         '<title id="{0}-name">{3}</title><desc id="{0}-alt">{4}</desc>'
         '<clipPath id="{0}-clip"><rect x="{5:g}" y="{6:g}" width="{7:g}" height="{8:g}"/></clipPath>{9}</svg>'
     ).format(
-        f"chart-{chart.key}", WIDTH, chart.bottom + FOOT, chart.title, chart.alt,
-        chart.left, TOP - 2, RIGHT - chart.left, chart.bottom - TOP + 4, inside,
+        f"chart-{chart.key}", WIDTH, chart.bottom + FOOT - above, chart.title, chart.alt,
+        chart.left, TOP - 2, RIGHT - chart.left, chart.bottom - TOP + 4, inside, above,
     )  # fmt: skip
 
 
@@ -155,7 +170,8 @@ def _frame(chart: Chart) -> list[Markup]:
         for y in [_at(chart.y, tick)]
     ]
     names = AXIS_NAMES.format(RIGHT, foot + 33, chart.x_name, chart.y_name)
-    return [*y_ticks, *x_ticks, AXES.format(chart.left, TOP, foot, RIGHT), names]
+    foreign = chart.bare_y and chart.x_range[0] != 0.0
+    return [*y_ticks, *x_ticks, AXES.format(chart.left, foot if foreign else TOP, foot, RIGHT), names]
 
 
 def _at(scale: Scale, value: float) -> float:
@@ -186,8 +202,8 @@ def _bars(chart: Chart) -> list[Markup]:
         xs, ys = np.sort(chart.x.place(np.array(bar.x))), np.sort(chart.y.place(np.array(bar.y)))
         found.append(
             Markup(
-                '<rect class="bar" fill="{}" x="{:.1f}" y="{:.1f}" width="{:.1f}" height="{:.1f}"/>'
-            ).format(bar.colour, xs[0], ys[0], xs[1] - xs[0], ys[1] - ys[0])
+                '<rect class="{}" fill="{}" x="{:.1f}" y="{:.1f}" width="{:.1f}" height="{:.1f}"/>'
+            ).format(bar.kind, bar.colour, xs[0], ys[0], xs[1] - xs[0], ys[1] - ys[0])
         )
     return found
 
@@ -208,6 +224,13 @@ def path_text(x: Array, y: Array) -> str:
     begun = there & ~np.concatenate([[False], there[:-1]])
     parts = [f"{'M' if begun[k] else 'L'}{x[k]:.1f} {y[k]:.1f}" for k in np.flatnonzero(there)]
     return "".join(parts) if len(parts) > 1 else ""
+
+
+def _mark(chart: Chart, mark: Mark) -> Markup:
+    x, y = _at(chart.x, mark.x), _at(chart.y, mark.y)
+    if mark.kind == "best":
+        return Markup('<circle class="best" cx="{:.1f}" cy="{:.1f}" r="4.5"/>').format(x, y)
+    return Markup('<path class="was" d="M{:.1f} {:.1f}v{:g}"/>').format(x, y - STROKE / 2, STROKE)
 
 
 def _label(chart: Chart, label: Label) -> Markup:

@@ -15,7 +15,8 @@ from reactorstage.report.display import allowed, brief, fixed, shown, unit
 from reactorstage.report.heat import bound_of, heading, steps
 from reactorstage.report.heat import temperature_range as heat_range
 from reactorstage.report.page.along import Along, kept
-from reactorstage.report.page.chart import TOP, Bar, Chart, Curve, Label, Reading, spread_labels
+from reactorstage.report.page.chart import LINE, TOP, Bar, Chart, Curve, Label, Reading, spread_labels
+from reactorstage.report.page.names import BESIDE, name_labels, room_for
 from reactorstage.report.page.profiles import GREY_TEXT, bed_behind
 from reactorstage.report.profiles import displayed
 from reactorstage.report.temperature import temperature_limits
@@ -24,7 +25,6 @@ from reactorstage.report.worths import WorthBar, number_text
 from reactorstage.train.result import Array, Rating
 
 MOST_PERCENT = 103.0
-NAME_WIDTH = 150.0
 BAR_ROW = 46.0
 KINDS = {"bed": "this", "injection": "gap", "exchanger": "exchanger"}
 
@@ -238,10 +238,12 @@ def _rung_label(side: Cascade, ends: Array, level: float, text: str) -> Label:
 def worth_chart(bars: Sequence[WorthBar], rating: Rating, name: str) -> Chart:
     """Two bars for each limit at work: dark for what relaxing saves, light for what tightening costs."""
     top = max([*(bar.saves or 0.0 for bar in bars), *(bar.costs or 0.0 for bar in bars), 1e-12])
+    room = room_for([bar.name for bar in bars])
     boxes, labels = [], []
     for k, bar in enumerate(bars):
-        labels.append(Label(0.0, -k, bar.name, "end", (-6.0, -2.0)))
-        labels.append(Label(0.0, -k, f"by {bar.step}", "end", (-6.0, 11.0), GREY_TEXT))
+        named = name_labels(0.0, -k, bar.name, room, -2.0)
+        below = named[-1].shift[1] + LINE + 1.0
+        labels += [*named, Label(0.0, -k, f"by {bar.step}", "end", (-BESIDE / 2, below), GREY_TEXT)]
         for value, shift, colour in ((bar.saves, 0.18, look.MONEY), (bar.costs, -0.18, look.MONEY_LIGHT)):
             boxes.append(Bar((0.0, value or 0.0), (-k + shift - 0.15, -k + shift + 0.15), colour))
             labels.append(Label(value or 0.0, -k + shift, number_text(rating, value), shift=(4.0, 4.0)))
@@ -262,6 +264,6 @@ def worth_chart(bars: Sequence[WorthBar], rating: Rating, name: str) -> Chart:
         bars=tuple(boxes),
         legend=(("box", look.MONEY, "relaxing saves"), ("box", look.MONEY_LIGHT, "tightening costs")),
         bare_y=True,
-        left=NAME_WIDTH,
+        left=room,
         bottom=TOP + BAR_ROW * len(bars),
     )

@@ -54,7 +54,7 @@ def temperature(what: Along) -> Chart:
     gaps += gap_curves(what.today, what.before, True) if what.today is not None else []
     legend = [("gap", look.TEMPERATURE, "injection")] if any(c.kind == "gap" for c in gaps) else []
     legend += [("limit", look.LIMIT, "limit")] if limits else []
-    legend += [("chain", look.INK, "adiabatic equilibrium of what enters")] if levels else []
+    legend += [("chain", look.INK, equilibrium_words(what.rating))] if levels else []
     made = chart(
         what, "temperature", "Temperature", [line], f"temperature, {unit('temperature')}",
         y_range=y_range, more=[*limits, *levels, *gaps], legend=legend, labels=end_values(what, y_range),
@@ -125,6 +125,12 @@ def limit_names(what: Along, y_range: tuple[float, float]) -> list[Label]:
             below = 12.0 if bound > y_range[1] - 0.06 * span else -4.0
             found.append(Label(what.end, bound, text, "end", (-aside, below), GREY_TEXT))
     return found
+
+
+def equilibrium_words(rating: Rating) -> str:
+    """What the levels of equilibrium are; said apart where a law comes to rest elsewhere."""
+    own = rating.chemistry is not None and bool(rating.chemistry.laws.own_K.any())
+    return f"adiabatic equilibrium of what enters{', by Gibbs energies' if own else ''}"
 
 
 def equilibrium_curves(what: Along, values: Sequence[Array]) -> list[Curve]:

@@ -13,18 +13,23 @@ from reactorstage.train.result import Rating
 
 if TYPE_CHECKING:
     from reactorstage.face import Optimisation
+    from reactorstage.train.influence import Influence
     from reactorstage.train.programme import TrainProgramme
     from reactorstage.train.understanding import Understanding
 
 
 @dataclass(frozen=True)
 class Search:
-    """What optimising adds to a rating: the search, the other distinct answers, the seed of its starts."""
+    """What optimising adds to a rating: the search, the other distinct answers, the seed of its starts.
+
+    influences say what moves the best cost.
+    """
 
     programme: Programme
     optimum: Optimum
     others: tuple[Rating, ...]
     seed: int
+    influences: tuple[Influence, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -79,6 +84,6 @@ def of_optimum(
     outcome: Optimisation, reference: Reference | None = None, overrides: Sequence[str] = ()
 ) -> Subject:
     """The subject of an optimisation: its best answer or, when nothing was found, today's setting."""
-    search = Search(outcome.programme, outcome.optimum, outcome.others, outcome.seed)
+    search = Search(outcome.programme, outcome.optimum, outcome.others, outcome.seed, outcome.influences)
     now, today = (outcome.best, outcome.today) if outcome.best is not None else (outcome.today, None)
     return Subject(now, outcome.programme.understanding(told), today, search, reference, tuple(overrides))

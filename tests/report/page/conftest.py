@@ -39,6 +39,12 @@ def found(lead: Path) -> Optimisation:
 
 
 @pytest.fixture(scope="session")
+def impossible(lead: Path) -> Optimisation:
+    """The lead case with catalyst so tired that no setting meets every limit."""
+    return reactorstage.optimise(reactorstage.load(lead, ["every bed.catalyst activity=0.55"]), starts=3)
+
+
+@pytest.fixture(scope="session")
 def folder(tmp_path_factory: pytest.TempPathFactory) -> Path:
     return tmp_path_factory.mktemp("pages")
 

@@ -234,11 +234,9 @@ def test_a_rating_has_a_page_that_promises_no_worths(hostile: Made) -> None:
     assert 'id="flatness"' not in hostile.text and "limits broken" in hostile.text
 
 
-def test_limits_that_cannot_be_met_are_told(lead: Path) -> None:
-    case = reactorstage.load(lead, ["every bed.catalyst activity=0.5"])
-    subject = of_optimum(reactorstage.optimise(case, starts=2, explain=False))
-    text = page_html(subject).decode()
-    assert "no setting found meets them all" in text and "would have to give way" in text
+def test_limits_that_cannot_be_met_are_told(impossible: Optimisation) -> None:
+    text = page_html(of_optimum(impossible)).decode()
+    assert "no setting found meets them all" in text and "These limits cannot all be met." in text
     Reader(text)
 
 
@@ -270,7 +268,7 @@ def test_an_aim_that_is_no_money_is_told_in_its_own_unit(lead: Path, folder: Pat
     path.write_text(text, encoding="utf-8")
     subject = of_optimum(reactorstage.optimise(reactorstage.load(path), starts=3))
     facts = dict(summary_facts(subject))
-    assert "the aim: most" in facts["What does it cost?"][0] and "%" in facts["What does it cost?"][0]
+    assert "the aim: most" in facts["What does it achieve?"][0] and "%" in facts["What does it achieve?"][0]
     Reader(page_html(subject).decode())
 
 
@@ -280,7 +278,7 @@ def test_a_reference_case_is_compared(page: Made, cases: Path) -> None:
     words = Reader(page_html(subject).decode()).words
     assert "Against the reference case" in words and "Inputs that differ" in words
     assert "catalyst activity: 0.7" in words.partition("Inputs that differ")[2]
-    assert "Broken here: none; in the reference:" in words
+    assert "The reference breaks coking, bed 4" in words and "This setting is inside all limits." in words
 
 
 def test_a_later_study_adds_its_section_in_one_place(page: Made, monkeypatch: pytest.MonkeyPatch) -> None:

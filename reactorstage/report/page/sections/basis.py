@@ -10,7 +10,7 @@ from reactorstage.report.table import Column, Table, table
 from reactorstage.report.understood import understood_tables
 from reactorstage.train.result import Rating
 
-KINETIC = ("REACTIONS", "HEAT AND EQUILIBRIUM")
+KINETIC = ("REACTIONS", "RATE LAWS", "K OF LAWS AGAINST GIBBS ENERGIES", "HEAT AND EQUILIBRIUM")
 AS_GIVEN = (
     "Texts and units are those of the case file; what stands under every bed or every reaction is repeated "
     "where it counts. The last column gives file and line."
@@ -25,18 +25,27 @@ def inputs(subject: Subject) -> Section:
         Column(("group",), tuple(row.group for row in rows), left=True),
         Column(("name",), tuple(row.name for row in rows), left=True),
         Column(("as given",), tuple(row.text for row in rows), left=True),
-        Column(("where",), tuple(row.place.replace(f"{file}:", "line ") for row in rows), left=True),
+        Column(("where",), tuple(row.place.replace(f"{file}:", "line\u00a0") for row in rows), left=True),
     ])  # fmt: skip
     blocks: list[Block] = [
         Words(f"{AS_GIVEN} Lines without a file are those of {file}."),
         Grid(made, "Every input as given"),
     ]
     blocks += [
-        Grid(one, f"As understood: {one.title.lower()}")
+        Grid(one, f"As understood: {caption_of(one.title)}")
         for one in understood_tables(subject.seen)
         if one.title not in (*KINETIC, "LIMITS", "PRICES")
     ]
     return Section("inputs", "What went in", tuple(blocks))
+
+
+def caption_of(title: str) -> str:
+    """A title without its capitals; symbols and names in it stay as they are."""
+    return " ".join(word.lower() if word.isupper() and len(word) > 1 else word for word in title.split(" "))
+
+
+def upper(text: str) -> str:
+    return text[:1].upper() + text[1:]
 
 
 def main_file(rows: list[Given]) -> str:
@@ -48,7 +57,9 @@ def main_file(rows: list[Given]) -> str:
 def kinetics(subject: Subject) -> Section:
     """Reactions, heats and constants, sources, and how much of each bed lies outside the stated window."""
     blocks: list[Block] = [
-        Grid(one, one.title.capitalize()) for one in understood_tables(subject.seen) if one.title in KINETIC
+        Grid(one, upper(caption_of(one.title)))
+        for one in understood_tables(subject.seen)
+        if one.title in KINETIC
     ]
     blocks.append(Grid(sources_table(subject), "Source and validity of the kinetics"))
     blocks.append(Grid(species_table(subject), "Source of the species data"))

@@ -1,79 +1,49 @@
-"""How flat the answer is: equal division, other answers, curvature, the orders of the reactions."""
+"""How flat the answer is: spans of every number, what may stay as it is, equal division, reaction orders."""
 
 from __future__ import annotations
 
-from reactorstage.optimiser.programme import Programme
-from reactorstage.optimiser.result import Answer, Optimum
+from reactorstage.optimiser.reasons import Flatness
+from reactorstage.optimiser.result import CANNOT
 from reactorstage.report import sentences
 from reactorstage.report.aim import Aim, aim_of
-from reactorstage.report.display import brief, counted, fixed, readable, shown, unit
-from reactorstage.report.page.parts import Block, Grid, Listing, Section
-from reactorstage.report.page.subject import Subject
-from reactorstage.report.table import Column, Table, table
-from reactorstage.report.understood import order_sentence
+from reactorstage.report.display import with_unit
+from reactorstage.report.flatness import flat_table, left_alone_text
+from reactorstage.report.page.parts import Block, Charts, Grid, Listing, Section, Words
+from reactorstage.report.page.said import said
+from reactorstage.report.page.spans import span_charts
+from reactorstage.report.page.subject import Search, Subject
+from reactorstage.report.understood import order_sentence, order_table
+
+NOTE = (
+    "Each span is that of one number with all others re-optimised inside all limits; a second span lies "
+    "around another answer. The last column is what leaving that number as today costs."
+)
 
 
 def flatness(subject: Subject) -> Section | None:
-    """Nothing for a rating."""
+    """Nothing for a rating and where no setting meets every limit."""
     search = subject.search
-    if search is None or not search.optimum.answers:
+    if search is None or not search.optimum.answers or search.optimum.status == CANNOT:
         return None
     optimum, aim = search.optimum, aim_of(subject.now)
-    splits = [
-        sentences.equal_split_text(split, subject.now).replace("EQUAL SPLIT  of", "An equal split of")
-        for split in optimum.equal_splits
+    blocks: list[Block] = []
+    if optimum.flatness is not None and optimum.flatness.numbers:
+        blocks += _spans(optimum.flatness, search, aim)
+    texts = [said(sentences.equal_split_text(split, subject.now)) for split in optimum.equal_splits]
+    blocks += [Listing(tuple(texts))] if texts else []
+    orders = order_table(subject.seen)
+    if orders.rows:
+        title = f"Order of every reaction in {subject.seen.split_reactant}"
+        blocks.append(Grid(orders, title, order_sentence(subject.seen)))
+    return Section("flatness", "How flat the answer is", tuple(blocks)) if blocks else None
+
+
+def _spans(flat: Flatness, search: Search, aim: Aim) -> list[Block]:
+    ranges = {number.name: (number.low, number.high) for number in search.programme.numbers}
+    within = with_unit(aim.number(flat.band), aim.unit)
+    left = left_alone_text(flat, aim)
+    return [
+        Words(f"Within {within} of the best a setting counts as flat. {left}".strip()),
+        Charts(span_charts(flat, ranges)),
+        Grid(flat_table(flat, aim), f"Flat within {within}", NOTE),
     ]
-    texts = [*splits, order_sentence(subject.seen), curvature_text(optimum.best, aim)]
-    texts += [
-        f"At an end of its search range, where no limit holds it: {name}; widen the range."
-        for name in optimum.best.at_range
-    ]
-    blocks: list[Block] = [Listing(tuple(text for text in texts if text))]
-    caption = f"{counted(len(optimum.answers), 'distinct answer')} found, best first"
-    blocks.append(Grid(answers_table(search.programme, optimum, aim), caption, NOTE))
-    return Section("flatness", "How flat the answer is", tuple(blocks))
-
-
-STEP = 0.1
-NOTE = "Answers are local ends of a gradient search from many starts; no proof is given that none is better."
-
-
-def curvature_text(best: Answer, aim: Aim) -> str:
-    """The smallest curvature along the limits in words; a corner has none."""
-    if best.curvature is None:
-        return (
-            "The answer is a corner: limits and ends of ranges hold every number, so there is no curvature."
-        )
-    size = f"{aim.number(0.5 * STEP**2 * best.curvature)} {aim.unit}".rstrip()
-    return (
-        "In the flattest direction that the limits leave open, moving by a tenth of a search range costs "
-        f"{size} (from the curvature there)."
-    )
-
-
-def answers_table(programme: Programme, optimum: Optimum, aim: Aim) -> Table:
-    """Free numbers of each answer, its aim and how many starts reached it."""
-    answers = optimum.answers
-    user = [(k, number) for k, number in enumerate(programme.numbers) if not number.internal]
-    names = tuple(number.name for _, number in user)
-    base = answers[0].cost
-    heads = tuple(f"answer {n}" for n in range(1, len(answers) + 1))
-    columns = [
-        Column(
-            ("",),
-            (*names, f"aim, {aim.unit or 'its number'}", "against the best", "starts that ended there"),
-            left=True,
-        )
-    ]
-    for head, answer in zip(heads, answers, strict=True):
-        values = [_number(shown(float(answer.x[k]), number.kind)) for k, number in user]
-        aimed = (
-            fixed(aim.value(answer.cost), 1) if aim.kind == "money rate" else readable(aim.value(answer.cost))
-        )
-        columns.append(Column((head,), (*values, aimed, aim.number(answer.cost - base), str(answer.starts))))
-    columns.append(Column(("unit",), (*(unit(number.kind) for _, number in user), "", "", ""), left=True))
-    return table("ANSWERS", columns)
-
-
-def _number(value: float | None) -> str:
-    return brief(None if value is None else round(value, 3), 4)

@@ -2,18 +2,34 @@
 
 from __future__ import annotations
 
+from reactorstage.optimiser.result import Conflict, Optimum
 from reactorstage.report import bounds, sentences
-from reactorstage.report.aim import aim_of
-from reactorstage.report.display import allowed, brief, difference, difference_kind, told, unit, with_unit
+from reactorstage.report.aim import Aim, aim_of
+from reactorstage.report.display import (
+    allowed,
+    and_list,
+    brief,
+    difference,
+    difference_kind,
+    told,
+    unit,
+    with_unit,
+)
 from reactorstage.report.page.diagrams import worth_chart
 from reactorstage.report.page.parts import Block, Charts, Folded, Grid, Listing, Section, Words
-from reactorstage.report.page.sections.summary import keep_away as margin_sentence
+from reactorstage.report.page.said import said
 from reactorstage.report.page.subject import Search, Subject
+from reactorstage.report.reach import conflict_text, pairs_text, reach_table
 from reactorstage.report.table import Column, Table, table
 from reactorstage.report.worths import worth_bars
 from reactorstage.train.result import LimitState, Rating
 
 EVERY = 10_000
+REACH = (
+    "Relaxing pays as long as each further part saves at least half as much, per unit, as the first step. "
+    "Then come the limits that have taken over, the relaxation from which the limit no longer matters, and "
+    "what that saves in all."
+)
 
 
 def limits(subject: Subject) -> Section | None:
@@ -25,7 +41,8 @@ def limits(subject: Subject) -> Section | None:
     if subject.search is not None:
         blocks += worths(subject, subject.search)
     nearest = bounds.rating_table(rating, EVERY)
-    blocks.append(Grid(nearest, "Limits: broken ones, then the nearest of each label"))
+    if nearest.rows:
+        blocks.append(Grid(nearest, "Limits: broken ones, then the nearest of each label"))
     blocks.append(Folded("Every limit with its margin", (Grid(every_limit(rating), "Every limit"),)))
     return Section("limits", "Limits at work", tuple(blocks))
 
@@ -34,35 +51,50 @@ def worths(subject: Subject, search: Search) -> list[Block]:
     """Bars and table of worths, or the limits that cannot all be met."""
     rating, optimum = subject.now, search.optimum
     if optimum.conflict is not None:
-        held = bounds.together(rating.limits[index] for index in optimum.conflict.against)
-        items = [
-            bounds.sentence(rating.limits[index], subject.currency) for index, _ in optimum.conflict.broken
-        ]
-        texts = [*items, *([f"Held by: {', '.join(held)}."] if held else [])]
-        return [Words("These limits cannot all be met:"), Listing(tuple(texts))]
+        return conflict(subject, optimum, optimum.conflict)
     made = bounds.worth_table(optimum, rating)
     bars = worth_bars(optimum, rating)
     if not made.rows:
         return [Words("No limit at work could be given a worth.")]
     aim = aim_of(rating)
     free = sum(not number.internal for number in search.programme.numbers)
-    said = bounds.count_text(bounds.at_work(rating), free).replace(
-        ": up and down differ", "; up and down differ"
-    )
+    counts = bounds.count_text(bounds.at_work(rating), free).replace(": up", "; up")
     note = (
-        f"{said} Every worth was found by solving again with the limit moved by the step, everything else "
-        "free. It holds for this step; larger ones can meet the next limit."
+        f"{counts} Every worth was found by solving again with the limit moved by the step, everything else "
+        "free."
     )
     return [
         Charts((worth_chart(bars, rating, aim.heading),)),
         Grid(made, f"Limits at work, {aim.heading}", note),
-        *([Words(text)] if (text := keep_away(subject, search)) else []),
+        *reaching(optimum, rating, aim),
+        *([Words(said(text))] if (text := sentences.margin_text(optimum, rating)) else []),
     ]
 
 
-def keep_away(subject: Subject, search: Search) -> str:
-    """What the margins of the case cost."""
-    return margin_sentence(sentences.margin_text(search.optimum, subject.now))
+def reaching(optimum: Optimum, rating: Rating, aim: Aim) -> list[Block]:
+    """How far relaxing pays and what takes over, and the limits that pay only together."""
+    made = reach_table(optimum, rating, aim)
+    pairs = pairs_text(optimum.pairs, rating, aim, len(optimum.pairs))
+    blocks: list[Block] = [Grid(made, f"How far relaxing pays, {aim.heading}", REACH)] if made.rows else []
+    return [*blocks, Words(f"By one step each, {aim.heading}: {lower(said(pairs))}")] if pairs else blocks
+
+
+def lower(text: str) -> str:
+    return text[:1].lower() + text[1:]
+
+
+def conflict(subject: Subject, optimum: Optimum, found: Conflict) -> list[Block]:
+    """The limits that no setting meets, what holds them, a smallest set in conflict, what would be enough."""
+    rating = subject.now
+    held = bounds.together(rating.limits[index] for index in found.against)
+    items = [f"{bounds.sentence(rating.limits[index], subject.currency)}." for index, _ in found.broken]
+    blocks: list[Block] = [
+        Words("These limits cannot all be met. This setting breaks least, and misses:"),
+        Listing(tuple(items)),
+    ]
+    texts = [*([f"Held there by {and_list(held)}."] if held else [])]
+    texts += [said(text) for text in conflict_text(optimum, rating)] or [sentences.give_way(found, rating)]
+    return [*blocks, *(Words(text) for text in texts if text)]
 
 
 def every_limit(rating: Rating) -> Table:

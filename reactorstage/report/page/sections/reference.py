@@ -1,17 +1,19 @@
-"""What differs from a reference case: inputs, settings, money, limits."""
+"""What differs from a reference case: inputs as they stand in the files, then what `compare` tells."""
 
 from __future__ import annotations
 
-from reactorstage.report import bounds
-from reactorstage.report.accounts import accounts
-from reactorstage.report.beds import bed_table
-from reactorstage.report.display import and_list
+from reactorstage.errors import CallError
+from reactorstage.report.compared import comparison_tables, limits_sentences, verdict
+from reactorstage.report.comparison import Comparison, compared
+from reactorstage.report.comparison_units import in_shown_units
 from reactorstage.report.inputs import Given, given
 from reactorstage.report.page.parts import Block, Grid, Section, Words
-from reactorstage.report.page.sections.train import money_table
 from reactorstage.report.page.subject import Reference, Subject
+from reactorstage.report.result_json import plain_content, rating_json
 from reactorstage.report.table import Column, Table, table
 from reactorstage.train.result import Rating
+
+HERE, THERE = "this setting", "the reference"
 
 
 def reference(subject: Subject) -> Section | None:
@@ -19,27 +21,43 @@ def reference(subject: Subject) -> Section | None:
     other = subject.reference
     if other is None:
         return None
-    blocks: list[Block] = [
-        Words(f"Reference: {other.name}. Differences are this setting minus the reference.")
-    ]
-    blocks.append(_inputs(subject.now, other))
-    if other.rating.failure:
-        blocks.append(Words(f"The reference has no answer: {other.rating.failure}."))
-        return Section("reference", "Against the reference case", tuple(blocks))
-    blocks.append(Words(limits_sentence(subject.now, other.rating)))
-    if subject.currency == other.rating.case.currency:
-        rows = accounts(subject.now, other.rating)
-        named = money_table(rows, subject.currency, "reference")
-        blocks.append(Grid(named, "Money against the reference"))
-    else:
-        blocks.append(Words(f"Money is not compared: the reference counts in {other.rating.case.currency}."))
-    if [p.owner for p in subject.now.profiles] == [p.owner for p in other.rating.profiles]:
-        blocks.append(
-            Grid(bed_table(subject.now, other.rating), "Beds against the reference (was: the reference)")
-        )
-    else:
-        blocks.append(Words("The trains have different beds; their bed tables are not set side by side."))
+    told = Words(f"Reference: {other.name}. Differences are this setting minus the reference.")
+    blocks = [told, _inputs(subject.now, other), *side_by_side(subject, other)]
     return Section("reference", "Against the reference case", tuple(blocks))
+
+
+def side_by_side(subject: Subject, other: Reference) -> list[Block]:
+    """What `compare` tells of two settings, or why they cannot be compared."""
+    if other.rating.failure:
+        return [Words(f"The reference has no answer: {other.rating.failure}.")]
+    if subject.now.failure:
+        return []
+    try:
+        found = in_shown_units(comparison(subject, other.rating))
+    except CallError as error:
+        return [Words(f"{str(error)[:1].upper()}{str(error)[1:]}.")]
+    tables = comparison_tables(found, subject.now.by_products, ("reference", "here"))
+    return [
+        Words(" ".join([verdict(found), *limits_sentences(found), *found.notes])),
+        *(Grid(made, CAPTIONS.get(made.title, made.title.capitalize())) for made in tables),
+    ]
+
+
+CAPTIONS = {
+    "SETTINGS": "Settings and other inputs that differ",
+    "LIMITS": "Limits at work or broken in either",
+    "BEDS": "Beds that differ",
+    "HEAT REMOVED": "Heat removed where it differs",
+}
+
+
+def comparison(subject: Subject, other: Rating) -> Comparison:
+    """This setting against the reference, which comes first; raises CallError for unlike trains."""
+    content = plain_content(rating_json(subject.now))
+    if subject.search is not None:
+        free = [number.name for number in subject.search.programme.numbers if not number.internal]
+        content["decisions"] = dict.fromkeys(free)
+    return compared(plain_content(rating_json(other)), content, (THERE, HERE))
 
 
 def _inputs(now: Rating, other: Reference) -> Block:
@@ -71,12 +89,3 @@ def key(rows: list[Given], k: int) -> tuple[str, str, int]:
     """What an input is called: group, name and which of several steps of one place."""
     row = rows[k]
     return row.group, row.name, sum((one.group, one.name) == (row.group, row.name) for one in rows[:k])
-
-
-def limits_sentence(now: Rating, was: Rating) -> str:
-    """Which limits hold or are broken here and there."""
-    parts = []
-    for words, find in (("At work", bounds.at_work), ("Broken", bounds.broken)):
-        here, there = (and_list(bounds.together(find(rating))) or "none" for rating in (now, was))
-        parts.append(f"{words} here: {here}; in the reference: {there}.")
-    return " ".join(parts)

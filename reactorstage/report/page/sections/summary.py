@@ -2,17 +2,22 @@
 
 from __future__ import annotations
 
-import re
 from collections.abc import Sequence
+from functools import partial
 
 from reactorstage.optimiser.result import CANNOT, INSIDE, NO_ANSWER
 from reactorstage.report import bounds, sentences
 from reactorstage.report.accounts import accounts
 from reactorstage.report.aim import MONEY, aim_of, cost_difference
 from reactorstage.report.cautions import SHORT
-from reactorstage.report.display import and_list, counted, difference_kind, fixed, shown, told, unit
+from reactorstage.report.changes import spoken
+from reactorstage.report.display import and_list, counted, difference_kind, fixed, readable, shown, told, unit
+from reactorstage.report.moves import first_move_text
 from reactorstage.report.page.parts import Facts, Section
+from reactorstage.report.page.said import said
 from reactorstage.report.page.subject import Search, Subject
+from reactorstage.report.phase import near_a_boundary
+from reactorstage.report.reach import conflict_text
 from reactorstage.report.worths import WorthBar, worth_bars
 from reactorstage.train.result import LimitState, Rating
 
@@ -27,28 +32,15 @@ def summary(subject: Subject) -> Section:
 
 def summary_facts(subject: Subject) -> list[tuple[str, tuple[str, ...]]]:
     """Questions with their answers, those without one left out."""
+    money = aim_of(subject.now).kind == MONEY
     facts = (
         ("Inside its limits?", tuple(inside(subject))),
-        ("What does it cost?", tuple(cost(subject))),
-        ("Which limits cost money?", tuple(dear_limits(subject))),
+        ("What does it cost?" if money else "What does it achieve?", tuple(cost(subject))),
+        ("Which limits cost money?" if money else "Which limits hold it back?", tuple(dear_limits(subject))),
         ("What to change first?", tuple(first(subject))),
         ("What to worry about?", tuple(worries(subject))),
     )
     return [fact for fact in facts if fact[1]]
-
-
-def plain(text: str) -> str:
-    """A line of the terminal without its title in capitals, as a sentence of its own."""
-    bare = re.sub(r"^[A-Z][A-Z ]{2,}[A-Z] {2,}", "", text)
-    return bare[:1].upper() + bare[1:]
-
-
-def keep_away(text: str) -> str:
-    """The line about margins as a sentence."""
-    bare = text.removeprefix("KEEP AWAY").strip()
-    if bare.startswith("none on"):
-        return bare.replace("none on", "No margin is kept on", 1)
-    return f"Margins are kept: {bare}" if bare else ""
 
 
 def inside(subject: Subject) -> list[str]:
@@ -120,46 +112,69 @@ def dear_limits(subject: Subject) -> list[str]:
 
 def worth_sentence(bar: WorthBar, money: str, in_money: bool) -> str:
     """`light-off, beds 1-4: 1 K more freedom saves 3.7 EUR/h, 1 K less costs 4.7 EUR/h.`"""
-    decimals = 1 if in_money else 3
-    saves = "could not be solved" if bar.saves is None else f"saves {fixed(bar.saves, decimals)} {money}"
+    number = partial(fixed, decimals=1) if in_money else readable
+    verb = "saves" if in_money else "brings"
+    saves = "could not be solved" if bar.saves is None else f"{verb} {number(bar.saves)} {money}"
+    saves += f" and goes on paying for {bar.pays_for}" if bar.pays_for else ""
     costs = (
-        "leaves no setting inside the limits"
-        if bar.costs is None
-        else f"costs {fixed(bar.costs, decimals)} {money}"
+        "leaves no setting inside the limits" if bar.costs is None else f"costs {number(bar.costs)} {money}"
     )
     return f"{bar.name}: {bar.step} more freedom {saves}, {bar.step} less {costs}."
 
 
 def first(subject: Subject) -> list[str]:
-    """The biggest move from today, or what a rating breaks."""
+    """The first move from today with what the others bring, what would have to give, what a rating breaks."""
     search = subject.search
     if search is None:
         broken = bounds.broken(subject.now)
         return [f"Bring back inside: {and_list(bounds.together(broken))}."] if broken else []
     if search.optimum.conflict is not None:
-        return [sentences.give_way(search.optimum.conflict, subject.now)]
+        enough = [said(text) for text in conflict_text(search.optimum, subject.now)]
+        return enough or [sentences.give_way(search.optimum.conflict, subject.now)]
     if subject.today is None:
         return (
             ["No setting was found; see how the starts ended."] if search.optimum.status == NO_ANSWER else []
         )
-    text = sentences.first_change(search.programme, subject.now, subject.today)
-    return [plain(text.removeprefix("Change first: ")), sentences.today_text(subject.today)]
+    return [*moves_texts(subject, search, subject.today), sentences.today_text(subject.today)]
+
+
+def moves_texts(subject: Subject, search: Search, today: Rating) -> list[str]:
+    """What to enter first, else the largest changes from today."""
+    moves, numbers = search.optimum.moves, search.programme.numbers
+    text = ""
+    if moves is not None:
+        text = first_move_text(moves, numbers, today, aim_of(subject.now), "listed below")
+    if text:
+        return [text]
+    why = (
+        [f"There are no moves that can be entered: {moves.note}."] if moves is not None and moves.note else []
+    )
+    change = sentences.first_change(search.programme, subject.now, today).removeprefix("Change first: ")
+    return [change[:1].upper() + change[1:], *why]
 
 
 def worries(subject: Subject) -> list[str]:
-    """Margins, hot places, unpriced heat, what the rating noted, other answers, the caution."""
-    texts = list(subject.seen.warnings)
+    """States, unlit beds, validity, second phases, range ends, other answers, margins, heat, the caution."""
+    warned = subject.seen.warnings
+    notes = [one for one in sentences.notes(subject.now) if not _said_by(one, warned)]
+    texts = [*notes, near_a_boundary(subject.now)]
     if subject.search is not None:
         texts += search_worries(subject, subject.search)
-    texts += [hottest(subject.now), *sentences.notes(subject.now), SHORT]
+    texts += [hottest(subject.now), *warned, SHORT]
     return [text for text in texts if text]
+
+
+def _said_by(note: str, others: Sequence[str]) -> bool:
+    """Whether another text begins with what a note says."""
+    return any(other.startswith(note.rstrip(".")) for other in others)
 
 
 def search_worries(subject: Subject, search: Search) -> list[str]:
     """What the search leaves open."""
-    texts = [*search.optimum.notes]
+    texts = [f"{note[:1].upper()}{note[1:].rstrip('.')}." for note in search.optimum.notes]
     if search.optimum.conflict is None and search.optimum.answers:
-        texts.append(keep_away(sentences.margin_text(search.optimum, subject.now)))
+        texts += [range_end(name) for name in search.optimum.best.at_range]
+        texts.append(said(sentences.margin_text(search.optimum, subject.now)))
     if search.others:
         texts.append(
             sentences.second_answer(search.programme, search.optimum, subject.now, search.others).replace(
@@ -170,6 +185,11 @@ def search_worries(subject: Subject, search: Search) -> list[str]:
     if ended < len(search.optimum.starts) and ended:
         texts.append(f"{ended} of {counted(len(search.optimum.starts), 'start')} ended at an answer.")
     return texts
+
+
+def range_end(name: str) -> str:
+    """That a number is held by its search range alone."""
+    return f"At an end of its search range, where no limit holds it: {spoken(name)}; widen the range."
 
 
 def hottest(rating: Rating) -> str:
