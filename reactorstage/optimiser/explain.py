@@ -78,6 +78,7 @@ def explanation(job: Job, answers: Sequence[Answer], today: Array) -> Explanatio
     tasks: list[Task] = [
         (f"equal split of {g.feed}", partial(equal_split, base, g, [known[0], today, *known[1:]]))
         for g in job.programme.splits
+        if not g.carries
     ]
     tasks += [
         (f"worth of {one.label}", partial(worth, base, one))

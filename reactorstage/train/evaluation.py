@@ -48,7 +48,8 @@ class SplitGroup:
     """A feed whose division over the beds is free.
 
     indices are the positions in x of its free entries (in bed order), rest_bed the bed that takes the
-    rest (0: none), fixed the sum of the entries that are not free.
+    rest (0: none), fixed the sum of the entries that are not free. carries is set for the stream that the
+    train begins with, of which parts go round the first beds as cold shots: equal parts of it say nothing.
     """
 
     feed: str
@@ -56,6 +57,7 @@ class SplitGroup:
     total: float
     fixed: float
     rest_bed: int
+    carries: bool = False
 
 
 @dataclass(frozen=True)

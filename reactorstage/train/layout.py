@@ -235,7 +235,9 @@ class _Writer:
         if free:
             rest = int(split.rest.split()[1]) if split.rest else 0
             size = 1.0 if shares else feed.flow.now
-            self.splits.append(SplitGroup(name, tuple(free), size, fixed, rest))
+            steps = [step for section in self.case.train for step in section.steps]
+            taken = any(step.kind == "take" and step.feed == name for step in steps)
+            self.splits.append(SplitGroup(name, tuple(free), size, fixed, rest, taken))
 
     def _settled(self, split: Split, bed: str) -> Number:
         """The entry of a bed; that of one out of service is not free."""

@@ -335,6 +335,6 @@ def _notes(model: Model, quantities: dict[str, Value]) -> tuple[str, ...]:
     for (owner, share), reactions in outside.items():
         alike.setdefault((share, ", ".join(reactions)), []).append(owner)
     for (share, reactions_), owners in alike.items():
-        verb = "lies" if len(owners) == 1 else "lie, each,"
-        notes.append(f"{share} of {', '.join(owners)} {verb} outside the stated validity of {reactions_}.")
+        each = "" if len(owners) == 1 else "each of "
+        notes.append(f"{share} of {each}{', '.join(owners)} lies outside the stated validity of {reactions_}.")
     return tuple(notes)
