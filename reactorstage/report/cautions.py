@@ -23,8 +23,8 @@ BASIS = (
 )
 CHANGE = "Changes on a running unit go through the site's management of change."
 DUTY = (
-    "Kinetics, limits and prices are those of the case and are its owner's responsibility. Cases shipped "
-    "with the tool have invented kinetics: never use them for a real unit."
+    "Kinetics, limits and prices are those of the case and are its owner's responsibility. Kinetics of the "
+    "cases shipped with the tool are invented or from memory: never use them for a real unit."
 )
 FULL = (PROFILE, REACTIONS, BASIS, f"{ADVICE} {CHANGE}", DUTY)
 
