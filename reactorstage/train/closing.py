@@ -120,9 +120,9 @@ class Closing:
             why = f"no answer after {ITERATIONS} steps"
             return Solved(v, trial.residual, trial.jacobian, step, None, self.evaluations, why)
         mesh = trial.mesh
-        return self._sharpened(v, trial, mesh)
+        return self.sharpened(v, trial, mesh)
 
-    def _sharpened(self, v: Array, trial: Trial, mesh: Stages | None) -> Solved:
+    def sharpened(self, v: Array, trial: Trial, mesh: Stages | None) -> Solved:
         """Steps on the last mesh until nothing moves."""
         step = np.inf
         for _ in range(SHARPENING):

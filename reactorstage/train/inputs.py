@@ -98,10 +98,20 @@ class InputBuilder:
         """An input from a number of the case, times a conversion factor; free numbers join x."""
         low = number.now if number.low is None else number.low
         high = number.now if number.high is None else number.high
+        name = self._unlike_others(name)
         self.all.append(FreeNumber(name, number.now, low, high, number.kind, **role))  # type: ignore[arg-type]
         if number.free:
             self._free.append(len(self.all) - 1)
         return self._append(name, at(len(self.all) - 1) * factor)
+
+    def _unlike_others(self, name: str) -> str:
+        """The name, with a count behind it where several devices of one place are given alike."""
+        known, count = {one.name for one in self.all}, 2
+        if name not in known:
+            return name
+        while f"{name} ({count})" in known:
+            count += 1
+        return f"{name} ({count})"
 
     def combination(self, name: str, form: Linear) -> int:
         """An input that is a linear form of v."""

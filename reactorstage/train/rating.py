@@ -336,5 +336,6 @@ def _notes(model: Model, quantities: dict[str, Value]) -> tuple[str, ...]:
         alike.setdefault((share, ", ".join(reactions)), []).append(owner)
     for (share, reactions_), owners in alike.items():
         each = "" if len(owners) == 1 else "each of "
-        notes.append(f"{share} of {each}{', '.join(owners)} lies outside the stated validity of {reactions_}.")
+        where = f"{share} of {each}{', '.join(owners)}"
+        notes.append(f"{where} lies outside the stated validity of {reactions_}.")
     return tuple(notes)

@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 import reactorstage
 from reactorstage.bed.data import Stages, Tolerance
 from reactorstage.errors import CallError
+from reactorstage.train.closing import Closing
 from reactorstage.train.parameters import (
     FormRows,
     Parameter,
@@ -39,13 +40,20 @@ STEPS = {-1: 4.5e-5, 0: 3e-4, 1: 18.0, 4: 45.0, 5: 0.06}
 """Half width of the wider central difference by kind; relative for numbers of the case, else SI."""
 
 
+NEAR_A_FOLD = 0.1
+"""Steps of differences in trains closed on themselves, which bend more, by those of others."""
+
+
 @cache
 def programme(name: str) -> TrainProgramme:
     return reactorstage.compile(reactorstage.load(FOLDER / name))
 
 
 def frozen_values(model: Model, v: Array, mesh: Stages, x: Array) -> Array:
-    """Values of all listed quantities at the numbers v on a given step sequence."""
+    """Values of all listed quantities at the numbers v, closed again, on a given step sequence."""
+    if model.layout.closures:
+        closing = Closing(model, FINE)
+        v = closing.sharpened(v, closing.at(v, mesh), mesh).v
     u, _ = model.inputs.of_numbers(v)
     nothing = np.zeros((len(u), 0))
     outcome = model.passing.frozen(u, nothing, mesh)
@@ -64,13 +72,19 @@ def moved_value(model: Model, one: Parameter, v: Array, by: float, mesh: Stages,
 
 
 def difference(model: Model, one: Parameter, v: Array, mesh: Stages, x: Array) -> tuple[Array, float]:
-    """Central difference, extrapolated from two widths (error of fourth order in the wider one)."""
+    """Central difference, extrapolated from two widths (error of fourth order in the wider one).
+
+    Not a number at a kink, where a level of heat begins to be reached: nothing moves on one side there.
+    """
     wide = STEPS[one.kind] * (max(abs(v[one.index]), 1.0) if one.kind < 0 else 1.0)
-    slopes = []
+    wide *= NEAR_A_FOLD if model.layout.closures else 1.0
+    slopes, kinked, here = [], False, frozen_values(model, v, mesh, x)
     for step in (wide, 0.5 * wide):
         high, low = (moved_value(model, one, v, sign * step, mesh, x) for sign in (1.0, -1.0))
         slopes.append((high - low) / (2.0 * step))
-    return (4.0 * slopes[1] - slopes[0]) / 3.0, wide
+        up, down = np.abs(high - here), np.abs(here - low)
+        kinked = kinked | ((np.minimum(up, down) == 0.0) & (np.maximum(up, down) > 0.0))
+    return np.where(kinked, np.nan, (4.0 * slopes[1] - slopes[0]) / 3.0), wide
 
 
 def left_of_large_numbers(name: str) -> float:
@@ -95,6 +109,7 @@ def newton_to_rounding(monkeypatch: pytest.MonkeyPatch) -> None:
     "name", [pytest.param(name, marks=pytest.mark.slow if name in LONG else ()) for name in CASES]
 )
 def test_derivatives_by_every_parameter_are_central_differences(name: str) -> None:
+    """Depths and approaches are found by iteration: near a fold their rounding limits the differences."""
     train = programme(name)
     model, x = train.model, train.now
     found = sensitivities(train, x, tolerance=FINE)
@@ -102,6 +117,8 @@ def test_derivatives_by_every_parameter_are_central_differences(name: str) -> No
     u, _ = model.inputs.of_numbers(v)
     mesh = model.passing.adaptive(u, np.zeros((len(u), 1)), FINE).stages
     cancelled = np.array([left_of_large_numbers(name) for name in found.names])
+    loose = 2e-5 if model.layout.closures else 1e-6
+    allowed = np.array([loose if ".depth " in name or ".approach " in name else 1e-6 for name in found.names])
     for d, one in enumerate(parameters_of(model)):
         if one.kind not in STEPS:
             continue
@@ -109,8 +126,9 @@ def test_derivatives_by_every_parameter_are_central_differences(name: str) -> No
         size = np.abs(found.derivatives[:, d]) + 3e-6 * (np.abs(found.values) + cancelled) / step
         off = np.abs(slope - found.derivatives[:, d]) / size
         there = np.isfinite(slope) & np.isfinite(found.derivatives[:, d])
-        worst = int(np.argmax(np.where(there, off, 0.0)))
-        assert off[worst] < 1e-6, f"{found.names[worst]} by {one.name}"
+        off = np.where(there, off, 0.0) / allowed
+        worst = int(np.argmax(off))
+        assert off[worst] < 1.0, f"{found.names[worst]} by {one.name}"
 
 
 def test_derivative_by_a_mole_fraction_is_that_of_adding_the_species() -> None:
@@ -120,6 +138,17 @@ def test_derivative_by_a_mole_fraction_is_that_of_adding_the_species() -> None:
     found = sensitivities(train, parameters=[name], quantities=["effluent.flow of ethane"])
     flow = train.rate().number("feed ethylene.flow")
     assert found.derivatives[0, 0] == pytest.approx(flow, rel=1e-9)
+
+
+def test_parameters_have_names_of_their_own() -> None:
+    """Three coolers of one gap that are given by their outlets are three parameters."""
+    names = [one.name for one in parameters_of(programme("hathermoor-contact.yaml").model)]
+    assert len(set(names)) == len(names)
+    assert [name for name in names if "gap 3.exit temperature" in name] == [
+        "gap 3.exit temperature",
+        "gap 3.exit temperature (2)",
+        "gap 3.exit temperature (3)",
+    ]
 
 
 def test_unknown_names_are_refused_with_the_nearest() -> None:
