@@ -61,6 +61,12 @@ def moved_value(model: Model, one: Parameter, v: Array, by: float, mesh: Stages,
     return frozen_values(other, v, mesh, x)
 
 
+CLOSED = ("hathermoor", "quillmere")
+"""Cases closed on themselves: differences here hold their unknowns still, those of `test_states` do not."""
+
+OPEN = [name for name in CASES if not name.startswith(CLOSED)]
+
+
 def difference(model: Model, one: Parameter, v: Array, mesh: Stages, x: Array) -> tuple[Array, float]:
     """Central difference, extrapolated from two widths (error of fourth order in the wider one)."""
     wide = STEPS[one.kind] * (max(abs(v[one.index]), 1.0) if one.kind < 0 else 1.0)
@@ -82,7 +88,7 @@ def newton_to_rounding(monkeypatch: pytest.MonkeyPatch) -> None:
 
 
 @pytest.mark.usefixtures("newton_to_rounding")
-@pytest.mark.parametrize("name", CASES)
+@pytest.mark.parametrize("name", OPEN)
 def test_derivatives_by_every_parameter_are_central_differences(name: str) -> None:
     train = programme(name)
     model, x = train.model, train.now
