@@ -9,6 +9,8 @@ import pytest
 from hypothesis import settings
 
 os.environ["MPLBACKEND"] = "Agg"
+for name in ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS", "MKL_NUM_THREADS"):
+    os.environ.setdefault(name, "1")
 
 settings.register_profile("repeatable", deadline=None, derandomize=True, max_examples=40)
 settings.load_profile("repeatable")

@@ -25,6 +25,8 @@ from reactorstage.optimiser.asked import Asked
 from reactorstage.optimiser.moves import moves_to
 from reactorstage.optimiser.resolve import Base
 from reactorstage.report.cascade import cascades
+from reactorstage.train.batch import rate_many
+from reactorstage.train.passing import FINAL
 from reactorstage.train.programme import TrainProgramme
 from reactorstage.train.result import Rating
 from tests.bed.build import load
@@ -326,3 +328,19 @@ def test_inerts_leave_less_to_extinction() -> None:
     assert clean == pytest.approx([0.876], abs=0.002)
     assert inert == pytest.approx([0.971], abs=0.002)
     assert [one.label for one in solved(INERTS).today.limits if not one.met] == ["light-off"]
+
+
+@pytest.mark.parametrize(
+    ("name", "parameter", "quantity", "size"),
+    [
+        (CONTACT, "bed 3.catalyst activity", "effluent.flow of SO2", 1.0),
+        (AMMONIA, "feed syngas.temperature", "bed 1.inlet temperature", 473.15),
+    ],
+)
+def test_sensitivities_of_the_closed_trains(name: str, parameter: str, quantity: str, size: float) -> None:
+    """Central differences of whole ratings, closures solved anew, 1e-3."""
+    programme = rs.compile(rs.load(FOLDER / f"{name}.yaml"))
+    found = rs.sensitivities(programme, parameters=[parameter], quantities=[quantity])
+    ends = {parameter: [size * (1.0 - 1e-4), size * (1.0 + 1e-4)]}
+    low, high = rate_many(programme, ends, quantities=[quantity], tolerance=FINAL).of(quantity)
+    assert found.derivatives[0, 0] == pytest.approx((high - low) / (2e-4 * size), rel=1e-3)
