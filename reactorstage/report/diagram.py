@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from textwrap import fill
 
 import numpy as np
 from matplotlib.axes import Axes
@@ -27,6 +28,9 @@ from reactorstage.train.result import Array, LimitState, Rating
 
 HEIGHT = 5.2
 BOTTOM, TOP = 0.98, 0.95
+NOTE_WIDTH = 121
+"""Letters of a note that fit into a line."""
+
 RIGHT_ROOM, LEFT_ROOM = 0.14, 0.2
 REACH = 0.3
 TOP_PERCENT = 103.0
@@ -278,8 +282,8 @@ def _key_rows(
 
 def _notes(figure: Figure, rating: Rating, behind: Background | None) -> None:
     """What the lines behind the way hold for, and the caution."""
-    lines = [*explained(rating, behind), SHORT]
-    text = "\n".join(lines)
+    lines = [fill(line, NOTE_WIDTH) for line in explained(rating, behind)]
+    text = "\n".join([*lines, SHORT])
     figure.text(
         look.LEFT, 0.1 / HEIGHT, text, ha="left", va="bottom", fontsize=look.SMALL - 0.4, linespacing=1.3
     )

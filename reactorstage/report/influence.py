@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from textwrap import fill
 
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
@@ -16,6 +17,8 @@ ROWS = 16
 ROW_INCHES = 0.235
 ABOVE, BELOW = 0.6, 0.74
 NAMES = 0.42
+NAME_WIDTH = 46
+"""Letters of a name that fit beside its bar; longer ones go on in a second line."""
 FAINTEST = 1e-3
 WORSE, BETTER = look.INK, look.LIMIT
 NOTE = (
@@ -46,7 +49,8 @@ def influence_figure(found: Sequence[Influence], aim: Aim, title: str, status: s
     axes.set_xlim(low - room[low < 0.0], high + room[high > 0.0])
     for place, (row, size) in enumerate(zip(rows, sizes, strict=True)):
         _value(axes, place, size, change_text(row.change, aim))
-    axes.set_yticks(range(len(rows)), [row.words for row in rows], fontsize=look.SMALL)
+    names = [fill(_kept_together(row.words), NAME_WIDTH) for row in rows]
+    axes.set_yticks(range(len(rows)), names, fontsize=look.SMALL, linespacing=0.95)
     axes.set_ylim(len(rows) - 0.4, -0.6)
     axes.tick_params(axis="y", length=0)
     axes.tick_params(axis="x", labelsize=look.TEXT - 0.5)
@@ -56,6 +60,12 @@ def influence_figure(found: Sequence[Influence], aim: Aim, title: str, status: s
     axes.set_xlabel(_label(aim))
     figure.text(look.LEFT - 0.09, 0.1 / height, NOTE, ha="left", va="bottom", fontsize=look.SMALL - 0.4)
     return figure
+
+
+def _kept_together(words: str) -> str:
+    """The words with a step behind them that does not break across lines."""
+    what, bracket, step = words.rpartition(" (")
+    return what + bracket + step.replace(" ", "\u00a0")
 
 
 def _label(aim: Aim) -> str:
