@@ -73,7 +73,7 @@ def conflict(programme: Programme, x: Array, evaluation: Evaluation) -> tuple[Co
     the sum of violations.
     """
     elastic, start = elastic_at(programme, evaluation, x)
-    stretched = elastic.stretched(evaluation, start)
+    stretched = elastic.changed(evaluation, start)
     scale = scale_at(elastic, stretched, 1.0)
     found = multipliers(scaled(stretched, start, scale), scale.upper, NEAR)
     give = start[elastic.count :]

@@ -8,7 +8,6 @@ from __future__ import annotations
 
 import threading
 from dataclasses import dataclass, replace
-from typing import Any
 
 import numpy as np
 
@@ -16,23 +15,21 @@ from reactorstage.optimiser.programme import (
     Array,
     Evaluation,
     FreeNumber,
-    LimitRow,
     Programme,
-    SplitGroup,
 )
 from reactorstage.optimiser.scaling import limit_sizes, needed, ranges
 from reactorstage.optimiser.solve import Ending, descend
+from reactorstage.optimiser.wrappers import Wrapped
 
 
 @dataclass(frozen=True)
-class Elastic:
+class Elastic(Wrapped):
     """Numbers x and, behind them, the amounts v (M,) by which the limits give way.
 
     margin_i + sizes_i v_i >= 0 with sizes = weight * scale at some point, so that v is the violation in
     own units over the limit's scale. The cost is the sum of v.
     """
 
-    programme: Programme
     sizes: Array
 
     @property
@@ -40,39 +37,8 @@ class Elastic:
         gives = (FreeNumber(f"give of {limit.name}", 0.0, 0.0, np.inf, "number") for limit in self.limits)
         return (*self.programme.numbers, *gives)
 
-    @property
-    def limits(self) -> tuple[LimitRow, ...]:
-        return self.programme.limits
-
-    @property
-    def splits(self) -> tuple[SplitGroup, ...]:
-        return self.programme.splits
-
-    @property
-    def count(self) -> int:
-        """Numbers of the programme underneath."""
-        return len(self.programme.numbers)
-
-    def start_mesh(self, x: Array, fine: bool = False) -> tuple[Evaluation, Any]:
-        evaluation, mesh = self.programme.start_mesh(x[: self.count], fine)
-        return self.stretched(evaluation, x), mesh
-
-    def evaluate(self, x: Array, mesh: Any) -> Evaluation:
-        return self.stretched(self.programme.evaluate(x[: self.count], mesh), x)
-
-    def final(self, x: Array) -> Evaluation:
-        return self.stretched(self.programme.final(x[: self.count]), x)
-
-    def complete(self, x: Array) -> Array:
-        return np.concatenate([self.programme.complete(x[: self.count]), x[self.count :]])
-
-    def begin(self, x: Array) -> Array:
-        return np.concatenate([self.programme.begin(x[: self.count]), x[self.count :]])
-
-    def stretched(self, evaluation: Evaluation, x: Array) -> Evaluation:
+    def changed(self, evaluation: Evaluation, x: Array) -> Evaluation:
         """An evaluation of the programme underneath as one of this, at x with v behind it."""
-        if not evaluation.ok:
-            return evaluation
         give = x[self.count :]
         weight_dx = needed(evaluation.weight_dx)
         residual_dx = needed(evaluation.residual_dx)

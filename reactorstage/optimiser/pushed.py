@@ -3,36 +3,28 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from typing import Any
 
 import numpy as np
 
 from reactorstage.optimiser.programme import (
     Array,
     Evaluation,
-    FreeNumber,
     LimitRow,
-    Programme,
-    SplitGroup,
 )
 from reactorstage.optimiser.scaling import needed
+from reactorstage.optimiser.wrappers import Wrapped
 
 
 @dataclass(frozen=True)
-class Pushed:
+class Pushed(Wrapped):
     """The largest direction @ x inside all limits and at a cost of at most budget; size scales that row.
 
     Without a budget the cost may be what it will.
     """
 
-    programme: Programme
     direction: Array
     budget: float | None = None
     size: float = 1.0
-
-    @property
-    def numbers(self) -> tuple[FreeNumber, ...]:
-        return self.programme.numbers
 
     @property
     def limits(self) -> tuple[LimitRow, ...]:
@@ -43,30 +35,8 @@ class Pushed:
         )
         return (*self.programme.limits, row)
 
-    @property
-    def splits(self) -> tuple[SplitGroup, ...]:
-        return self.programme.splits
-
-    def start_mesh(self, x: Array, fine: bool = False) -> tuple[Evaluation, Any]:
-        evaluation, mesh = self.programme.start_mesh(x, fine)
-        return self._turned(evaluation, x), mesh
-
-    def evaluate(self, x: Array, mesh: Any) -> Evaluation:
-        return self._turned(self.programme.evaluate(x, mesh), x)
-
-    def final(self, x: Array) -> Evaluation:
-        return self._turned(self.programme.final(x), x)
-
-    def complete(self, x: Array) -> Array:
-        return self.programme.complete(x)
-
-    def begin(self, x: Array) -> Array:
-        return self.programme.begin(x)
-
-    def _turned(self, evaluation: Evaluation, x: Array) -> Evaluation:
+    def changed(self, evaluation: Evaluation, x: Array) -> Evaluation:
         """The cost becomes a limit, the form the cost."""
-        if not evaluation.ok:
-            return evaluation
         turned = replace(evaluation, cost=-float(self.direction @ x), cost_dx=-self.direction)
         if self.budget is None:
             return turned
@@ -80,44 +50,13 @@ class Pushed:
 
 
 @dataclass(frozen=True)
-class Held:
+class Held(Wrapped):
     """A programme with one more equation: direction @ x = value."""
 
-    programme: Programme
     direction: Array
     value: float
 
-    @property
-    def numbers(self) -> tuple[FreeNumber, ...]:
-        return self.programme.numbers
-
-    @property
-    def limits(self) -> tuple[LimitRow, ...]:
-        return self.programme.limits
-
-    @property
-    def splits(self) -> tuple[SplitGroup, ...]:
-        return self.programme.splits
-
-    def start_mesh(self, x: Array, fine: bool = False) -> tuple[Evaluation, Any]:
-        evaluation, mesh = self.programme.start_mesh(x, fine)
-        return self._held(evaluation, x), mesh
-
-    def evaluate(self, x: Array, mesh: Any) -> Evaluation:
-        return self._held(self.programme.evaluate(x, mesh), x)
-
-    def final(self, x: Array) -> Evaluation:
-        return self._held(self.programme.final(x), x)
-
-    def complete(self, x: Array) -> Array:
-        return self.programme.complete(x)
-
-    def begin(self, x: Array) -> Array:
-        return self.programme.begin(x)
-
-    def _held(self, evaluation: Evaluation, x: Array) -> Evaluation:
-        if not evaluation.ok:
-            return evaluation
+    def changed(self, evaluation: Evaluation, x: Array) -> Evaluation:
         return replace(
             evaluation,
             residual=np.append(needed(evaluation.residual), float(self.direction @ x) - self.value),

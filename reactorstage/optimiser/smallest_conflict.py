@@ -10,7 +10,6 @@ from __future__ import annotations
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, field, replace
 from functools import partial
-from typing import Any
 
 import numpy as np
 
@@ -23,7 +22,6 @@ from reactorstage.optimiser.programme import (
     FreeNumber,
     LimitRow,
     Programme,
-    SplitGroup,
 )
 from reactorstage.optimiser.reasons import ConflictSet, Suffices
 from reactorstage.optimiser.resolve import INSIDE_ENOUGH
@@ -31,7 +29,7 @@ from reactorstage.optimiser.result import Conflict
 from reactorstage.optimiser.scaling import needed
 from reactorstage.optimiser.solve import descend
 from reactorstage.optimiser.starts import starts
-from reactorstage.optimiser.wrappers import Shifted
+from reactorstage.optimiser.wrappers import Shifted, Wrapped
 
 FAR = 1e3
 TRIED = 10
@@ -180,10 +178,9 @@ def _suffices(prober: Prober, rows: tuple[int, ...], points: Sequence[Array]) ->
 
 
 @dataclass(frozen=True)
-class Loosened:
+class Loosened(Wrapped):
     """A programme with some limits relaxed by one further number, in their step, which is its cost."""
 
-    programme: Programme
     rows: tuple[int, ...]
 
     @property
@@ -194,33 +191,7 @@ class Loosened:
     def numbers(self) -> tuple[FreeNumber, ...]:
         return (*self.programme.numbers, FreeNumber("relaxation", 0.0, 0.0, np.inf, "number"))
 
-    @property
-    def limits(self) -> tuple[LimitRow, ...]:
-        return self.programme.limits
-
-    @property
-    def splits(self) -> tuple[SplitGroup, ...]:
-        return self.programme.splits
-
-    def start_mesh(self, x: Array, fine: bool = False) -> tuple[Evaluation, Any]:
-        evaluation, mesh = self.programme.start_mesh(x[:-1], fine)
-        return self._loose(evaluation, x), mesh
-
-    def evaluate(self, x: Array, mesh: Any) -> Evaluation:
-        return self._loose(self.programme.evaluate(x[:-1], mesh), x)
-
-    def final(self, x: Array) -> Evaluation:
-        return self._loose(self.programme.final(x[:-1]), x)
-
-    def complete(self, x: Array) -> Array:
-        return np.append(self.programme.complete(x[:-1]), x[-1])
-
-    def begin(self, x: Array) -> Array:
-        return np.append(self.programme.begin(x[:-1]), x[-1])
-
-    def _loose(self, evaluation: Evaluation, x: Array) -> Evaluation:
-        if not evaluation.ok:
-            return evaluation
+    def changed(self, evaluation: Evaluation, x: Array) -> Evaluation:
         rows = np.zeros(len(self.limits))
         rows[list(self.rows)] = self.step
         weight, weight_dx = needed(evaluation.weight), needed(evaluation.weight_dx)

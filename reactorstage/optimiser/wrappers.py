@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import threading
+from abc import ABC, abstractmethod
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from typing import Any
@@ -48,11 +49,10 @@ class Counted:
 
 
 @dataclass(frozen=True)
-class Shifted:
-    """A programme with its limits relaxed by shifts (M,), own units, negative to tighten."""
+class Wrapped(ABC):
+    """A programme made from another by changing its evaluations; further numbers may stand behind its x."""
 
     programme: Programme
-    shifts: Array
 
     @property
     def numbers(self) -> tuple[FreeNumber, ...]:
@@ -66,25 +66,42 @@ class Shifted:
     def splits(self) -> tuple[SplitGroup, ...]:
         return self.programme.splits
 
+    @property
+    def count(self) -> int:
+        """Numbers of the programme underneath."""
+        return len(self.programme.numbers)
+
+    @abstractmethod
+    def changed(self, evaluation: Evaluation, x: Array) -> Evaluation:
+        """An evaluation without failure of the programme underneath as one of this, at this one's x."""
+
     def start_mesh(self, x: Array, fine: bool = False) -> tuple[Evaluation, Any]:
-        evaluation, mesh = self.programme.start_mesh(x, fine)
-        return self._shift(evaluation), mesh
+        evaluation, mesh = self.programme.start_mesh(x[: self.count], fine)
+        return self._of(evaluation, x), mesh
 
     def evaluate(self, x: Array, mesh: Any) -> Evaluation:
-        return self._shift(self.programme.evaluate(x, mesh))
+        return self._of(self.programme.evaluate(x[: self.count], mesh), x)
 
     def final(self, x: Array) -> Evaluation:
-        return self._shift(self.programme.final(x))
+        return self._of(self.programme.final(x[: self.count]), x)
 
     def complete(self, x: Array) -> Array:
-        return self.programme.complete(x)
+        return np.append(self.programme.complete(x[: self.count]), x[self.count :])
 
     def begin(self, x: Array) -> Array:
-        return self.programme.begin(x)
+        return np.append(self.programme.begin(x[: self.count]), x[self.count :])
 
-    def _shift(self, evaluation: Evaluation) -> Evaluation:
-        if not evaluation.ok:
-            return evaluation
+    def _of(self, evaluation: Evaluation, x: Array) -> Evaluation:
+        return self.changed(evaluation, x) if evaluation.ok else evaluation
+
+
+@dataclass(frozen=True)
+class Shifted(Wrapped):
+    """A programme with its limits relaxed by shifts (M,), own units, negative to tighten."""
+
+    shifts: Array
+
+    def changed(self, evaluation: Evaluation, x: Array) -> Evaluation:
         return replace(
             evaluation,
             margin=needed(evaluation.margin) + needed(evaluation.weight) * self.shifts,
